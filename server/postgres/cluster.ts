@@ -7,6 +7,7 @@ import {
   mkdirSync,
   mkdtempSync,
   openSync,
+  readdirSync,
   readFileSync,
   renameSync,
   rmSync,
@@ -41,6 +42,7 @@ export interface Cluster {
 
 const role = 'refettle';
 const database = 'refettle';
+const workshopPrefix = 'postgres-new-';
 const startTries = 3;
 const pauseMs = 20;
 /** A long one: after a kill PostgreSQL first replays its log. */
@@ -96,7 +98,9 @@ function keepPassword({ folder, passwordFile }: ClusterPlace): string {
 
 /** Made beside its place and moved there when whole: a start that is killed half-way leaves nothing that looks like a cluster. */
 function createCluster({ folder }: ClusterPlace, owner: Owner, password: string, options: { durable: boolean }): void {
-  const workshop = mkdtempSync(join(dirname(folder), 'postgres-new-'));
+  const unfinished = readdirSync(dirname(folder)).filter((name) => name.startsWith(workshopPrefix));
+  for (const name of unfinished) rmSync(join(dirname(folder), name), { recursive: true, force: true });
+  const workshop = mkdtempSync(join(dirname(folder), workshopPrefix));
   const data = join(workshop, 'data');
   const passwordCopy = join(workshop, 'password');
   try {
