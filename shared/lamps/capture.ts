@@ -12,7 +12,8 @@ export const captureHeaderSchema = z.looseObject({
     .refine((ids) => new Set(ids).size === ids.length, 'a lamp id stands twice'),
   scale: z.looseObject({ unit: z.string(), max: z.number().positive() }),
   sampleRateHz: z.number().positive().optional(),
-  unit: z.string().optional(),
+  /** The unit number, as digits or as a number. */
+  unit: z.union([z.string(), z.number().int()]).optional(),
   family: z.string().optional(),
   sheetEdition: z.number().int().optional(),
   clock: z.enum(['bench', 'probe']).optional(),

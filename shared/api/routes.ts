@@ -1,0 +1,78 @@
+import { z } from 'zod';
+import { capturePageSchema, captureStoredSchema, newCaptureSchema } from './captures.js';
+import { pageOf, pageQuerySchema } from './page.js';
+import { eventStoredSchema, newInspectionSchema, newReadingSchema, newRepairSchema } from './readings.js';
+import type { Action } from './roles.js';
+import { newRunSchema, runPageSchema, runStoredSchema } from './runs.js';
+import { firstAdminSchema, meSchema, newPersonSchema, personSchema, signedInSchema, signInSchema } from './sessions.js';
+import { newSheetSchema, sheetPageSchema, sheetRowSchema } from './sheets.js';
+import { publicTagQuerySchema, publicTagSchema, signOffSchema, tagPageSchema, withdrawTagSchema } from './tags.js';
+import { newUnitSchema, overrideSchema, unitPageSchema, unitRowSchema, unitSchema } from './units.js';
+
+/** One route: the server checks requests by it, OpenAPI describes it, terminal and browser call it, the tests walk it. */
+export interface Route {
+  method: 'GET' | 'POST' | 'DELETE';
+  /** Express's path; `:name` is a path parameter of `params`. */
+  path: string;
+  action: Action;
+  summary: string;
+  params?: z.ZodObject;
+  query?: z.ZodObject;
+  body?: z.ZodType;
+  status: 200 | 201 | 204;
+  response: z.ZodType;
+  /** A write that a bench sends: carries an Idempotency-Key. */
+  idempotent?: true;
+}
+
+const unitNumber = z.strictObject({ number: z.coerce.number().int().positive().max(2_000_000_000) });
+const byId = z.strictObject({ id: z.uuid() });
+const family = z.strictObject({ family: z.string().max(100) });
+const tagNumber = z.strictObject({ tag: z.string().max(40) });
+const nothing = z.strictObject({});
+
+export const routes = {
+  health: { method: 'GET', path: '/api/health', action: 'health.read', summary: 'Whether the database answers', status: 200, response: z.strictObject({ ok: z.literal(true) }) },
+  signIn: { method: 'POST', path: '/api/sessions', action: 'session.create', summary: 'Sign in', body: signInSchema, status: 201, response: signedInSchema },
+  signOut: { method: 'DELETE', path: '/api/sessions/current', action: 'session.end', summary: 'Sign out: the token is revoked', status: 204, response: nothing },
+  createFirstAdmin: { method: 'POST', path: '/api/first-admin', action: 'first-admin.create', summary: 'Make the first admin by the one-time link that the terminal printed', body: firstAdminSchema, status: 201, response: personSchema },
+  me: { method: 'GET', path: '/api/me', action: 'me.read', summary: 'Who is signed in, and the shop', status: 200, response: meSchema },
+  listPeople: { method: 'GET', path: '/api/people', action: 'person.read', summary: 'The people of the shop', query: pageQuerySchema, status: 200, response: pageOf(personSchema) },
+  createPerson: { method: 'POST', path: '/api/people', action: 'person.create', summary: 'Add a person', body: newPersonSchema, status: 201, response: personSchema },
+  listSheets: { method: 'GET', path: '/api/sheets', action: 'sheet.read', summary: 'The newest edition of each service sheet', query: pageQuerySchema, status: 200, response: pageOf(sheetRowSchema) },
+  getSheet: { method: 'GET', path: '/api/sheets/:family', action: 'sheet.read', summary: 'A service sheet', params: family, query: z.strictObject({ edition: z.coerce.number().int().positive().optional() }), status: 200, response: sheetPageSchema },
+  addSheet: { method: 'POST', path: '/api/sheets', action: 'sheet.write', summary: 'Add a service sheet, or its next edition', body: newSheetSchema, status: 201, response: sheetRowSchema },
+  listUnits: { method: 'GET', path: '/api/units', action: 'unit.read', summary: 'The units, newest first', query: pageQuerySchema.extend({ find: z.string().max(100).optional(), stage: z.string().max(20).optional() }), status: 200, response: pageOf(unitRowSchema) },
+  takeInUnit: { method: 'POST', path: '/api/units', action: 'unit.take-in', summary: 'Take in a unit; the same serial number again is a 409 until a reason is given', body: newUnitSchema, status: 201, response: unitSchema, idempotent: true },
+  getUnit: { method: 'GET', path: '/api/units/:number', action: 'unit.read', summary: 'Everything about a unit: plate, stage, readiness, history', params: unitNumber, status: 200, response: unitPageSchema },
+  recordOverride: { method: 'POST', path: '/api/units/:number/overrides', action: 'override.record', summary: 'A lead opens the dead-test gate with a reason', params: unitNumber, body: overrideSchema, status: 201, response: eventStoredSchema },
+  recordCapture: { method: 'POST', path: '/api/units/:number/captures', action: 'capture.record', summary: 'Store a capture', params: unitNumber, body: newCaptureSchema, status: 201, response: captureStoredSchema, idempotent: true },
+  getCapture: { method: 'GET', path: '/api/captures/:id', action: 'unit.read', summary: 'A capture with its file and answer', params: byId, status: 200, response: capturePageSchema },
+  recordReading: { method: 'POST', path: '/api/units/:number/readings', action: 'reading.record', summary: 'Store a reading; the server judges it again', params: unitNumber, body: newReadingSchema, status: 201, response: eventStoredSchema, idempotent: true },
+  recordInspection: { method: 'POST', path: '/api/units/:number/inspections', action: 'reading.record', summary: 'Store an inspection', params: unitNumber, body: newInspectionSchema, status: 201, response: eventStoredSchema, idempotent: true },
+  recordRepair: { method: 'POST', path: '/api/units/:number/repairs', action: 'repair.record', summary: 'Store a repair', params: unitNumber, body: newRepairSchema, status: 201, response: eventStoredSchema, idempotent: true },
+  recordRun: { method: 'POST', path: '/api/units/:number/runs', action: 'run.record', summary: 'Store a bench log, whole', params: unitNumber, body: newRunSchema, status: 201, response: runStoredSchema, idempotent: true },
+  getRun: { method: 'GET', path: '/api/runs/:id', action: 'unit.read', summary: 'A bench log', params: byId, status: 200, response: runPageSchema },
+  signOff: { method: 'POST', path: '/api/units/:number/sign-off', action: 'unit.sign-off', summary: 'Sign a unit off: its readiness tag stands', params: unitNumber, body: signOffSchema, status: 201, response: tagPageSchema },
+  getUnitTag: { method: 'GET', path: '/api/units/:number/tag', action: 'tag.read', summary: 'The newest tag of a unit', params: unitNumber, status: 200, response: tagPageSchema },
+  withdrawTag: { method: 'POST', path: '/api/tags/:tag/withdrawal', action: 'tag.withdraw', summary: 'A lead withdraws a tag with a reason', params: tagNumber, body: withdrawTagSchema, status: 201, response: tagPageSchema },
+  getPublicTag: { method: 'GET', path: '/api/public/tags/:tag', action: 'public-tag.read', summary: 'Whether a tag still stands, for its buyer', params: tagNumber, query: publicTagQuerySchema, status: 200, response: publicTagSchema },
+} as const satisfies Record<string, Route>;
+
+export type RouteName = keyof typeof routes;
+type Part<R, K extends string> = R extends Record<K, z.ZodType> ? z.input<R[K & keyof R] & z.ZodType> : undefined;
+export type RequestBody<N extends RouteName> = Part<(typeof routes)[N], 'body'>;
+export type RequestQuery<N extends RouteName> = Part<(typeof routes)[N], 'query'>;
+export type RequestParams<N extends RouteName> = Part<(typeof routes)[N], 'params'>;
+export type Answer<N extends RouteName> = z.output<(typeof routes)[N]['response']>;
+
+/**
+ * The path of a route with its parameters filled in and its query appended.
+ *
+ * @example routeUrl('getUnit', { params: { number: 412 } }) // '/api/units/412'
+ */
+export function routeUrl(name: RouteName, request: { params?: Record<string, unknown> | undefined; query?: Record<string, unknown> | undefined } = {}): string {
+  const path = routes[name].path.replace(/:(\w+)/g, (_, key: string) => encodeURIComponent(String(request.params?.[key])));
+  const query = new URLSearchParams(Object.entries(request.query ?? {}).flatMap(([key, value]) => (value === undefined ? [] : [[key, String(value)]])));
+  return query.size > 0 ? `${path}?${query.toString()}` : path;
+}

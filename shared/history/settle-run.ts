@@ -1,0 +1,153 @@
+import { BadInputError } from '../errors.js';
+import { decodeCapture } from '../decode/decode-capture.js';
+import { viewCapture } from '../decode/view-capture.js';
+import type { Capture } from '../lamps/capture.js';
+import { readCapture } from '../lamps/read-capture.js';
+import { judge } from '../measure/judge.js';
+import { parseAccuracy } from '../measure/parse-accuracy.js';
+import { checkOf } from '../script/energised.js';
+import { judgeExpectation } from '../script/judge-expect.js';
+import { judgeWatch, watchSpec } from '../script/judge-watch.js';
+import type { RunLog, StepResult } from '../script/run-log.js';
+import { runVerdict } from '../script/run-verdict.js';
+import type { Script } from '../script/schema.js';
+import type { Sheet } from '../sheet/schema.js';
+import type { CaptureBody, InspectionBody, PersonRef, ReadingBody, UnitEvent } from './events.js';
+
+/**
+ * A reading judged by the sheet's own limits, whatever limits it came with.
+ *
+ * Takes what was measured and by what; the check's title, limits, condition and place in the dead tests come from the sheet.
+ * Refuses (BadInputError) a check the sheet does not measure, and a value that is no reading.
+ */
+export function settleReading(reading: ReadingBody, sheet: Sheet): ReadingBody {
+  const check = checkOf(sheet, reading.checkId);
+  if (check?.kind !== 'measure') throw new BadInputError(`the sheet has no measured check '${reading.checkId}'`);
+  const judgement = judge({
+    value: reading.judgement.value,
+    unit: check.unit,
+    low: check.low,
+    high: check.high,
+    accuracy: parseAccuracy(reading.accuracy),
+    resolution: reading.resolution,
+    coverageFactor: reading.judgement.coverageFactor,
+  });
+  const { deadTest: _told, ...rest } = reading;
+  return { ...rest, title: check.title, condition: check.condition, ...(check.deadTest === undefined ? {} : { deadTest: check.deadTest }), judgement };
+}
+
+/** An inspection with its title and its place in the dead tests from the sheet, where the sheet knows it. */
+export function settleInspection(inspection: InspectionBody, sheet: Sheet | undefined): InspectionBody {
+  const { deadTest: _told, ...rest } = inspection;
+  const check = sheet && checkOf(sheet, inspection.checkId);
+  if (inspection.checkId !== undefined && check?.kind !== 'inspect') throw new BadInputError(`the sheet has no inspection '${inspection.checkId}'`);
+  return { ...rest, title: check?.title ?? inspection.title, ...(check?.deadTest === undefined ? {} : { deadTest: check.deadTest }) };
+}
+
+/** What is kept of a capture beside its file: its header's word on itself, and the decoder's answer. */
+export function captureBody(capture: Capture, sheet: Sheet, about: { captureId: string; fromFile: boolean }): CaptureBody {
+  const { header } = capture;
+  return {
+    captureId: about.captureId,
+    source: header.source,
+    capturedAt: header.capturedAt,
+    fromFile: about.fromFile,
+    ...(header.unit === undefined ? {} : { headerUnit: String(header.unit) }),
+    family: sheet.family,
+    sheetEdition: sheet.edition,
+    answer: decodeCapture(capture, sheet),
+  };
+}
+
+export interface SettledRun {
+  log: RunLog;
+  verdict: ReturnType<typeof runVerdict>;
+  events: UnitEvent[];
+  /** The capture files of the run, by capture id. */
+  captures: { id: string; file: string; body: CaptureBody }[];
+}
+
+/**
+ * Makes a bench log into what the shop believes: every capture is decoded again, every reading judged again by the sheet's limits,
+ * every expectation and watch looked at again; then the events that the unit's history keeps.
+ *
+ * Used by the bench (to ask the safety gates as it goes) and by the server (to store), so both come to the same words.
+ * `newId` makes the events' ids. Refuses (BadInputError) a log that contradicts the sheet or holds a broken capture.
+ */
+export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonRef, newId: () => string): SettledRun {
+  const bodies = new Map<string, CaptureBody>();
+  const captures: SettledRun['captures'] = [];
+  const events: UnitEvent[] = [];
+  const simulated = log.rig.simulated;
+  const base = (at: string, stepId?: string, simulatedSource = false) => ({
+    id: newId(),
+    at,
+    by,
+    simulated: simulated || simulatedSource,
+    runId: log.id,
+    ...(stepId === undefined ? {} : { stepId }),
+  });
+
+  events.push({ ...base(log.startedAt), kind: 'run began', script: script.name, prove: script.prove });
+  const keepCapture = (result: { captureId: string; file: string; endedAt: string; stepId: string }, fromFile: boolean): Capture => {
+    const capture = readCapture(result.file, result.captureId);
+    const body = captureBody(capture, sheet, { captureId: result.captureId, fromFile });
+    bodies.set(result.captureId, body);
+    captures.push({ id: result.captureId, file: result.file, body });
+    return capture;
+  };
+
+  const steps = log.steps.map((result): StepResult => {
+    switch (result.kind) {
+      case 'measure': {
+        const reading = settleReading(result.reading, sheet);
+        events.push({ ...base(result.endedAt, result.stepId), kind: 'reading', reading });
+        return { ...result, reading };
+      }
+      case 'inspect': {
+        const inspection = settleInspection(result.inspection, sheet);
+        events.push({ ...base(result.endedAt, result.stepId), kind: 'inspection', inspection });
+        return { ...result, inspection };
+      }
+      case 'capture': {
+        keepCapture(result, result.fromFile);
+        const body = bodies.get(result.captureId) as CaptureBody;
+        events.push({ ...base(result.endedAt, result.stepId, body.source === 'simulated'), kind: 'capture', capture: body });
+        return result;
+      }
+      case 'expect': {
+        const body = bodies.get(result.captureId);
+        if (!body) throw new BadInputError(`step '${result.stepId}' looks at a capture that the log does not hold`);
+        return { ...result, ...judgeExpectation(result.expected, body.answer, sheet) };
+      }
+      case 'watch': {
+        const step = script.steps.find((one) => one.id === result.stepId);
+        if (step?.kind !== 'watch') throw new BadInputError(`the script has no watch step '${result.stepId}'`);
+        const capture = keepCapture(result, false);
+        const durationS = (bodies.get(result.captureId) as CaptureBody).answer.durationS;
+        const { seconds, verdict, reason } = judgeWatch(viewCapture(capture, sheet), watchSpec(step, sheet), durationS);
+        const watched = { seconds, verdict, reason, captureId: result.captureId };
+        if (step.calibration) events.push({ ...base(result.endedAt, result.stepId, capture.header.source === 'simulated'), kind: 'calibration', calibration: watched });
+        return { ...result, calibration: step.calibration === true, watched };
+      }
+      case 'repair':
+        events.push({ ...base(result.endedAt, result.stepId), kind: 'repair', repair: result.repair });
+        return result;
+      case 'clear':
+        events.push({ ...base(result.endedAt, result.stepId), kind: 'codes cleared', procedure: result.procedure });
+        return result;
+      case 'note':
+        events.push({ ...base(result.endedAt, result.stepId), kind: 'note', text: result.text });
+        return result;
+      case 'caution':
+      case 'instruct':
+      case 'skipped':
+        return result;
+    }
+  });
+
+  const missing = script.steps.filter((step) => !log.steps.some((result) => result.stepId === step.id));
+  const verdict = runVerdict(steps, log.interrupted || missing.length > 0);
+  events.push({ ...base(log.endedAt), kind: 'run ended', script: script.name, prove: script.prove, verdict, steps: log.steps.length });
+  return { log: { ...log, steps }, verdict, events, captures };
+}

@@ -1,0 +1,29 @@
+import type { UnitEvent, UnitEventOf } from '../history/events.js';
+import type { Verdict } from '../verdict.js';
+
+export type CheckEvent = UnitEventOf<'reading'> | UnitEventOf<'inspection'>;
+
+export const isCheckEvent = (event: UnitEvent): event is CheckEvent => event.kind === 'reading' || event.kind === 'inspection';
+export const verdictOf = (event: CheckEvent): Verdict => (event.kind === 'reading' ? event.reading.judgement.verdict : event.inspection.verdict);
+export const checkIdOf = (event: CheckEvent): string | undefined => (event.kind === 'reading' ? event.reading.checkId : event.inspection.checkId);
+
+const SEVERITY: Record<Verdict, number> = { fail: 3, inconclusive: 2, 'not done': 1, pass: 0 };
+const uncertaintyOf = (event: CheckEvent): number => (event.kind === 'reading' ? event.reading.judgement.expandedUncertainty : Infinity);
+
+/**
+ * The result that stands among several of one check, oldest first, with no repair between them.
+ *
+ * No retesting until it passes (gate 5): a later result takes the place of an earlier one when it is no better,
+ * or when it was taken with a smaller uncertainty. An inspection has no uncertainty, so a failed one stands until a repair.
+ * Undefined when there is none.
+ *
+ * @example standingResult([fail ±0.9, pass ±0.9]) // the fail
+ * @example standingResult([inconclusive ±0.14, pass ±0.04]) // the pass
+ */
+export function standingResult(results: readonly CheckEvent[]): CheckEvent | undefined {
+  let standing: CheckEvent | undefined;
+  for (const result of results) {
+    if (!standing || SEVERITY[verdictOf(result)] >= SEVERITY[verdictOf(standing)] || uncertaintyOf(result) < uncertaintyOf(standing)) standing = result;
+  }
+  return standing;
+}

@@ -1,0 +1,60 @@
+import type { DecodeView } from '../decode/answer.js';
+import type { CalibrationBody } from '../history/events.js';
+import type { Sheet } from '../sheet/schema.js';
+import type { StepOf } from './schema.js';
+
+/** What a watch waits for: a lamp pattern that begins it, one that ends it, and how long that may take. */
+export interface WatchSpec {
+  begins: Readonly<Record<string, 'on' | 'off'>>;
+  ends: Readonly<Record<string, 'on' | 'off'>>;
+  withinS: readonly [number, number];
+}
+
+/** How long the ending pattern must hold before it is believed: longer than the dark half of a slow blink (0.4 Hz: 1.25 s). */
+const ENDED_HOLD_SECONDS = 2;
+
+/**
+ * The spec of a watch step. A calibration run begins when the lock lamp lights and ends well when the lid unlocks and the
+ * machine switches itself off: every lamp dark (common practice, no published source).
+ */
+export function watchSpec(step: StepOf<'watch'>, sheet: Sheet): WatchSpec {
+  if (step.calibration && sheet.calibration) {
+    const dark = Object.fromEntries(sheet.lamps.map((lamp) => [lamp.id, 'off' as const]));
+    return { begins: { [sheet.calibration.lockLamp]: 'on' }, ends: dark, withinS: sheet.calibration.durationS };
+  }
+  return { begins: step.begins ?? {}, ends: step.ends ?? {}, withinS: step.withinS ?? [0, 0] };
+}
+
+type Lit = readonly { fromS: number; toS: number }[];
+const litAt = (lit: Lit, atS: number): boolean => lit.some((stretch) => stretch.fromS <= atS && atS < stretch.toS);
+
+/**
+ * Whether and when a lamp pattern came and went within its time.
+ *
+ * Takes the lit stretches of each lamp (`viewCapture`), the spec, and how long the capture is in seconds.
+ * Pass: begun, and ended no sooner than the least and no later than the most. Fail: ended outside that, or still going past the most.
+ * Inconclusive: never begun, or the capture stopped before it could end. `over` says that nothing later can change the verdict.
+ *
+ * @example judgeWatch(view, spec, 170).verdict // 'pass', with seconds 150
+ */
+export function judgeWatch(view: DecodeView, spec: WatchSpec, durationS: number): Pick<CalibrationBody, 'seconds' | 'verdict' | 'reason'> & { over: boolean; begun: boolean } {
+  const lampOf = (id: string): Lit => view.lamps.find((lamp) => lamp.id === id)?.lit ?? [];
+  const holds = (pattern: WatchSpec['begins'], atS: number): boolean => Object.entries(pattern).every(([id, state]) => litAt(lampOf(id), atS) === (state === 'on'));
+  const edges = [...new Set([0, ...Object.keys({ ...spec.begins, ...spec.ends }).flatMap((id) => lampOf(id).flatMap(({ fromS, toS }) => [fromS, toS]))])].sort((a, b) => a - b);
+  const [leastS, mostS] = spec.withinS;
+
+  const beganS = edges.find((atS) => holds(spec.begins, atS));
+  if (beganS === undefined) return { seconds: 0, verdict: 'inconclusive', reason: 'it never began', over: false, begun: false };
+  const endedS = edges.find((atS, index) => atS > beganS && holds(spec.ends, atS) && (edges[index + 1] ?? durationS) - atS >= ENDED_HOLD_SECONDS);
+  if (endedS === undefined) {
+    const seconds = durationS - beganS;
+    const late = seconds > mostS + ENDED_HOLD_SECONDS;
+    return { seconds, verdict: late ? 'fail' : 'inconclusive', reason: late ? `still going after ${mostS} s` : `stopped after ${Math.floor(seconds)} s, before it ended`, over: late, begun: true };
+  }
+  const seconds = endedS - beganS;
+  const verdict = seconds >= leastS && seconds <= mostS ? 'pass' : 'fail';
+  return { seconds, verdict, reason: `${clock(seconds)}, the sheet allows ${clock(leastS)} to ${clock(mostS)}`, over: true, begun: true };
+}
+
+/** Minutes and seconds as they are read off a clock: 150 is 2:30. */
+export const clock = (seconds: number): string => `${Math.floor(Math.round(seconds) / 60)}:${String(Math.round(seconds) % 60).padStart(2, '0')}`;
