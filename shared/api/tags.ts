@@ -15,7 +15,16 @@ export const tagContentSchema = z.strictObject({
   sample: z.boolean(),
   appliance: z.string(),
   plate: ratingPlateSchema,
-  tested: z.array(z.strictObject({ title: z.string(), reading: z.string(), spread: z.string().optional(), limit: z.string(), verdict: z.literal('pass'), lamps: z.array(z.boolean()).optional() })),
+  tested: z.array(
+    z.strictObject({
+      title: z.string(),
+      reading: z.string(),
+      spread: z.string().optional(),
+      limit: z.string(),
+      verdict: z.literal('pass'),
+      lamps: z.array(z.boolean()).optional(),
+    }),
+  ),
   mended: z.array(z.strictObject({ part: z.string(), source: z.enum(['new', 'used', 'none']), at: z.string(), by: z.string() })),
   signedOffAt: z.string(),
   signedOffBy: z.string(),
@@ -47,7 +56,18 @@ export const publicTagQuerySchema = z.strictObject({ signature: z.string().max(2
 /** What a buyer sees. `not ours`: no such tag, or the signature or the look-up word does not match it; says nothing about any unit. */
 export const publicTagSchema = z.discriminatedUnion('standing', [
   z.strictObject({ standing: z.literal('stands'), content: tagContentSchema, checkedAt: z.string(), jws: z.string() }),
-  z.strictObject({ standing: z.literal('withdrawn'), content: tagContentSchema, checkedAt: z.string(), withdrawnAt: z.string(), jws: z.string() }),
-  z.strictObject({ standing: z.literal('not ours'), reason: z.string(), checkedAt: z.string(), shop: shopSchema.pick({ name: true, address: true, phone: true }) }),
+  z.strictObject({
+    standing: z.literal('withdrawn'),
+    content: tagContentSchema,
+    checkedAt: z.string(),
+    withdrawnAt: z.string(),
+    jws: z.string(),
+  }),
+  z.strictObject({
+    standing: z.literal('not ours'),
+    reason: z.string(),
+    checkedAt: z.string(),
+    shop: shopSchema.pick({ name: true, address: true, phone: true }),
+  }),
 ]);
 export type PublicTag = z.infer<typeof publicTagSchema>;

@@ -12,7 +12,12 @@ export const applianceSchema = z.enum(['washing machine', 'dryer', 'dishwasher',
 export const LICENSED_ONLY: readonly Appliance[] = ['gas hob', 'fridge', 'microwave oven'];
 export type Appliance = z.infer<typeof applianceSchema>;
 
-const plateNumber = (what: string, most: number) => z.number({ error: `type ${what} as a number` }).positive(`${what} must be above 0`).max(most, `${what} is at most ${most}`).optional();
+const plateNumber = (what: string, most: number) =>
+  z
+    .number({ error: `type ${what} as a number` })
+    .positive(`${what} must be above 0`)
+    .max(most, `${what} is at most ${most}`)
+    .optional();
 
 /** The rating plate, as the plate on the machine has it. */
 export const ratingPlateSchema = z.strictObject({
@@ -67,7 +72,10 @@ export const unitRowSchema = unitSchema.extend({
   rulesTotal: z.number().int(),
   tag: tagStateSchema.optional(),
   /** The last capture since intake or return: its codes, `none` shown, or unreadable. */
-  lamps: z.strictObject({ state: z.enum(['not captured', 'codes', 'no code', 'unreadable']), codes: z.array(z.strictObject({ code: z.string(), face: faceSchema.optional() })) }),
+  lamps: z.strictObject({
+    state: z.enum(['not captured', 'codes', 'no code', 'unreadable']),
+    codes: z.array(z.strictObject({ code: z.string(), face: faceSchema.optional() })),
+  }),
   waitsFor: z.string(),
   lastEventAt: z.string(),
 });
@@ -80,11 +88,25 @@ export const unitPageSchema = z.strictObject({
   readiness: readinessSchema,
   energising: gateStateSchema,
   tag: tagStateSchema.optional(),
-  runs: z.array(z.strictObject({ id: z.string(), script: z.string(), prove: z.boolean(), startedAt: z.string(), endedAt: z.string(), verdict: verdictSchema, steps: z.number().int(), by: personRefSchema })),
+  runs: z.array(
+    z.strictObject({
+      id: z.string(),
+      script: z.string(),
+      prove: z.boolean(),
+      startedAt: z.string(),
+      endedAt: z.string(),
+      verdict: verdictSchema,
+      steps: z.number().int(),
+      by: personRefSchema,
+    }),
+  ),
   /** Oldest first. */
   events: z.array(unitEventSchema),
   /** A lamp face for each code in the captures, by code. */
   faces: z.record(z.string(), faceSchema),
 });
 export type UnitPage = z.infer<typeof unitPageSchema>;
-export const overrideSchema = z.strictObject({ gate: z.literal('dead tests'), reason: z.string().trim().min(10, 'say why, in at least 10 characters').max(2000) });
+export const overrideSchema = z.strictObject({
+  gate: z.literal('dead tests'),
+  reason: z.string().trim().min(10, 'say why, in at least 10 characters').max(2000),
+});

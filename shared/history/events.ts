@@ -61,7 +61,12 @@ export const repairBodySchema = z.strictObject({
 });
 export type RepairBody = z.infer<typeof repairBodySchema>;
 
-export const calibrationBodySchema = z.strictObject({ seconds: z.number().nonnegative(), verdict: verdictSchema, reason: z.string(), captureId: z.string().optional() });
+export const calibrationBodySchema = z.strictObject({
+  seconds: z.number().nonnegative(),
+  verdict: verdictSchema,
+  reason: z.string(),
+  captureId: z.string().optional(),
+});
 export type CalibrationBody = z.infer<typeof calibrationBodySchema>;
 
 const eventBase = {
@@ -84,7 +89,14 @@ export const unitEventSchema = z.discriminatedUnion('kind', [
   z.strictObject({ ...eventBase, kind: z.literal('reading'), reading: readingBodySchema }),
   z.strictObject({ ...eventBase, kind: z.literal('capture'), capture: captureBodySchema }),
   z.strictObject({ ...eventBase, kind: z.literal('run began'), script: z.string(), prove: z.boolean() }),
-  z.strictObject({ ...eventBase, kind: z.literal('run ended'), script: z.string(), prove: z.boolean(), verdict: verdictSchema, steps: z.number().int() }),
+  z.strictObject({
+    ...eventBase,
+    kind: z.literal('run ended'),
+    script: z.string(),
+    prove: z.boolean(),
+    verdict: verdictSchema,
+    steps: z.number().int(),
+  }),
   z.strictObject({ ...eventBase, kind: z.literal('repair'), repair: repairBodySchema }),
   z.strictObject({ ...eventBase, kind: z.literal('calibration'), calibration: calibrationBodySchema }),
   z.strictObject({ ...eventBase, kind: z.literal('codes cleared'), procedure: z.string() }),

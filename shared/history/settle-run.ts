@@ -18,29 +18,39 @@ import type { CaptureBody, InspectionBody, PersonRef, ReadingBody, UnitEvent } f
  * A reading judged by the sheet's own limits, whatever limits it came with.
  *
  * Takes what was measured and by what; the check's title, limits, condition and place in the dead tests come from the sheet.
- * Refuses (BadInputError) a check the sheet does not measure, and a value that is no reading.
+ * Refuses (BadInputError) a check the sheet does not measure, a value that is no reading, and a meter that claims no uncertainty.
  */
 export function settleReading(reading: ReadingBody, sheet: Sheet): ReadingBody {
   const check = checkOf(sheet, reading.checkId);
   if (check?.kind !== 'measure') throw new BadInputError(`the sheet has no measured check '${reading.checkId}'`);
+  const accuracy = parseAccuracy(reading.accuracy);
+  if (accuracy.percentOfReading === 0 && accuracy.digits === 0)
+    throw new BadInputError('no meter is without uncertainty: give its accuracy as its data sheet has it');
+  // The coverage factor is the shop's (2), never the sender's: a small one would turn inconclusive into pass.
   const judgement = judge({
     value: reading.judgement.value,
     unit: check.unit,
     low: check.low,
     high: check.high,
-    accuracy: parseAccuracy(reading.accuracy),
+    accuracy,
     resolution: reading.resolution,
-    coverageFactor: reading.judgement.coverageFactor,
   });
   const { deadTest: _told, ...rest } = reading;
-  return { ...rest, title: check.title, condition: check.condition, ...(check.deadTest === undefined ? {} : { deadTest: check.deadTest }), judgement };
+  return {
+    ...rest,
+    title: check.title,
+    condition: check.condition,
+    ...(check.deadTest === undefined ? {} : { deadTest: check.deadTest }),
+    judgement,
+  };
 }
 
 /** An inspection with its title and its place in the dead tests from the sheet, where the sheet knows it. */
 export function settleInspection(inspection: InspectionBody, sheet: Sheet | undefined): InspectionBody {
   const { deadTest: _told, ...rest } = inspection;
   const check = sheet && checkOf(sheet, inspection.checkId);
-  if (inspection.checkId !== undefined && check?.kind !== 'inspect') throw new BadInputError(`the sheet has no inspection '${inspection.checkId}'`);
+  if (inspection.checkId !== undefined && check?.kind !== 'inspect')
+    throw new BadInputError(`the sheet has no inspection '${inspection.checkId}'`);
   return { ...rest, title: check?.title ?? inspection.title, ...(check?.deadTest === undefined ? {} : { deadTest: check.deadTest }) };
 }
 
@@ -127,7 +137,12 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
         const durationS = (bodies.get(result.captureId) as CaptureBody).answer.durationS;
         const { seconds, verdict, reason } = judgeWatch(viewCapture(capture, sheet), watchSpec(step, sheet), durationS);
         const watched = { seconds, verdict, reason, captureId: result.captureId };
-        if (step.calibration) events.push({ ...base(result.endedAt, result.stepId, capture.header.source === 'simulated'), kind: 'calibration', calibration: watched });
+        if (step.calibration)
+          events.push({
+            ...base(result.endedAt, result.stepId, capture.header.source === 'simulated'),
+            kind: 'calibration',
+            calibration: watched,
+          });
         return { ...result, calibration: step.calibration === true, watched };
       }
       case 'repair':

@@ -21,13 +21,21 @@ export function countingEvents({ unit, events, shop }: UnitFacts): UnitEvent[] {
     if (event.kind === 'repair' || event.kind === 'returned') lastRepairAt = event.at;
     if (event.simulated && !shop.demo) return false;
     if (event.kind !== 'capture' || !event.capture.fromFile) return true;
-    return Number(event.capture.headerUnit) === unit.number && Date.parse(event.capture.capturedAt) > (lastRepairAt ? Date.parse(lastRepairAt) : 0);
+    return (
+      Number(event.capture.headerUnit) === unit.number &&
+      Date.parse(event.capture.capturedAt) > (lastRepairAt ? Date.parse(lastRepairAt) : 0)
+    );
   });
 }
 
 /** The events since the unit was opened: since the last intake or return, that event included. */
 export function sinceOpened(events: readonly UnitEvent[]): UnitEvent[] {
-  return events.slice(Math.max(0, events.findLastIndex((event) => event.kind === 'intake' || event.kind === 'returned')));
+  return events.slice(
+    Math.max(
+      0,
+      events.findLastIndex((event) => event.kind === 'intake' || event.kind === 'returned'),
+    ),
+  );
 }
 
 /** The events after the last repair, or since intake or return where nothing was mended since. */

@@ -14,9 +14,14 @@ export const gateStateSchema = z.strictObject({
 export type GateState = z.infer<typeof gateStateSchema>;
 
 const OPEN: GateState = { open: true, reasons: [] };
-const DEAD_TEST_TITLE: Record<DeadTest, string> = { visual: 'visual check', 'protective-conductor': 'protective conductor', insulation: 'insulation' };
+const DEAD_TEST_TITLE: Record<DeadTest, string> = {
+  visual: 'visual check',
+  'protective-conductor': 'protective conductor',
+  insulation: 'insulation',
+};
 
-const deadTestOf = (event: CheckEvent): DeadTest | undefined => (event.kind === 'reading' ? event.reading.deadTest : event.inspection.deadTest);
+const deadTestOf = (event: CheckEvent): DeadTest | undefined =>
+  event.kind === 'reading' ? event.reading.deadTest : event.inspection.deadTest;
 
 /** Only class I has a protective conductor (common practice after IEC 61140's protection classes; the clause was not read). */
 const deadTestsFor = (protectionClass: UnitFacts['unit']['protectionClass']): DeadTest[] =>
@@ -40,7 +45,11 @@ export interface EnergisingQuestion {
  */
 export function energisingGate(facts: UnitFacts, question: EnergisingQuestion): GateState {
   if (facts.unit.licensedOnly) {
-    return { open: false, reasons: ['gas, sealed refrigerant or a microwave oven: licensed person only'], remedy: 'hand it to a licensed person; no script runs on it' };
+    return {
+      open: false,
+      reasons: ['gas, sealed refrigerant or a microwave oven: licensed person only'],
+      remedy: 'hand it to a licensed person; no script runs on it',
+    };
   }
   const events = sinceRepair(countingEvents(facts)).filter((event) => question.rigSimulated || !event.simulated);
   const needed = deadTestsFor(facts.unit.protectionClass);
@@ -59,7 +68,9 @@ export function energisingGate(facts: UnitFacts, question: EnergisingQuestion): 
       reasons.push(`${DEAD_TEST_TITLE[test]}: ${verdict}`);
       continue;
     }
-    const inPlace = events.findIndex((event, at) => at > passedAt && isCheckEvent(event) && deadTestOf(event) === test && verdictOf(event) === 'pass');
+    const inPlace = events.findIndex(
+      (event, at) => at > passedAt && isCheckEvent(event) && deadTestOf(event) === test && verdictOf(event) === 'pass',
+    );
     if (inPlace < 0) reasons.push(`${DEAD_TEST_TITLE[test]} was done out of order: do it again now`);
     else passedAt = inPlace;
   }

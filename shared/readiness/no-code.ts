@@ -19,11 +19,14 @@ export interface NoCodeJudgement {
  */
 export function judgeNoCode(answer: DecodeAnswer, sheet: Sheet): NoCodeJudgement {
   const seconds = `${Math.floor(answer.durationS)} s`;
-  if (answer.codes.length > 0) return { verdict: 'fail', reason: `shows ${[...new Set(answer.codes.map((code) => code.code))].join(', ')}` };
-  if (answer.segments.some((segment) => segment.kind === 'unreadable')) return { verdict: 'inconclusive', reason: 'a stretch of it is unreadable' };
+  if (answer.codes.length > 0)
+    return { verdict: 'fail', reason: `shows ${[...new Set(answer.codes.map((code) => code.code))].join(', ')}` };
+  if (answer.segments.some((segment) => segment.kind === 'unreadable'))
+    return { verdict: 'inconclusive', reason: 'a stretch of it is unreadable' };
   if (!answer.segments.some((segment) => segment.kind === 'ready')) return { verdict: 'inconclusive', reason: 'no ready blink in it' };
   if (answer.deadLamps.length > 0) return { verdict: 'inconclusive', reason: `${answer.deadLamps.join(', ')} does not light` };
-  if (answer.durationS < sheet.noCodeS) return { verdict: 'inconclusive', reason: `${seconds} long, the sheet asks for ${sheet.noCodeS} s` };
+  if (answer.durationS < sheet.noCodeS)
+    return { verdict: 'inconclusive', reason: `${seconds} long, the sheet asks for ${sheet.noCodeS} s` };
   return { verdict: 'pass', reason: `ready blink only, ${seconds}` };
 }
 
@@ -50,11 +53,18 @@ export function noCodeProof(facts: UnitFacts): NoCodeJudgement {
   let standing: (NoCodeJudgement & { durationS: number }) | undefined;
   for (const { capture } of captures) {
     const judged = { ...judgeNoCode(capture.answer, sheet), durationS: capture.answer.durationS };
-    if (!standing || judged.verdict === 'fail' || standing.verdict === 'pass' || (standing.verdict === 'inconclusive' && judged.verdict === 'pass' && judged.durationS >= standing.durationS)) {
+    if (
+      !standing ||
+      judged.verdict === 'fail' ||
+      standing.verdict === 'pass' ||
+      (standing.verdict === 'inconclusive' && judged.verdict === 'pass' && judged.durationS >= standing.durationS)
+    ) {
       if (standing?.verdict !== 'fail') standing = judged;
     }
   }
-  return standing ? { verdict: standing.verdict, reason: standing.reason } : { verdict: 'not done', reason: 'no capture since the last repair' };
+  return standing
+    ? { verdict: standing.verdict, reason: standing.reason }
+    : { verdict: 'not done', reason: 'no capture since the last repair' };
 }
 
 /** The id of the procedure in a service sheet that clears stored codes. */

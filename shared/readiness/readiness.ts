@@ -28,7 +28,12 @@ type Judged = Pick<RuleResult, 'state' | 'evidence' | 'how'>;
 
 /** The checks of a rule together: the worst standing result since the last repair. */
 function judgeChecks(facts: UnitFacts, checks: readonly Check[]): Judged {
-  if (checks.length === 0) return { state: 'missing', evidence: 'the service sheet names no checks', how: facts.sheet ? 'A lead adds them to the sheet.' : 'Give the unit a control family with a service sheet.' };
+  if (checks.length === 0)
+    return {
+      state: 'missing',
+      evidence: 'the service sheet names no checks',
+      how: facts.sheet ? 'A lead adds them to the sheet.' : 'Give the unit a control family with a service sheet.',
+    };
   const results = sinceRepair(countingEvents(facts)).filter(isCheckEvent);
   const open: { check: Check; verdict: string }[] = [];
   for (const check of checks) {
@@ -39,19 +44,34 @@ function judgeChecks(facts: UnitFacts, checks: readonly Check[]): Judged {
   if (open.length === 0) return { state: 'met', evidence: `${checks.length} of ${checks.length} passed` };
   const named = (verdict: string): string[] => open.filter((one) => one.verdict === verdict).map((one) => one.check.title);
   const failed = named('fail');
-  if (failed.length > 0) return { state: 'fail', evidence: `${failed.join(', ')}: fail`, how: 'Mend it, record the repair, measure again.' };
+  if (failed.length > 0)
+    return { state: 'fail', evidence: `${failed.join(', ')}: fail`, how: 'Mend it, record the repair, measure again.' };
   const unsure = named('inconclusive');
-  if (unsure.length > 0) return { state: 'inconclusive', evidence: `${unsure.join(', ')}: inconclusive`, how: 'Too close for this meter: measure with one of smaller uncertainty.' };
+  if (unsure.length > 0)
+    return {
+      state: 'inconclusive',
+      evidence: `${unsure.join(', ')}: inconclusive`,
+      how: 'Too close for this meter: measure with one of smaller uncertainty.',
+    };
   const missing = open.map((one) => one.check.title);
-  return { state: 'missing', evidence: `${checks.length - open.length} of ${checks.length}`, how: `Not done since the last repair: ${missing.join(', ')}.` };
+  return {
+    state: 'missing',
+    evidence: `${checks.length - open.length} of ${checks.length}`,
+    how: `Not done since the last repair: ${missing.join(', ')}.`,
+  };
 }
 
 function judgeNoCodeRule(facts: UnitFacts): Judged {
   const { verdict, reason } = noCodeProof(facts);
   const how = `Capture the lamps in service mode for ${facts.sheet?.noCodeS ?? 20} s: only the ready blink may show.`;
   if (verdict === 'pass') return { state: 'met', evidence: reason };
-  if (verdict === 'fail') return { state: 'fail', evidence: reason, how: 'Mend the fault, record the repair, clear the stored codes, capture again.' };
-  return { state: verdict === 'inconclusive' ? 'inconclusive' : 'missing', evidence: reason, how: reason.includes('cleared') ? `Clear them by the sheet's procedure. ${how}` : how };
+  if (verdict === 'fail')
+    return { state: 'fail', evidence: reason, how: 'Mend the fault, record the repair, clear the stored codes, capture again.' };
+  return {
+    state: verdict === 'inconclusive' ? 'inconclusive' : 'missing',
+    evidence: reason,
+    how: reason.includes('cleared') ? `Clear them by the sheet's procedure. ${how}` : how,
+  };
 }
 
 /**
@@ -63,7 +83,8 @@ function judgeCalibration(facts: UnitFacts): Judged {
   const lastSwap = events.findLastIndex((event) => event.kind === 'repair' && event.repair.partSource.kind !== 'none');
   const run = events.slice(lastSwap + 1).findLast((event) => event.kind === 'calibration');
   const how = 'Run the calibration procedure and let the lamps be watched (a step of the proof script).';
-  if (run?.kind !== 'calibration') return { state: 'missing', evidence: lastSwap >= 0 ? 'none since the part swap' : 'none since the machine was moved here', how };
+  if (run?.kind !== 'calibration')
+    return { state: 'missing', evidence: lastSwap >= 0 ? 'none since the part swap' : 'none since the machine was moved here', how };
   const { verdict, reason } = run.calibration;
   if (verdict === 'pass') return { state: 'met', evidence: reason };
   return { state: verdict === 'fail' ? 'fail' : verdict === 'inconclusive' ? 'inconclusive' : 'missing', evidence: reason, how };
@@ -73,7 +94,15 @@ function judgeCalibration(facts: UnitFacts): Judged {
 export function handsOn(events: readonly UnitEvent[]): PersonRef[] {
   const people = new Map<string, PersonRef>();
   for (const event of sinceOpened(events)) {
-    if (event.kind === 'run began' || event.kind === 'run ended' || event.kind === 'repair' || event.kind === 'calibration' || event.kind === 'capture' || event.kind === 'codes cleared' || isCheckEvent(event)) {
+    if (
+      event.kind === 'run began' ||
+      event.kind === 'run ended' ||
+      event.kind === 'repair' ||
+      event.kind === 'calibration' ||
+      event.kind === 'capture' ||
+      event.kind === 'codes cleared' ||
+      isCheckEvent(event)
+    ) {
       people.set(event.by.id, event.by);
     }
   }
@@ -85,9 +114,15 @@ function judgeFourEyes(facts: UnitFacts, signer: PersonRef | undefined): Judged 
   const people = handsOn(facts.events);
   const names = people.map((person) => person.name).join(', ');
   const signedBy = signer ?? signedOffBy(facts.events);
-  if (!signedBy) return { state: 'missing', evidence: 'no sign-off', how: names ? `A lead other than ${names}, who worked on it.` : 'A lead who did not work on it.' };
+  if (!signedBy)
+    return {
+      state: 'missing',
+      evidence: 'no sign-off',
+      how: names ? `A lead other than ${names}, who worked on it.` : 'A lead who did not work on it.',
+    };
   if (signedBy.role !== 'lead') return { state: 'fail', evidence: `${signedBy.name} is no lead`, how: 'A lead signs.' };
-  if (people.some((person) => person.id === signedBy.id)) return { state: 'fail', evidence: `${signedBy.name} worked on it`, how: `A lead other than ${names} signs.` };
+  if (people.some((person) => person.id === signedBy.id))
+    return { state: 'fail', evidence: `${signedBy.name} worked on it`, how: `A lead other than ${names} signs.` };
   return { state: 'met', evidence: signer ? `${signedBy.name}, who did not work on it` : `signed by ${signedBy.name}` };
 }
 
@@ -108,10 +143,26 @@ function signedOffBy(events: readonly UnitEvent[]): PersonRef | undefined {
 export function readiness(facts: UnitFacts, signer?: PersonRef): Readiness {
   const checks = checksFor(facts);
   const rules: RuleResult[] = [
-    { id: 'checks', title: 'Checks passed', ...judgeChecks(facts, checks.filter((check) => check.required && !check.safety)) },
+    {
+      id: 'checks',
+      title: 'Checks passed',
+      ...judgeChecks(
+        facts,
+        checks.filter((check) => check.required && !check.safety),
+      ),
+    },
     { id: 'no-code', title: 'No code, proved', ...judgeNoCodeRule(facts) },
-    ...(facts.sheet?.calibration ? [{ id: 'calibration' as const, title: 'Calibration run after the last part swap', ...judgeCalibration(facts) }] : []),
-    { id: 'electrical-safety', title: 'Electrical safety test', ...judgeChecks(facts, checks.filter((check) => check.safety)) },
+    ...(facts.sheet?.calibration
+      ? [{ id: 'calibration' as const, title: 'Calibration run after the last part swap', ...judgeCalibration(facts) }]
+      : []),
+    {
+      id: 'electrical-safety',
+      title: 'Electrical safety test',
+      ...judgeChecks(
+        facts,
+        checks.filter((check) => check.safety),
+      ),
+    },
     { id: 'four-eyes', title: 'Four eyes', ...judgeFourEyes(facts, signer) },
   ];
   const met = rules.filter((rule) => rule.state === 'met').length;

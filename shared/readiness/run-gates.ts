@@ -25,7 +25,12 @@ export function stepGate(step: Step, sheet: Sheet, facts: UnitFacts, rigSimulate
  * its own, answered yes, since the energised step before it. The bench asks before each step; the server asks here again,
  * for a log may come from anywhere. `facts` are those from before the run.
  */
-export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, facts: UnitFacts): { stepId: string; reasons: string[]; remedy: string | undefined } | undefined {
+export function runGateBreach(
+  run: SettledRun,
+  script: Script,
+  sheet: Sheet,
+  facts: UnitFacts,
+): { stepId: string; reasons: string[]; remedy: string | undefined } | undefined {
   const events = [...facts.events];
   let cautioned = false;
   for (const result of run.log.steps) {
@@ -33,9 +38,11 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
     if (!step) return { stepId: result.stepId, reasons: ['the script has no such step'], remedy: undefined };
     if (result.kind === 'caution') cautioned = result.answer === 'yes';
     else if (result.kind !== 'skipped') {
-      if (result.kind !== step.kind) return { stepId: step.id, reasons: [`the log calls it ${result.kind}, the script ${step.kind}`], remedy: undefined };
+      if (result.kind !== step.kind)
+        return { stepId: step.id, reasons: [`the log calls it ${result.kind}, the script ${step.kind}`], remedy: undefined };
       if (energisingOf(step, sheet) !== 'dead') {
-        if (!cautioned) return { stepId: step.id, reasons: ['its caution was not answered with yes'], remedy: 'run it again from its caution' };
+        if (!cautioned)
+          return { stepId: step.id, reasons: ['its caution was not answered with yes'], remedy: 'run it again from its caution' };
         if (usesCaution(step)) cautioned = false;
       }
       const gate = stepGate(step, sheet, { ...facts, events }, run.log.rig.simulated);

@@ -1,14 +1,29 @@
-import type { UnitEvent, UnitEventOf } from '../history/events.js';
+import type { ReadingBody, UnitEvent, UnitEventOf } from '../history/events.js';
+import { parseAccuracy } from '../measure/parse-accuracy.js';
+import { readingUncertainty } from '../measure/uncertainty.js';
 import type { Verdict } from '../verdict.js';
 
 export type CheckEvent = UnitEventOf<'reading'> | UnitEventOf<'inspection'>;
 
 export const isCheckEvent = (event: UnitEvent): event is CheckEvent => event.kind === 'reading' || event.kind === 'inspection';
-export const verdictOf = (event: CheckEvent): Verdict => (event.kind === 'reading' ? event.reading.judgement.verdict : event.inspection.verdict);
-export const checkIdOf = (event: CheckEvent): string | undefined => (event.kind === 'reading' ? event.reading.checkId : event.inspection.checkId);
+export const verdictOf = (event: CheckEvent): Verdict =>
+  event.kind === 'reading' ? event.reading.judgement.verdict : event.inspection.verdict;
+export const checkIdOf = (event: CheckEvent): string | undefined =>
+  event.kind === 'reading' ? event.reading.checkId : event.inspection.checkId;
 
 const SEVERITY: Record<Verdict, number> = { fail: 3, inconclusive: 2, 'not done': 1, pass: 0 };
-const uncertaintyOf = (event: CheckEvent): number => (event.kind === 'reading' ? event.reading.judgement.expandedUncertainty : Infinity);
+
+/**
+ * Whether the later reading was taken with a smaller uncertainty, by meter and not by luck: both accuracies are held against the
+ * larger of the two values, for a share of the reading shrinks with the reading itself.
+ */
+function takenMoreClosely(later: CheckEvent, earlier: CheckEvent): boolean {
+  if (later.kind !== 'reading' || earlier.kind !== 'reading') return false;
+  const at = Math.max(Math.abs(later.reading.judgement.value), Math.abs(earlier.reading.judgement.value));
+  const spreadOf = ({ accuracy, resolution, judgement }: ReadingBody): number =>
+    readingUncertainty(at, parseAccuracy(accuracy), resolution, judgement.coverageFactor).expanded;
+  return spreadOf(later.reading) < spreadOf(earlier.reading);
+}
 
 /**
  * The result that stands among several of one check, oldest first, with no repair between them.
@@ -23,7 +38,7 @@ const uncertaintyOf = (event: CheckEvent): number => (event.kind === 'reading' ?
 export function standingResult(results: readonly CheckEvent[]): CheckEvent | undefined {
   let standing: CheckEvent | undefined;
   for (const result of results) {
-    if (!standing || SEVERITY[verdictOf(result)] >= SEVERITY[verdictOf(standing)] || uncertaintyOf(result) < uncertaintyOf(standing)) standing = result;
+    if (!standing || SEVERITY[verdictOf(result)] >= SEVERITY[verdictOf(standing)] || takenMoreClosely(result, standing)) standing = result;
   }
   return standing;
 }

@@ -32,11 +32,22 @@ export function testedOnTag(facts: UnitFacts): TagContent['tested'] {
   const calibration = sinceOpened(counting).findLast((event) => event.kind === 'calibration');
   if (calibration?.kind === 'calibration' && calibration.calibration.verdict === 'pass' && facts.sheet?.calibration) {
     const [least, most] = facts.sheet.calibration.durationS;
-    tested.push({ title: 'Calibration run', reading: clock(calibration.calibration.seconds), limit: `${clock(least)} to ${clock(most)}`, verdict: 'pass' });
+    tested.push({
+      title: 'Calibration run',
+      reading: clock(calibration.calibration.seconds),
+      limit: `${clock(least)} to ${clock(most)}`,
+      verdict: 'pass',
+    });
   }
   if (facts.sheet && noCodeProof(facts).verdict === 'pass') {
     const ready = facts.sheet.ready?.lamps ?? [];
-    tested.push({ title: 'Lamps: no code', reading: `${facts.sheet.noCodeS} s`, limit: 'ready blink', verdict: 'pass', lamps: facts.sheet.lamps.map((lamp) => ready.includes(lamp.id)) });
+    tested.push({
+      title: 'Lamps: no code',
+      reading: `${facts.sheet.noCodeS} s`,
+      limit: 'ready blink',
+      verdict: 'pass',
+      lamps: facts.sheet.lamps.map((lamp) => ready.includes(lamp.id)),
+    });
   }
   return tested;
 }
@@ -54,7 +65,9 @@ const ONE_PERSON_LIFTS_KG = 25;
 /** The cautions that every tag carries; the machine's mass decides the lifting. */
 export function cautionsOnTag(facts: UnitFacts, massKg: number | undefined): string[] {
   return [
-    massKg === undefined || massKg > ONE_PERSON_LIFTS_KG ? `${massKg === undefined ? 'Heavy' : `${massKg} kg`}: two people to lift.` : `${massKg} kg.`,
+    massKg === undefined || massKg > ONE_PERSON_LIFTS_KG
+      ? `${massKg === undefined ? 'Heavy' : `${massKg} kg`}: two people to lift.`
+      : `${massKg} kg.`,
     ...(facts.unit.protectionClass === 'I' ? ['Earthed socket only.'] : []),
     'Unplug before opening anything: hot water, moving parts.',
     ...(facts.sheet?.calibration ? ['After moving it: bolts out, level, calibration run.'] : []),

@@ -17,8 +17,10 @@ export function whatWithdraws(facts: UnitFacts, tag: string): string | undefined
     if (isCheckEvent(event) && verdictOf(event) !== 'pass') {
       return `a later check did not pass: ${event.kind === 'reading' ? event.reading.title : event.inspection.title}, ${verdictOf(event)}`;
     }
-    if (event.kind === 'calibration' && event.calibration.verdict !== 'pass') return `a later calibration run did not pass: ${event.calibration.reason}`;
-    if (event.kind === 'capture' && event.capture.answer.codes.length > 0) return `the lamps showed ${event.capture.answer.codes.map((code) => code.code).join(', ')} afterwards`;
+    if (event.kind === 'calibration' && event.calibration.verdict !== 'pass')
+      return `a later calibration run did not pass: ${event.calibration.reason}`;
+    if (event.kind === 'capture' && event.capture.answer.codes.length > 0)
+      return `the lamps showed ${event.capture.answer.codes.map((code) => code.code).join(', ')} afterwards`;
   }
   return undefined;
 }

@@ -31,14 +31,18 @@ export function checkScript(script: Script, sheet: Sheet): ScriptFinding[] {
 
     const check = step.kind === 'measure' || step.kind === 'inspect' ? checkOf(sheet, step.check) : undefined;
     if (step.kind === 'measure' && check?.kind !== 'measure') say(step.id, `the sheet has no measured check '${step.check}'`);
-    if (step.kind === 'inspect' && step.check !== undefined && check?.kind !== 'inspect') say(step.id, `the sheet has no inspection '${step.check}'`);
+    if (step.kind === 'inspect' && step.check !== undefined && check?.kind !== 'inspect')
+      say(step.id, `the sheet has no inspection '${step.check}'`);
     if (step.kind === 'inspect' && step.check === undefined && !step.question) say(step.id, 'an inspection needs a check or a question');
-    if (step.kind === 'instruct' && step.text === undefined && step.procedure === undefined) say(step.id, 'an instruction needs a text or a procedure');
+    if (step.kind === 'instruct' && step.text === undefined && step.procedure === undefined)
+      say(step.id, 'an instruction needs a text or a procedure');
     const procedure = step.kind === 'instruct' ? step.procedure : step.kind === 'clear' ? CLEAR_CODES : undefined;
-    if (procedure !== undefined && !sheet.procedures.some(({ id }) => id === procedure)) say(step.id, `the sheet has no procedure '${procedure}'`);
+    if (procedure !== undefined && !sheet.procedures.some(({ id }) => id === procedure))
+      say(step.id, `the sheet has no procedure '${procedure}'`);
     if (step.kind === 'expect' && !captures.has(step.of)) say(step.id, `no capture step '${step.of}' stands before it`);
     if (step.kind === 'watch' && step.calibration && !sheet.calibration) say(step.id, 'the sheet has no calibration');
-    if (step.kind === 'watch' && !step.calibration && (!step.begins || !step.ends || !step.withinS)) say(step.id, 'a watch needs begins, ends and withinS, or calibration: true');
+    if (step.kind === 'watch' && !step.calibration && (!step.begins || !step.ends || !step.withinS))
+      say(step.id, 'a watch needs begins, ends and withinS, or calibration: true');
     if (step.kind === 'capture') captures.add(step.id);
 
     if (step.kind === 'caution') cautioned = true;
@@ -46,7 +50,8 @@ export function checkScript(script: Script, sheet: Sheet): ScriptFinding[] {
       if (!cautioned) say(step.id, 'an energised step needs a caution of its own before it');
       if (usesCaution(step)) cautioned = false;
       const next = script.steps[index + 1];
-      if (energisingOf(step, sheet) === 'test voltage' && !(next?.kind === 'instruct' && next.discharge)) say(step.id, 'an insulation test ends with an instruct step that has discharge: true');
+      if (energisingOf(step, sheet) === 'test voltage' && !(next?.kind === 'instruct' && next.discharge))
+        say(step.id, 'an insulation test ends with an instruct step that has discharge: true');
     }
   });
   return findings;

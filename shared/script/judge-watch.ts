@@ -37,19 +37,34 @@ const litAt = (lit: Lit, atS: number): boolean => lit.some((stretch) => stretch.
  *
  * @example judgeWatch(view, spec, 170).verdict // 'pass', with seconds 150
  */
-export function judgeWatch(view: DecodeView, spec: WatchSpec, durationS: number): Pick<CalibrationBody, 'seconds' | 'verdict' | 'reason'> & { over: boolean; begun: boolean } {
+export function judgeWatch(
+  view: DecodeView,
+  spec: WatchSpec,
+  durationS: number,
+): Pick<CalibrationBody, 'seconds' | 'verdict' | 'reason'> & { over: boolean; begun: boolean } {
   const lampOf = (id: string): Lit => view.lamps.find((lamp) => lamp.id === id)?.lit ?? [];
-  const holds = (pattern: WatchSpec['begins'], atS: number): boolean => Object.entries(pattern).every(([id, state]) => litAt(lampOf(id), atS) === (state === 'on'));
-  const edges = [...new Set([0, ...Object.keys({ ...spec.begins, ...spec.ends }).flatMap((id) => lampOf(id).flatMap(({ fromS, toS }) => [fromS, toS]))])].sort((a, b) => a - b);
+  const holds = (pattern: WatchSpec['begins'], atS: number): boolean =>
+    Object.entries(pattern).every(([id, state]) => litAt(lampOf(id), atS) === (state === 'on'));
+  const edges = [
+    ...new Set([0, ...Object.keys({ ...spec.begins, ...spec.ends }).flatMap((id) => lampOf(id).flatMap(({ fromS, toS }) => [fromS, toS]))]),
+  ].sort((a, b) => a - b);
   const [leastS, mostS] = spec.withinS;
 
   const beganS = edges.find((atS) => holds(spec.begins, atS));
   if (beganS === undefined) return { seconds: 0, verdict: 'inconclusive', reason: 'it never began', over: false, begun: false };
-  const endedS = edges.find((atS, index) => atS > beganS && holds(spec.ends, atS) && (edges[index + 1] ?? durationS) - atS >= ENDED_HOLD_SECONDS);
+  const endedS = edges.find(
+    (atS, index) => atS > beganS && holds(spec.ends, atS) && (edges[index + 1] ?? durationS) - atS >= ENDED_HOLD_SECONDS,
+  );
   if (endedS === undefined) {
     const seconds = durationS - beganS;
     const late = seconds > mostS + ENDED_HOLD_SECONDS;
-    return { seconds, verdict: late ? 'fail' : 'inconclusive', reason: late ? `still going after ${mostS} s` : `stopped after ${Math.floor(seconds)} s, before it ended`, over: late, begun: true };
+    return {
+      seconds,
+      verdict: late ? 'fail' : 'inconclusive',
+      reason: late ? `still going after ${mostS} s` : `stopped after ${Math.floor(seconds)} s, before it ended`,
+      over: late,
+      begun: true,
+    };
   }
   const seconds = endedS - beganS;
   const verdict = seconds >= leastS && seconds <= mostS ? 'pass' : 'fail';
@@ -57,4 +72,5 @@ export function judgeWatch(view: DecodeView, spec: WatchSpec, durationS: number)
 }
 
 /** Minutes and seconds as they are read off a clock: 150 is 2:30. */
-export const clock = (seconds: number): string => `${Math.floor(Math.round(seconds) / 60)}:${String(Math.round(seconds) % 60).padStart(2, '0')}`;
+export const clock = (seconds: number): string =>
+  `${Math.floor(Math.round(seconds) / 60)}:${String(Math.round(seconds) % 60).padStart(2, '0')}`;

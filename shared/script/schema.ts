@@ -14,7 +14,13 @@ export const stepSchema = z.discriminatedUnion('kind', [
   /** Waits for a person's yes or no; it has no default, and `no` goes to the safe state. */
   z.strictObject({ ...stepBase, kind: z.literal('caution'), text: z.string().min(1) }),
   /** Tells what to do, or walks through a procedure of the sheet; waits for the word that it is done. */
-  z.strictObject({ ...stepBase, kind: z.literal('instruct'), text: z.string().optional(), procedure: slugSchema.optional(), discharge: z.boolean().optional() }),
+  z.strictObject({
+    ...stepBase,
+    kind: z.literal('instruct'),
+    text: z.string().optional(),
+    procedure: slugSchema.optional(),
+    discharge: z.boolean().optional(),
+  }),
   /** A check of the sheet that is looked at, or a question of the script's own. */
   z.strictObject({ ...stepBase, kind: z.literal('inspect'), check: slugSchema.optional(), question: z.string().optional() }),
   /** A check of the sheet that is measured. */

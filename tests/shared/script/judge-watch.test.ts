@@ -1,0 +1,69 @@
+import { describe, expect, test } from 'vitest';
+import type { DecodeView } from '../../../shared/decode/answer.js';
+import { clock, judgeWatch, watchSpec } from '../../../shared/script/judge-watch.js';
+import { heron } from '../../helpers/unit-facts.js';
+
+type Lit = { fromS: number; toS: number }[];
+const viewOf = (lit: Record<string, Lit>): DecodeView => ({
+  lamps: heron.lamps.map(({ id }) => ({ id, threshold: null, litLevel: null, litFraction: null, lit: lit[id] ?? [] })),
+  phases: [],
+});
+const calibration = watchSpec({ id: 'calibration', kind: 'watch', title: 'Calibration run', calibration: true }, heron);
+
+describe('Watching a calibration run', () => {
+  // Common practice, no published source: a washer's calibration cycle takes some 2 to 3 minutes and ends well when the lid unlocks and the machine switches itself off.
+  test('When the lid is locked for 2:30 and then every lamp goes out, then it passes', () => {
+    const view = viewOf({ lock: [{ fromS: 3, toS: 153 }], wash: [{ fromS: 3, toS: 153 }] });
+    expect(judgeWatch(view, calibration, 160)).toEqual({
+      seconds: 150,
+      verdict: 'pass',
+      reason: '2:30, the sheet allows 2:00 to 3:00',
+      over: true,
+      begun: true,
+    });
+  });
+  test('When the lid unlocks but the machine does not switch itself off, then it has not ended', () => {
+    const view = viewOf({ lock: [{ fromS: 3, toS: 153 }], wash: [{ fromS: 3, toS: 200 }] });
+    expect(judgeWatch(view, calibration, 200)).toMatchObject({ verdict: 'fail', reason: 'still going after 180 s', over: true });
+  });
+  test('When it ends too soon, then it fails', () => {
+    expect(judgeWatch(viewOf({ lock: [{ fromS: 3, toS: 63 }] }), calibration, 70)).toMatchObject({ seconds: 60, verdict: 'fail' });
+  });
+  test('When it runs past the most, then it fails', () => {
+    expect(judgeWatch(viewOf({ lock: [{ fromS: 3, toS: 190 }] }), calibration, 200)).toMatchObject({ verdict: 'fail' });
+  });
+  test('When it never begins, then it is inconclusive and not over', () => {
+    expect(judgeWatch(viewOf({}), calibration, 60)).toMatchObject({ verdict: 'inconclusive', begun: false, over: false });
+  });
+  test('When the capture stops half-way, then it is inconclusive', () => {
+    expect(judgeWatch(viewOf({ lock: [{ fromS: 3, toS: 63 }] }), calibration, 63.5)).toMatchObject({
+      verdict: 'inconclusive',
+      over: false,
+      begun: true,
+    });
+  });
+  test('When the lock lamp blinks dark for a second in between, then that is no end', () => {
+    const view = viewOf({
+      lock: [
+        { fromS: 3, toS: 60 },
+        { fromS: 61, toS: 153 },
+      ],
+    });
+    expect(judgeWatch(view, calibration, 160)).toMatchObject({ seconds: 150, verdict: 'pass' });
+  });
+});
+
+test('When a script names its own pattern, then it is watched for within its own time', () => {
+  const spec = watchSpec(
+    { id: 'w', kind: 'watch', title: 'Pump', begins: { drain: 'on' }, ends: { drain: 'off' }, withinS: [5, 20] },
+    heron,
+  );
+  expect(judgeWatch(viewOf({ drain: [{ fromS: 1, toS: 11 }], lock: [{ fromS: 0, toS: 30 }] }), spec, 30)).toMatchObject({
+    seconds: 10,
+    verdict: 'pass',
+  });
+});
+
+test('When seconds are read off a clock, then they carry over', () => {
+  expect([clock(150), clock(59.6), clock(5)]).toEqual(['2:30', '1:00', '0:05']);
+});
