@@ -21,7 +21,14 @@ export function openDb(url: string): Db {
     client: 'pg',
     connection: { connectionString: url, application_name: 'refettle', options: '-c TimeZone=UTC' },
     pool: { min: 0, max: connectionsAtMost },
+    log: { warn },
   });
+}
+
+/** knex writes its warnings to standard output. A refused connection is none: the query that wanted it fails with the reason. */
+function warn(message: unknown): void {
+  const text = String(message);
+  if (!text.startsWith('Acquire connection error')) process.stderr.write(`${text}\n`);
 }
 
 interface ConnectionPool {

@@ -1,0 +1,62 @@
+import type { RequestListener, Server } from 'node:http';
+import { createServer } from 'node:http';
+import type { AddressInfo } from 'node:net';
+import { SetUpError } from './set-up-error.js';
+
+const everyAddress = new Set(['0.0.0.0', '::']);
+/** Live pages hold their connection open for as long as they are looked at. */
+const finishesWithinMs = 2_000;
+
+/** A server that listens. Refuses with a remedy where the address can't be had. */
+export async function listen(handler: RequestListener, host: string, port: number): Promise<Server> {
+  const server = createServer(handler);
+  try {
+    await new Promise<void>((resolve, reject) => {
+      server.once('error', reject).listen(port, host, resolve);
+    });
+    return server;
+  } catch (cause) {
+    const { code } = cause as NodeJS.ErrnoException;
+    const place = `${host}, port ${port.toString()}`;
+    if (code === 'EADDRINUSE') {
+      throw new SetUpError(
+        `Another program already listens on ${place}.`,
+        `Choose another port: PORT=${(port + 1).toString()} npm start.`,
+        { cause },
+      );
+    }
+    if (code === 'EACCES') {
+      throw new SetUpError(`This user may not listen on ${place}.`, 'Choose a port above 1023: PORT=4780 npm start.', { cause });
+    }
+    if (code === 'EADDRNOTAVAIL' || code === 'ENOTFOUND' || code === 'EAI_AGAIN') {
+      throw new SetUpError(
+        `This machine has no address ${host}.`,
+        'Set HOST to one that it has: 127.0.0.1 for itself alone, 0.0.0.0 for all.',
+        { cause },
+      );
+    }
+    throw cause;
+  }
+}
+
+/** Before the long work of a start: better to hear at once that the port is taken. */
+export async function makeSureThatPortIsFree(host: string, port: number): Promise<void> {
+  await closeServer(await listen((_request, response) => response.writeHead(503).end(), host, port));
+}
+
+/** What to type into a browser on this machine. */
+export function addressOf(server: Server): string {
+  const { address, port } = server.address() as AddressInfo;
+  const host = everyAddress.has(address) ? '127.0.0.1' : address;
+  return `http://${host.includes(':') ? `[${host}]` : host}:${port.toString()}`;
+}
+
+/** Lets requests finish for a moment, then cuts them off. */
+export async function closeServer(server: Server): Promise<void> {
+  const closed = new Promise((resolve) => server.close(resolve));
+  const cutOff = setTimeout(() => {
+    server.closeAllConnections();
+  }, finishesWithinMs);
+  await closed;
+  clearTimeout(cutOff);
+}
