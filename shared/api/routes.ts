@@ -272,6 +272,8 @@ export type RequestQuery<N extends RouteName> = Part<(typeof routes)[N], 'query'
 export type RequestParams<N extends RouteName> = Part<(typeof routes)[N], 'params'>;
 export type Answer<N extends RouteName> = z.output<(typeof routes)[N]['response']>;
 
+type Texts = Record<string, string | number | boolean | undefined> | undefined;
+
 /**
  * The path of a route with its parameters filled in and its query appended.
  *
@@ -279,7 +281,7 @@ export type Answer<N extends RouteName> = z.output<(typeof routes)[N]['response'
  */
 export function routeUrl(
   name: RouteName,
-  request: { params?: Record<string, unknown> | undefined; query?: Record<string, unknown> | undefined } = {},
+  request: { params?: Texts; query?: Texts } = {},
 ): string {
   const path = routes[name].path.replace(/:(\w+)/g, (_, key: string) => encodeURIComponent(String(request.params?.[key])));
   const query = new URLSearchParams(
