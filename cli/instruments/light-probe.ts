@@ -1,0 +1,133 @@
+import { GarbageError, InstrumentTimeoutError, type InstrumentError } from './instrument-error.js';
+import { parseSampleLine } from './sample-line.js';
+import { SampleTimeline, type ProbeEvent } from './sample-timeline.js';
+import { ScpiConversation } from './scpi-conversation.js';
+import type { Transport } from './transport.js';
+
+const COUNT_QUERY = 'SENSe:LAMP:COUNt?';
+const START = 'INITiate:CONTinuous ON';
+const STOP = 'INITiate:CONTinuous OFF';
+/** No probe has more sensors than a panel has lamps, with room to spare. */
+const MOST_SENSORS = 64;
+/** Without a line for this long the probe is asked once more to send (it may have started again), then given up. */
+const SILENCE_MS = 1500;
+/** Events nobody has fetched yet; beyond it the port is paused. */
+const MOST_WAITING_EVENTS = 20_000;
+
+export interface LightProbeOptions {
+  sampleRateHz: number;
+  scaleMax: number;
+  /** The bench's clock in microseconds; a simulated one runs faster. */
+  nowUs: () => number;
+}
+
+export interface LightProbe {
+  readonly identification: string;
+  readonly sensorCount: number;
+  /** Samples and gaps from now on, until `signal` aborts. Ends by stopping the probe. One reader at a time. */
+  read(signal: AbortSignal): AsyncGenerator<ProbeEvent, void, undefined>;
+  /** Stops the probe and closes the port. */
+  close(): Promise<void>;
+}
+
+const isSampleLine = (line: string): boolean => line.startsWith('$');
+
+/** Stops a probe that may still be sending, falls into step with it, and asks how many sensors it has. */
+export async function openLightProbe(transport: Transport, options: LightProbeOptions): Promise<LightProbe> {
+  const conversation = new ScpiConversation(transport, { passOver: isSampleLine });
+  await conversation.tell(STOP);
+  const { text: identification } = await conversation.identify();
+  const answer = await conversation.ask(COUNT_QUERY);
+  const sensorCount = Number(answer);
+  if (!Number.isInteger(sensorCount) || sensorCount < 1 || sensorCount > MOST_SENSORS)
+    throw new GarbageError(transport, COUNT_QUERY, answer);
+
+  const stop = async (): Promise<void> => {
+    // Asking for errors afterwards lets the samples that are still on their way run out. A probe that is gone needs no stopping.
+    await conversation
+      .tell(STOP)
+      .then(() => conversation.errors())
+      .catch(() => undefined);
+  };
+  return {
+    identification,
+    sensorCount,
+    read: (signal) => readSamples({ transport, conversation, sensorCount, signal, stop, ...options }),
+    close: async () => {
+      await stop();
+      await transport.close();
+    },
+  };
+}
+
+interface Reading extends LightProbeOptions {
+  transport: Transport;
+  conversation: ScpiConversation;
+  sensorCount: number;
+  signal: AbortSignal;
+  stop: () => Promise<void>;
+}
+
+async function* readSamples(reading: Reading): AsyncGenerator<ProbeEvent, void, undefined> {
+  const { transport, conversation, sensorCount, signal, stop, sampleRateHz, scaleMax, nowUs } = reading;
+  const timeline = new SampleTimeline(sampleRateHz);
+  const waiting: ProbeEvent[] = [];
+  let gone: InstrumentError | undefined;
+  let lines = 0;
+  let wake = (): void => undefined;
+  let paused = false;
+
+  const subscriptions = [
+    transport.onLine((line) => {
+      lines += 1;
+      waiting.push(...timeline.push(parseSampleLine(line, sensorCount, scaleMax), nowUs()));
+      if (waiting.length > MOST_WAITING_EVENTS && !paused) {
+        transport.pause();
+        paused = true;
+      }
+      wake();
+    }),
+    transport.onClose((reason) => {
+      gone = reason;
+      wake();
+    }),
+  ];
+  const onAbort = (): void => wake();
+  signal.addEventListener('abort', onAbort);
+  try {
+    if (signal.aborted) return;
+    await conversation.tell(START);
+    let remindersLeft = 1;
+    for (;;) {
+      const batch = waiting.splice(0);
+      if (paused) {
+        transport.resume();
+        paused = false;
+      }
+      yield* batch;
+      if (waiting.length > 0) continue;
+      if (signal.aborted) break;
+      if (gone) throw gone;
+      const heard = lines;
+      await new Promise<void>((resolve) => {
+        const timer = setTimeout(resolve, SILENCE_MS);
+        wake = () => {
+          clearTimeout(timer);
+          resolve();
+        };
+      });
+      if (lines > heard) remindersLeft = 1;
+      else if (!signal.aborted && gone === undefined) {
+        if (remindersLeft === 0) throw new InstrumentTimeoutError(transport, START, 2 * SILENCE_MS);
+        remindersLeft -= 1;
+        await conversation.tell(START);
+      }
+    }
+    yield* timeline.finish();
+  } finally {
+    signal.removeEventListener('abort', onAbort);
+    for (const unsubscribe of subscriptions) unsubscribe();
+    if (paused) transport.resume();
+    await stop();
+  }
+}
