@@ -1,0 +1,88 @@
+import type { ReactNode } from 'react';
+import { Link, NavLink, Outlet, useNavigate } from 'react-router-dom';
+import { mayDo } from '../../shared/api/roles.js';
+import type { User } from '../../shared/api/sessions.js';
+import { pickTheme, useTheme } from '../lib/theme.js';
+import { paths } from '../paths.js';
+import { MarkDefinitions } from './verdict.js';
+
+export function Wordmark() {
+  return (
+    <>
+      <svg viewBox="0 0 34 20" width="34" height="20" aria-hidden="true">
+        <path fill="currentColor" fillRule="evenodd" d="M6 0H34V20H6L0 14V6zM8 6.6a3.4 3.4 0 1 0 .01 0z" />
+      </svg>
+      Refettle
+    </>
+  );
+}
+
+export function ThemeSwitch() {
+  const theme = useTheme();
+  return (
+    <button type="button" aria-pressed={theme === 'night'} className="min-h-11 cursor-pointer px-1 underline underline-offset-4" onClick={() => pickTheme(theme === 'night' ? 'day' : 'night')}>
+      {theme === 'night' ? 'Day' : 'Night'} <span className="sr-only">bench colours</span>
+    </button>
+  );
+}
+
+function FindBox() {
+  const navigate = useNavigate();
+  return (
+    <form
+      role="search"
+      className="ml-auto hidden gap-2.5 min-[1100px]:flex"
+      onSubmit={(event) => {
+        event.preventDefault();
+        const find = new FormData(event.currentTarget).get('find');
+        void navigate(paths.units({ find: typeof find === 'string' ? find.trim() : '' }));
+      }}
+    >
+      <label className="lab" htmlFor="find-in-header">
+        Find
+      </label>
+      <input id="find-in-header" name="find" type="search" maxLength={100} className="field min-h-11! w-56 py-1!" placeholder="number or serial" />
+    </form>
+  );
+}
+
+/** Header, landmarks and skip link of every page that somebody signed in for. Without `user` only the mark and the theme. */
+export function ShopFrame({ user, onSignOut, find = false, children }: { user?: User | undefined; onSignOut?: () => void; find?: boolean; children?: ReactNode }) {
+  return (
+    <>
+      <MarkDefinitions />
+      <a className="skip" href="#main">
+        Skip to the page
+      </a>
+      <header className="top">
+        <Link className="wordmark" to={paths.units()}>
+          <Wordmark />
+        </Link>
+        {user && mayDo(user.role, 'unit.read') && (
+          <nav aria-label="Main" className="word-tabs items-stretch!">
+            <NavLink to={paths.units()}>Units</NavLink>
+            <NavLink to={paths.lookUpTag()}>Look up a tag</NavLink>
+          </nav>
+        )}
+        {find && <FindBox />}
+        <div className="ml-auto min-h-[52px] gap-4">
+          <ThemeSwitch />
+          {user && (
+            <p className="leading-tight">
+              {user.name}
+              <span className="lab block">{user.role}</span>
+            </p>
+          )}
+          {onSignOut && (
+            <button type="button" className="min-h-11 cursor-pointer px-1 underline underline-offset-4" onClick={onSignOut}>
+              Sign out
+            </button>
+          )}
+        </div>
+      </header>
+      <main id="main" className="page mx-auto">
+        {children ?? <Outlet />}
+      </main>
+    </>
+  );
+}

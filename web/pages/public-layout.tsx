@@ -1,0 +1,5 @@
+import { ShopFrame } from '../components/shop-frame.js';
+
+export function PublicLayout() {
+  return <ShopFrame />;
+}

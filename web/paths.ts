@@ -1,0 +1,24 @@
+import { unitNumber } from './lib/format.js';
+
+/** Every link of the web companion is built here. */
+export const paths = {
+  signIn: (back?: string) => (back === undefined ? '/sign-in' : `/sign-in?${new URLSearchParams({ back }).toString()}`),
+  firstAdmin: () => '/first-admin',
+  units: (view: { find?: string | undefined; stage?: string | undefined } = {}) => {
+    const query = new URLSearchParams(Object.entries(view).flatMap(([key, value]) => (value ? [[key, value]] : [])));
+    return query.size > 0 ? `/units?${query.toString()}` : '/units';
+  },
+  takeIn: () => '/units/new',
+  unit: (number: number) => `/units/${unitNumber(number)}`,
+  signOff: (number: number) => `${paths.unit(number)}/sign-off`,
+  unitTag: (number: number) => `${paths.unit(number)}/tag`,
+  capture: (id: string) => `/captures/${encodeURIComponent(id)}`,
+  run: (id: string) => `/runs/${encodeURIComponent(id)}`,
+  lookUpTag: () => '/t',
+  publicTagByWord: (tag: string, word: string) => `/t/${encodeURIComponent(tag)}?${new URLSearchParams({ word }).toString()}`,
+};
+
+/** A place to go back to after signing in: only a path of this site. */
+export function safeBack(back: string | null): string {
+  return back !== null && /^\/(?![/\\])/.test(back) ? back : paths.units();
+}
