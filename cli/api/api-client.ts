@@ -1,0 +1,132 @@
+import { problemSchema, PROBLEM_TYPE_PREFIX } from '../../shared/api/problem.js';
+import { routes, routeUrl, type Answer, type RequestBody, type RequestParams, type RequestQuery, type Route, type RouteName } from '../../shared/api/routes.js';
+import { ApiProblemError, NotSignedInError, ServerError, ServerUnreachableError, StoppedError, UsageError } from '../errors.js';
+
+/** How long the server may take: to answer a question, and to store a bench log with its captures. */
+const QUESTION_TIMEOUT_MS = 15_000;
+const WRITE_TIMEOUT_MS = 120_000;
+
+export interface ApiRequest<N extends RouteName> {
+  params?: RequestParams<N>;
+  query?: RequestQuery<N>;
+  body?: RequestBody<N>;
+  /** Sent twice with the same key, it is stored once. */
+  idempotencyKey?: string;
+}
+
+export interface Api {
+  readonly server: string;
+  call<N extends RouteName>(name: N, request?: ApiRequest<N>): Promise<Answer<N>>;
+}
+
+export interface ApiParts {
+  server: string;
+  token: () => string | undefined;
+  signal: AbortSignal;
+  fetch?: typeof fetch;
+}
+
+/** Calls the server by the table of routes; what it answers is checked by the same table. */
+export function createApi({ server, token, signal, fetch: send = fetch }: ApiParts): Api {
+  if (!/^https?:\/\/[^/]+/.test(server)) throw new UsageError(`REFETTLE_SERVER is no address: '${server}'. Write it like http://127.0.0.1:4780`);
+  return {
+    server,
+    async call(name, request = {}) {
+      const route: Route = routes[name];
+      const bearer = token();
+      const response = await ask(send, server, `${server}${routeUrl(name, request as { params?: Record<string, unknown> })}`, {
+        method: route.method,
+        headers: {
+          accept: 'application/json',
+          ...(request.body === undefined ? {} : { 'content-type': 'application/json' }),
+          ...(bearer === undefined ? {} : { authorization: `Bearer ${bearer}` }),
+          ...(request.idempotencyKey === undefined ? {} : { 'idempotency-key': request.idempotencyKey }),
+        },
+        ...(request.body === undefined ? {} : { body: JSON.stringify(request.body) }),
+        signal: AbortSignal.any([signal, AbortSignal.timeout(route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS)]),
+      });
+      if (response.status >= 400) throw problemOf(response, server);
+      const parsed = route.response.safeParse(response.status === 204 ? {} : response.json());
+      if (!parsed.success) throw notOurs(server);
+      return parsed.data as Answer<typeof name>;
+    },
+  };
+}
+
+interface Response {
+  status: number;
+  /** Throws a ServerError where the text is no JSON. */
+  json(): unknown;
+}
+
+async function ask(send: typeof fetch, server: string, url: string, init: RequestInit & { signal: AbortSignal }): Promise<Response> {
+  try {
+    const response = await send(url, init);
+    const text = await response.text();
+    return {
+      status: response.status,
+      json: () => {
+        try {
+          return JSON.parse(text) as unknown;
+        } catch {
+          throw notOurs(server);
+        }
+      },
+    };
+  } catch (error) {
+    if (init.signal.aborted && !isTimeout(init.signal.reason)) throw new StoppedError();
+    throw new ServerUnreachableError(server, whyUnreachable(error), { cause: error });
+  }
+}
+
+const isTimeout = (reason: unknown): boolean => reason instanceof Error && reason.name === 'TimeoutError';
+
+function whyUnreachable(error: unknown): string {
+  if (isTimeout(error)) return 'it does not answer in time';
+  const cause = error instanceof Error ? (error.cause as NodeJS.ErrnoException | undefined) : undefined;
+  switch (cause?.code) {
+    case 'ECONNREFUSED':
+      return 'nothing listens there';
+    case 'ENOTFOUND':
+    case 'EAI_AGAIN':
+      return 'its name is not known to the network';
+    case 'ECONNRESET':
+    case 'UND_ERR_SOCKET':
+      return 'the connection broke off';
+    default:
+      return cause?.code ?? (error instanceof Error ? error.message : String(error));
+  }
+}
+
+function notOurs(server: string): ServerError {
+  return new ServerError(`What answers at ${server} is not this version of Refettle.`, 'Check REFETTLE_SERVER; an admin brings bench and server to the same version.');
+}
+
+/** Who can do something about a refusal where the server does not say. */
+function usualRemedy(status: number): string {
+  if (status === 403) return 'Somebody with the right role does it.';
+  if (status === 404) return 'Check the number or the name.';
+  if (status === 409) return 'Somebody else was quicker, or it is there already: look at it and decide.';
+  if (status === 429) return 'Wait a minute, then try again.';
+  if (status >= 500) return 'Try again; if it stays, an admin looks at the server.';
+  return 'Correct what it names.';
+}
+
+function problemOf(response: Response, server: string): ServerError {
+  if (response.status === 401) {
+    const detail = problemSchema.safeParse(response.json()).data;
+    // A refused sign-in is a 401 too, and says so in its own words.
+    return detail?.detail === undefined ? new NotSignedInError(server) : new NotSignedInError(server, detail.detail);
+  }
+  const parsed = problemSchema.safeParse(response.json());
+  if (!parsed.success) return notOurs(server);
+  const { type, title, detail, errors, remedy } = parsed.data;
+  return new ApiProblemError({
+    status: response.status,
+    kind: type.startsWith(PROBLEM_TYPE_PREFIX) ? type.slice(PROBLEM_TYPE_PREFIX.length) : '',
+    title,
+    detail,
+    errors,
+    remedy: remedy ?? usualRemedy(response.status),
+  });
+}

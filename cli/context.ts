@@ -1,0 +1,68 @@
+import type { Api } from './api/api-client.js';
+import { homeOf, type Environment, type Home } from './home.js';
+import type { OpenRig } from './instruments/rig.js';
+import { Interruption } from './interruption.js';
+import { newId } from './new-id.js';
+import { outputOn, type Output, type RawOutput } from './output.js';
+import { promptOn, type InputStream, type Prompt } from './prompt.js';
+
+/** Where the server is unless told (contract, section 8: HOST and PORT of a fresh start). */
+const USUAL_SERVER = 'http://127.0.0.1:4780';
+
+/** Everything a command works with; nothing else is reached for, so that a test can hand in its own. */
+export interface Context {
+  readonly env: Environment;
+  readonly home: Home;
+  /** The server's address, without a slash at its end. */
+  readonly server: string;
+  readonly stdin: InputStream;
+  readonly stdout: Output;
+  readonly stderr: Output;
+  /** Somebody sits at a terminal and can be asked. */
+  readonly interactive: boolean;
+  readonly prompt: Prompt;
+  readonly interruption: Interruption;
+  now(): Date;
+  newId(): string;
+  /** Waits in real time. */
+  sleep(milliseconds: number): Promise<void>;
+  openRig(choice: string | undefined): Promise<OpenRig>;
+  /** The server's API, with the token of who is signed in. */
+  api(): Promise<Api>;
+}
+
+export interface ContextParts {
+  env: Environment;
+  stdin: InputStream;
+  stdout: RawOutput;
+  stderr: RawOutput;
+  /** The second Ctrl-C, or one while nothing is being recorded. */
+  leaveNow: () => void;
+}
+
+export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextParts): Context {
+  const home = homeOf(env);
+  const server = (env['REFETTLE_SERVER'] || USUAL_SERVER).replace(/\/+$/, '');
+  const interruption = new Interruption(leaveNow);
+  const errors = outputOn(stderr, env);
+  const interactive = stdin.isTTY === true;
+  return {
+    env,
+    home,
+    server,
+    stdin,
+    stdout: outputOn(stdout, env),
+    stderr: errors,
+    interactive,
+    prompt: promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption }),
+    interruption,
+    now: () => new Date(),
+    newId,
+    sleep: (milliseconds) => new Promise((resolve) => setTimeout(resolve, milliseconds)),
+    openRig: async (choice) => (await import('./instruments/rig.js')).openRig(choice, home.folder),
+    api: async () => {
+      const [{ createApi }, { readSession }] = await Promise.all([import('./api/api-client.js'), import('./session.js')]);
+      return createApi({ server, token: () => readSession(home, server)?.token, signal: interruption.signal });
+    },
+  };
+}

@@ -1,0 +1,105 @@
+import type { Readable } from 'node:stream';
+import { NobodyToAskError, StoppedError } from './errors.js';
+import type { Interruption } from './interruption.js';
+import { readKeys } from './keyboard.js';
+import type { Output, RawOutput } from './output.js';
+
+export type InputStream = Readable & { isTTY?: boolean; setRawMode?: (raw: boolean) => unknown };
+
+interface Question {
+  message: string;
+  /** How to answer where nobody is at a terminal: the option to give. */
+  instead: string;
+}
+
+export interface KeyQuestion extends Question {
+  /** The keys that answer, each with its word. Any other key asks again. */
+  keys: readonly { key: string; word: string }[];
+  /** Said when a key that answers nothing was pressed. */
+  again?: string;
+}
+export interface TextQuestion extends Question {
+  initial?: string | undefined;
+  /** What is wrong with an answer, or undefined. */
+  refuse?: ((answer: string) => string | undefined) | undefined;
+}
+export interface ChoiceQuestion extends Question {
+  choices: readonly { value: string; name: string }[];
+}
+
+/** Questions, drawn on standard error. Each refuses with a NobodyToAskError where standard input is no terminal. */
+export interface Prompt {
+  /** One key of several, with no default: Enter alone asks again. */
+  key(question: KeyQuestion): Promise<string>;
+  text(question: TextQuestion): Promise<string>;
+  secret(question: Question): Promise<string>;
+  choice(question: ChoiceQuestion): Promise<string>;
+}
+
+export interface PromptParts {
+  stdin: InputStream;
+  output: Output;
+  rawOutput: RawOutput;
+  interactive: boolean;
+  interruption: Interruption;
+}
+
+export function promptOn({ stdin, output, rawOutput, interactive, interruption }: PromptParts): Prompt {
+  const needSomebody = ({ message, instead }: Question): void => {
+    if (!interactive) throw new NobodyToAskError(message, instead);
+  };
+  const ask = async (question: Question, drawn: Record<string, unknown> & { type: 'input' | 'password' | 'select' }): Promise<string> => {
+    needSomebody(question);
+    if (interruption.interrupted) throw new StoppedError();
+    const { default: inquirer } = await import('inquirer');
+    try {
+      const prompt = inquirer.createPromptModule({ input: stdin, output: rawOutput as unknown as NodeJS.WritableStream });
+      const { answer } = (await prompt([{ ...drawn, name: 'answer', message: question.message }] as never)) as { answer: string };
+      return answer;
+    } catch (error) {
+      if (!(error instanceof Error) || error.name !== 'ExitPromptError') throw error;
+      interruption.interrupt();
+      throw new StoppedError();
+    }
+  };
+  return {
+    async key(question) {
+      needSomebody(question);
+      const { ink } = await output.style();
+      const row = question.keys.map(({ key, word }) => `${ink.inverse(` ${nameOfKey(key)} `)} ${word}`).join('   ');
+      return new Promise<string>((resolve, reject) => {
+        let keyboard: { close(): void } | undefined;
+        const settle = (end: () => void): void => {
+          keyboard?.close();
+          interruption.signal.removeEventListener('abort', onStop);
+          end();
+        };
+        const onStop = (): void => settle(() => (output.write('\n'), reject(new StoppedError())));
+        if (interruption.interrupted) {
+          reject(new StoppedError());
+          return;
+        }
+        interruption.signal.addEventListener('abort', onStop);
+        const onKey = (pressed: string): void => {
+          const answer = question.keys.find(({ key }) => key === pressed.toLowerCase());
+          if (answer) settle(() => (output.write(`${nameOfKey(answer.key)}\n`), resolve(answer.key)));
+          else output.write(`\n${question.again ?? 'There is no default: press one of these keys.'}\n${question.message}  ${row}   > `);
+        };
+        readKeys(stdin, onKey, () => interruption.interrupt()).then((opened) => {
+          keyboard = opened;
+          if (interruption.interrupted) opened.close();
+          else output.write(`${question.message}  ${row}   > `);
+        }, reject);
+      });
+    },
+    text: async (question) => {
+      const validate = (answer: string): true | string => question.refuse?.(answer.trim()) ?? true;
+      const initial = question.initial === undefined ? {} : { default: question.initial };
+      return (await ask(question, { type: 'input', validate, ...initial })).trim();
+    },
+    secret: (question) => ask(question, { type: 'password' }),
+    choice: (question) => ask(question, { type: 'select', choices: question.choices.map((choice) => ({ ...choice })) }),
+  };
+}
+
+const nameOfKey = (key: string): string => (key === ' ' ? 'space' : key === '\r' ? 'enter' : key);
