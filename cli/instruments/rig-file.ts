@@ -5,7 +5,7 @@ import { z } from 'zod';
 import { BadInputError } from '../../shared/errors.js';
 import { baseUnitOf } from '../../shared/measure/convert-unit.js';
 import { parseAccuracy } from '../../shared/measure/parse-accuracy.js';
-import { measuredCheckSchema, slugSchema } from '../../shared/sheet/schema.js';
+import { measuredCheckSchema, slugSchema, type MeasuredCheck } from '../../shared/sheet/schema.js';
 import { MEASURE_COMMANDS, type Quantity } from './meter.js';
 
 const accuracyTextSchema = z.string().refine((text) => {
@@ -24,35 +24,39 @@ const rangeSchema = z.strictObject({
 });
 export type MeterRange = z.infer<typeof rangeSchema>;
 
-const specificationSchema = z.strictObject({
-  unit: measuredCheckSchema.shape.unit,
-  /** Smallest range first. */
-  ranges: z.array(rangeSchema).min(1),
+/** How good an instrument is at one quantity; smallest range first. */
+export interface Specification {
+  unit: MeasuredCheck['unit'];
+  ranges: MeterRange[];
   /** What this meter sends for overload where that is less than SCPI's 9.9E37; in its base unit. */
-  overloadFrom: z.number().positive().optional(),
-});
-/** How good an instrument is at one quantity. */
-export type Specification = z.infer<typeof specificationSchema>;
+  overloadFrom?: number | undefined;
+}
 
-/** In the file a meter of one range may write accuracy and resolution straight away. */
-const specificationInFileSchema = z.union([
-  z
-    .strictObject({
-      unit: measuredCheckSchema.shape.unit,
-      accuracy: accuracyTextSchema,
-      resolution: z.number().positive(),
-      overloadFrom: z.number().positive().optional(),
-    })
-    .transform(({ accuracy, resolution, ...rest }): Specification => ({ ...rest, ranges: [{ accuracy, resolution }] })),
-  specificationSchema,
-]);
+/** In the file a meter of one range may write accuracy and resolution straight away. One schema for both, so that a fault is named where it is. */
+const specificationSchema = z
+  .strictObject({
+    unit: measuredCheckSchema.shape.unit,
+    ranges: z.array(rangeSchema).min(1).optional(),
+    accuracy: accuracyTextSchema.optional(),
+    resolution: z.number().positive().optional(),
+    overloadFrom: z.number().positive().optional(),
+  })
+  .transform(({ unit, ranges, accuracy, resolution, overloadFrom }, context): Specification => {
+    const single = accuracy !== undefined && resolution !== undefined ? [{ accuracy, resolution }] : undefined;
+    const written = ranges ?? single;
+    if (written === undefined || (ranges !== undefined && (accuracy !== undefined || resolution !== undefined))) {
+      context.addIssue({ code: 'custom', message: 'give either ranges, or accuracy and resolution' });
+      return z.NEVER;
+    }
+    return { unit, ranges: written, ...(overloadFrom === undefined ? {} : { overloadFrom }) };
+  });
 
 const instrumentBase = { id: z.string().min(1), port: z.string().min(1), baudRate: z.number().int().positive().optional() };
 const meterSchema = z.strictObject({
   ...instrumentBase,
   kind: z.enum(['meter', 'insulation-tester', 'leakage-meter']),
   /** What it measures, and how well. */
-  accuracy: z.partialRecord(measuredCheckSchema.shape.quantity, specificationInFileSchema),
+  accuracy: z.partialRecord(measuredCheckSchema.shape.quantity, specificationSchema),
   measureTimeoutMs: z.number().int().positive().optional(),
 });
 const probeSchema = z.strictObject({

@@ -42,7 +42,7 @@ export interface Transport extends Where {
 export async function openTransport(options: TransportOptions): Promise<Transport> {
   const where: Where = { instrument: options.instrument, port: options.path };
   const { SerialPortStream } = await import('@serialport/stream');
-  const binding = options.binding ?? ((await import('./serial-driver.js')).serialDriver as unknown as Binding);
+  const binding = options.binding ?? (await import('./serial-driver.js')).serialDriver;
   const stream = new SerialPortStream({ binding, path: options.path, baudRate: options.baudRate, autoOpen: false });
   await new Promise<void>((resolve, reject) => stream.open((error) => (error ? reject(error) : resolve()))).catch(
     async (error: unknown) => {

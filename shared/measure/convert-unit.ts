@@ -27,7 +27,7 @@ export function baseUnitOf(unit: string): string {
 /**
  * A value in another unit of the same kind, for example an instrument's ohms as a sheet's megohms.
  *
- * The decimal point is shifted in the decimal, so no round-off is added. Refuses (BadInputError) units of different kinds.
+ * The point is shifted in the decimal, so a reading of up to 15 digits is exact in either unit. Refuses (BadInputError) units of different kinds.
  *
  * @example convertUnit(2310000, 'ohm', 'Mohm') // 2.31
  */

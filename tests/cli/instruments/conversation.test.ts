@@ -122,7 +122,7 @@ describe('a conversation', () => {
 });
 
 describe('a simulated instrument', () => {
-  async function asked(commands: string[]): Promise<string[]> {
+  function asked(commands: string[]): string[] {
     const answers: string[] = [];
     const instrument = new SimulatedScpi('MA,IN,0,VER', []);
     instrument.connect((text) => answers.push(text));
@@ -137,12 +137,12 @@ describe('a simulated instrument', () => {
     ['a header is unknown', ['IDN?', 'SYST:ERR?', 'SYST:ERR?'], ['-113,"Undefined header;IDN?"\n', '0,"No error"\n']],
     ['a query has a parameter too many', ['*IDN? 12', 'SYSTem:ERRor?'], ['MA,IN,0,VER\n', '-108,"Parameter not allowed"\n']],
     ['the queue is cleared', ['ABCD', '*CLS', 'syst:err?'], ['0,"No error"\n']],
-  ])('When %s, then it answers as the standard says', async (_what, commands, answers) => {
-    expect(await asked(commands)).toEqual(answers);
+  ])('When %s, then it answers as the standard says', (_what, commands, answers) => {
+    expect(asked(commands)).toEqual(answers);
   });
 
-  test('When more errors come than the queue holds, then the last one says so', async () => {
-    const answers = await asked([...Array.from({ length: 30 }, () => 'WRONG'), ...Array.from({ length: 21 }, () => 'SYST:ERR?')]);
+  test('When more errors come than the queue holds, then the last one says so', () => {
+    const answers = asked([...Array.from({ length: 30 }, () => 'WRONG'), ...Array.from({ length: 21 }, () => 'SYST:ERR?')]);
     expect(answers).toHaveLength(21);
     expect(answers[0]).toBe('-113,"Undefined header;WRONG"\n');
     expect(answers[19]).toBe('-350,"Queue overflow"\n');
@@ -151,12 +151,11 @@ describe('a simulated instrument', () => {
 });
 
 describe('opening a port', () => {
-  const failing = (words: string): Binding =>
-    ({ open: () => Promise.reject(new Error(words)), list: () => Promise.resolve([]) }) as unknown as Binding;
+  const failing = (words: string): Binding => ({ open: () => Promise.reject(new Error(words)), list: () => Promise.resolve([]) });
 
   test('When the port does not exist, then it says so and what to do', async () => {
     const binding = await simulatedBinding();
-    const attempt = openTransport({ instrument: 'M-03', path: '/sim/none', baudRate: 9600, binding: binding as unknown as Binding });
+    const attempt = openTransport({ instrument: 'M-03', path: '/sim/none', baudRate: 9600, binding: binding });
     await expect(attempt).rejects.toMatchObject({ name: 'PortMissingError', instrument: 'M-03', port: '/sim/none' });
   });
 
