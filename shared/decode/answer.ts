@@ -44,6 +44,12 @@ export interface PhaseView {
 
 /** What a page draws beside the answer: per lamp its threshold and lit level (in counts), its lit stretches, and the phases. */
 export interface DecodeView {
-  lamps: { id: string; threshold: number | null; litLevel: number | null; litFraction: number | null; lit: { fromS: number; toS: number }[] }[];
+  lamps: {
+    id: string;
+    threshold: number | null;
+    litLevel: number | null;
+    litFraction: number | null;
+    lit: { fromS: number; toS: number }[];
+  }[];
   phases: PhaseView[];
 }

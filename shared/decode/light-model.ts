@@ -1,0 +1,205 @@
+import type { Bins } from './bin-levels.js';
+import { findSteps, NOT_TOLD } from './find-steps.js';
+import { fitLevels, type Glow, type LevelFit } from './fit-levels.js';
+import { likeliestStates, litEvidence, MOST_BIN_NATS } from './lamp-states.js';
+
+/** What is known of one lamp's light in a capture. */
+export interface LampLight {
+  id: string;
+  /** 1 lit, 0 dark, one value a bin. */
+  states: Int8Array;
+  /** Log-likelihood ratio of lit against dark, nats, one value a bin. */
+  evidence: Float64Array;
+  fit: LevelFit;
+  /** Whether its light ever stepped up or down. */
+  changes: boolean;
+  everLit: boolean;
+  /** The probability that a lamp that never changed is taken for the wrong state, steadily; 0 when it changed. */
+  steadyDoubt: number;
+}
+
+const ROUNDS = 3;
+/** Bins this near a change of state are left out of a fit: lamps warm up and go out over tens of milliseconds. */
+const EDGE_BEFORE_BINS = 1;
+const EDGE_AFTER_BINS = 3;
+/** A lamp weaker than this share of its brightest neighbour may be no lamp but that neighbour's glow. */
+const MAYBE_GLOW = 0.4;
+/** Glow is believed in up to this share of a neighbour, or 1.5 times what other lamps of the capture show. */
+const USUAL_GLOW = 0.04;
+/** Pure glow must fit almost as well as a lamp of its own: the residual may be larger by so much. */
+const GLOW_FIT_RATIO = 1.15;
+/** A steady level, when no lamp of the file gives a measure: ambient light is about so much of full scale, ± so much. */
+const AMBIENT_SHARE = 0.08;
+const AMBIENT_SPREAD = 0.1;
+/** With other lamps to compare: their dark levels, and at least this spread. */
+const LEAST_AMBIENT_SPREAD = 0.05;
+/** A steady lamp that is lit stands out from the others' dark level by this share of full scale; less is all but excluded. */
+const LEAST_STEADY_LIGHT = 0.1;
+const HIDDEN_LIGHT_DENSITY = 1e-5;
+
+/**
+ * Finds each lamp's two levels, their slow drift, the glow of its neighbours, and from these when it was lit.
+ *
+ * First from steps alone, then by turns: states from levels, levels from states. Lamps must be in panel order: the ones beside each other
+ * glow into each other. A lamp that never steps is lit or dark by comparison with the others' dark levels, with a stated doubt.
+ */
+export function modelLight(bins: Bins, ids: readonly string[], fullScale: number): LampLight[] {
+  if (bins.exact) return ids.map((id, lamp) => typedLight(bins, id, bins.levels[lamp] as Float64Array, fullScale));
+  const lanes = bins.levels;
+  const steps = lanes.map((lane) => findSteps(bins, lane, fullScale));
+  const lamps: LampLight[] = ids.map((id, lamp) => {
+    const lane = lanes[lamp] as Float64Array;
+    const { labels, noise, found } = steps[lamp] as ReturnType<typeof findSteps>;
+    if (!found) return steadyLight(bins, id, lane, fullScale, noise);
+    return steppingLight(bins, id, lane, labels, [], fullScale, noise);
+  });
+  for (let round = 1; round < ROUNDS; round += 1) {
+    lamps.forEach((lamp, index) => {
+      if (!lamp.changes) return;
+      const glows = neighboursOf(lamps, index).map(glowOf);
+      const lane = lanes[index] as Float64Array;
+      lamps[index] = steppingLight(
+        bins,
+        lamp.id,
+        lane,
+        awayFromEdges(lamp.states),
+        glows,
+        fullScale,
+        (steps[index] as { noise: number }).noise,
+      );
+    });
+  }
+  const glowShares = lamps.flatMap((lamp) => (lamp.changes ? lamp.fit.glowShares : []));
+  const usualGlow = Math.max(USUAL_GLOW, 1.5 * median(glowShares));
+  lamps.forEach((lamp, index) => {
+    if (lamp.changes && isOnlyGlow(bins, lanes[index] as Float64Array, lamps, index, usualGlow, fullScale)) {
+      lamps[index] = steadyLight(bins, lamp.id, darkened(lanes[index] as Float64Array, lamp), fullScale, lamp.fit.noise);
+    }
+  });
+  compareSteadyLamps(lamps, lanes, fullScale);
+  return lamps;
+}
+
+function steppingLight(
+  bins: Bins,
+  id: string,
+  lane: Float64Array,
+  labels: Int8Array,
+  glows: readonly Glow[],
+  fullScale: number,
+  noise: number,
+): LampLight {
+  const fit = fitLevels(bins, lane, labels, glows, fullScale, noise);
+  const evidence = litEvidence(bins, lane, fit);
+  const states = likeliestStates(evidence);
+  const everLit = states.includes(1);
+  return { id, states, evidence, fit, changes: everLit && states.includes(0), everLit, steadyDoubt: 0 };
+}
+
+/** A lamp whose light never steps: its level is known, its state is told later by comparison. */
+function steadyLight(bins: Bins, id: string, lane: Float64Array, fullScale: number, noise: number): LampLight {
+  const labels = new Int8Array(lane.length).fill(0);
+  const fit = fitLevels(bins, lane, labels, [], fullScale, noise, false);
+  fit.amplitude.fill(0);
+  return { id, states: labels, evidence: new Float64Array(lane.length), fit, changes: false, everLit: false, steadyDoubt: 0.5 };
+}
+
+function typedLight(bins: Bins, id: string, lane: Float64Array, fullScale: number): LampLight {
+  const states = Int8Array.from(lane, (level) => (level * 2 > fullScale ? 1 : 0));
+  const evidence = Float64Array.from(
+    lane,
+    (level, bin) => (level * 2 > fullScale ? 1 : -1) * MOST_BIN_NATS * (bins.weights[bin] as number),
+  );
+  const flat = (value: number): Float64Array => new Float64Array(lane.length).fill(value);
+  const everLit = states.includes(1);
+  return {
+    id,
+    states,
+    evidence,
+    fit: { dark: flat(0), amplitude: flat(fullScale), glow: flat(0), glowShares: [], noise: 0 },
+    changes: everLit && states.includes(0),
+    everLit,
+    steadyDoubt: 0,
+  };
+}
+
+function neighboursOf(lamps: readonly LampLight[], index: number): LampLight[] {
+  return [lamps[index - 1], lamps[index + 1]].filter((lamp) => lamp !== undefined && lamp.changes) as LampLight[];
+}
+
+function glowOf(lamp: LampLight): Glow {
+  return Float64Array.from(lamp.states, (state, bin) => (state === 1 ? (lamp.fit.amplitude[bin] as number) : 0));
+}
+
+function awayFromEdges(states: Int8Array): Int8Array {
+  const labels = Int8Array.from(states);
+  for (let bin = 1; bin < states.length; bin += 1) {
+    if (states[bin] === states[bin - 1]) continue;
+    for (let near = Math.max(0, bin - EDGE_BEFORE_BINS); near < Math.min(states.length, bin + EDGE_AFTER_BINS); near += 1) {
+      labels[near] = NOT_TOLD;
+    }
+  }
+  return labels;
+}
+
+function isOnlyGlow(
+  bins: Bins,
+  lane: Float64Array,
+  lamps: readonly LampLight[],
+  index: number,
+  usualGlow: number,
+  fullScale: number,
+): boolean {
+  const lamp = lamps[index] as LampLight;
+  const neighbours = neighboursOf(lamps, index);
+  const brightest = Math.max(0, ...neighbours.map((neighbour) => mean(neighbour.fit.amplitude)));
+  if (brightest === 0 || mean(lamp.fit.amplitude) > MAYBE_GLOW * brightest) return false;
+  const labels = awayFromEdges(lamp.states);
+  const glow = fitLevels(bins, lane, labels, neighbours.map(glowOf), fullScale, lamp.fit.noise, false);
+  return glow.noise <= GLOW_FIT_RATIO * lamp.fit.noise && glow.glowShares.every((share) => share <= usualGlow);
+}
+
+/** The lane of a lamp that was only glow, with the glow taken out. */
+function darkened(lane: Float64Array, lamp: LampLight): Float64Array {
+  return Float64Array.from(lane, (level, bin) => level - (lamp.states[bin] === 1 ? (lamp.fit.amplitude[bin] as number) : 0));
+}
+
+/**
+ * Tells lit from dark for lamps that never stepped. Dark levels are taken as normal around those of the other lamps, a lit level as
+ * anywhere above; each equally likely beforehand.
+ */
+function compareSteadyLamps(lamps: readonly LampLight[], lanes: readonly Float64Array[], fullScale: number): void {
+  const references = lamps.filter((lamp) => lamp.changes).map((lamp) => mean(lamp.fit.dark) / fullScale);
+  const centre = references.length > 0 ? mean(references) : AMBIENT_SHARE;
+  const scatter =
+    references.length > 1 ? Math.sqrt(references.reduce((sum, level) => sum + (level - centre) ** 2, 0) / (references.length - 1)) : 0;
+  const spread = references.length > 0 ? Math.max(LEAST_AMBIENT_SPREAD, 1.5 * scatter) : AMBIENT_SPREAD;
+  lamps.forEach((lamp, index) => {
+    if (lamp.changes) return;
+    const level = mean(lamp.fit.dark) / fullScale;
+    const above = Math.max(0, (level - centre) / spread);
+    const darkDensity = Math.exp(-(above ** 2) / 2) / (spread * Math.sqrt(2 * Math.PI));
+    const litDensity = level > centre + LEAST_STEADY_LIGHT ? 1 / Math.max(0.1, 1 - centre - LEAST_STEADY_LIGHT) : HIDDEN_LIGHT_DENSITY;
+    const probabilityLit = litDensity / (litDensity + darkDensity);
+    const lit = probabilityLit > 0.5;
+    lamp.steadyDoubt = Math.min(probabilityLit, 1 - probabilityLit);
+    lamp.everLit = lit;
+    lamp.states.fill(lit ? 1 : 0);
+    lamp.evidence.fill(lit ? MOST_BIN_NATS : -MOST_BIN_NATS);
+    if (lit) {
+      lamp.fit.amplitude.fill(Math.max(0, mean(lanes[index] as Float64Array) - centre * fullScale));
+      lamp.fit.dark.fill(centre * fullScale);
+    }
+  });
+}
+
+function mean(values: ArrayLike<number>): number {
+  let sum = 0;
+  for (let index = 0; index < values.length; index += 1) sum += values[index] as number;
+  return values.length === 0 ? 0 : sum / values.length;
+}
+
+function median(values: readonly number[]): number {
+  const sorted = [...values].sort((a, b) => a - b);
+  return sorted[sorted.length >> 1] ?? 0;
+}

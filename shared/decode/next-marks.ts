@@ -1,0 +1,63 @@
+import type { Piece } from './phases.js';
+
+/** A `next` mark counts at the phase edge nearest to it within this time (contract, section 3). */
+const MARK_REACH_S = 1.5;
+/** So many phases on each side tell whether the code changes at an edge. */
+const LOOK_PHASES = 4;
+
+/**
+ * Puts each `next` mark on an edge between two pieces. That is the nearest edge within 1.5 s, unless the digits change at another edge within
+ * reach and not there: a person presses early or late.
+ *
+ * @param marksS times of the marks, seconds
+ * @returns indexes: the piece at each is the first of a new stretch; in order, none twice
+ */
+export function placeMarks(pieces: readonly Piece[], marksS: readonly number[]): number[] {
+  const splits = new Set<number>();
+  for (const markS of marksS) {
+    const within = pieces
+      .map((_, index) => ({ index, distanceS: index === 0 ? Infinity : distanceToEdge(pieces, index, markS) }))
+      .filter(({ distanceS }) => distanceS <= MARK_REACH_S)
+      .sort((a, b) => a.distanceS - b.distanceS);
+    const nearest = within[0];
+    if (nearest === undefined || endIsNearer(pieces, markS, nearest.distanceS)) continue;
+    let chosen = nearest.index;
+    let fewest = disagreement(pieces, nearest.index);
+    for (const { index } of within.slice(1)) {
+      const here = disagreement(pieces, index);
+      if (here < fewest) {
+        chosen = index;
+        fewest = here;
+      }
+    }
+    splits.add(chosen);
+  }
+  return [...splits].sort((a, b) => a - b);
+}
+
+/** How far a mark is from the edge before a piece; where the panel pauses there, from the nearer end of the pause. */
+function distanceToEdge(pieces: readonly Piece[], index: number, markS: number): number {
+  const edges = [pieces[index]?.fromS, pieces[index - 1]?.toS].filter((edge) => edge !== undefined);
+  return Math.min(...edges.map((edge) => Math.abs(edge - markS)));
+}
+
+/** A mark nearest to the very first or last edge stands where the stretch begins or ends anyway. */
+function endIsNearer(pieces: readonly Piece[], markS: number, distanceS: number): boolean {
+  const startS = pieces[0]?.fromS ?? Infinity;
+  const endS = pieces.at(-1)?.toS ?? Infinity;
+  return Math.abs(startS - markS) < distanceS || Math.abs(endS - markS) < distanceS;
+}
+
+/** How many phases near the edge differ from their own side: 0 when each side shows one code. */
+function disagreement(pieces: readonly Piece[], split: number): number {
+  return differing(pieces.slice(Math.max(0, split - LOOK_PHASES), split)) + differing(pieces.slice(split, split + LOOK_PHASES));
+}
+
+function differing(side: readonly Piece[]): number {
+  let count = 0;
+  for (const selectorLit of [true, false]) {
+    const patterns = side.filter((piece) => piece.kind === 'phase' && piece.selectorLit === selectorLit).map((piece) => piece.lit);
+    count += Math.max(0, new Set(patterns).size - 1);
+  }
+  return count;
+}
