@@ -53,7 +53,7 @@ export function LampFaceFigure({ face, seen }: { face: LampFace; seen?: Readonly
               <text x={x} y="24">
                 {lamp.label}
               </text>
-              {face.rows.map((row, at) => (
+              {face.rows.map((_, at) => (
                 <LargeLamp key={at} x={x} y={FIRST_ROW_Y + ROW_PITCH * at} colour={lamp.colour} state={stateOf(face, at, index, seen)} />
               ))}
               {lamp.group === 'weighted' ? (

@@ -7,9 +7,11 @@ export type CallRequest<N extends RouteName> = Named<'params', RequestParams<N>>
   (RequestQuery<N> extends undefined ? unknown : { query?: RequestQuery<N> }) &
   Named<'body', RequestBody<N>> & { idempotencyKey?: string; signal?: AbortSignal };
 
+type Texts = Record<string, string | number | boolean | undefined>;
+
 interface LooseRequest {
-  params?: Record<string, unknown>;
-  query?: Record<string, unknown>;
+  params?: Texts;
+  query?: Texts;
   body?: unknown;
   idempotencyKey?: string;
   signal?: AbortSignal;
@@ -24,7 +26,7 @@ export async function call<N extends RouteName>(name: N, request: CallRequest<N>
   const route: Route = routes[name];
   let response: Response;
   try {
-    response = await fetch(routeUrl(name, { params, query }), {
+    response = await fetch(routeUrl(name, { ...(params === undefined ? {} : { params }), ...(query === undefined ? {} : { query }) }), {
       method: route.method,
       credentials: 'same-origin',
       headers: {
