@@ -1,0 +1,38 @@
+#!/usr/bin/env bash
+# npm test [-- arguments of vitest]. The last line says what came out, whatever happened: "N passed, N failed".
+set -uo pipefail
+cd "$(dirname "$0")/.."
+. .setup/prepare.sh
+
+results=$(mktemp -d)
+passed=0
+failed=0
+finish() {
+  local code=$?
+  rm -rf "$results"
+  # Ended early (a build that fails, an interruption): that is a failure, too.
+  [ "$code" -eq 0 ] || [ "$failed" -gt 0 ] || failed=1
+  say "$passed passed, $failed failed"
+  [ "$failed" -eq 0 ] || exit 1
+}
+trap finish EXIT
+
+# The settings of a shop are not those of its tests.
+unset HOST PORT DATABASE_URL REFETTLE_DATA REFETTLE_DEMO REFETTLE_PUBLIC_URL REFETTLE_SERVER REFETTLE_HOME
+
+prepare postgresql chromium socat poppler-utils
+
+say 'Checking types and rules …'
+npm run --silent typecheck >"$results/typecheck" 2>&1 </dev/null &
+typecheck=$!
+npm run --silent lint >"$results/lint" 2>&1 </dev/null &
+lint=$!
+wait "$typecheck" || { failed=$((failed + 1)); say 'The types do not fit:'; cat "$results/typecheck"; }
+wait "$lint" || { failed=$((failed + 1)); say 'A rule of the house is broken:'; cat "$results/lint"; }
+
+code=0
+REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?
+read -r passed tests_failed <"$results/count" || { passed=0; tests_failed=1; }
+# Vitest fails for other reasons than a test, too (a set-up, an error that nobody awaited): none of them may look like a success.
+[ "$code" -eq 0 ] || [ "$tests_failed" -gt 0 ] || tests_failed=1
+failed=$((failed + tests_failed))
