@@ -1,0 +1,117 @@
+import { join } from 'node:path';
+import express, { type Express } from 'express';
+import helmet from 'helmet';
+import type { Logger } from 'pino';
+import { pinoHttp } from 'pino-http';
+import { v7 as newId } from 'uuid';
+import { rateLimits } from './auth/rate-limits.js';
+import type { Config } from './config.js';
+import type { Db } from './db.js';
+import { NotFoundError } from './errors.js';
+import { registerCaptureRoutes } from './features/captures/captures-routes.js';
+import { registerHealthRoutes } from './features/health/health-routes.js';
+import { registerPeopleRoutes } from './features/people/people-routes.js';
+import { registerReadingRoutes } from './features/readings/readings-routes.js';
+import { registerRunRoutes } from './features/runs/runs-routes.js';
+import { registerSessionRoutes } from './features/sessions/sessions-routes.js';
+import { registerSheetRoutes } from './features/sheets/sheets-routes.js';
+import type { SigningKey } from './features/tags/signing-key.js';
+import { registerTagRoutes } from './features/tags/tags-routes.js';
+import { registerUnitRoutes } from './features/units/units-routes.js';
+import { OPENAPI_PATH, openApiDocument } from './openapi.js';
+import { sendProblem } from './problem.js';
+import { refuseOtherMethods, routesOn } from './route.js';
+
+export interface AppDependencies {
+  db: Db;
+  config: Config;
+  signingKey: SigningKey;
+  clock: () => Date;
+  /** The built web; undefined: the API alone. */
+  webDir: string | undefined;
+  log: Logger;
+}
+
+const ONE_YEAR_MS = 31_536_000_000;
+
+export function createApp(deps: AppDependencies): Express {
+  const app = express();
+  const { publicUrl } = deps.config;
+  // A proxy on this machine may end TLS and say for whom; nobody else is believed.
+  app.set('trust proxy', 'loopback');
+  app.set('query parser', 'simple');
+  app.use(requestLog(deps.log));
+  app.use(helmet(securityHeaders(publicUrl?.startsWith('https:') === true)));
+  app.use('/api', (_request, response, next) => {
+    response.set('Cache-Control', 'no-store');
+    next();
+  });
+  app.set('etag', false);
+
+  const route = routesOn(app, deps);
+  const limits = rateLimits();
+  const openApi = openApiDocument();
+  app.get(OPENAPI_PATH, (_request, response) => {
+    response.json(openApi);
+  });
+  registerHealthRoutes(route);
+  registerSessionRoutes(route, deps, limits);
+  registerPeopleRoutes(route);
+  registerSheetRoutes(route);
+  registerUnitRoutes(route);
+  registerCaptureRoutes(route);
+  registerReadingRoutes(route);
+  registerRunRoutes(route);
+  registerTagRoutes(route, deps, limits);
+  refuseOtherMethods(app);
+  app.use('/api', (request) => {
+    throw new NotFoundError(`There is no ${request.method} ${request.baseUrl}${request.path}.`);
+  });
+  if (deps.webDir !== undefined) serveWeb(app, deps.webDir);
+  app.use(() => {
+    throw new NotFoundError('There is nothing at this address.');
+  });
+  app.use(sendProblem);
+  return app;
+}
+
+/** Over plain http a browser that is told to upgrade shows a blank page. */
+const securityHeaders = (https: boolean) => ({
+  contentSecurityPolicy: { directives: { upgradeInsecureRequests: https ? [] : null, imgSrc: ["'self'", 'data:', 'blob:'] } },
+  strictTransportSecurity: https,
+  referrerPolicy: { policy: 'no-referrer' as const },
+});
+
+/** Who asked for what, and how it ended. Addresses without their query and headers not at all: tokens stand in both. */
+const requestLog = (log: Logger) =>
+  pinoHttp({
+    logger: log,
+    genReqId: () => newId(),
+    serializers: {
+      req: (request: { id: unknown; method: unknown; url?: string }) => ({
+        id: request.id,
+        method: request.method,
+        path: request.url?.split('?')[0],
+      }),
+      res: (response: { statusCode: number }) => ({ status: response.statusCode }),
+    },
+    customLogLevel: (_request, response) => (response.statusCode >= 500 ? 'error' : 'info'),
+  });
+
+function serveWeb(app: Express, webDir: string): void {
+  app.use(
+    express.static(webDir, {
+      index: false,
+      maxAge: ONE_YEAR_MS,
+      immutable: true,
+      setHeaders: (response, path) => {
+        // Only what vite names by its content may be kept for ever.
+        if (!path.startsWith(join(webDir, 'assets'))) response.set('Cache-Control', 'no-cache');
+      },
+    }),
+  );
+  const page = join(webDir, 'index.html');
+  app.get(['/', '/*path'], (_request, response) => {
+    response.set('Cache-Control', 'no-cache').sendFile(page);
+  });
+}

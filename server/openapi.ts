@@ -1,0 +1,105 @@
+import { z } from 'zod';
+import { problemSchema } from '../shared/api/problem.js';
+import { ROLES_BY_ACTION } from '../shared/api/roles.js';
+import { routes, type Route } from '../shared/api/routes.js';
+import { IDEMPOTENCY_HEADER } from './idempotency.js';
+import { PROBLEM_MEDIA_TYPE } from './problem.js';
+
+type Json = Record<string, unknown>;
+
+export const OPENAPI_PATH = '/api/openapi.json';
+
+function jsonSchema(schema: z.ZodType, io: 'input' | 'output'): Json {
+  const { $schema: _dialect, ...rest } = z.toJSONSchema(schema, { io, reused: 'inline' }) as Json;
+  return rest;
+}
+
+const parameters = (schema: z.ZodObject | undefined, place: 'path' | 'query'): Json[] =>
+  Object.entries(schema?.shape ?? {}).map(([name, field]) => ({
+    name,
+    in: place,
+    required: place === 'path' || !(field as z.ZodType).safeParse(undefined).success,
+    schema: jsonSchema(field as z.ZodType, 'input'),
+  }));
+
+const idempotencyHeader: Json = {
+  name: IDEMPOTENCY_HEADER,
+  in: 'header',
+  required: true,
+  description: 'Sent twice, it is stored once and answered alike; with another body, 409. Kept 90 days.',
+  schema: { type: 'string', minLength: 1, maxLength: 200 },
+};
+
+const problemResponse = (description: string): Json => ({
+  description,
+  content: { [PROBLEM_MEDIA_TYPE]: { schema: { $ref: '#/components/schemas/Problem' } } },
+});
+
+function problemResponses(route: Route, isPublic: boolean): Json {
+  return {
+    ...(isPublic ? {} : { 401: problemResponse('Nobody is signed in'), 403: problemResponse('Another role’s to do, or a gate is shut') }),
+    ...(route.path.includes(':') ? { 404: problemResponse('Not there') } : {}),
+    ...(route.method === 'POST' ? { 409: problemResponse('It contradicts what is stored') } : {}),
+    ...(route.body || route.query || route.params
+      ? { 422: problemResponse('Fields that can’t be used, each with a JSON pointer and a reason') }
+      : {}),
+    default: problemResponse('Any other problem'),
+  };
+}
+
+function operation(name: string, route: Route): Json {
+  const roles: readonly string[] = ROLES_BY_ACTION[route.action];
+  const isPublic = roles.includes('public');
+  const all = [...parameters(route.params, 'path'), ...parameters(route.query, 'query'), ...(route.idempotent ? [idempotencyHeader] : [])];
+  return {
+    operationId: name,
+    summary: route.summary,
+    'x-roles': roles,
+    security: isPublic ? [] : [{ bearer: [] }],
+    ...(all.length > 0 ? { parameters: all } : {}),
+    ...(route.body
+      ? { requestBody: { required: true, content: { 'application/json': { schema: jsonSchema(route.body, 'input') } } } }
+      : {}),
+    responses: {
+      [String(route.status)]:
+        route.status === 204
+          ? { description: 'Done' }
+          : { description: 'Done', content: { 'application/json': { schema: jsonSchema(route.response, 'output') } } },
+      ...problemResponses(route, isPublic),
+    },
+  };
+}
+
+/** OpenAPI 3.1, made from the table that checks the requests. */
+export function openApiDocument(): Json {
+  const paths: Record<string, Json> = {};
+  for (const [name, route] of Object.entries(routes) as [string, Route][]) {
+    const path = route.path.replace(/:(\w+)/g, '{$1}');
+    paths[path] = { ...paths[path], [route.method.toLowerCase()]: operation(name, route) };
+  }
+  paths[OPENAPI_PATH] = {
+    get: {
+      operationId: 'openApi',
+      summary: 'This document',
+      'x-roles': ['public'],
+      security: [],
+      responses: {
+        200: { description: 'Done', content: { 'application/json': { schema: { type: 'object' } } } },
+        default: problemResponse('Any problem'),
+      },
+    },
+  };
+  return {
+    openapi: '3.1.0',
+    info: {
+      title: 'Refettle',
+      version: '1',
+      description: 'From the gate to the buyer: units, captures, readings, bench runs, sign-off, readiness tags.',
+    },
+    paths,
+    components: {
+      securitySchemes: { bearer: { type: 'http', scheme: 'bearer', description: 'RFC 6750, in the Authorization header only.' } },
+      schemas: { Problem: jsonSchema(problemSchema, 'output') },
+    },
+  };
+}
