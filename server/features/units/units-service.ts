@@ -1,0 +1,46 @@
+import { v7 as newId } from 'uuid';
+import type { z } from 'zod';
+import type { User } from '../../../shared/api/sessions.js';
+import { LICENSED_ONLY, type newUnitSchema, type Unit } from '../../../shared/api/units.js';
+import type { Db } from '../../db.js';
+import { InvalidError, SameSerialError } from '../../errors.js';
+import { insertEvents } from '../../history/event-store.js';
+import { newestSheet } from '../../history/sheet-store.js';
+import { refOf } from '../../history/unit-history.js';
+import { insertUnit, linkSameSerial, lockSerial, nextUnitNumber, serialKey, unitsWithSerial } from '../../history/unit-store.js';
+
+/** The gate of the shop: plate, complaint, and whether this machine was here before. */
+export async function takeIn(db: Db, request: z.output<typeof newUnitSchema>, person: User, now: Date): Promise<Unit> {
+  if (request.family !== undefined && !(await newestSheet(db, request.family))) {
+    throw new InvalidError([
+      { pointer: '/family', reason: `there is no service sheet for ${request.family}: leave it out, or let a lead add the sheet first` },
+    ]);
+  }
+  const key = request.plate.serial === undefined ? '' : serialKey(request.plate.serial);
+  if (key !== '') await lockSerial(db, key);
+  const sameSerial = key === '' ? [] : await unitsWithSerial(db, key);
+  if (sameSerial.length > 0 && request.sameSerialReason === undefined) throw new SameSerialError(sameSerial);
+
+  const { sameSerialReason, ...told } = request;
+  const unit: Unit = {
+    ...told,
+    id: newId(),
+    number: await nextUnitNumber(db),
+    licensedOnly: LICENSED_ONLY.includes(request.appliance),
+    takenInAt: now.toISOString(),
+    takenInBy: refOf(person),
+    ...(sameSerial.length > 0 && sameSerialReason !== undefined ? { sameSerial: { reason: sameSerialReason, units: sameSerial } } : {}),
+  };
+  await insertUnit(db, unit, 'intake');
+  if (unit.sameSerial) await linkSameSerial(db, sameSerial, unit.number, unit.sameSerial.reason);
+  const intake = {
+    id: newId(),
+    at: unit.takenInAt,
+    by: unit.takenInBy,
+    simulated: false,
+    kind: 'intake' as const,
+    complaint: unit.complaint,
+  };
+  await insertEvents(db, unit.id, [intake], { orderedAt: now, recordedAt: now });
+  return unit;
+}

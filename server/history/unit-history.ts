@@ -1,0 +1,129 @@
+import { v7 as newId } from 'uuid';
+import type { Shop, User } from '../../shared/api/sessions.js';
+import type { Unit } from '../../shared/api/units.js';
+import type { PersonRef, UnitEvent } from '../../shared/history/events.js';
+import type { UnitFacts } from '../../shared/readiness/facts.js';
+import { stageOf } from '../../shared/readiness/stage.js';
+import { whatWithdraws } from '../../shared/readiness/tag-standing.js';
+import type { Sheet } from '../../shared/sheet/schema.js';
+import type { Db } from '../db.js';
+import { NotFoundError } from '../errors.js';
+import { historyOf, insertEvents, type PlacedEvent } from './event-store.js';
+import { newestSheet } from './sheet-store.js';
+import { readShop } from './shop-store.js';
+import { markWithdrawn, newestTag, type StoredTag } from './tag-store.js';
+import { findUnit, lockUnits, setStage } from './unit-store.js';
+
+export const refOf = ({ id, name, role }: User): PersonRef => ({ id, name, role });
+
+export const unitNumberText = (number: number): string => String(number).padStart(4, '0');
+
+/** A unit with all that is decided by: its history, its sheet, the shop, its tag. */
+export interface UnitHistory {
+  unit: Unit;
+  sheet: Sheet | undefined;
+  shop: Shop;
+  placed: PlacedEvent[];
+  tag: StoredTag | undefined;
+}
+
+export const factsOf = ({ unit, sheet, shop }: Pick<UnitHistory, 'unit' | 'sheet' | 'shop'>, events: readonly UnitEvent[]): UnitFacts => ({
+  unit: { number: unit.number, protectionClass: unit.plate.protectionClass, licensedOnly: unit.licensedOnly },
+  sheet,
+  events,
+  shop: { demo: shop.demo, fourEyes: shop.fourEyes },
+});
+
+export const eventsOf = (history: Pick<UnitHistory, 'placed'>): UnitEvent[] => history.placed.map(({ event }) => event);
+
+async function loadHistory(db: Db, unit: Unit): Promise<UnitHistory> {
+  return {
+    unit,
+    sheet: await newestSheet(db, unit.family),
+    shop: await readShop(db),
+    placed: await historyOf(db, unit.id),
+    tag: await newestTag(db, unit.id),
+  };
+}
+
+const noSuchUnit = (number: number): NotFoundError => new NotFoundError(`There is no unit ${unitNumberText(number)}.`);
+
+export async function readUnitHistory(db: Db, number: number): Promise<UnitHistory> {
+  const unit = await findUnit(db, number);
+  if (!unit) throw noSuchUnit(number);
+  return loadHistory(db, unit);
+}
+
+/** For a write: nobody else writes on this unit, nor on those beside it, until the transaction ends. Units beside it may be missing. */
+export async function openUnitHistory(
+  db: Db,
+  number: number,
+  beside: readonly number[] = [],
+): Promise<UnitHistory & { besideUnits: Map<number, Unit> }> {
+  const units = await lockUnits(db, [number, ...beside]);
+  const unit = units.get(number);
+  if (!unit) throw noSuchUnit(number);
+  return { ...(await loadHistory(db, unit)), besideUnits: units };
+}
+
+/** Where something that happened at `at` stands in the history, and what stands before it. */
+export interface Place {
+  orderedAt: Date;
+  before: UnitEvent[];
+}
+
+/**
+ * A history is in the order of arrival, with one exception: what a bench measured before the last repair and sent only afterwards
+ * stands before that repair, for it says nothing about the mended machine. A repair with a clock that runs ahead counts from when
+ * it was written down.
+ */
+export function placeOf(history: UnitHistory, at: Date, now: Date): Place {
+  const late = history.placed.find(
+    ({ event, recordedAt }) => opensAnew(event) && at.getTime() < Math.min(Date.parse(event.at), recordedAt.getTime()),
+  );
+  const newest = history.placed.at(-1)?.orderedAt.getTime() ?? 0;
+  // Never before what stands already, should the server's clock have been set back.
+  const orderedAt = late ? new Date(late.orderedAt.getTime() - 1) : new Date(Math.max(now.getTime(), newest));
+  return { orderedAt, before: history.placed.filter((one) => one.orderedAt <= orderedAt).map(({ event }) => event) };
+}
+
+const opensAnew = (event: UnitEvent): boolean => event.kind === 'repair' || event.kind === 'returned';
+
+/**
+ * Writes events into a unit's history, and everything that follows from them in the same transaction: its stage, and the end of
+ * a standing tag that they contradict.
+ */
+export async function recordEvents(db: Db, history: UnitHistory, events: readonly UnitEvent[], place: Place, now: Date): Promise<void> {
+  await insertEvents(db, history.unit.id, events, { orderedAt: place.orderedAt, recordedAt: now });
+  const placed = await historyOf(db, history.unit.id);
+  const tag = await newestTag(db, history.unit.id);
+  const broken = tag && !tag.withdrawn ? whatWithdraws(factsOf(history, eventsOf({ placed })), tag.number) : undefined;
+  const by = events.at(-1)?.by;
+  if (tag && broken !== undefined && by) {
+    await withdrawTag(db, { ...history, placed, tag }, { by, reason: broken, now, simulated: false });
+    return;
+  }
+  await setStage(db, history.unit.id, stageOf(eventsOf({ placed })));
+}
+
+/** The tag no longer stands: said in its row and in the history. */
+export async function withdrawTag(
+  db: Db,
+  history: UnitHistory & { tag: StoredTag },
+  why: { by: PersonRef; reason: string; now: Date; simulated: boolean },
+): Promise<void> {
+  const { unit, tag, placed } = history;
+  const event: UnitEvent = {
+    id: newId(),
+    at: why.now.toISOString(),
+    by: why.by,
+    simulated: why.simulated,
+    kind: 'tag withdrawn',
+    tag: tag.number,
+    reason: why.reason,
+  };
+  const newest = placed.at(-1)?.orderedAt.getTime() ?? 0;
+  await markWithdrawn(db, tag.number, why.now, why.reason);
+  await insertEvents(db, unit.id, [event], { orderedAt: new Date(Math.max(why.now.getTime(), newest)), recordedAt: why.now });
+  await setStage(db, unit.id, stageOf([...eventsOf({ placed }), event]));
+}
