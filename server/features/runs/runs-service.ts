@@ -1,0 +1,132 @@
+import { v7 as newId } from 'uuid';
+import type { User } from '../../../shared/api/sessions.js';
+import { BadInputError } from '../../../shared/errors.js';
+import { settleRun, type SettledRun } from '../../../shared/history/settle-run.js';
+import type { PersonRef } from '../../../shared/history/events.js';
+import { runGateBreach } from '../../../shared/readiness/run-gates.js';
+import { checkScript } from '../../../shared/script/check-script.js';
+import { readScript } from '../../../shared/script/read-script.js';
+import type { RunLog } from '../../../shared/script/run-log.js';
+import type { Script } from '../../../shared/script/schema.js';
+import type { Sheet } from '../../../shared/sheet/schema.js';
+import type { Verdict } from '../../../shared/verdict.js';
+import type { Db } from '../../db.js';
+import { ConflictError, GateError, InvalidError } from '../../errors.js';
+import { atPointer } from '../../history/at-pointer.js';
+import { insertCapture } from '../../history/capture-store.js';
+import { donorsOf, takePartFrom } from '../../history/donor.js';
+import { happenedAt } from '../../history/happened-at.js';
+import { insertRun } from '../../history/run-store.js';
+import { factsOf, openUnitHistory, placeOf, recordEvents, refOf, unitNumberText, type UnitHistory } from '../../history/unit-history.js';
+import { refuseWhatIsNoText } from '../../request-faults.js';
+import { logFaults } from './log-against-script.js';
+
+/** Every time in the log, with a Z at its end; one that no clock can say is refused where it stands. */
+function withTimesInUtc(log: RunLog, now: Date): RunLog {
+  const utc = (at: string, pointer: string): string => happenedAt(at, now, pointer).toISOString();
+  return {
+    ...log,
+    startedAt: utc(log.startedAt, '/startedAt'),
+    endedAt: utc(log.endedAt, '/endedAt'),
+    steps: log.steps.map((step, index) => ({
+      ...step,
+      startedAt: utc(step.startedAt, `/steps/${String(index)}/startedAt`),
+      endedAt: utc(step.endedAt, `/steps/${String(index)}/endedAt`),
+    })),
+  };
+}
+
+function readScriptOf(log: RunLog, sheet: Sheet): Script {
+  const script = atPointer('/script/text', () => readScript(log.script.text));
+  const findings = checkScript(script, sheet);
+  if (findings.length > 0) {
+    throw new InvalidError(
+      findings.map(({ step, reason }) => ({ pointer: '/script/text', reason: step === undefined ? reason : `step ${step}: ${reason}` })),
+    );
+  }
+  return script;
+}
+
+function settle(log: RunLog, script: Script, sheet: Sheet, by: PersonRef): SettledRun {
+  try {
+    return settleRun(log, script, sheet, by, newId);
+  } catch (error) {
+    if (!(error instanceof BadInputError)) throw error;
+    const index = log.steps.findIndex((step) => (step.kind === 'capture' || step.kind === 'watch') && step.captureId === error.file);
+    const reason = error.line === undefined ? error.message : `line ${String(error.line)}: ${error.message}`;
+    throw new InvalidError([{ pointer: index < 0 ? '/steps' : `/steps/${String(index)}/file`, reason }]);
+  }
+}
+
+function askGates(
+  history: UnitHistory,
+  settled: SettledRun,
+  script: Script,
+  sheet: Sheet,
+  before: ReturnType<typeof placeOf>['before'],
+): void {
+  const number = unitNumberText(history.unit.number);
+  if (history.unit.licensedOnly) {
+    throw new GateError(
+      `No script runs on unit ${number}`,
+      ['gas, sealed refrigerant or a microwave oven: licensed person only'],
+      'hand it to a licensed person',
+    );
+  }
+  const breach = runGateBreach(settled, script, sheet, factsOf(history, before));
+  if (breach)
+    throw new GateError(`Step ${breach.stepId} of the run on unit ${number} should not have begun`, breach.reasons, breach.remedy);
+}
+
+/** A bench log, whole: nothing of it is believed before it has been decoded, judged and asked for at the gates again. */
+export async function recordRun(
+  db: Db,
+  unitNumber: number,
+  request: RunLog,
+  person: User,
+  now: Date,
+): Promise<{ id: string; verdict: Verdict }> {
+  const told = withTimesInUtc(request, now);
+  const repairs = told.steps.flatMap((step) => (step.kind === 'repair' ? [step.repair] : []));
+  const history = await openUnitHistory(db, unitNumber, donorsOf(repairs));
+  const { unit, sheet } = history;
+  if (!sheet)
+    throw new InvalidError([
+      { pointer: '', reason: `unit ${unitNumberText(unitNumber)} has no service sheet, so no script can run on it` },
+    ]);
+  const script = readScriptOf(told, sheet);
+  const faults = logFaults(told, script);
+  if (faults.length > 0) throw new InvalidError(faults);
+
+  const by = refOf(person);
+  const settled = settle(told, script, sheet, by);
+  refuseWhatIsNoText(settled.events, '/steps');
+  const place = placeOf(history, new Date(told.startedAt), now);
+  askGates(history, settled, script, sheet, place.before);
+
+  const steps = settled.log.steps.map((step) => (step.kind === 'capture' || step.kind === 'watch' ? { ...step, file: '' } : step));
+  const stored = await insertRun(db, { unitId: unit.id, by, log: { ...settled.log, steps }, verdict: settled.verdict, recordedAt: now });
+  if (!stored) throw new ConflictError('A run with this id is stored already.', 'Send the run again under the key it was first sent with.');
+  await storeCaptures(db, history, settled, by, now);
+  for (const [index, step] of settled.log.steps.entries()) {
+    if (step.kind !== 'repair') continue;
+    await takePartFrom(db, history, step.repair, {
+      by,
+      simulated: settled.log.rig.simulated,
+      now,
+      pointer: `/steps/${String(index)}/repair/partSource/fromUnit`,
+    });
+  }
+  await recordEvents(db, history, settled.events, place, now);
+  return { id: told.id, verdict: settled.verdict };
+}
+
+async function storeCaptures(db: Db, { unit }: UnitHistory, { log, captures }: SettledRun, by: PersonRef, now: Date): Promise<void> {
+  for (const { id, file, body } of captures) {
+    const at =
+      log.steps.find((step) => (step.kind === 'capture' || step.kind === 'watch') && step.captureId === id)?.endedAt ?? log.endedAt;
+    const simulated = log.rig.simulated || body.source === 'simulated';
+    const stored = await insertCapture(db, { id, unitId: unit.id, runId: log.id, by, at, simulated, body, file, recordedAt: now });
+    if (!stored) throw new ConflictError(`The capture ${id} of this run is stored already.`, 'Give each capture an id of its own.');
+  }
+}
