@@ -9,6 +9,7 @@ import { readConfig, type Config } from './config.js';
 import { holdDataFolder, makeDataFolder } from './data-folder.js';
 import { migrate, openDb, type Db } from './db.js';
 import { loadSigningKey } from './features/tags/signing-key.js';
+import { keepTidy } from './housekeeping.js';
 import { addressOf, closeServer, listen, makeSureThatPortIsFree } from './listen.js';
 import { packageRoot } from './package-root.js';
 import { startOwnCluster } from './postgres/own-cluster.js';
@@ -48,6 +49,7 @@ async function main(): Promise<void> {
   const server = await listen(createApp(deps), config.host, config.port);
   shutdown.add(() => closeServer(server));
   const address = addressOf(server);
+  shutdown.add(keepTidy(deps));
 
   if (config.demo) await showDemoBench(config, address, accounts);
   const firstAdminLink = config.demo ? undefined : await createFirstAdminLink(deps);

@@ -9,13 +9,20 @@ export const pointerTo = (path: readonly PropertyKey[], below = ''): string => b
 /** A request may be wrong in thousands of places; nobody reads more than these. */
 const FAULTS_AT_MOST = 50;
 
+/** zod says it in its own words where the schema has none; these two are what people meet. */
+function reasonOf(issue: z.core.$ZodIssue): string {
+  if (issue.code === 'invalid_type' && / received undefined$/.test(issue.message)) return 'is missing';
+  if (issue.code === 'invalid_value' && issue.message.startsWith('Invalid')) return `is none of: ${issue.values.map(String).join(', ')}`;
+  return issue.message;
+}
+
 /** What zod finds, as pointers and reasons. A member that is not known is named itself, and not only the object it stands in. */
 export function faultsOf(error: z.ZodError, below: string): Fault[] {
   return error.issues
     .flatMap((issue): Fault[] => {
       if (issue.code === 'unrecognized_keys')
         return issue.keys.map((key) => ({ pointer: pointerTo([...issue.path, key], below), reason: 'is not known here' }));
-      return [{ pointer: pointerTo(issue.path, below), reason: issue.message }];
+      return [{ pointer: pointerTo(issue.path, below), reason: reasonOf(issue) }];
     })
     .slice(0, FAULTS_AT_MOST);
 }
