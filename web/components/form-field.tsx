@@ -7,7 +7,21 @@ export interface FieldA11y {
 }
 
 /** A label, what to type, the field, and beside it what is wrong with it. */
-export function FormField({ id, label, hint, error, children, className = '' }: { id: string; label: string; hint?: ReactNode; error?: string | undefined; children: (a11y: FieldA11y) => ReactNode; className?: string }) {
+export function FormField({
+  id,
+  label,
+  hint,
+  error,
+  children,
+  className = '',
+}: {
+  id: string;
+  label: string;
+  hint?: ReactNode;
+  error?: string | undefined;
+  children: (a11y: FieldA11y) => ReactNode;
+  className?: string;
+}) {
   const describedBy = [hint === undefined ? '' : `${id}-hint`, error === undefined ? '' : `${id}-error`].filter(Boolean).join(' ');
   return (
     <div className={className}>
@@ -46,7 +60,9 @@ export function ErrorSummary({ faults, attempt }: { faults: readonly FieldFault[
   if (faults.length === 0) return null;
   return (
     <div ref={box} role="alert" tabIndex={-1} className="mb-5 border-2 border-fail bg-fail-ground px-4 py-3">
-      <p className="font-bold">{faults.length === 1 ? 'One thing is missing or wrong.' : `${faults.length} things are missing or wrong.`}</p>
+      <p className="font-bold">
+        {faults.length === 1 ? 'One thing is missing or wrong.' : `${faults.length} things are missing or wrong.`}
+      </p>
       <ul className="mt-1">
         {faults.map((fault) => (
           <li key={`${fault.id ?? ''} ${fault.reason}`}>

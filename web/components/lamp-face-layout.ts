@@ -43,7 +43,12 @@ export function describeFace(face: LampFace): string {
     return `${phase}: ${lit.length === 0 ? 'no other lamp' : listed(lit)} lit.`;
   });
   const outside = face.lamps.filter((lamp) => lamp.group === 'outside').map((lamp) => lamp.label);
-  return ['Lamp face.', ...phases, ...(outside.length > 0 ? [`${listed(outside)} ${outside.length === 1 ? 'is' : 'are'} not in the sum.`] : [])].join(' ');
+  return [
+    'Lamp face.',
+    ...phases,
+    ...(outside.length > 0 ? [`${listed(outside)} ${outside.length === 1 ? 'is' : 'are'} not in the sum.`] : []),
+  ].join(' ');
 }
 
-const listed = (words: readonly string[]): string => (words.length < 2 ? words.join('') : `${words.slice(0, -1).join(', ')} and ${words.at(-1)}`);
+const listed = (words: readonly string[]): string =>
+  words.length < 2 ? words.join('') : `${words.slice(0, -1).join(', ')} and ${words.at(-1)}`;

@@ -40,7 +40,14 @@ export function LampFaceFigure({ face, seen }: { face: LampFace; seen?: Readonly
   const height = FIRST_ROW_Y + ROW_PITCH * (face.rows.length - 1) + UNDER_LAST_ROW;
   return (
     <div className="face-figure">
-      <svg className="lamp-face" width={width} height={height} viewBox={`0 0 ${width} ${height}`} role="img" aria-label={describeFace(face)}>
+      <svg
+        className="lamp-face"
+        width={width}
+        height={height}
+        viewBox={`0 0 ${width} ${height}`}
+        role="img"
+        aria-label={describeFace(face)}
+      >
         <rect className="plate" x=".75" y=".75" width={width - 1.5} height={height - 1.5} rx="10" />
         {hairlineX.map((x) => (
           <path key={x} className="hairline" d={`M${x} 12V${height - 12}`} />
@@ -101,8 +108,25 @@ export function SmallLampFace({ face }: { face: LampFace }) {
   const width = x + SMALL_PITCH / 2;
   const rowY = (row: number): number => (SMALL_HEIGHT / (face.rows.length + 1)) * (row + 1) + (row - (face.rows.length - 1) / 2) * 3;
   return (
-    <svg width={width} height={SMALL_HEIGHT} viewBox={`0 0 ${width} ${SMALL_HEIGHT}`} role="img" aria-label={describeFace(face)} className="flex-none">
-      {face.lamps.map((lamp, index) => face.rows.map((_, at) => <SmallLamp key={`${lamp.id} ${at}`} x={lampX[index] ?? 0} y={rowY(at)} colour={lamp.colour} state={stateOf(face, at, index, undefined)} />))}
+    <svg
+      width={width}
+      height={SMALL_HEIGHT}
+      viewBox={`0 0 ${width} ${SMALL_HEIGHT}`}
+      role="img"
+      aria-label={describeFace(face)}
+      className="flex-none"
+    >
+      {face.lamps.map((lamp, index) =>
+        face.rows.map((_, at) => (
+          <SmallLamp
+            key={`${lamp.id} ${at}`}
+            x={lampX[index] ?? 0}
+            y={rowY(at)}
+            colour={lamp.colour}
+            state={stateOf(face, at, index, undefined)}
+          />
+        )),
+      )}
     </svg>
   );
 }

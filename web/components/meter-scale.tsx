@@ -33,7 +33,12 @@ function Wedge({ reading, place, xOf }: { reading: ScaleReading; place: 'before'
   const offLeft = x < 0;
   if (offLeft || x > WIDTH) {
     const middle = place === 'before' ? AXIS_Y - 13 : AXIS_Y + 13;
-    return <path className={`${place} ${KIND[judgement.verdict]}`} d={offLeft ? `M2 ${middle}l13 -8v16z` : `M${WIDTH - 2} ${middle}l-13 -8v16z`} />;
+    return (
+      <path
+        className={`${place} ${KIND[judgement.verdict]}`}
+        d={offLeft ? `M2 ${middle}l13 -8v16z` : `M${WIDTH - 2} ${middle}l-13 -8v16z`}
+      />
+    );
   }
   const from = Math.max(0, xOf(judgement.value - judgement.expandedUncertainty));
   const to = Math.min(WIDTH, xOf(judgement.value + judgement.expandedUncertainty));
@@ -46,7 +51,15 @@ function Wedge({ reading, place, xOf }: { reading: ScaleReading; place: 'before'
 }
 
 /** A check's limits as a scale, with the reading before the repair hanging from above and the one after standing below. */
-export function MeterScale({ title, before, after }: { title: string; before?: ScaleReading | undefined; after?: ScaleReading | undefined }) {
+export function MeterScale({
+  title,
+  before,
+  after,
+}: {
+  title: string;
+  before?: ScaleReading | undefined;
+  after?: ScaleReading | undefined;
+}) {
   const judged = after ?? before;
   if (!judged) return null;
   const { low, high, unit, guardBand } = judged.judgement;
@@ -56,11 +69,21 @@ export function MeterScale({ title, before, after }: { title: string; before?: S
   const bandTo = high === undefined ? WIDTH : xOf(high);
   const guardPx = Math.max(LEAST_GUARD_PX, xOf(from + 2 * guardBand));
   const limits = [low, high].filter((limit) => limit !== undefined);
-  const said = ([['before', before], ['after', after]] as const).flatMap(([place, reading]) =>
+  const said = (
+    [
+      ['before', before],
+      ['after', after],
+    ] as const
+  ).flatMap(([place, reading]) =>
     reading ? [`${place} ${formatReading(reading.judgement.value, reading.resolution, unit)}, ${reading.judgement.verdict}`] : [],
   );
   return (
-    <svg className="meter-scale" viewBox={`0 0 ${WIDTH} ${HEIGHT}`} role="img" aria-label={`${title}, ${formatLimits(low, high, unit, judged.resolution)}: ${said.join('; ')}`}>
+    <svg
+      className="meter-scale"
+      viewBox={`0 0 ${WIDTH} ${HEIGHT}`}
+      role="img"
+      aria-label={`${title}, ${formatLimits(low, high, unit, judged.resolution)}: ${said.join('; ')}`}
+    >
       <path className="axis" d={`M0 ${AXIS_Y}H${WIDTH}`} />
       <rect className="inside" x={bandFrom} y={AXIS_Y - 6} width={bandTo - bandFrom} height="12" />
       {limits.map((limit) => (

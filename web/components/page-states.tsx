@@ -26,11 +26,20 @@ export function Pending({ what }: { what: string }) {
 export function explain(error: Error): { happened: string; remedy: string } {
   if (error instanceof ApiProblem) {
     if (error.status === 403) return { happened: error.message, remedy: error.remedy ?? 'Ask somebody whose role allows it.' };
-    if (error.status === 404) return { happened: error.message, remedy: error.remedy ?? 'Look at the number in the address, or find the unit in the list.' };
+    if (error.status === 404)
+      return { happened: error.message, remedy: error.remedy ?? 'Look at the number in the address, or find the unit in the list.' };
     if (error.status === 429) return { happened: error.message, remedy: error.remedy ?? 'Wait a minute, then try again.' };
-    return { happened: error.message, remedy: error.remedy ?? (error.status >= 500 ? 'Nothing was stored. Try again; if it happens again, tell the admin.' : 'Change it and try again.') };
+    return {
+      happened: error.message,
+      remedy:
+        error.remedy ??
+        (error.status >= 500 ? 'Nothing was stored. Try again; if it happens again, tell the admin.' : 'Change it and try again.'),
+    };
   }
-  return { happened: error.message || 'The server does not answer.', remedy: 'Look at the network and whether the server runs, then try again. What you typed is still here.' };
+  return {
+    happened: error.message || 'The server does not answer.',
+    remedy: 'Look at the network and whether the server runs, then try again. What you typed is still here.',
+  };
 }
 
 /** A failure beside the thing that failed. */

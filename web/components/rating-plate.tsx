@@ -2,8 +2,12 @@ import { Fragment } from 'react';
 import type { RatingPlate as Plate } from '../../shared/api/units.js';
 
 const rows = (plate: Plate, control: string | undefined): [string, string][] => {
-  const supply = [plate.volts === undefined ? '' : `${plate.volts} V`, plate.hertz === undefined ? '' : `${plate.hertz} Hz`].filter(Boolean).join(', ');
-  const power = [plate.watts === undefined ? '' : `${plate.watts} W`, plate.amperes === undefined ? '' : `${plate.amperes} A`].filter(Boolean).join(', ');
+  const supply = [plate.volts === undefined ? '' : `${plate.volts} V`, plate.hertz === undefined ? '' : `${plate.hertz} Hz`]
+    .filter(Boolean)
+    .join(', ');
+  const power = [plate.watts === undefined ? '' : `${plate.watts} W`, plate.amperes === undefined ? '' : `${plate.amperes} A`]
+    .filter(Boolean)
+    .join(', ');
   return (
     [
       ['serial', plate.serial ?? (plate.plateUnreadable ? 'unreadable' : 'not on the plate')],

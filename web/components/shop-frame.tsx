@@ -20,7 +20,12 @@ export function Wordmark() {
 export function ThemeSwitch() {
   const theme = useTheme();
   return (
-    <button type="button" aria-pressed={theme === 'night'} className="min-h-11 cursor-pointer px-1 underline underline-offset-4" onClick={() => pickTheme(theme === 'night' ? 'day' : 'night')}>
+    <button
+      type="button"
+      aria-pressed={theme === 'night'}
+      className="min-h-11 cursor-pointer px-1 underline underline-offset-4"
+      onClick={() => pickTheme(theme === 'night' ? 'day' : 'night')}
+    >
       {theme === 'night' ? 'Day' : 'Night'} <span className="sr-only">bench colours</span>
     </button>
   );
@@ -41,13 +46,30 @@ function FindBox() {
       <label className="lab" htmlFor="find-in-header">
         Find
       </label>
-      <input id="find-in-header" name="find" type="search" maxLength={100} className="field min-h-11! w-56 py-1!" placeholder="number or serial" />
+      <input
+        id="find-in-header"
+        name="find"
+        type="search"
+        maxLength={100}
+        className="field min-h-11! w-56 py-1!"
+        placeholder="number or serial"
+      />
     </form>
   );
 }
 
 /** Header, landmarks and skip link of every page that somebody signed in for. Without `user` only the mark and the theme. */
-export function ShopFrame({ user, onSignOut, find = false, children }: { user?: User | undefined; onSignOut?: () => void; find?: boolean; children?: ReactNode }) {
+export function ShopFrame({
+  user,
+  onSignOut,
+  find = false,
+  children,
+}: {
+  user?: User | undefined;
+  onSignOut?: () => void;
+  find?: boolean;
+  children?: ReactNode;
+}) {
   return (
     <>
       <MarkDefinitions />

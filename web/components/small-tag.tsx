@@ -12,8 +12,20 @@ export function SmallTag({ look, met, total }: { look: TagLook; met: number; tot
   const pitch = (BARS_END_X - FIRST_BAR_X) / Math.max(1, total);
   return (
     <svg width="72" height="30" viewBox="0 0 72 30" aria-hidden="true" className="flex-none">
-      <path d={look === 'sold' ? STUB : OUTLINE} fill={look === 'ready' ? 'var(--ink)' : look === 'sold' ? 'none' : 'var(--sheet)'} stroke="var(--ink)" strokeWidth="1.75" />
-      <circle cx="10" cy="15" r="3.4" fill={look === 'ready' ? 'var(--enamel)' : 'none'} stroke="var(--ink)" strokeWidth={look === 'ready' ? 0 : 1.5} />
+      <path
+        d={look === 'sold' ? STUB : OUTLINE}
+        fill={look === 'ready' ? 'var(--ink)' : look === 'sold' ? 'none' : 'var(--sheet)'}
+        stroke="var(--ink)"
+        strokeWidth="1.75"
+      />
+      <circle
+        cx="10"
+        cy="15"
+        r="3.4"
+        fill={look === 'ready' ? 'var(--enamel)' : 'none'}
+        stroke="var(--ink)"
+        strokeWidth={look === 'ready' ? 0 : 1.5}
+      />
       {look === 'ready' && (
         <text x="44" y="20" textAnchor="middle" fontSize="14" fontWeight="700" className="fill-sheet!">
           ready

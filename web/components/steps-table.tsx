@@ -37,7 +37,13 @@ export function StepsTable({ lines, caption }: { lines: readonly StepLine[]; cap
               <td>{line.kind}</td>
               <td>{line.title}</td>
               <td>{line.value}</td>
-              <td>{line.verdict === undefined ? <span className="text-ink2 wide:pl-[25px]">{line.said}</span> : <VerdictWord verdict={line.verdict} />}</td>
+              <td>
+                {line.verdict === undefined ? (
+                  <span className="text-ink2 wide:pl-[25px]">{line.said}</span>
+                ) : (
+                  <VerdictWord verdict={line.verdict} />
+                )}
+              </td>
             </tr>
             {line.note !== undefined && (
               <tr className="steps-note">

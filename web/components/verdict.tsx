@@ -15,7 +15,11 @@ const SHAPES: Record<MarkKind, ReactNode> = {
 /** A verdict's mark alone: only where a rule's own name is the word; `label` is for the screen reader. */
 export function VerdictMark({ kind, label }: { kind: MarkKind; label?: string }) {
   return (
-    <svg className={`verdict-mark is-${kind}`} viewBox="0 0 20 20" {...(label === undefined ? { 'aria-hidden': true } : { role: 'img', 'aria-label': label })}>
+    <svg
+      className={`verdict-mark is-${kind}`}
+      viewBox="0 0 20 20"
+      {...(label === undefined ? { 'aria-hidden': true } : { role: 'img', 'aria-label': label })}
+    >
       {SHAPES[kind]}
     </svg>
   );

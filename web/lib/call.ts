@@ -1,5 +1,14 @@
 import { problemSchema } from '../../shared/api/problem.js';
-import { routes, routeUrl, type Answer, type RequestBody, type RequestParams, type RequestQuery, type Route, type RouteName } from '../../shared/api/routes.js';
+import {
+  routes,
+  routeUrl,
+  type Answer,
+  type RequestBody,
+  type RequestParams,
+  type RequestQuery,
+  type Route,
+  type RouteName,
+} from '../../shared/api/routes.js';
 import { ApiProblem, UnreachableError } from './api-problem.js';
 
 type Named<K extends string, T> = T extends undefined ? unknown : Record<K, T>;

@@ -14,7 +14,12 @@ import { StripChart } from '../features/captures/components/strip-chart.js';
 import { formatDayTime, plural, unitNumber } from '../lib/format.js';
 import { paths } from '../paths.js';
 
-const SOURCES: Record<CapturePageData['capture']['source'], string> = { probe: 'light probe', keys: 'by keys', clip: 'from a clip', simulated: 'simulated' };
+const SOURCES: Record<CapturePageData['capture']['source'], string> = {
+  probe: 'light probe',
+  keys: 'by keys',
+  clip: 'from a clip',
+  simulated: 'simulated',
+};
 
 export function CapturePage() {
   const { id = '' } = useParams();

@@ -19,7 +19,10 @@ export function FirstAdminPage() {
           </Link>
         </div>
       ) : token === '' ? (
-        <p className="mt-3">This page opens with the one-time link that the terminal printed at the first start. Copy the whole link, with what stands behind the question mark.</p>
+        <p className="mt-3">
+          This page opens with the one-time link that the terminal printed at the first start. Copy the whole link, with what stands behind
+          the question mark.
+        </p>
       ) : (
         <>
           <p className="mt-1 mb-5">The admin adds the people of the shop, and keeps its settings and backups. Admins sign nothing off.</p>

@@ -29,11 +29,21 @@ export function RunPage() {
             {page.script.prove ? '. A proof run.' : '.'}
           </p>
           <p className="lab mb-4 text-[14px]!">
-            {[formatDayTime(page.startedAt), page.by.name, `rig ${page.rig.name}${page.rig.simulated ? ', simulated' : ''}`, formatDuration(page.startedAt, page.endedAt), plural(page.steps.length, 'step')].join('; ')}
+            {[
+              formatDayTime(page.startedAt),
+              page.by.name,
+              `rig ${page.rig.name}${page.rig.simulated ? ', simulated' : ''}`,
+              formatDuration(page.startedAt, page.endedAt),
+              plural(page.steps.length, 'step'),
+            ].join('; ')}
           </p>
-          {page.rig.simulated && <p className="mb-3">The instruments were simulated: these results count in the demo shop only, and its tags print SAMPLE.</p>}
+          {page.rig.simulated && (
+            <p className="mb-3">The instruments were simulated: these results count in the demo shop only, and its tags print SAMPLE.</p>
+          )}
           {page.interrupted && <p className="mb-3 font-bold">The run was stopped before its last step.</p>}
-          <div className="border-t-2 border-ink">{page.steps.length === 0 ? <p className="py-4">The run was stopped before its first step.</p> : <RunLogTable page={page} />}</div>
+          <div className="border-t-2 border-ink">
+            {page.steps.length === 0 ? <p className="py-4">The run was stopped before its first step.</p> : <RunLogTable page={page} />}
+          </div>
           <details className="mt-4">
             <summary className="flex min-h-11 cursor-pointer items-center text-rim underline">The script as it was run</summary>
             <pre className="overflow-x-auto bg-frit p-4 font-mono text-[14px]" tabIndex={0}>

@@ -12,7 +12,8 @@ export function SignInPage() {
       <p className="mt-1 mb-5 text-ink2">Buyers need no account: scan the code on the tag.</p>
       <SignInForm onSignedIn={() => void navigate(safeBack(query.get('back')), { replace: true })} />
       <p className="mt-6 border-t border-line pt-4 text-[16px]">
-        In the demo shop the accounts, one a role, are printed in the terminal that started Refettle, and kept in <span className="num">demo-accounts.json</span> in its data folder.
+        In the demo shop the accounts, one a role, are printed in the terminal that started Refettle, and kept in{' '}
+        <span className="num">demo-accounts.json</span> in its data folder.
       </p>
     </div>
   );

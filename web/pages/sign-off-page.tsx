@@ -34,7 +34,11 @@ function SignOff({ number }: { number: number }) {
 }
 
 /** Why this person cannot sign now; undefined when nothing is in the way. */
-function obstacle(page: UnitPage, user: { id: string; role: 'technician' | 'lead' | 'sales' | 'admin' }, fourEyes: boolean): string | undefined {
+function obstacle(
+  page: UnitPage,
+  user: { id: string; role: 'technician' | 'lead' | 'sales' | 'admin' },
+  fourEyes: boolean,
+): string | undefined {
   if (page.tag?.standing === 'stands') return `Tag ${page.tag.number} stands already.`;
   if (!mayDo(user.role, 'unit.sign-off')) return `A lead signs off. You are signed in as ${user.role}.`;
   if (!page.readiness.readyToSign) return 'Not every rule is met yet. What is missing stands above, with the way to get it.';
@@ -69,7 +73,8 @@ function SignOffInFull({ page }: { page: UnitPage }) {
         </Link>
       </PageHeading>
       <p className="mb-5">
-        {page.unit.plate.maker} {page.unit.plate.model}, {page.unit.appliance}. Your word that it is ready: look at what the rules looked at.
+        {page.unit.plate.maker} {page.unit.plate.model}, {page.unit.appliance}. Your word that it is ready: look at what the rules looked
+        at.
       </p>
       <section aria-labelledby="rules" className="mb-7 max-w-[900px]">
         <h2 id="rules" className="section-heading">
@@ -77,16 +82,25 @@ function SignOffInFull({ page }: { page: UnitPage }) {
         </h2>
         <ul>
           {rules.map((rule) => (
-            <li key={rule.id} className="grid grid-cols-[28px_1fr] items-center gap-x-2 border-b border-line py-2 wide:grid-cols-[28px_1fr_1fr]">
+            <li
+              key={rule.id}
+              className="grid grid-cols-[28px_1fr] items-center gap-x-2 border-b border-line py-2 wide:grid-cols-[28px_1fr_1fr]"
+            >
               <VerdictMark kind={MARK_OF[rule.state]} label={rule.state} />
               <b>{rule.title}</b>
-              <span className="lab col-start-2 text-[14px]! wide:col-start-3">{rule.id === 'four-eyes' && rule.state === 'missing' ? 'your signature' : rule.evidence}</span>
-              {rule.state !== 'met' && rule.id !== 'four-eyes' && rule.how !== undefined && <p className="col-start-2 wide:col-span-2">{rule.how}</p>}
+              <span className="lab col-start-2 text-[14px]! wide:col-start-3">
+                {rule.id === 'four-eyes' && rule.state === 'missing' ? 'your signature' : rule.evidence}
+              </span>
+              {rule.state !== 'met' && rule.id !== 'four-eyes' && rule.how !== undefined && (
+                <p className="col-start-2 wide:col-span-2">{rule.how}</p>
+              )}
             </li>
           ))}
         </ul>
         <p className="mt-3">
-          {shop.fourEyes ? `Four eyes: nobody who worked on it since it was opened may sign. ${hands.length > 0 ? `${hands.join(', ')} worked on it.` : 'Nobody worked on it.'}` : 'Four eyes is switched off in this shop; the tag says so.'}
+          {shop.fourEyes
+            ? `Four eyes: nobody who worked on it since it was opened may sign. ${hands.length > 0 ? `${hands.join(', ')} worked on it.` : 'Nobody worked on it.'}`
+            : 'Four eyes is switched off in this shop; the tag says so.'}
           {shop.demo && ' Demo shop: the tag prints SAMPLE.'}
         </p>
       </section>

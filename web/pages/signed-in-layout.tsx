@@ -17,7 +17,15 @@ export function SignedInLayout() {
 
   if (me.error instanceof ApiProblem && me.error.status === 401) return <Navigate to={paths.signIn(`${pathname}${search}`)} replace />;
   if (me.data === undefined) {
-    return <ShopFrame>{me.isError ? <PageError error={me.error} retry={() => void me.refetch()} what="who is signed in" /> : <Pending what="who is signed in" />}</ShopFrame>;
+    return (
+      <ShopFrame>
+        {me.isError ? (
+          <PageError error={me.error} retry={() => void me.refetch()} what="who is signed in" />
+        ) : (
+          <Pending what="who is signed in" />
+        )}
+      </ShopFrame>
+    );
   }
   const signOut = (): void => endSession.mutate(undefined, { onSuccess: () => void navigate(paths.signIn(), { replace: true }) });
   return (

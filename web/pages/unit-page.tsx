@@ -80,7 +80,12 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
   const mayRepair = mayDo(user.role, 'repair.record');
   const maySign = mayDo(user.role, 'unit.sign-off') && readiness.readyToSign && !stands;
   const repairing = mayRepair && query.get('do') === 'repair';
-  const facts: UnitFacts = { unit: { number: unit.number, protectionClass: unit.plate.protectionClass, licensedOnly: unit.licensedOnly }, sheet: undefined, events: page.events, shop };
+  const facts: UnitFacts = {
+    unit: { number: unit.number, protectionClass: unit.plate.protectionClass, licensedOnly: unit.licensedOnly },
+    sheet: undefined,
+    events: page.events,
+    shop,
+  };
   const title = `No. ${unitNumber(unit.number)}`;
   const actionFor = (rule: RuleResult) =>
     rule.id === 'four-eyes' && maySign ? (
@@ -93,9 +98,17 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
   return (
     <>
       <div className="unit-head">
-        <HangingTag page={page} heading={<PageHeading title={title} />} actionFor={actionFor} complaint={<Complaint page={page} signedIn={signedIn} />} />
+        <HangingTag
+          page={page}
+          heading={<PageHeading title={title} />}
+          actionFor={actionFor}
+          complaint={<Complaint page={page} signedIn={signedIn} />}
+        />
         <aside aria-label="Rating plate">
-          <RatingPlate plate={unit.plate} control={unit.family === undefined ? 'no service sheet' : (sheet.data?.sheet.title ?? unit.family)} />
+          <RatingPlate
+            plate={unit.plate}
+            control={unit.family === undefined ? 'no service sheet' : (sheet.data?.sheet.title ?? unit.family)}
+          />
         </aside>
       </div>
       <GateBanner gate={energising} number={unit.number} mayOverride={mayDo(user.role, 'override.record')} />
@@ -111,10 +124,19 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
           </button>
         )}
         {!stands && !readiness.readyToSign && (
-          <p className="self-center text-ink2">A lead signs off when every rule but four eyes is met. {plural(readiness.total - readiness.met, 'rule')} to go.</p>
+          <p className="self-center text-ink2">
+            A lead signs off when every rule but four eyes is met. {plural(readiness.total - readiness.met, 'rule')} to go.
+          </p>
         )}
       </div>
-      {repairing && <RepairForm number={unit.number} parts={sheet.data?.sheet.parts ?? []} currency={shop.currency} onDone={() => setRepairing(false)} />}
+      {repairing && (
+        <RepairForm
+          number={unit.number}
+          parts={sheet.data?.sheet.parts ?? []}
+          currency={shop.currency}
+          onDone={() => setRepairing(false)}
+        />
+      )}
       <div className="mt-7 grid items-start gap-x-11 gap-y-7 min-[1100px]:grid-cols-[minmax(0,1fr)_minmax(0,440px)]">
         <section aria-labelledby="happened" className="min-w-0">
           <h2 id="happened" className="section-heading">

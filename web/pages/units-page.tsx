@@ -53,7 +53,15 @@ export function UnitsPage() {
           <label htmlFor="find" className="lab">
             Find
           </label>
-          <input id="find" type="search" maxLength={100} className="field wide:w-[420px]" placeholder="number, serial, maker or model" value={find} onChange={(event) => setFind(event.target.value)} />
+          <input
+            id="find"
+            type="search"
+            maxLength={100}
+            className="field wide:w-[420px]"
+            placeholder="number, serial, maker or model"
+            value={find}
+            onChange={(event) => setFind(event.target.value)}
+          />
         </div>
         {mayTakeIn && (
           <Link className="button ml-auto wide:ml-0" to={paths.takeIn()}>
@@ -63,7 +71,11 @@ export function UnitsPage() {
       </div>
       <nav aria-label="Stage" className="word-tabs mt-4 overflow-x-auto border-t-2 border-b border-t-ink border-b-line">
         {[undefined, ...STAGES_IN_ORDER].map((one) => (
-          <Link key={one ?? 'all'} to={paths.units({ stage: one, find: query.get('find') ?? undefined })} {...(one === stage ? { 'aria-current': 'true' as const } : {})}>
+          <Link
+            key={one ?? 'all'}
+            to={paths.units({ stage: one, find: query.get('find') ?? undefined })}
+            {...(one === stage ? { 'aria-current': 'true' as const } : {})}
+          >
             {one ?? 'every stage'}
           </Link>
         ))}
@@ -77,17 +89,26 @@ export function UnitsPage() {
         <div className="py-6">
           {filtered ? (
             <p>
-              Nothing matches. Look for fewer signs, or at{' '}
-              <Link to={paths.units()}>every unit</Link>.
+              Nothing matches. Look for fewer signs, or at <Link to={paths.units()}>every unit</Link>.
             </p>
           ) : (
-            <p>No unit is on the books yet. {mayTakeIn ? 'Take in the first one: its rating plate and what it is said to do.' : 'A technician or a lead takes in the first one.'}</p>
+            <p>
+              No unit is on the books yet.{' '}
+              {mayTakeIn
+                ? 'Take in the first one: its rating plate and what it is said to do.'
+                : 'A technician or a lead takes in the first one.'}
+            </p>
           )}
         </div>
       )}
       {rows.length > 0 && <UnitsTable rows={rows} currency={shop.currency} nowMs={Date.now()} />}
       {units.hasNextPage && (
-        <button type="button" className="button button-plain mt-4" disabled={units.isFetchingNextPage} onClick={() => void units.fetchNextPage()}>
+        <button
+          type="button"
+          className="button button-plain mt-4"
+          disabled={units.isFetchingNextPage}
+          onClick={() => void units.fetchNextPage()}
+        >
           {units.isFetchingNextPage ? 'Fetching more' : 'More units'}
         </button>
       )}

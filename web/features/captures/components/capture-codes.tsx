@@ -5,7 +5,17 @@ import { LampFaceFigure } from '../../../components/lamp-face.js';
 import { oneIn, seenOutside } from './capture-words.js';
 
 /** Each code of a capture: its face with the sums, how often and how surely it was seen, and what the sheet says to it. */
-export function CaptureCodes({ answer, view, sheet, faces }: { answer: DecodeAnswer; view: DecodeView; sheet: Sheet; faces: Readonly<Record<string, LampFace>> }) {
+export function CaptureCodes({
+  answer,
+  view,
+  sheet,
+  faces,
+}: {
+  answer: DecodeAnswer;
+  view: DecodeView;
+  sheet: Sheet;
+  faces: Readonly<Record<string, LampFace>>;
+}) {
   const stretches = answer.segments.filter((segment) => segment.kind === 'code');
   const unreadable = answer.segments.filter((segment) => segment.kind === 'unreadable');
   return (
@@ -27,7 +37,8 @@ export function CaptureCodes({ answer, view, sheet, faces }: { answer: DecodeAns
                     Seen <b>{stretch.repeats} times</b>,{' '}
                   </>
                 )}
-                confidence <b className="num">{stretch.confidence.toFixed(4)}</b>: wrong <b className="whitespace-nowrap">{oneIn(stretch.confidence)}</b>.
+                confidence <b className="num">{stretch.confidence.toFixed(4)}</b>: wrong{' '}
+                <b className="whitespace-nowrap">{oneIn(stretch.confidence)}</b>.
               </p>
               {fault?.first !== undefined && <p className="text-[16px] text-ink2">The sheet: {fault.first}</p>}
               {fault?.suspects !== undefined && <p className="text-[16px] text-ink2">Suspected parts: {fault.suspects.join(', ')}.</p>}
@@ -50,7 +61,9 @@ export function CaptureCodes({ answer, view, sheet, faces }: { answer: DecodeAns
             {stretch.candidates.length > 0 && (
               <p className="text-ink2">
                 Likeliest, but not stated:{' '}
-                <span className="num whitespace-normal!">{stretch.candidates.map(({ code, confidence }) => `${code} ${confidence.toFixed(4)}`).join(', ')}</span>
+                <span className="num whitespace-normal!">
+                  {stretch.candidates.map(({ code, confidence }) => `${code} ${confidence.toFixed(4)}`).join(', ')}
+                </span>
               </p>
             )}
           </div>

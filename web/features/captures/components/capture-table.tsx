@@ -16,7 +16,14 @@ function rowOf(segment: Segment): Row {
     case 'dark':
       return { fromS, toS, what: 'dark', more: '' };
     case 'code':
-      return { fromS, toS, what: `code ${segment.code}`, more: [segment.repeats === undefined ? '' : `${segment.repeats} times`, `confidence ${segment.confidence.toFixed(4)}`].filter(Boolean).join(', ') };
+      return {
+        fromS,
+        toS,
+        what: `code ${segment.code}`,
+        more: [segment.repeats === undefined ? '' : `${segment.repeats} times`, `confidence ${segment.confidence.toFixed(4)}`]
+          .filter(Boolean)
+          .join(', '),
+      };
     case 'unreadable':
       return { fromS, toS, what: 'unreadable', more: segment.reason };
   }
@@ -26,7 +33,12 @@ function rowOf(segment: Segment): Row {
 export function CaptureTable({ answer, capture }: { answer: DecodeAnswer; capture: Capture }) {
   const rows: Row[] = [
     ...answer.segments.map(rowOf),
-    ...capture.marks.map(({ atUs, label }) => ({ fromS: atUs / 1e6, toS: undefined, what: `mark ${label}`, more: label === 'next' ? 'the next code was brought up' : '' })),
+    ...capture.marks.map(({ atUs, label }) => ({
+      fromS: atUs / 1e6,
+      toS: undefined,
+      what: `mark ${label}`,
+      more: label === 'next' ? 'the next code was brought up' : '',
+    })),
     ...capture.gaps.map(({ atUs, lost }) => ({ fromS: atUs / 1e6, toS: undefined, what: 'lost', more: `${lost} probe lines` })),
   ].sort((a, b) => a.fromS - b.fromS);
   return (

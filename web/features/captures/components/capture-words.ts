@@ -21,7 +21,9 @@ export function aboutTheLamps(answer: DecodeAnswer, view: DecodeView, sheet: She
       : ready
         ? 'All lamps of the ready blink lit together: none of them is burnt out.'
         : 'No ready blink in this capture: a burnt-out lamp would not show.',
-    ...weak.map((lamp) => `${labelOf(lamp.id)} is weak, ${Math.round((lamp.litFraction ?? 0) * 100)} % of full scale: clean the sensor or move it.`),
+    ...weak.map(
+      (lamp) => `${labelOf(lamp.id)} is weak, ${Math.round((lamp.litFraction ?? 0) * 100)} % of full scale: clean the sensor or move it.`,
+    ),
     ...(answer.lost > 0 ? [`${answer.lost} probe lines were lost.`] : []),
     ...(cut ? ['The capture was cut short: it has no end.'] : []),
     ...answer.warnings.map((warning) => `${warning.charAt(0).toUpperCase()}${warning.slice(1)}.`),
@@ -33,7 +35,10 @@ export function seenOutside(view: DecodeView, stretch: { fromS: number; toS: num
   const length = stretch.toS - stretch.fromS;
   return Object.fromEntries(
     view.lamps.map((lamp) => {
-      const litS = lamp.lit.reduce((sum, { fromS, toS }) => sum + Math.max(0, Math.min(toS, stretch.toS) - Math.max(fromS, stretch.fromS)), 0);
+      const litS = lamp.lit.reduce(
+        (sum, { fromS, toS }) => sum + Math.max(0, Math.min(toS, stretch.toS) - Math.max(fromS, stretch.fromS)),
+        0,
+      );
       return [lamp.id, litS > length / 2];
     }),
   );

@@ -37,11 +37,33 @@ function Seconds({ strip }: { strip: Strip }) {
     <>
       <rect className="paper" width={strip.width} height={bottom} />
       <path className="paper-edge" d={`M0 .5H${strip.width}M0 ${bottom - 0.5}H${strip.width}`} />
-      <path className="second" d={range(whole).filter((second) => second % 5 !== 0).map((second) => line(second, 20)).join('')} />
-      <path className="fifth" d={range(Math.floor(whole / 5)).map((fifth) => line((fifth + 1) * 5, 16)).join('')} />
-      <path className="slots" d={range(whole).flatMap((second) => [7, bottom - 8].map((y) => `M${strip.xOf(second + 0.5) - 4} ${y}h8`)).join('')} />
+      <path
+        className="second"
+        d={range(whole)
+          .filter((second) => second % 5 !== 0)
+          .map((second) => line(second, 20))
+          .join('')}
+      />
+      <path
+        className="fifth"
+        d={range(Math.floor(whole / 5))
+          .map((fifth) => line((fifth + 1) * 5, 16))
+          .join('')}
+      />
+      <path
+        className="slots"
+        d={range(whole)
+          .flatMap((second) => [7, bottom - 8].map((y) => `M${strip.xOf(second + 0.5) - 4} ${y}h8`))
+          .join('')}
+      />
       {range(Math.floor(strip.durationS / 5) + 1).map((fifth) => (
-        <text key={fifth} className="quiet" x={strip.xOf(fifth * 5)} y={bottom + 14} textAnchor={fifth === 0 ? 'start' : strip.width - strip.xOf(fifth * 5) < 24 ? 'end' : 'middle'}>
+        <text
+          key={fifth}
+          className="quiet"
+          x={strip.xOf(fifth * 5)}
+          y={bottom + 14}
+          textAnchor={fifth === 0 ? 'start' : strip.width - strip.xOf(fifth * 5) < 24 ? 'end' : 'middle'}
+        >
           {fifth * 5}
           {fifth === Math.floor(strip.durationS / 5) ? ' s' : ''}
         </text>
@@ -50,16 +72,34 @@ function Seconds({ strip }: { strip: Strip }) {
   );
 }
 
-function Lane({ lane, capture, view, strip, label }: { lane: Strip['lanes'][number]; capture: Capture; view: DecodeView; strip: Strip; label: boolean }) {
+function Lane({
+  lane,
+  capture,
+  view,
+  strip,
+  label,
+}: {
+  lane: Strip['lanes'][number];
+  capture: Capture;
+  view: DecodeView;
+  strip: Strip;
+  label: boolean;
+}) {
   const seen = view.lamps.find((lamp) => lamp.id === lane.lamp.id);
   const path = useMemo(() => tracePath(capture, strip, lane), [capture, strip, lane]);
   const byKeys = capture.header.source === 'keys';
   const topOfLit = strip.yOf(lane.floorY, seen?.litLevel ?? capture.header.scale.max);
-  const thresholdY = seen?.threshold === null || seen?.threshold === undefined || byKeys ? undefined : strip.yOf(lane.floorY, seen.threshold);
+  const thresholdY =
+    seen?.threshold === null || seen?.threshold === undefined || byKeys ? undefined : strip.yOf(lane.floorY, seen.threshold);
   return (
     <g className={`lamp-${lane.lamp.colour}`}>
       <path className="lane-floor" d={`M0 ${lane.floorY + 3}H${strip.width}`} />
-      <path className="lit" d={(seen?.lit ?? []).map(({ fromS, toS }) => `M${strip.xOf(fromS)} ${lane.floorY}V${topOfLit}H${strip.xOf(toS)}V${lane.floorY}z`).join('')} />
+      <path
+        className="lit"
+        d={(seen?.lit ?? [])
+          .map(({ fromS, toS }) => `M${strip.xOf(fromS)} ${lane.floorY}V${topOfLit}H${strip.xOf(toS)}V${lane.floorY}z`)
+          .join('')}
+      />
       {thresholdY !== undefined && <path className="threshold" d={`M0 ${thresholdY}H${strip.width}`} />}
       <path className="trace" d={path} />
       {label && thresholdY !== undefined && (
@@ -95,7 +135,8 @@ function labelledLamp(view: DecodeView, durationS: number): string | undefined {
 
 function Marks({ capture, strip }: { capture: Capture; strip: Strip }) {
   const lanesBottom = strip.paperBottom - 22;
-  const lostPx = (lost: number): number => Math.max(LEAST_LOST_BAND_PX, capture.header.sampleRateHz ? strip.xOf(lost / capture.header.sampleRateHz) : 0);
+  const lostPx = (lost: number): number =>
+    Math.max(LEAST_LOST_BAND_PX, capture.header.sampleRateHz ? strip.xOf(lost / capture.header.sampleRateHz) : 0);
   return (
     <>
       {capture.gaps.map(({ atUs, lost }, index) => {
@@ -132,7 +173,12 @@ export function StripChart({ capture, sheet, answer, view }: StripChartProps) {
   const weights: Readonly<Record<string, number>> = sheet.coding.kind === 'weighted-phases' ? sheet.coding.weights : {};
   const labelled = labelledLamp(view, strip.durationS);
   const lanes = strip.lanes.map((lane) => lane.lamp.label).join(', ');
-  const told = [`Strip chart, ${answer.durationS.toFixed(1)} seconds. Lanes: ${lanes}.`, ...capture.marks.map((mark) => `Mark “${mark.label}” at ${(mark.atUs / MICROSECONDS).toFixed(1)} s.`), ...answer.segments.map(describe), 'The same stands in a table below.'].join(' ');
+  const told = [
+    `Strip chart, ${answer.durationS.toFixed(1)} seconds. Lanes: ${lanes}.`,
+    ...capture.marks.map((mark) => `Mark “${mark.label}” at ${(mark.atUs / MICROSECONDS).toFixed(1)} s.`),
+    ...answer.segments.map(describe),
+    'The same stands in a table below.',
+  ].join(' ');
   return (
     <div className="strip-scroll" tabIndex={0} role="region" aria-label="Strip chart">
       <svg className="strip strip-names" width={NAMES_WIDTH} height={strip.height} aria-hidden="true">

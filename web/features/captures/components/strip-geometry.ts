@@ -33,8 +33,16 @@ export interface Strip {
 /** Where things stand on the strip-chart paper of a capture: a lane for each lamp of the sheet, in panel order. */
 export function stripOf(capture: Capture, sheet: Sheet, durationS: number): Strip {
   const seconds = Math.max(1, durationS);
-  const pxPerSecond = Math.min(Math.max(PAPER_WIDTH / seconds, LEAST_PX_PER_SECOND), MOST_PX_PER_SECOND, Math.max(1, WIDEST_PAPER / seconds));
-  const lanes = sheet.lamps.map((lamp, index) => ({ lamp, column: capture.header.lamps.indexOf(lamp.id), floorY: FIRST_FLOOR_Y + LANE_HEIGHT * index }));
+  const pxPerSecond = Math.min(
+    Math.max(PAPER_WIDTH / seconds, LEAST_PX_PER_SECOND),
+    MOST_PX_PER_SECOND,
+    Math.max(1, WIDEST_PAPER / seconds),
+  );
+  const lanes = sheet.lamps.map((lamp, index) => ({
+    lamp,
+    column: capture.header.lamps.indexOf(lamp.id),
+    floorY: FIRST_FLOOR_Y + LANE_HEIGHT * index,
+  }));
   const paperBottom = FIRST_FLOOR_Y + UNDER_FLOOR + LANE_HEIGHT * (lanes.length - 1) + PAPER_BELOW_LANES;
   const { max } = capture.header.scale;
   return {

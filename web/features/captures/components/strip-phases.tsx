@@ -69,7 +69,13 @@ export function StripPhases({ strip, answer, view, sheet }: { strip: Strip; answ
         const told = phase.whole && phase.digit !== null;
         return (
           <g key={phase.fromS}>
-            <rect className={`phase ${told ? (phase.selectorLit ? 'phase-selected' : '') : 'phase-cut'}`} x={from} y={y} width={width} height={PHASE_HEIGHT} />
+            <rect
+              className={`phase ${told ? (phase.selectorLit ? 'phase-selected' : '') : 'phase-cut'}`}
+              x={from}
+              y={y}
+              width={width}
+              height={PHASE_HEIGHT}
+            />
             {told && width >= ROOM_FOR_WORD_PX && (
               <text className={`phase-word ${phase.selectorLit ? 'strong' : ''}`} x={from + width / 2} y={y + 19}>
                 {letters?.[phase.selectorLit ? 'on' : 'off']}

@@ -23,20 +23,36 @@ function lineOf(step: StepResult, page: RunPage): StepLine {
   const base = { id: step.stepId, kind: step.kind, title: step.title };
   switch (step.kind) {
     case 'caution':
-      return { ...base, said: step.answer === 'yes' ? 'confirmed' : undefined, verdict: step.answer === 'no' ? 'not done' : undefined, note: step.answer === 'no' ? <Note text="Answered no: went to the safe state." /> : undefined };
+      return {
+        ...base,
+        said: step.answer === 'yes' ? 'confirmed' : undefined,
+        verdict: step.answer === 'no' ? 'not done' : undefined,
+        note: step.answer === 'no' ? <Note text="Answered no: went to the safe state." /> : undefined,
+      };
     case 'instruct':
       return { ...base, said: step.answer === 'done' ? 'done' : undefined, verdict: step.answer === 'done' ? undefined : 'not done' };
     case 'inspect':
-      return { ...base, verdict: step.inspection.verdict, note: step.inspection.note === undefined ? undefined : <Note text={step.inspection.note} /> };
+      return {
+        ...base,
+        verdict: step.inspection.verdict,
+        note: step.inspection.note === undefined ? undefined : <Note text={step.inspection.note} />,
+      };
     case 'measure': {
-      const instrument = step.reading.source === 'typed' ? 'typed in from a handheld' : (step.reading.instrument?.identification ?? step.reading.instrument?.id);
+      const instrument =
+        step.reading.source === 'typed'
+          ? 'typed in from a handheld'
+          : (step.reading.instrument?.identification ?? step.reading.instrument?.id);
       const line = readingLine(step.stepId, step.reading);
       return {
         ...line,
         note: (
           <>
             {line.note}
-            {instrument !== undefined && <p className="lab px-3 py-1">{instrument}, accuracy {step.reading.accuracy}, one digit {step.reading.resolution}</p>}
+            {instrument !== undefined && (
+              <p className="lab px-3 py-1">
+                {instrument}, accuracy {step.reading.accuracy}, one digit {step.reading.resolution}
+              </p>
+            )}
           </>
         ),
       };
@@ -55,7 +71,12 @@ function lineOf(step: StepResult, page: RunPage): StepLine {
       };
     }
     case 'expect':
-      return { ...base, title: `${step.title}: ${expectedInWords(step.expected)}, ${step.seen}`, value: <CaptureLink id={step.captureId} />, verdict: step.verdict };
+      return {
+        ...base,
+        title: `${step.title}: ${expectedInWords(step.expected)}, ${step.seen}`,
+        value: <CaptureLink id={step.captureId} />,
+        verdict: step.verdict,
+      };
     case 'watch':
       return {
         ...base,
@@ -69,8 +90,15 @@ function lineOf(step: StepResult, page: RunPage): StepLine {
       };
     case 'repair': {
       const { part, partSource, minutes, note } = step.repair;
-      const from = partSource.kind === 'used' ? `, used, from No. ${unitNumber(partSource.fromUnit)}` : partSource.kind === 'new' ? ', new part' : '';
-      return { ...base, title: `${part}${from}`, value: <span className="num">{minutes} min</span>, said: 'recorded', note: note === undefined ? undefined : <Note text={note} /> };
+      const from =
+        partSource.kind === 'used' ? `, used, from No. ${unitNumber(partSource.fromUnit)}` : partSource.kind === 'new' ? ', new part' : '';
+      return {
+        ...base,
+        title: `${part}${from}`,
+        value: <span className="num">{minutes} min</span>,
+        said: 'recorded',
+        note: note === undefined ? undefined : <Note text={note} />,
+      };
     }
     case 'clear':
       return { ...base, said: 'done' };
@@ -83,5 +111,10 @@ function lineOf(step: StepResult, page: RunPage): StepLine {
 
 /** A bench log, step for step, as the bench recorded it and the server judged it again. */
 export function RunLogTable({ page }: { page: RunPage }) {
-  return <StepsTable caption={`Steps of ${page.script.name}, ${formatTime(page.startedAt)} to ${formatTime(page.endedAt)}`} lines={page.steps.map((step) => lineOf(step, page))} />;
+  return (
+    <StepsTable
+      caption={`Steps of ${page.script.name}, ${formatTime(page.startedAt)} to ${formatTime(page.endedAt)}`}
+      lines={page.steps.map((step) => lineOf(step, page))}
+    />
+  );
 }

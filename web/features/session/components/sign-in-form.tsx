@@ -11,13 +11,20 @@ const LABELS: Record<string, string> = { email: 'E-mail address', password: 'Pas
 
 export function SignInForm({ onSignedIn }: { onSignedIn: () => void }) {
   const createSession = useCreateSession();
-  const { register, handleSubmit, formState } = useForm({ resolver: zodResolver(credentialsSchema), defaultValues: { email: '', password: '' }, shouldFocusError: false });
+  const { register, handleSubmit, formState } = useForm({
+    resolver: zodResolver(credentialsSchema),
+    defaultValues: { email: '', password: '' },
+    shouldFocusError: false,
+  });
   const { errors } = formState;
   const faults = faultsOf(errors).map(({ name, reason }) => ({ id: fieldId(name), label: LABELS[name] ?? name, reason }));
   const refused = createSession.error ? explain(createSession.error) : undefined;
   const summary = faults.length > 0 || !refused ? faults : [{ label: '', reason: `${refused.happened} ${refused.remedy}` }];
   return (
-    <form noValidate onSubmit={(event) => void handleSubmit((credentials) => createSession.mutate(credentials, { onSuccess: onSignedIn }))(event)}>
+    <form
+      noValidate
+      onSubmit={(event) => void handleSubmit((credentials) => createSession.mutate(credentials, { onSuccess: onSignedIn }))(event)}
+    >
       <ErrorSummary faults={summary} attempt={formState.submitCount + createSession.failureCount} />
       <div className="grid gap-4">
         <FormField id={fieldId('email')} label="E-mail address" error={errors.email?.message}>

@@ -29,12 +29,16 @@ function resultsByCheck(page: UnitPage, counts: (event: CheckEvent) => boolean):
     const standing = standingResult(results.filter(({ event, afterRepair }) => afterRepair && counts(event)).map(({ event }) => event));
     return {
       title: titleOf(results[0]?.event),
-      results: results.map(({ event, afterRepair }) => ({ event, state: !counts(event) ? 'never counted' : !afterRepair ? 'no longer counts' : event === standing ? 'stands' : 'replaced' })),
+      results: results.map(({ event, afterRepair }) => ({
+        event,
+        state: !counts(event) ? 'never counted' : !afterRepair ? 'no longer counts' : event === standing ? 'stands' : 'replaced',
+      })),
     };
   });
 }
 
-const titleOf = (event: CheckEvent | undefined): string => (event === undefined ? '' : event.kind === 'reading' ? event.reading.title : event.inspection.title);
+const titleOf = (event: CheckEvent | undefined): string =>
+  event === undefined ? '' : event.kind === 'reading' ? event.reading.title : event.inspection.title;
 
 function ResultRow({ event, state }: Judged) {
   const void_ = state === 'no longer counts' || state === 'never counted';
@@ -42,11 +46,16 @@ function ResultRow({ event, state }: Judged) {
     <li className="border-t border-line py-2">
       <div className="grid grid-cols-[1fr_auto] items-baseline gap-x-4 wide:grid-cols-[220px_1fr_150px_170px]">
         <span>
-          {event.kind === 'reading' ? <ReadingValue reading={event.reading} className={void_ ? 'text-ink2' : 'font-bold'} /> : <span className={void_ ? 'text-ink2' : 'font-bold'}>looked at</span>}
+          {event.kind === 'reading' ? (
+            <ReadingValue reading={event.reading} className={void_ ? 'text-ink2' : 'font-bold'} />
+          ) : (
+            <span className={void_ ? 'text-ink2' : 'font-bold'}>looked at</span>
+          )}
         </span>
         <span className="lab order-last col-span-2 wide:order-none wide:col-span-1">
           {formatDayTime(event.at)}; {event.by.name}
-          {event.kind === 'reading' && `; ${event.reading.source === 'typed' ? 'typed in' : (event.reading.instrument?.id ?? 'meter')}, ${event.reading.accuracy}`}
+          {event.kind === 'reading' &&
+            `; ${event.reading.source === 'typed' ? 'typed in' : (event.reading.instrument?.id ?? 'meter')}, ${event.reading.accuracy}`}
           {event.simulated && '; simulated'}
         </span>
         <VerdictWord verdict={verdictOf(event)} />
@@ -75,7 +84,9 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
         <h2 id="results" className="section-heading">
           Every result since it was opened
         </h2>
-        <p className="py-2 text-ink2">None is left out: a result that was replaced, or was taken before the last repair, stands here too.</p>
+        <p className="py-2 text-ink2">
+          None is left out: a result that was replaced, or was taken before the last repair, stands here too.
+        </p>
         {groups.length === 0 && <p>None was taken.</p>}
         {groups.map(({ title, results }) => {
           const reading = results.find(({ event }) => event.kind === 'reading')?.event;
@@ -84,7 +95,14 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
               <h3 className="flex flex-wrap items-baseline gap-x-3 pb-1">
                 {title}
                 {reading?.kind === 'reading' && (
-                  <span className="num text-[14px]! font-normal text-ink2">{formatLimits(reading.reading.judgement.low, reading.reading.judgement.high, reading.reading.judgement.unit, reading.reading.resolution)}</span>
+                  <span className="num text-[14px]! font-normal text-ink2">
+                    {formatLimits(
+                      reading.reading.judgement.low,
+                      reading.reading.judgement.high,
+                      reading.reading.judgement.unit,
+                      reading.reading.resolution,
+                    )}
+                  </span>
                 )}
               </h3>
               <ul>
@@ -96,9 +114,15 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
           );
         })}
         {calibrations.map((event) => (
-          <div key={event.id} className="grid grid-cols-[1fr_auto] items-baseline gap-x-4 border-t border-line py-2 wide:grid-cols-[1fr_150px_170px]">
+          <div
+            key={event.id}
+            className="grid grid-cols-[1fr_auto] items-baseline gap-x-4 border-t border-line py-2 wide:grid-cols-[1fr_150px_170px]"
+          >
             <span>
-              <b>Calibration run</b> {event.calibration.reason} <span className="lab">{formatDayTime(event.at)}; {event.by.name}</span>
+              <b>Calibration run</b> {event.calibration.reason}{' '}
+              <span className="lab">
+                {formatDayTime(event.at)}; {event.by.name}
+              </span>
             </span>
             <VerdictWord verdict={event.calibration.verdict} />
           </div>
@@ -115,10 +139,15 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
               <b>{event.repair.part}</b>
               {event.repair.partSource.kind === 'used' && (
                 <>
-                  , a used part from <Link to={paths.unit(event.repair.partSource.fromUnit)}>No. {unitNumber(event.repair.partSource.fromUnit)}</Link>
+                  , a used part from{' '}
+                  <Link to={paths.unit(event.repair.partSource.fromUnit)}>No. {unitNumber(event.repair.partSource.fromUnit)}</Link>
                 </>
               )}
-              {event.repair.partSource.kind === 'new' && ', a new part'}, {event.repair.minutes} min, {formatMoney(event.repair.costMinor, currency)}. <span className="lab">{formatDayTime(event.at)}; {event.by.name}</span>
+              {event.repair.partSource.kind === 'new' && ', a new part'}, {event.repair.minutes} min,{' '}
+              {formatMoney(event.repair.costMinor, currency)}.{' '}
+              <span className="lab">
+                {formatDayTime(event.at)}; {event.by.name}
+              </span>
               {event.repair.note !== undefined && <p className="text-[16px]">{event.repair.note}</p>}
             </li>
           ))}
@@ -131,7 +160,10 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
           </h2>
           {overrides.map((event) => (
             <p key={event.id} className="border-b border-line py-2">
-              “{event.reason}” <span className="lab">{formatDayTime(event.at)}; {event.by.name}</span>
+              “{event.reason}”{' '}
+              <span className="lab">
+                {formatDayTime(event.at)}; {event.by.name}
+              </span>
             </p>
           ))}
         </section>

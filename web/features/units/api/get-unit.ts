@@ -5,4 +5,8 @@ import { call } from '../../../lib/call.js';
 const LOOK_AGAIN_MS = 15_000;
 
 export const unitQuery = (number: number) =>
-  queryOptions({ queryKey: ['unit', number], queryFn: ({ signal }) => call('getUnit', { params: { number }, signal }), refetchInterval: LOOK_AGAIN_MS });
+  queryOptions({
+    queryKey: ['unit', number],
+    queryFn: ({ signal }) => call('getUnit', { params: { number }, signal }),
+    refetchInterval: LOOK_AGAIN_MS,
+  });

@@ -8,7 +8,12 @@ export const unitsQuery = (view: { find?: string | undefined; stage?: string | u
     queryKey: ['units', view],
     queryFn: ({ pageParam, signal }) =>
       call('listUnits', {
-        query: { limit: PAGE_LENGTH, ...(view.find ? { find: view.find } : {}), ...(view.stage ? { stage: view.stage } : {}), ...(pageParam === '' ? {} : { cursor: pageParam }) },
+        query: {
+          limit: PAGE_LENGTH,
+          ...(view.find ? { find: view.find } : {}),
+          ...(view.stage ? { stage: view.stage } : {}),
+          ...(pageParam === '' ? {} : { cursor: pageParam }),
+        },
         signal,
       }),
     initialPageParam: '',

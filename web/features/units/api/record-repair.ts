@@ -5,7 +5,8 @@ import { call } from '../../../lib/call.js';
 export function useRecordRepair(number: number) {
   const queries = useQueryClient();
   return useMutation({
-    mutationFn: (work: { body: RequestBody<'recordRepair'>; idempotencyKey: string }) => call('recordRepair', { params: { number }, ...work }),
+    mutationFn: (work: { body: RequestBody<'recordRepair'>; idempotencyKey: string }) =>
+      call('recordRepair', { params: { number }, ...work }),
     onSuccess: () => queries.invalidateQueries({ queryKey: ['unit', number] }),
   });
 }

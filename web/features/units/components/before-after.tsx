@@ -17,7 +17,8 @@ function Side({ reading, old = false }: { reading: ReadingBody | undefined; old?
   );
 }
 
-const limitsOf = ({ judgement, resolution }: ReadingBody): string => formatLimits(judgement.low, judgement.high, judgement.unit, resolution);
+const limitsOf = ({ judgement, resolution }: ReadingBody): string =>
+  formatLimits(judgement.low, judgement.high, judgement.unit, resolution);
 
 /** Each check's standing readings against its limits, those before the last repair beside those after it. */
 export function BeforeAfter({ counting }: { counting: readonly UnitEvent[] }) {

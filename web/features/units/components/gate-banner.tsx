@@ -7,7 +7,8 @@ import { ErrorNote } from '../../../components/page-states.js';
 import { fieldId } from '../../../lib/form-faults.js';
 import { useRecordOverride } from '../api/record-override.js';
 
-const sentence = (reasons: readonly string[]): string => reasons.map((reason, index) => (index === 0 ? reason.charAt(0).toUpperCase() + reason.slice(1) : reason)).join('; ');
+const sentence = (reasons: readonly string[]): string =>
+  reasons.map((reason, index) => (index === 0 ? reason.charAt(0).toUpperCase() + reason.slice(1) : reason)).join('; ');
 
 /** Why the machine may not be put on mains, and the way through; or that a lead opened the gate in spite of it. */
 export function GateBanner({ gate, number, mayOverride }: { gate: GateState; number: number; mayOverride: boolean }) {
@@ -53,8 +54,22 @@ function OverrideForm({ number }: { number: number }) {
           if (parsed.success) override.mutate(parsed.data);
         }}
       >
-        <FormField id={fieldId('override-reason')} label="Why it may be energised before its dead tests passed" hint="It is kept in the history under your name." error={fault}>
-          {(a11y) => <textarea {...a11y} rows={2} maxLength={2000} className="field" value={reason} onChange={(event) => setReason(event.target.value)} />}
+        <FormField
+          id={fieldId('override-reason')}
+          label="Why it may be energised before its dead tests passed"
+          hint="It is kept in the history under your name."
+          error={fault}
+        >
+          {(a11y) => (
+            <textarea
+              {...a11y}
+              rows={2}
+              maxLength={2000}
+              className="field"
+              value={reason}
+              onChange={(event) => setReason(event.target.value)}
+            />
+          )}
         </FormField>
         {override.error && <ErrorNote error={override.error} />}
         <button type="submit" className="button button-plain justify-self-start" disabled={override.isPending}>

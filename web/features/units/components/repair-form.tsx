@@ -27,20 +27,38 @@ const formSchema = (currency: string) =>
       const costMinor = typed.cost === '' ? 0 : parseMoney(typed.cost, currency);
       if (Number.isNaN(costMinor)) context.addIssue({ code: 'custom', path: ['cost'], message: 'type an amount such as 6.00' });
       const fromUnit = Number(typed.fromUnit);
-      if (typed.source === 'used' && !(Number.isInteger(fromUnit) && fromUnit > 0)) context.addIssue({ code: 'custom', path: ['fromUnit'], message: 'type the number of the unit it came from' });
+      if (typed.source === 'used' && !(Number.isInteger(fromUnit) && fromUnit > 0))
+        context.addIssue({ code: 'custom', path: ['fromUnit'], message: 'type the number of the unit it came from' });
       const partSource: RepairBody['partSource'] = typed.source === 'used' ? { kind: 'used', fromUnit } : { kind: typed.source };
       return { part: typed.part, partSource, minutes: typed.minutes, costMinor, ...(typed.note === '' ? {} : { note: typed.note }) };
     })
     .pipe(repairBodySchema);
 
-const LABELS: Record<string, string> = { part: 'Part, or what was done', source: 'Where the part came from', fromUnit: 'From unit number', minutes: 'Minutes', cost: 'What the part cost', note: 'Note' };
+const LABELS: Record<string, string> = {
+  part: 'Part, or what was done',
+  source: 'Where the part came from',
+  fromUnit: 'From unit number',
+  minutes: 'Minutes',
+  cost: 'What the part cost',
+  note: 'Note',
+};
 const SOURCES = [
   ['new', 'a new part'],
   ['used', 'a used part'],
   ['none', 'no part was changed'],
 ] as const;
 
-export function RepairForm({ number, parts, currency, onDone }: { number: number; parts: readonly string[]; currency: string; onDone: () => void }) {
+export function RepairForm({
+  number,
+  parts,
+  currency,
+  onDone,
+}: {
+  number: number;
+  parts: readonly string[];
+  currency: string;
+  onDone: () => void;
+}) {
   const record = useRecordRepair(number);
   const submissionFor = useSubmission();
   const [schema] = useState(() => formSchema(currency));
@@ -50,7 +68,11 @@ export function RepairForm({ number, parts, currency, onDone }: { number: number
     shouldFocusError: false,
   });
   const { errors } = formState;
-  const faults: { id?: string; label: string; reason: string }[] = faultsOf(errors).map(({ name, reason }) => ({ id: fieldId(name), label: LABELS[name] ?? name, reason }));
+  const faults: { id?: string; label: string; reason: string }[] = faultsOf(errors).map(({ name, reason }) => ({
+    id: fieldId(name),
+    label: LABELS[name] ?? name,
+    reason,
+  }));
   if (record.error) {
     const { happened, remedy } = explain(record.error);
     faults.push({ label: '', reason: `${happened} ${remedy}` });
@@ -59,7 +81,12 @@ export function RepairForm({ number, parts, currency, onDone }: { number: number
     const { idempotencyKey, id, at } = submissionFor(repair);
     record.mutate({ body: { id, at, repair }, idempotencyKey }, { onSuccess: onDone });
   };
-  const field = (name: keyof typeof errors & string, hint?: string) => ({ id: fieldId(name), label: LABELS[name] ?? name, ...(hint === undefined ? {} : { hint }), error: errors[name as keyof z.input<typeof schema>]?.message });
+  const field = (name: keyof typeof errors & string, hint?: string) => ({
+    id: fieldId(name),
+    label: LABELS[name] ?? name,
+    ...(hint === undefined ? {} : { hint }),
+    error: errors[name as keyof z.input<typeof schema>]?.message,
+  });
   const source = watch('source');
 
   return (
@@ -69,7 +96,9 @@ export function RepairForm({ number, parts, currency, onDone }: { number: number
       </h2>
       <ErrorSummary faults={faults} attempt={formState.submitCount + record.failureCount} />
       <div className="grid gap-4 wide:grid-cols-2">
-        <FormField {...field('part')}>{(a11y) => <input {...a11y} {...register('part')} list="parts-of-sheet" autoComplete="off" className="field" />}</FormField>
+        <FormField {...field('part')}>
+          {(a11y) => <input {...a11y} {...register('part')} list="parts-of-sheet" autoComplete="off" className="field" />}
+        </FormField>
         <datalist id="parts-of-sheet">
           {parts.map((part) => (
             <option key={part} value={part} />
@@ -86,12 +115,27 @@ export function RepairForm({ number, parts, currency, onDone }: { number: number
             </select>
           )}
         </FormField>
-        {source === 'used' && <FormField {...field('fromUnit')}>{(a11y) => <input {...a11y} {...register('fromUnit')} inputMode="numeric" autoComplete="off" className="field" />}</FormField>}
-        <FormField {...field('minutes')}>{(a11y) => <input {...a11y} {...register('minutes')} inputMode="numeric" autoComplete="off" className="field" />}</FormField>
-        {source !== 'none' && <FormField {...field('cost', `In ${currency}, with decimals.`)}>{(a11y) => <input {...a11y} {...register('cost')} inputMode="decimal" autoComplete="off" className="field" />}</FormField>}
-        <FormField {...field('note')}>{(a11y) => <input {...a11y} {...register('note')} maxLength={2000} autoComplete="off" className="field" />}</FormField>
+        {source === 'used' && (
+          <FormField {...field('fromUnit')}>
+            {(a11y) => <input {...a11y} {...register('fromUnit')} inputMode="numeric" autoComplete="off" className="field" />}
+          </FormField>
+        )}
+        <FormField {...field('minutes')}>
+          {(a11y) => <input {...a11y} {...register('minutes')} inputMode="numeric" autoComplete="off" className="field" />}
+        </FormField>
+        {source !== 'none' && (
+          <FormField {...field('cost', `In ${currency}, with decimals.`)}>
+            {(a11y) => <input {...a11y} {...register('cost')} inputMode="decimal" autoComplete="off" className="field" />}
+          </FormField>
+        )}
+        <FormField {...field('note')}>
+          {(a11y) => <input {...a11y} {...register('note')} maxLength={2000} autoComplete="off" className="field" />}
+        </FormField>
       </div>
-      <p className="mt-4 text-ink2">What was measured before the repair no longer counts for readiness, and the dead tests are due again before the machine goes on mains.</p>
+      <p className="mt-4 text-ink2">
+        What was measured before the repair no longer counts for readiness, and the dead tests are due again before the machine goes on
+        mains.
+      </p>
       <div className="mt-4 flex flex-wrap gap-3">
         <button type="submit" className="button" disabled={record.isPending}>
           {record.isPending ? 'Recording' : 'Record the repair'}

@@ -9,15 +9,39 @@ function lineOf(event: UnitEvent): StepLine | undefined {
   const { id } = event;
   switch (event.kind) {
     case 'inspection':
-      return { id, kind: 'inspect', title: event.inspection.title, verdict: event.inspection.verdict, note: event.inspection.note && <p className="px-3 py-1 text-[16px]">{event.inspection.note}</p> };
+      return {
+        id,
+        kind: 'inspect',
+        title: event.inspection.title,
+        verdict: event.inspection.verdict,
+        note: event.inspection.note && <p className="px-3 py-1 text-[16px]">{event.inspection.note}</p>,
+      };
     case 'reading':
       return readingLine(id, event.reading);
     case 'capture':
-      return { id, kind: 'capture', title: `Lamps, ${event.capture.answer.durationS.toFixed(1)} s`, value: <Link to={paths.capture(event.capture.captureId)}>Strip chart</Link>, said: 'kept' };
+      return {
+        id,
+        kind: 'capture',
+        title: `Lamps, ${event.capture.answer.durationS.toFixed(1)} s`,
+        value: <Link to={paths.capture(event.capture.captureId)}>Strip chart</Link>,
+        said: 'kept',
+      };
     case 'calibration':
-      return { id, kind: 'watch', title: `Calibration run: ${event.calibration.reason}`, value: <span className="num">{clock(event.calibration.seconds)}</span>, verdict: event.calibration.verdict };
+      return {
+        id,
+        kind: 'watch',
+        title: `Calibration run: ${event.calibration.reason}`,
+        value: <span className="num">{clock(event.calibration.seconds)}</span>,
+        verdict: event.calibration.verdict,
+      };
     case 'repair':
-      return { id, kind: 'repair', title: event.repair.part, value: <span className="num">{event.repair.minutes} min</span>, said: 'recorded' };
+      return {
+        id,
+        kind: 'repair',
+        title: event.repair.part,
+        value: <span className="num">{event.repair.minutes} min</span>,
+        said: 'recorded',
+      };
     case 'codes cleared':
       return { id, kind: 'clear', title: 'Stored codes cleared', said: 'done' };
     case 'note':

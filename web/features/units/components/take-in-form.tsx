@@ -36,7 +36,8 @@ const LABELS: Record<string, string> = {
 
 const REASONS = newUnitSchema.shape.sameSerialReason.unwrap().options;
 const textOrNothing = (text: unknown): unknown => (typeof text === 'string' && text.trim() !== '' ? text.trim() : undefined);
-const numberOrNothing = (text: unknown): unknown => (typeof text === 'string' && text.trim() === '' ? undefined : typeof text === 'string' ? Number(text.trim()) : text);
+const numberOrNothing = (text: unknown): unknown =>
+  typeof text === 'string' && text.trim() === '' ? undefined : typeof text === 'string' ? Number(text.trim()) : text;
 
 /** The other units with this serial number, as the refusal names them. */
 const sameSerialSchema = z.object({ type: z.string().endsWith('same-serial'), units: z.array(z.number().int()) });
@@ -58,7 +59,11 @@ export function TakeInForm({ sheets, currency, onTakenIn }: TakeInFormProps) {
   const submissionFor = useSubmission();
   const { register, handleSubmit, formState, watch } = useForm<Typed, unknown, NewUnit>({
     resolver: zodResolver(newUnitSchema),
-    defaultValues: { appliance: 'washing machine', plate: { maker: '', model: '', protectionClass: 'I', plateUnreadable: false }, complaint: '' },
+    defaultValues: {
+      appliance: 'washing machine',
+      plate: { maker: '', model: '', protectionClass: 'I', plateUnreadable: false },
+      complaint: '',
+    },
     shouldFocusError: false,
   });
   const [refusals, setRefusals] = useState(0);
@@ -83,13 +88,27 @@ export function TakeInForm({ sheets, currency, onTakenIn }: TakeInFormProps) {
     error: faults.find((fault) => fault.name === name)?.reason,
     className,
   });
-  const text = (name: FieldPath<Typed>) => (a11y: FieldA11y) => <input {...a11y} {...register(name, { setValueAs: (typed) => textOrNothing(typed) ?? (name === 'plate.maker' || name === 'plate.model' ? '' : undefined) })} autoComplete="off" className="field" />;
-  const amount = (name: FieldPath<Typed>) => (a11y: FieldA11y) => <input {...a11y} {...register(name, { setValueAs: numberOrNothing })} inputMode="decimal" autoComplete="off" className="field" />;
+  const text = (name: FieldPath<Typed>) => (a11y: FieldA11y) => (
+    <input
+      {...a11y}
+      {...register(name, {
+        setValueAs: (typed) => textOrNothing(typed) ?? (name === 'plate.maker' || name === 'plate.model' ? '' : undefined),
+      })}
+      autoComplete="off"
+      className="field"
+    />
+  );
+  const amount = (name: FieldPath<Typed>) => (a11y: FieldA11y) => (
+    <input {...a11y} {...register(name, { setValueAs: numberOrNothing })} inputMode="decimal" autoComplete="off" className="field" />
+  );
   const licensedOnly = LICENSED_ONLY.some((one) => one === watch('appliance'));
 
   return (
     <form noValidate onSubmit={(event) => void handleSubmit(send)(event)}>
-      <ErrorSummary faults={summary.map((fault) => ({ ...fault, id: fault.id === '' ? undefined : fault.id }))} attempt={formState.submitCount + refusals} />
+      <ErrorSummary
+        faults={summary.map((fault) => ({ ...fault, id: fault.id === '' ? undefined : fault.id }))}
+        attempt={formState.submitCount + refusals}
+      />
       <div className="grid items-start gap-x-11 gap-y-7 wide:grid-cols-[1fr_1fr]">
         <fieldset className="rating-plate min-w-0">
           <div className="grid gap-4">
@@ -134,11 +153,16 @@ export function TakeInForm({ sheets, currency, onTakenIn }: TakeInFormProps) {
           <div aria-live="polite">
             {licensedOnly && (
               <Caution>
-                <p>Gas, sealed refrigerant and microwave ovens are a licensed person’s work. The unit is marked so, and no script runs on it. Do not open it, do not plug it in.</p>
+                <p>
+                  Gas, sealed refrigerant and microwave ovens are a licensed person’s work. The unit is marked so, and no script runs on it.
+                  Do not open it, do not plug it in.
+                </p>
               </Caution>
             )}
           </div>
-          <FormField {...field('complaint', 'In the words of who gave it: what does it do, what not?')}>{(a11y) => <textarea {...a11y} {...register('complaint')} rows={3} className="field" />}</FormField>
+          <FormField {...field('complaint', 'In the words of who gave it: what does it do, what not?')}>
+            {(a11y) => <textarea {...a11y} {...register('complaint')} rows={3} className="field" />}
+          </FormField>
           <FormField {...field('family', 'What electronics it has, whatever name is on its front. It can stay open.')}>
             {(a11y) => (
               <select {...a11y} {...register('family', { setValueAs: textOrNothing })} className="field">
@@ -157,7 +181,10 @@ export function TakeInForm({ sheets, currency, onTakenIn }: TakeInFormProps) {
             {(a11y) => (
               <input
                 {...a11y}
-                {...register('costMinor', { setValueAs: (typed: unknown) => (typeof typed === 'string' ? (typed.trim() === '' ? undefined : parseMoney(typed, currency)) : typed) })}
+                {...register('costMinor', {
+                  setValueAs: (typed: unknown) =>
+                    typeof typed === 'string' ? (typed.trim() === '' ? undefined : parseMoney(typed, currency)) : typed,
+                })}
                 inputMode="decimal"
                 autoComplete="off"
                 className="field"

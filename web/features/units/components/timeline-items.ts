@@ -33,7 +33,14 @@ export function timelineOf(page: Pick<UnitPage, 'events' | 'runs'>): TimelineGro
       if (!(event.kind === 'run ended' && event.prove)) known.stage = stage;
       return;
     }
-    const item: Extract<TimelineItem, { kind: 'run' }> = { kind: 'run', id: event.runId, at: event.at, stage, events: [event], run: page.runs.find((run) => run.id === event.runId) };
+    const item: Extract<TimelineItem, { kind: 'run' }> = {
+      kind: 'run',
+      id: event.runId,
+      at: event.at,
+      stage,
+      events: [event],
+      run: page.runs.find((run) => run.id === event.runId),
+    };
     runs.set(event.runId, item);
     items.push(item);
   });

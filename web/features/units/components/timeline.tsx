@@ -34,7 +34,11 @@ function tell(event: UnitEvent, { faces, unit }: UnitPage, currency: string): To
     case 'sold':
       return { title: 'Sale' };
     case 'inspection':
-      return { title: event.inspection.title, right: <VerdictWord verdict={event.inspection.verdict} />, ...(event.inspection.note ? { body: <p>{event.inspection.note}</p> } : {}) };
+      return {
+        title: event.inspection.title,
+        right: <VerdictWord verdict={event.inspection.verdict} />,
+        ...(event.inspection.note ? { body: <p>{event.inspection.note}</p> } : {}),
+      };
     case 'reading': {
       const { judgement, resolution, title } = event.reading;
       return {
@@ -43,7 +47,8 @@ function tell(event: UnitEvent, { faces, unit }: UnitPage, currency: string): To
         body: (
           <>
             <p>
-              <ReadingValue reading={event.reading} />, <span className="num">{formatLimits(judgement.low, judgement.high, judgement.unit, resolution)}</span>
+              <ReadingValue reading={event.reading} />,{' '}
+              <span className="num">{formatLimits(judgement.low, judgement.high, judgement.unit, resolution)}</span>
               {event.reading.source === 'typed' ? ', typed in' : ''}
             </p>
             <ReadingNote reading={event.reading} />
@@ -75,7 +80,12 @@ function tell(event: UnitEvent, { faces, unit }: UnitPage, currency: string): To
         ),
       };
     case 'calibration':
-      return { title: 'Calibration run', meta: clock(event.calibration.seconds), right: <VerdictWord verdict={event.calibration.verdict} />, body: <p>{event.calibration.reason}</p> };
+      return {
+        title: 'Calibration run',
+        meta: clock(event.calibration.seconds),
+        right: <VerdictWord verdict={event.calibration.verdict} />,
+        body: <p>{event.calibration.reason}</p>,
+      };
     case 'codes cleared':
       return { title: 'Stored codes cleared' };
     case 'note':
@@ -127,7 +137,12 @@ function RunItem({ item, page }: { item: Extract<TimelineItem, { kind: 'run' }>;
   const began = item.events[0];
   const { run } = item;
   const captures = item.events.filter((event) => event.kind === 'capture');
-  const told = [run?.by.name ?? began?.by.name, run && formatDuration(run.startedAt, run.endedAt), run && plural(run.steps, 'step'), began?.simulated ? 'simulated rig' : ''];
+  const told = [
+    run?.by.name ?? began?.by.name,
+    run && formatDuration(run.startedAt, run.endedAt),
+    run && plural(run.steps, 'step'),
+    began?.simulated ? 'simulated rig' : '',
+  ];
   return (
     <article className="happening">
       <time dateTime={item.at}>{formatTime(item.at)}</time>
@@ -159,7 +174,11 @@ export function Timeline({ page, currency }: { page: UnitPage; currency: string 
           </h3>
           <div className="min-w-0">
             {group.items.map((item) =>
-              item.kind === 'run' ? <RunItem key={item.id} item={item} page={page} /> : <EventItem key={item.id} event={item.event} page={page} currency={currency} />,
+              item.kind === 'run' ? (
+                <RunItem key={item.id} item={item} page={page} />
+              ) : (
+                <EventItem key={item.id} event={item.event} page={page} currency={currency} />
+              ),
             )}
           </div>
         </section>

@@ -58,7 +58,9 @@ function Row({ row, currency, nowMs }: { row: UnitRow; currency: string; nowMs: 
       </td>
       <td className="units-machine">
         {row.plate.maker} {row.plate.model} <span className="text-ink2">{row.appliance}</span>
-        {row.licensedOnly && <b className="ml-2 bg-ink px-2 py-1 font-mono text-[13px] whitespace-nowrap text-enamel">licensed person only</b>}
+        {row.licensedOnly && (
+          <b className="ml-2 bg-ink px-2 py-1 font-mono text-[13px] whitespace-nowrap text-enamel">licensed person only</b>
+        )}
       </td>
       <td className="units-tag">
         <span className="flex items-center gap-2 font-mono text-[15px] leading-tight">
@@ -78,7 +80,9 @@ function Row({ row, currency, nowMs }: { row: UnitRow; currency: string; nowMs: 
 
 /** The units by stage; on a phone each row folds into a few lines. */
 export function UnitsTable({ rows, currency, nowMs }: { rows: readonly UnitRow[]; currency: string; nowMs: number }) {
-  const groups = STAGES_IN_ORDER.map((stage) => ({ stage, rows: rows.filter((row) => row.stage === stage) })).filter((group) => group.rows.length > 0);
+  const groups = STAGES_IN_ORDER.map((stage) => ({ stage, rows: rows.filter((row) => row.stage === stage) })).filter(
+    (group) => group.rows.length > 0,
+  );
   return (
     <table className="units-table">
       <caption className="sr-only">Units, by stage</caption>
