@@ -79,8 +79,3 @@ export class TooManyError extends Error {
     super('Too many tries.');
   }
 }
-
-/** The database does not answer. */
-export class UnavailableError extends Error {
-  override readonly name = 'UnavailableError';
-}

@@ -12,7 +12,6 @@ import {
   RoleError,
   SameSerialError,
   TooManyError,
-  UnavailableError,
 } from './errors.js';
 
 const TITLES: Record<ProblemKind, string> = {
@@ -73,12 +72,23 @@ export function problemOf(error: unknown): Problem | undefined {
   if (error instanceof TooManyError) {
     return problem(429, 'too-many', { detail: error.message, remedy: `Try again in ${String(error.retryAfterSeconds)} seconds.` });
   }
-  if (error instanceof UnavailableError)
+  if (isDatabaseAway(error)) {
     return problem(503, 'fault', {
-      detail: error.message,
-      remedy: 'Look at the server’s terminal; the work stays on the bench and is sent later.',
+      detail: 'The database does not answer.',
+      remedy: 'Look at the server’s terminal. What a bench recorded stays on the bench and is sent later.',
     });
+  }
   return malformedByExpress(error);
+}
+
+/** PostgreSQL's classes 08 (connection) and 57P (shut down, starting up), and what the socket and the pool say when there is none. */
+const DATABASE_AWAY = /^(08\w{3}|57P0[123]|ECONNREFUSED|ECONNRESET|ENOTFOUND|EPIPE|ETIMEDOUT)$/;
+
+function isDatabaseAway(error: unknown): boolean {
+  if (error instanceof AggregateError) return error.errors.some(isDatabaseAway);
+  if (!(error instanceof Error)) return false;
+  const code = 'code' in error ? String(error.code) : '';
+  return DATABASE_AWAY.test(code) || error.name === 'KnexTimeoutError' || error.message.startsWith('Connection terminated');
 }
 
 /** What Express and its body parser refuse by themselves: they say so by a status below 500. */
@@ -104,8 +114,7 @@ export const sendProblem: ErrorRequestHandler = (error: unknown, request, respon
   const known = problemOf(error);
   if (known === undefined) request.log.error({ err: error }, 'fault');
   const answer =
-    known ??
-    problem(500, 'fault', { detail: `It is in the server’s log as ${idOf(request)}.`, instance: `urn:uuid:${idOf(request)}` });
+    known ?? problem(500, 'fault', { detail: `It is in the server’s log as ${idOf(request)}.`, instance: `urn:uuid:${idOf(request)}` });
   if (answer.status === 401) response.set('WWW-Authenticate', 'Bearer realm="refettle"');
   if (error instanceof TooManyError) response.set('Retry-After', String(error.retryAfterSeconds));
   response.status(answer.status).type(PROBLEM_MEDIA_TYPE).send(JSON.stringify(answer));
