@@ -5,7 +5,7 @@ import type { Sheet } from '../../shared/sheet/schema.js';
 const LIT = '●';
 const DARK = '○';
 /** A lamp outside the code: it may do anything. */
-const OUTSIDE = '·';
+const OUTSIDE = '-';
 const TIME_COLUMNS = 18;
 
 /** A decoder's answer for people: the stretches in time order, each code with its lamp face, then what to know beside them. */

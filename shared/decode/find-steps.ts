@@ -18,6 +18,8 @@ const WINDOWS_S = [0.16, 0.4] as const;
 const STEP_SIGMAS = 6;
 /** A change smaller than this share of full scale is no lamp: glow of a neighbour, flicker, a cloud. */
 const LEAST_STEP = 0.05;
+/** Between small steps a level this far (as a share of the typical step) from the usual one of its kind is not told. */
+const DOUBT_SHARE = 0.3;
 /** A mean absolute deviation of normal noise, as a share of its standard deviation, for the median: 0.6745. */
 const MEDIAN_TO_SIGMA = 0.6745;
 const LEAST_NOISE = 0.002;
@@ -45,6 +47,8 @@ export function findSteps(bins: Bins, lane: Float64Array, fullScale: number): St
     // The second largest: one spike doesn't set the scale; half of it keeps a neighbour's glow out.
     const typical = sizes[1] ?? sizes[0] ?? 0;
     labelBetween(peaksAbove(differences, Math.max(least, typical / 2)), used, labels);
+    const small = peaksAbove(differences, least).filter((peak) => Math.abs(peak.size) <= typical / 2);
+    doubtBetween(small, used, lane, labels, DOUBT_SHARE * typical);
     return { labels, noise, found: true };
   }
   return { labels, noise, found: false };
@@ -118,4 +122,34 @@ function labelBetween(peaks: readonly Peak[], used: readonly number[], labels: I
       labels[used[position] as number] = saysLit ? 1 : 0;
     }
   }
+}
+
+/**
+ * A lamp that is lit or goes dark beside a bright neighbour may step by less than half its usual size. Where small steps stand within a run,
+ * each piece keeps its label only if its level is near the usual one of that label.
+ */
+function doubtBetween(small: readonly Peak[], used: readonly number[], lane: Float64Array, labels: Int8Array, tolerance: number): void {
+  if (small.length === 0) return;
+  const usual = [0, 1].map((label) => medianOf(used.filter((bin) => labels[bin] === label).map((bin) => lane[bin] as number)));
+  const starts = [0, ...small.map((peak) => peak.border)];
+  const runEnds = (position: number): boolean => position > 0 && labels[used[position] as number] !== labels[used[position - 1] as number];
+  const doubtful = new Set(starts);
+  let from = 0;
+  for (let position = 1; position <= used.length; position += 1) {
+    const cut = position === used.length || runEnds(position) || doubtful.has(position);
+    if (!cut) continue;
+    const label = labels[used[from] as number] as number;
+    let sum = 0;
+    for (let at = from; at < position; at += 1) sum += lane[used[at] as number] as number;
+    const beside = (from > 0 && doubtful.has(from)) || doubtful.has(position);
+    if (label >= 0 && beside && Math.abs(sum / (position - from) - (usual[label] as number)) > tolerance) {
+      for (let at = from; at < position; at += 1) labels[used[at] as number] = NOT_TOLD;
+    }
+    from = position;
+  }
+}
+
+function medianOf(values: readonly number[]): number {
+  const sorted = Float64Array.from(values).sort();
+  return sorted[sorted.length >> 1] ?? 0;
 }

@@ -21,9 +21,11 @@ const MOST_KNOTS = 24;
 /** How far a level may wander from knot to knot, as a share of full scale: one standard deviation. */
 const DARK_WANDER = 0.03;
 const AMPLITUDE_WANDER = 0.03;
+const AMPLITUDE_FACTOR = 2.5;
 /** How much a neighbour's glow adds, as a share of its amplitude, beforehand: one standard deviation; and at most. */
 const GLOW_SPREAD = 0.05;
 const MOST_GLOW = 0.25;
+const NO_GLOW_SPREAD = 1e-6;
 /** Beyond so many standard deviations a bin counts less and less (Cauchy's weight). */
 const OUTLIER_SIGMAS = 3;
 const ROUNDS = 2;
@@ -62,7 +64,11 @@ export function fitLevels(
     };
     wander(add, 0, knots, DARK_WANDER * fullScale, fullScale);
     wander(add, knots, knots, AMPLITUDE_WANDER * fullScale, fullScale);
-    glows.forEach((_, index) => add(2 * knots + index, 2 * knots + index, 1 / GLOW_SPREAD ** 2));
+    // A neighbour takes no light away: a share that came out negative is held at zero.
+    glows.forEach((_, index) => {
+      const row = 2 * knots + index;
+      add(row, row, 1 / (round > 0 && (solution[row] as number) <= 0 ? NO_GLOW_SPREAD : GLOW_SPREAD) ** 2);
+    });
     const indexes = new Int32Array(4 + glows.length);
     const factors = new Float64Array(4 + glows.length);
     let squares = 0;
@@ -123,7 +129,17 @@ export function fitLevels(
     amplitude[bin] = (1 - share) * (solution[knots + knot] as number) + share * (solution[knots + knot + 1] as number);
     glows.forEach((lane_, index) => (glow[bin] = (glow[bin] as number) + (glowShares[index] as number) * (lane_[bin] as number)));
   }
+  keepNear(amplitude);
   return { dark, amplitude, glow, glowShares, noise: sigma };
+}
+
+/** Gain wanders, but not without bounds: an amplitude stays within a factor of its median. */
+function keepNear(amplitude: Float64Array): void {
+  const sorted = Float64Array.from(amplitude).sort();
+  const median = Math.max(0, sorted[sorted.length >> 1] ?? 0);
+  for (let bin = 0; bin < amplitude.length; bin += 1) {
+    amplitude[bin] = Math.min(median * AMPLITUDE_FACTOR, Math.max(median / AMPLITUDE_FACTOR, amplitude[bin] as number));
+  }
 }
 
 /** A weak pull of each knot towards the one before, and of the first towards zero, so that nothing is undetermined. */

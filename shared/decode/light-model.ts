@@ -26,8 +26,8 @@ const EDGE_AFTER_BINS = 3;
 const MAYBE_GLOW = 0.4;
 /** Glow is believed in up to this share of a neighbour, or 1.5 times what other lamps of the capture show. */
 const USUAL_GLOW = 0.04;
-/** Pure glow must fit almost as well as a lamp of its own: the residual may be larger by so much. */
-const GLOW_FIT_RATIO = 1.15;
+/** Pure glow must explain the light: no more than this share of what the lamp seemed to add may be left over. */
+const GLOW_LEFT_SHARE = 0.3;
 /** A steady level, when no lamp of the file gives a measure: ambient light is about so much of full scale, ± so much. */
 const AMBIENT_SHARE = 0.08;
 const AMBIENT_SPREAD = 0.1;
@@ -155,8 +155,21 @@ function isOnlyGlow(
   const brightest = Math.max(0, ...neighbours.map((neighbour) => mean(neighbour.fit.amplitude)));
   if (brightest === 0 || mean(lamp.fit.amplitude) > MAYBE_GLOW * brightest) return false;
   const labels = awayFromEdges(lamp.states);
-  const glow = fitLevels(bins, lane, labels, neighbours.map(glowOf), fullScale, lamp.fit.noise, false);
-  return glow.noise <= GLOW_FIT_RATIO * lamp.fit.noise && glow.glowShares.every((share) => share <= usualGlow);
+  const { dark, glow, glowShares } = fitLevels(bins, lane, labels, neighbours.map(glowOf), fullScale, lamp.fit.noise, false);
+  if (glowShares.some((share) => share > usualGlow)) return false;
+  const left = [0, 0];
+  const counts = [0, 0];
+  let own = 0;
+  labels.forEach((label, bin) => {
+    if (label < 0 || (bins.weights[bin] as number) === 0) return;
+    left[label] = (left[label] as number) + (lane[bin] as number) - (dark[bin] as number) - (glow[bin] as number);
+    counts[label] = (counts[label] as number) + 1;
+    if (label === 1) own += lamp.fit.amplitude[bin] as number;
+  });
+  const [darkCount = 0, litCount = 0] = counts;
+  if (darkCount === 0 || litCount === 0) return false;
+  const unexplained = (left[1] as number) / litCount - (left[0] as number) / darkCount;
+  return unexplained <= (GLOW_LEFT_SHARE * own) / litCount;
 }
 
 /** The lane of a lamp that was only glow, with the glow taken out. */

@@ -13,26 +13,28 @@ const LOOK_PHASES = 4;
  * @returns indexes: the piece at each is the first of a new stretch; in order, none twice
  */
 export function placeMarks(pieces: readonly Piece[], marksS: readonly number[]): number[] {
-  const splits = new Set<number>();
-  for (const markS of marksS) {
+  const splits: number[] = [];
+  marksS.forEach((markS, order) => {
     const within = pieces
       .map((_, index) => ({ index, distanceS: index === 0 ? Infinity : distanceToEdge(pieces, index, markS) }))
-      .filter(({ distanceS }) => distanceS <= MARK_REACH_S)
+      .filter(({ index, distanceS }) => distanceS <= MARK_REACH_S && index > (splits.at(-1) ?? 0))
       .sort((a, b) => a.distanceS - b.distanceS);
     const nearest = within[0];
-    if (nearest === undefined || endIsNearer(pieces, markS, nearest.distanceS)) continue;
+    if (nearest === undefined || endIsNearer(pieces, markS, nearest.distanceS)) return;
+    const nextS = marksS[order + 1] ?? Infinity;
+    const from = splits.at(-1) ?? 0;
     let chosen = nearest.index;
-    let fewest = disagreement(pieces, nearest.index);
+    let fewest = disagreement(pieces, from, nearest.index, nextS);
     for (const { index } of within.slice(1)) {
-      const here = disagreement(pieces, index);
+      const here = disagreement(pieces, from, index, nextS);
       if (here < fewest) {
         chosen = index;
         fewest = here;
       }
     }
-    splits.add(chosen);
-  }
-  return [...splits].sort((a, b) => a - b);
+    splits.push(chosen);
+  });
+  return splits;
 }
 
 /** How far a mark is from the edge before a piece; where the panel pauses there, from the nearer end of the pause. */
@@ -48,9 +50,11 @@ function endIsNearer(pieces: readonly Piece[], markS: number, distanceS: number)
   return Math.abs(startS - markS) < distanceS || Math.abs(endS - markS) < distanceS;
 }
 
-/** How many phases near the edge differ from their own side: 0 when each side shows one code. */
-function disagreement(pieces: readonly Piece[], split: number): number {
-  return differing(pieces.slice(Math.max(0, split - LOOK_PHASES), split)) + differing(pieces.slice(split, split + LOOK_PHASES));
+/** How many phases near the edge differ from their own side, between the mark before and the one after: 0 when each side shows one code. */
+function disagreement(pieces: readonly Piece[], from: number, split: number, nextS: number): number {
+  const before = pieces.slice(Math.max(from, split - LOOK_PHASES), split);
+  const after = pieces.slice(split, split + LOOK_PHASES).filter((piece) => (piece.fromS + piece.toS) / 2 < nextS);
+  return differing(before) + differing(after);
 }
 
 function differing(side: readonly Piece[]): number {

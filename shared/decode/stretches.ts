@@ -24,6 +24,10 @@ export interface CodeStretch {
 /** More evidence than this against a piece showing the code, nats, and it is a spoiled one. */
 const SPOILED_NATS = 4;
 
+/** To compare a symbol at the file's edge with others takes two of them; edges are found to within this. */
+const FEWEST_FULL = 2;
+const FULL_LENGTH_SLACK_S = 0.03;
+
 /** Whether a piece shows the code's pattern for its selector state. */
 export function showsCode(piece: Piece, code: { onLit: number; offLit: number }): boolean {
   return piece.kind !== 'hole' && piece.evidence.length > 0 && mismatch(piece, code) <= SPOILED_NATS;
@@ -78,10 +82,22 @@ function measure(pieces: Piece[], agreement: Agreement, usualPhaseS: number): Co
     }
     if (piece.kind !== 'phase' && !(piece.kind === 'cut' && agrees)) continue;
     if (before !== undefined && !before.openEnd && !piece.openStart) countBetween(stretch, before, piece, usualPhaseS);
-    if (piece.kind === 'phase') countOne(stretch, piece.selectorLit);
+    if (piece.kind === 'phase' || (agrees && isFullLength(piece, pieces))) countOne(stretch, piece.selectorLit);
     before = piece;
   }
   return stretch;
+}
+
+/**
+ * A symbol at the file's start or end that lasts as long as the longest of its kind: the capture began or ended at its edge.
+ * Beside a hole it is cut all the same.
+ */
+function isFullLength(piece: Piece, pieces: readonly Piece[]): boolean {
+  const isFirst = piece === pieces[0] && piece.openStart && !piece.openEnd;
+  const isLast = piece === pieces.at(-1) && piece.openEnd && !piece.openStart;
+  const whole = pieces.filter((other) => other.kind === 'phase' && other.selectorLit === piece.selectorLit);
+  const longestS = Math.max(...whole.map((other) => other.toS - other.fromS));
+  return (isFirst || isLast) && whole.length >= FEWEST_FULL && piece.toS - piece.fromS >= longestS - FULL_LENGTH_SLACK_S;
 }
 
 /** Symbols that an interruption spoiled: as many as fit into its time and let the selector go on taking turns. */

@@ -24,9 +24,11 @@ const GLITCH_S = 0.25;
 const GLITCH_SHARE = 0.3;
 /** A hole longer than this share of a phase cuts the symbol (contract, section 3). */
 const CUTTING_HOLE_SHARE = 0.5;
-/** Darkness after a first digit counts as a second digit of 0 when it lasts this share of a usual phase; at the file's end, more. */
+/** Darkness after a first digit counts as a second digit of 0 when it lasts this share of a phase; where the file ends in it, all of one. */
 const ZERO_SHARE = 0.75;
-const ZERO_SHARE_AT_END = 1.1;
+const ZERO_SLACK_S = 0.05;
+/** What no code explains is left out when it is hardly longer than one phase: the panel on its way to the next thing. */
+const UNLISTED_PHASES = 1.1;
 /** A code read so surely and so often proves service mode for the rest of the file. */
 const PROVING_PROBABILITY = 0.999;
 const PROVING_REPEATS = 3;
@@ -75,7 +77,9 @@ function readWeightedPhases(input: CodingInput, coding: WeightedPhases): CodingR
   const holes = holesLongerThan(bins, CUTTING_HOLE_SHARE * usualPhaseS);
   const glitchS = Math.min(GLITCH_S, GLITCH_SHARE * coding.phaseS[0]);
   const cells = absorbShort(cutCells(bins, codingLamps, holes), glitchS);
-  const regions = outsideReady(cells, ready).map((region) => cutBlocks(makePieces(region, sums, band), band, 2 * usualPhaseS));
+  const regions = outsideReady(cells, ready).map((region) =>
+    cutBlocks(makePieces(absorbShort(region, glitchS), sums, band), band, 2 * usualPhaseS),
+  );
   const blocks = regions.flatMap((region) => region.blocks);
 
   const find = (model: ConsensusModel): Found[] => blocks.map((block) => findCodes(block, input, coding, weighted.length, band[1], model));
@@ -111,7 +115,7 @@ function readWeightedPhases(input: CodingInput, coding: WeightedPhases): CodingR
       const fromS = pieces[0]?.fromS ?? 0;
       const toS = pieces.at(-1)?.toS ?? 0;
       // Less than one phase is the panel on its way to the next thing.
-      if (toS - fromS <= Math.max(usualPhaseS, band[0]) * ZERO_SHARE_AT_END) continue;
+      if (toS - fromS <= Math.max(usualPhaseS, band[0]) * UNLISTED_PHASES) continue;
       segments.push({
         kind: 'unreadable',
         fromS,
@@ -181,11 +185,20 @@ function findCodes(
 function addHiddenZero(stretch: CodeStretch, block: Block): void {
   const darkness = block.darkness;
   if (darkness === undefined || stretch.offLit !== 0 || !stretch.endsWithOn || stretch.pieces.at(-1)?.openEnd === true) return;
-  const zeros = stretch.pieces.filter((piece) => piece.kind === 'phase' && !piece.selectorLit);
-  const usualS = usualLength(zeros) || stretch.usualPhaseS;
   const lengthS = darkness.toS - darkness.fromS;
-  stretch.toS = darkness.fromS + Math.min(lengthS, usualS);
-  if (lengthS >= (darkness.openEnd ? ZERO_SHARE_AT_END : ZERO_SHARE) * usualS) stretch.wholeOff += 1;
+  const expectedS = expectedZeroS(stretch);
+  stretch.toS = darkness.fromS + Math.min(lengthS, expectedS);
+  if (lengthS >= (darkness.openEnd ? expectedS + ZERO_SLACK_S : ZERO_SHARE * expectedS)) stretch.wholeOff += 1;
+}
+
+/** How long the next dark phase would last: as the first digit's phase before it, in the proportion that the code has shown so far. */
+function expectedZeroS(stretch: CodeStretch): number {
+  const phases = stretch.pieces.filter((piece) => piece.kind === 'phase');
+  const zeroS = usualLength(phases.filter((piece) => !piece.selectorLit));
+  const firstS = usualLength(phases.filter((piece) => piece.selectorLit));
+  const last = phases.at(-1);
+  if (zeroS === 0 || firstS === 0 || last === undefined) return stretch.usualPhaseS;
+  return ((last.toS - last.fromS) * zeroS) / firstS;
 }
 
 function repeatsOf(stretch: CodeStretch): number {
