@@ -16,8 +16,9 @@ function count(modules: readonly TestModule[], unhandled: number): { passed: num
   // A file that does not load and a beforeAll that throws have no failed test.
   const suites = modules.flatMap((module) => [module, ...module.children.allSuites()]);
   const failedSuites = suites.filter((suite) => suite.errors().length > 0).length;
-  const ranNothing = tests.length === 0 ? 1 : 0;
-  return { passed, failed: failedTests + failedSuites + unhandled + ranNothing };
+  const failed = failedTests + failedSuites + unhandled;
+  const ranNothing = passed === 0 && failed === 0;
+  return { passed, failed: ranNothing ? 1 : failed };
 }
 
 // Vitest wants the reporter of a file as its default export.

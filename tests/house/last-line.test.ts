@@ -1,0 +1,48 @@
+// The last line of npm test counts what failed, also what is no test: a file that does not load must not look like a success.
+import { mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { execa } from 'execa';
+import { afterAll, beforeAll, expect, test } from 'vitest';
+
+const root = join(import.meta.dirname, '../..');
+const fixtures = join(root, 'tests/fixtures/count-reporter');
+
+let folder: string;
+beforeAll(() => {
+  folder = mkdtempSync(join(tmpdir(), 'refettle-test-count-'));
+  writeFileSync(join(folder, 'vitest.config.mjs'), 'export default { test: { include: ["**/*.test.ts"] } };\n');
+});
+afterAll(() => {
+  rmSync(folder, { recursive: true, force: true });
+});
+
+async function countOf(...files: string[]): Promise<{ line: string; exitCode: number | undefined }> {
+  const count = join(folder, 'count');
+  const { exitCode } = await execa(
+    join(root, 'node_modules/.bin/vitest'),
+    [
+      'run',
+      '--root',
+      fixtures,
+      '--config',
+      join(folder, 'vitest.config.mjs'),
+      '--reporter',
+      join(root, 'tests/helpers/count-reporter.ts'),
+      ...files,
+    ],
+    { env: { REFETTLE_TEST_COUNT: count }, reject: false, cwd: root },
+  );
+  return { line: readFileSync(count, 'utf8').trim(), exitCode };
+}
+
+test.each([
+  { files: ['passes'], line: '2 0', exitCode: 0 },
+  { files: ['fails'], line: '1 1', exitCode: 1 },
+  { files: ['set-up-throws'], line: '0 1', exitCode: 1 },
+  { files: ['does-not-load'], line: '0 1', exitCode: 1 },
+  { files: ['leaves-a-rejection'], line: '1 1', exitCode: 1 },
+  { files: ['passes', 'fails', 'does-not-load'], line: '3 2', exitCode: 1 },
+])('When $files run, then "passed failed" is $line and the exit code $exitCode', async ({ files, line, exitCode }) => {
+  expect(await countOf(...files)).toEqual({ line, exitCode });
+});
