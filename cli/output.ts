@@ -26,9 +26,9 @@ export interface Output {
 
 /** How words are dressed on one stream. */
 export interface Style {
-  ink: ChalkInstance;
-  unicode: boolean;
-  columns: number;
+  readonly ink: ChalkInstance;
+  readonly unicode: boolean;
+  readonly columns: number;
 }
 
 const USUAL_COLUMNS = 80;
@@ -65,7 +65,14 @@ export function outputOn(stream: RawOutput, env: Environment): Output {
     async style() {
       const { Chalk } = await import('chalk');
       ink ??= new Chalk({ level: colourLevel });
-      return { ink, unicode, columns: stream.columns ?? USUAL_COLUMNS };
+      return {
+        ink,
+        unicode,
+        // Asked for at each drawing: a terminal may be resized.
+        get columns() {
+          return stream.columns ?? USUAL_COLUMNS;
+        },
+      };
     },
   };
 }

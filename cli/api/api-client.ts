@@ -34,7 +34,7 @@ export function createApi({ server, token, signal, fetch: send = fetch }: ApiPar
     async call(name, request = {}) {
       const route: Route = routes[name];
       const bearer = token();
-      const response = await ask(send, server, `${server}${routeUrl(name, request as { params?: Record<string, unknown> })}`, {
+      const response = await ask(send, server, `${server}${routeUrl(name, request as Parameters<typeof routeUrl>[1])}`, {
         method: route.method,
         headers: {
           accept: 'application/json',

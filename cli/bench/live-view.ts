@@ -1,0 +1,133 @@
+import type { DecodeAnswer, PhaseView, Segment } from '../../shared/decode/answer.js';
+import { decodeCapture } from '../../shared/decode/decode-capture.js';
+import { viewCapture } from '../../shared/decode/view-capture.js';
+import { lampFace } from '../../shared/lamps/face.js';
+import { clock } from '../../shared/script/judge-watch.js';
+import type { Sheet } from '../../shared/sheet/schema.js';
+import type { Style } from '../output.js';
+import { faceLines } from '../render/face-lines.js';
+import { drawLanes, laneColumns, WEAK_BELOW, type Lane } from '../render/lanes.js';
+import { padRight, spread } from '../render/columns.js';
+import type { LampWindow } from './lamp-window.js';
+
+/** How often a code must have shown before the technician is sent on to the next (look, terminal: "has shown 4 times"). */
+const SURE_REPEATS = 4;
+
+type DecodedCode = DecodeAnswer['codes'][number];
+
+/** What the decoder makes of a capture so far. Times in seconds since the start of the capture. */
+export interface Understanding {
+  segments: Segment[];
+  codes: DecodedCode[];
+  phases: PhaseView[];
+  lamps: { threshold: number | null; litFraction: number | null }[];
+  warnings: string[];
+}
+
+export const NOTHING_YET: Understanding = { segments: [], codes: [], phases: [], lamps: [], warnings: [] };
+
+/** Decodes what the window holds. */
+export function understand(window: LampWindow, sheet: Sheet): Understanding {
+  const { capture, fromUs } = window.capture();
+  if (capture.timesUs.length === 0) return NOTHING_YET;
+  const answer = decodeCapture(capture, sheet);
+  const view = viewCapture(capture, sheet);
+  const later = <T extends { fromS: number; toS: number }>(stretch: T): T => ({ ...stretch, fromS: stretch.fromS + fromUs / 1e6, toS: stretch.toS + fromUs / 1e6 });
+  const lamps = sheet.lamps.map(({ id }) => view.lamps.find((lamp) => lamp.id === id) ?? { threshold: null, litFraction: null });
+  return { segments: answer.segments.map(later), codes: answer.codes, phases: view.phases.map(later), lamps, warnings: answer.warnings };
+}
+
+/** Whether the code that shows now has shown often enough. */
+export function sureCode({ codes, segments }: Understanding): DecodedCode | undefined {
+  const last = segments.findLast((segment) => segment.kind === 'code');
+  const code = codes.at(-1);
+  return code !== undefined && last?.code === code.code && (code.repeats ?? SURE_REPEATS) >= SURE_REPEATS ? code : undefined;
+}
+
+export interface ViewParts {
+  window: LampWindow;
+  sheet: Sheet;
+  understood: Understanding;
+  elapsedS: number;
+  seconds: number | undefined;
+  byKeys: boolean;
+  /** A watch waits for something: no codes are asked for. */
+  waitsFor?: string | undefined;
+}
+
+/** The live view as lines: lanes, phases, code, lamp face, what to do, keys. What there is no room for is left out from the face up. */
+export function liveLines(parts: ViewParts, style: Style, rows: number): string[] {
+  const { window, sheet, understood, seconds, elapsedS } = parts;
+  const { ink, columns } = style;
+  const { coding } = sheet;
+  const shown = window.columns(laneColumns(columns));
+  const levels = window.now;
+  const lanes = sheet.lamps.map((lamp, index): Lane => {
+    const known = understood.lamps[index];
+    const level = levels[index] ?? 0;
+    const threshold = known?.threshold == null ? undefined : known.threshold / window.header.scale.max;
+    return {
+      label: lamp.label,
+      colour: lamp.colour,
+      weight: coding.kind === 'weighted-phases' ? coding.weights[lamp.id] : undefined,
+      levels: shown.levels[index] ?? [],
+      lit: window.samples === 0 ? undefined : level > (threshold ?? WEAK_BELOW),
+      litFraction: parts.byKeys ? undefined : (known?.litFraction ?? undefined),
+    };
+  });
+  const letters = coding.kind === 'weighted-phases' ? (coding.letters ?? { on: '', off: '' }) : { on: '', off: '' };
+  const marks = window.marks.map(({ atUs, label }) => ({ atS: atUs / 1e6, label }));
+  const strip = drawLanes({ lanes, fromS: shown.fromS, marks, phases: understood.phases, segments: understood.segments, letters }, style);
+  const time = `${clock(elapsedS)}${seconds === undefined ? '' : ` of ${clock(seconds)}`}`;
+  const lost = window.lost > 0 ? `, ${window.lost} lines lost` : '';
+  const title = spread(` ${ink.bold(parts.waitsFor ?? (parts.byKeys ? 'The lamps, by keys' : 'The lamps'))}${lost}`, ink.bold(`going ${time}`), columns - 1);
+  const foot = [...(parts.byKeys ? [keyRow(window, sheet, style)] : []), ` ${ink.bold(whatNow(parts))}`, keyLine(parts, style)];
+  const room = rows - 2 - strip.length - foot.length - 1;
+  return [title, ...strip, ...fitted(codeFace(parts, style), room), ...foot];
+}
+
+/** With a blank line on both sides where there is room for it. */
+function fitted(lines: readonly string[], room: number): string[] {
+  if (lines.length === 0 || room < lines.length) return room >= 1 ? [''] : [];
+  return room >= lines.length + 2 ? ['', ...lines, ''] : [...lines];
+}
+
+/** The face of the code that shows, and how sure it is. */
+function codeFace({ understood, sheet }: ViewParts, style: Style): string[] {
+  const segment = understood.segments.findLast((one) => one.kind === 'code' || one.kind === 'unreadable');
+  if (segment?.kind !== 'code') return [];
+  const face = lampFace(segment.code, sheet);
+  const sure = `${segment.repeats === undefined ? '' : `${segment.repeats} times, `}confidence ${segment.confidence.toFixed(4)}`;
+  return face ? faceLines(face, style, [face.title ?? '', sure]) : [` ${style.ink.bold(segment.code)}   ${sheet.faults.find(({ code }) => code === segment.code)?.title ?? ''}   ${sure}`];
+}
+
+function whatNow({ understood, waitsFor, window }: ViewParts): string {
+  if (waitsFor !== undefined) return 'Hands off. It is watched until it ends.';
+  if (window.samples === 0) return 'Waiting for the first sample.';
+  const sure = sureCode(understood);
+  if (sure) return `${sure.code} has shown${sure.repeats === undefined ? '' : ` ${sure.repeats} times`}. Bring up the next code, then press space.`;
+  const last = understood.segments.at(-1);
+  if (last?.kind === 'unreadable') return last.reason.charAt(0).toUpperCase() + last.reason.slice(1);
+  if (last?.kind === 'ready') return 'Service mode is on. Bring up the first code.';
+  return 'Let it show a few times more.';
+}
+
+function keyLine({ byKeys, sheet, waitsFor }: ViewParts, { ink }: Style): string {
+  const key = (name: string, word: string): string => `${ink.inverse(` ${name} `)} ${word}`;
+  const lamps = byKeys ? [key(`1…${Math.min(9, sheet.lamps.length)}`, 'lamp on or off')] : [];
+  const next = waitsFor === undefined ? [key('space', 'mark next code')] : [];
+  return ` ${[...lamps, ...next, key('s', 'stop'), key('q', byKeys ? 'leave' : 'leave, keep it all')].join('  ')}`;
+}
+
+/** For `--keys`: which key is which lamp, and what it shows. */
+function keyRow(window: LampWindow, sheet: Sheet, { ink }: Style): string {
+  const lit = window.now;
+  return ` ${sheet.lamps.map((lamp, index) => padRight(`${index + 1} ${lamp.label} ${(lit[index] ?? 0) > 0 ? ink.bold('on') : 'off'}`, 12)).join('')}`;
+}
+
+/** Where nobody watches: a line now and then, so that a log says what is awaited and for how long. */
+export function progressLine(window: LampWindow, understood: Understanding, elapsedS: number, seconds: number | undefined): string {
+  const codes = understood.codes.map(({ code, repeats }) => `${code}${repeats === undefined ? '' : ` ${repeats} times`}`);
+  const seen = codes.length > 0 ? codes.join(', ') : (understood.segments.at(-1)?.kind ?? 'nothing yet');
+  return `  ${Math.round(elapsedS)} s${seconds === undefined ? '' : ` of ${seconds} s`}, ${window.samples} samples, ${seen === 'ready' ? 'ready blink' : seen}`;
+}

@@ -1,0 +1,115 @@
+import type { Sheet } from '../../shared/sheet/schema.js';
+import type { Context } from '../context.js';
+import { readKeys } from '../keyboard.js';
+import { ScreenBlock } from '../render/screen-block.js';
+import type { LampWindow } from './lamp-window.js';
+import { liveLines, NOTHING_YET, progressLine, understand, type Understanding } from './live-view.js';
+import type { Controls, Watcher } from './record-lamps.js';
+
+/** The lanes are drawn 4 times a second at most (look/tokens, Terminal). */
+const DRAW_EVERY_MS = 250;
+/** The decoder looks again every second, and never takes more than a tenth of the time. */
+const UNDERSTAND_EVERY_MS = 1000;
+const REST_FACTOR = 10;
+/** Where nobody watches: one line in so many seconds of the capture. */
+const PROGRESS_EVERY_S = 10;
+
+export interface WatchingParts {
+  context: Context;
+  sheet: Sheet;
+  /** Somebody sits there: keys are read. */
+  attended: boolean;
+  byKeys?: boolean;
+  /** Something is waited for: asked now and then whether it has come. */
+  over?: (window: LampWindow) => boolean;
+  waitsFor?: string | undefined;
+}
+
+/** The live view on a terminal, a line now and then elsewhere. */
+export function watching(parts: WatchingParts): (controls: Controls) => Promise<Watcher> {
+  return (controls) => (parts.context.stderr.isTerminal ? liveWatcher(parts, controls) : Promise.resolve(quietWatcher(parts, controls)));
+}
+
+async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Watcher> {
+  const { context, sheet, byKeys = false, waitsFor } = parts;
+  const { stderr } = context;
+  const block = new ScreenBlock(stderr);
+  const style = await stderr.style();
+  let window: LampWindow | undefined;
+  let understood: Understanding = NOTHING_YET;
+  let understandAgainMs = 0;
+  let closed = false;
+
+  const draw = (): void => {
+    if (!window || closed) return;
+    const startedMs = performance.now();
+    if (startedMs >= understandAgainMs) {
+      understood = understand(window, sheet);
+      const tookMs = performance.now() - startedMs;
+      understandAgainMs = performance.now() + Math.max(UNDERSTAND_EVERY_MS, REST_FACTOR * tookMs);
+    }
+    block.draw(liveLines({ window, sheet, understood, elapsedS: controls.elapsedS(), seconds: controls.seconds, byKeys, waitsFor }, style, stderr.rows));
+  };
+  const timer = setInterval(draw, DRAW_EVERY_MS);
+  const keyboard = parts.attended && context.interactive ? await readKeys(context.stdin, onKeyOf(controls, waitsFor !== undefined), () => context.interruption.interrupt()) : undefined;
+  const over = lookNowAndThen(parts.over);
+  return {
+    seen(seenWindow) {
+      window = seenWindow;
+      return over(seenWindow);
+    },
+    marked(markedWindow) {
+      window = markedWindow;
+      // The next code was brought up: what has shown so far is no longer the one to judge.
+      understandAgainMs = 0;
+    },
+    close() {
+      clearInterval(timer);
+      keyboard?.close();
+      // The last picture shows all that came.
+      understandAgainMs = 0;
+      draw();
+      closed = true;
+      block.leave();
+    },
+  };
+}
+
+function onKeyOf(controls: Controls, waits: boolean): (key: string) => void {
+  return (key) => {
+    if (controls.takeKey(key)) return;
+    if (key === ' ' && !waits) controls.mark();
+    else if (key.toLowerCase() === 's') controls.stop('stopped');
+    else if (key.toLowerCase() === 'q') controls.stop('left');
+  };
+}
+
+function quietWatcher(parts: WatchingParts, controls: Controls): Watcher {
+  const { context, sheet } = parts;
+  const over = lookNowAndThen(parts.over);
+  let nextS = PROGRESS_EVERY_S;
+  if (parts.waitsFor !== undefined) context.stderr.write(`  ${parts.waitsFor}\n`);
+  return {
+    seen(window) {
+      const elapsedS = window.lastUs / 1_000_000;
+      if (elapsedS >= nextS) {
+        nextS += PROGRESS_EVERY_S;
+        context.stderr.write(`${progressLine(window, parts.over ? NOTHING_YET : understand(window, sheet), elapsedS, controls.seconds)}\n`);
+      }
+      return over(window);
+    },
+    marked: () => context.stderr.write('  next code\n'),
+    close: () => undefined,
+  };
+}
+
+/** Looking costs more the longer a capture is: once a second of it at first, later every twentieth of it. */
+function lookNowAndThen(over: WatchingParts['over']): (window: LampWindow) => boolean {
+  let nextS = 1;
+  return (window) => {
+    const elapsedS = window.lastUs / 1_000_000;
+    if (!over || elapsedS < nextS) return false;
+    nextS = elapsedS + Math.max(1, elapsedS / 20);
+    return over(window);
+  };
+}
