@@ -81,11 +81,11 @@ export function RepairForm({
     const { idempotencyKey, id, at } = submissionFor(repair);
     record.mutate({ body: { id, at, repair }, idempotencyKey }, { onSuccess: onDone });
   };
-  const field = (name: keyof typeof errors & string, hint?: string) => ({
+  const field = (name: keyof z.input<typeof schema>, hint?: string) => ({
     id: fieldId(name),
     label: LABELS[name] ?? name,
     ...(hint === undefined ? {} : { hint }),
-    error: errors[name as keyof z.input<typeof schema>]?.message,
+    error: errors[name]?.message,
   });
   const source = watch('source');
 
