@@ -4,8 +4,6 @@ import { setTimeout as pause } from 'node:timers/promises';
 import { SetUpError } from '../set-up-error.js';
 
 const pauseMs = 50;
-/** One of ours that was killed takes its PostgreSQL along within a second or two. */
-const goesByItselfMs = 5_000;
 const stopsWhenToldMs = 30_000;
 
 function linkTarget(path: string): string | undefined {
@@ -43,16 +41,15 @@ function notedProcess(pidFile: string): number | undefined {
 /** After a kill: ends a PostgreSQL that still runs in the folder, and clears a note that would keep a new one from starting. */
 export async function settleLeftovers(folder: string): Promise<void> {
   const pidFile = join(folder, 'postmaster.pid');
-  if (!(await emptyWithin(folder, goesByItselfMs))) {
-    const server = notedProcess(pidFile);
-    if (server !== undefined && processesIn(folder).includes(server)) process.kill(server, 'SIGINT');
-    if (!(await emptyWithin(folder, stopsWhenToldMs))) {
-      const numbers = processesIn(folder).join(', ');
-      throw new SetUpError(
-        `An earlier PostgreSQL still works in ${folder} (process ${numbers}).`,
-        `End it, then start again: kill -INT ${numbers}`,
-      );
-    }
+  const server = notedProcess(pidFile);
+  // Its fast shutdown; one whose server was killed a moment ago has been told already.
+  if (server !== undefined && processesIn(folder).includes(server)) process.kill(server, 'SIGINT');
+  if (!(await emptyWithin(folder, stopsWhenToldMs))) {
+    const numbers = processesIn(folder).join(' ');
+    throw new SetUpError(
+      `An earlier PostgreSQL still works in ${folder} (process ${numbers}).`,
+      `End it, then start again: kill -INT ${numbers}`,
+    );
   }
   // Nobody works here any more. PostgreSQL clears a stale note itself, unless its number was given to another process since.
   rmSync(pidFile, { force: true });

@@ -1,23 +1,43 @@
-import { spawn, type ChildProcess } from 'node:child_process';
+import { execFileSync, spawn, type ChildProcess } from 'node:child_process';
 import { once } from 'node:events';
 import { chmodSync, existsSync, mkdirSync, mkdtempSync, readdirSync, readFileSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import pg from 'pg';
-import { afterEach, beforeEach, expect, test } from 'vitest';
+import { afterAll, afterEach, beforeAll, beforeEach, expect, test } from 'vitest';
 import { openDb } from '../../../server/db.js';
 import { startCluster, type Cluster, type ClusterPlace } from '../../../server/postgres/cluster.js';
 import { asOwner, ownerOfCluster } from '../../../server/postgres/owner.js';
 import { startOwnCluster } from '../../../server/postgres/own-cluster.js';
 
+let original: string;
 let folder: string;
 let place: ClusterPlace;
 let running: Cluster[];
 
+function emptyFolder(): string {
+  const made = mkdtempSync(join(tmpdir(), 'refettle-test-set-up-'));
+  chmodSync(made, 0o711); // as root, PostgreSQL's user must pass through
+  return made;
+}
+const placeIn = (parent: string): ClusterPlace => ({
+  folder: join(parent, 'postgres'),
+  passwordFile: join(parent, 'password'),
+  logFile: join(parent, 'postgres.log'),
+});
+
+// Made once and copied: to lay out a cluster takes a second or two.
+beforeAll(async () => {
+  original = emptyFolder();
+  await (await startCluster(placeIn(original), { durable: false })).stop();
+});
+afterAll(() => {
+  rmSync(original, { recursive: true, force: true });
+});
 beforeEach(() => {
-  folder = mkdtempSync(join(tmpdir(), 'refettle-test-set-up-'));
-  chmodSync(folder, 0o711); // as root, PostgreSQL's user must pass through
-  place = { folder: join(folder, 'postgres'), passwordFile: join(folder, 'password'), logFile: join(folder, 'postgres.log') };
+  folder = emptyFolder();
+  execFileSync('cp', ['--archive', `${original}/.`, folder]);
+  place = placeIn(folder);
   running = [];
 });
 afterEach(async () => {
@@ -117,7 +137,10 @@ test('When the number in a stale note was given to another process since, then t
 });
 
 test('When a cluster is made, then only its owner can read the password, the log and the rows, and nobody gets in without the password', async () => {
-  const cluster = await start();
+  rmSync(place.folder, { recursive: true });
+  rmSync(place.passwordFile);
+
+  const cluster = await start({ durable: false });
 
   expect((statSync(place.passwordFile).mode & 0o777).toString(8)).toBe('600');
   expect((statSync(place.logFile).mode & 0o777).toString(8)).toBe('600');
@@ -146,14 +169,15 @@ test('When a cluster runs, then it listens on loopback alone and what it commits
 test('When an earlier start was killed while the cluster was made, then the half-made one is cleared away', async () => {
   const halfMade = join(folder, 'postgres-new-Ab12Cd');
   mkdirSync(join(halfMade, 'data'), { recursive: true });
+  rmSync(place.folder, { recursive: true });
+  rmSync(place.logFile);
 
-  await start();
+  await start({ durable: false });
 
   expect(readdirSync(folder).sort()).toEqual(['password', 'postgres', 'postgres.log']);
 });
 
 test('When the password is lost, then the start says which file is missing and touches nothing', async () => {
-  await (await start()).stop();
   rmSync(place.passwordFile);
 
   await expect(start()).rejects.toThrow(`${place.passwordFile} is not there`);
@@ -161,14 +185,12 @@ test('When the password is lost, then the start says which file is missing and t
 });
 
 test('When the folder was made by a version that is not installed, then the start names the package to install', async () => {
-  await (await start()).stop();
   writeFileSync(join(place.folder, 'PG_VERSION'), '9\n');
 
   await expect(start()).rejects.toMatchObject({ remedy: expect.stringContaining('postgresql-9') as string });
 });
 
 test('When PostgreSQL refuses to start, then the reason is in the error', async () => {
-  await (await start()).stop();
   writeFileSync(join(place.folder, 'postgresql.conf'), 'no_such_setting = on\n');
 
   await expect(start()).rejects.toThrow('no_such_setting');
@@ -195,10 +217,11 @@ test('When the data folder lies below a folder that is closed to others, then th
 });
 
 test('When the database lay elsewhere and is gone, then the start says so and does not begin an empty one', async () => {
+  rmSync(place.folder, { recursive: true });
   writeFileSync(join(folder, 'postgres-folder.txt'), `${join(folder, 'gone')}\n`);
 
   await expect(startOwnCluster(folder)).rejects.toThrow(`it is in ${join(folder, 'gone')}`);
-  expect(existsSync(join(folder, 'postgres'))).toBe(false);
+  expect(existsSync(place.folder)).toBe(false);
 });
 
 async function startInAnotherProgram(): Promise<{ program: ChildProcess; processId: number }> {
