@@ -1,0 +1,422 @@
+// The safety gates, tried around by the API. Numbers are those of the product's list of gates.
+import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import type { RunLog, StepResult } from '../../shared/script/run-log.js';
+import { captureFile } from '../helpers/bench-log.js';
+import {
+  addHeron,
+  mendAndProve,
+  newCapture,
+  newInspection,
+  newReading,
+  newRepair,
+  newRun,
+  pass,
+  passDeadTests,
+  rulesSeen,
+  signedOffUnit,
+  takeIn,
+} from '../helpers/factories.js';
+import { problemIn, startTestServer, type TestServer } from '../helpers/test-server.js';
+
+let server: TestServer;
+let demo: TestServer;
+beforeAll(async () => {
+  server = await startTestServer();
+  demo = await startTestServer({ shop: { demo: true }, config: { demo: true } });
+  await addHeron(server);
+  await addHeron(demo);
+});
+afterAll(() => Promise.all([server.close(), demo.close()]));
+
+const by = (number: number, on: TestServer = server) => ({ params: { number }, as: on.people.technician });
+const page = (number: number, on: TestServer = server) => on.ok('getUnit', by(number, on));
+const ruleOf = async (number: number, id: string, on: TestServer = server) =>
+  (await page(number, on)).readiness.rules.find((rule) => rule.id === id);
+const stepOf = (run: RunLog, id: string): StepResult => {
+  const step = run.steps.find(({ stepId }) => stepId === id);
+  if (!step) throw new Error(`no step ${id}`);
+  return step;
+};
+
+describe('Gate 1, dead tests before power', () => {
+  test('When nothing was tested, then neither lamps nor current may be taken, and the answer says what is missing and the way through', async () => {
+    const { number } = await takeIn(server);
+    const capture = problemIn(await server.send('recordCapture', { ...by(number), body: newCapture(server) }));
+    expect(capture).toMatchObject({ status: 403, kind: 'gate' });
+    expect(capture.errors?.map(({ reason }) => reason)).toEqual([
+      'visual check is not done',
+      'protective conductor is not done',
+      'insulation is not done',
+    ]);
+    expect(capture.remedy).toContain('in this order');
+    expect(
+      problemIn(await server.send('recordReading', { ...by(number), body: newReading(server, 'protective-conductor-current') })).kind,
+    ).toBe('gate');
+    expect(
+      problemIn(
+        await server.send('recordRun', {
+          ...by(number),
+          body: { ...newRun(server, 'h6-find'), steps: newRun(server, 'h6-find').steps.slice(6, 10) },
+        }),
+      ).kind,
+    ).toBe('gate');
+    expect((await page(number)).events).toHaveLength(1); // nothing of it was kept
+  });
+
+  test('When a dead test is done before the one before it, then it may not begin', async () => {
+    const { number } = await takeIn(server);
+    expect(problemIn(await server.send('recordReading', { ...by(number), body: newReading(server, 'protective-conductor') })).kind).toBe(
+      'gate',
+    );
+    await server.ok('recordInspection', { ...by(number), body: newInspection(server) });
+    expect(problemIn(await server.send('recordReading', { ...by(number), body: newReading(server, 'insulation') })).kind).toBe('gate');
+  });
+
+  test('When a dead test fails, then nothing after it is let through, and a second try does not open it', async () => {
+    const { number } = await takeIn(server);
+    await server.ok('recordInspection', { ...by(number), body: newInspection(server) });
+    const { event } = await server.ok('recordReading', { ...by(number), body: newReading(server, 'protective-conductor', 1.9) });
+    expect(event.kind === 'reading' && event.reading.judgement.verdict).toBe('fail');
+    await server.ok('recordReading', { ...by(number), body: newReading(server, 'protective-conductor') });
+    const problem = problemIn(await server.send('recordReading', { ...by(number), body: newReading(server, 'insulation') }));
+    expect(problem.errors).toEqual([{ pointer: '', reason: 'protective conductor: fail' }]);
+  });
+
+  test('When a lead overrides with a reason, then it opens, and the page says who and why; nobody else may, and not without one', async () => {
+    const { number } = await takeIn(server);
+    const body = { gate: 'dead tests', reason: 'insulation tester is away, cord was replaced' };
+    expect((await server.send('recordOverride', { ...by(number), body })).status).toBe(403);
+    expect(
+      (await server.send('recordOverride', { params: { number }, as: server.people.lead, body: { ...body, reason: '          ' } })).status,
+    ).toBe(422);
+    await server.ok('recordOverride', { params: { number }, as: server.people.lead, body });
+    expect((await page(number)).energising).toMatchObject({ open: true, override: { by: 'Maren Holt', reason: body.reason } });
+    await server.ok('recordCapture', { ...by(number), body: newCapture(server) });
+  });
+
+  test('When the machine was mended, then dead tests and overrides from before no longer open it', async () => {
+    const { number } = await takeIn(server);
+    await passDeadTests(server, number);
+    pass(server, 1);
+    await server.ok('recordRepair', { ...by(number), body: newRepair(server) });
+    expect((await server.send('recordCapture', { ...by(number), body: newCapture(server) })).status).toBe(403);
+  });
+
+  test('When dead tests from before the repair are sent after it, then they do not open the gate', async () => {
+    const { number } = await takeIn(server);
+    const late = { ...newInspection(server), at: server.time.now.toISOString() };
+    const lateEarth = newReading(server, 'protective-conductor');
+    const lateInsulation = newReading(server, 'insulation');
+    pass(server, 5);
+    await server.ok('recordRepair', { ...by(number), body: newRepair(server) });
+    pass(server, 5);
+    await server.ok('recordInspection', { ...by(number), body: late });
+    await server.ok('recordReading', { ...by(number), body: lateEarth });
+    await server.ok('recordReading', { ...by(number), body: lateInsulation });
+    expect((await page(number)).energising.open).toBe(false);
+    expect((await page(number)).events.map((event) => event.kind)).toEqual(['intake', 'inspection', 'reading', 'reading', 'repair']);
+  });
+
+  test('When the log says that an energised check was another one on a dead machine, then it is refused', async () => {
+    const { number } = await takeIn(server);
+    const run = newRun(server, 'h6-find');
+    const winding = stepOf(run, 'drain-pump-winding');
+    const current = newReading(server, 'protective-conductor-current').reading;
+    const forged = { ...run, steps: [{ ...winding, reading: { ...current, condition: 'dead' } }] };
+    expect(problemIn(await server.send('recordRun', { ...by(number), body: forged }))).toMatchObject({
+      status: 422,
+      errors: [{ pointer: '/steps/0/reading/checkId' }],
+    });
+  });
+
+  test('When a reading says of itself that its machine was dead, then the sheet is believed and not the reading', async () => {
+    const { number } = await takeIn(server);
+    const body = newReading(server, 'protective-conductor-current');
+    expect(
+      (await server.send('recordReading', { ...by(number), body: { ...body, reading: { ...body.reading, condition: 'dead' } } })).status,
+    ).toBe(403);
+  });
+});
+
+describe('Gate 2, a caution has no default', () => {
+  test('When an energised step comes without its caution, or after a no, then the log is refused', async () => {
+    const { number } = await takeIn(server);
+    for (const change of [
+      (step: StepResult) => (step.stepId === 'power-caution' ? undefined : step),
+      (step: StepResult) => (step.stepId === 'power-caution' && step.kind === 'caution' ? { ...step, answer: 'no' as const } : step),
+    ]) {
+      const problem = problemIn(await server.send('recordRun', { ...by(number), body: newRun(server, 'h6-find', { change }) }));
+      expect(problem).toMatchObject({ status: 403, kind: 'gate', detail: expect.stringContaining('service-mode') as unknown });
+    }
+  });
+
+  test('When the script itself has an energised step without a caution, then it is refused before anything is looked at', async () => {
+    const { number } = await takeIn(server);
+    const run = newRun(server, 'h6-find');
+    const text = run.script.text.replace(/ {2}- \{id: power-caution.*\n/, '');
+    const problem = problemIn(await server.send('recordRun', { ...by(number), body: { ...run, script: { ...run.script, text } } }));
+    expect(problem).toMatchObject({
+      status: 422,
+      errors: [{ pointer: '/script/text', reason: expect.stringContaining('caution') as unknown }, expect.anything()],
+    });
+  });
+});
+
+describe('Gate 3, inconclusive is not pass', () => {
+  test('When the bench says pass, then the server judges by the sheet’s limits and its own arithmetic', async () => {
+    const { number } = await takeIn(server);
+    const honest = newReading(server, 'heater', 31);
+    const forged = {
+      ...honest,
+      reading: {
+        ...honest.reading,
+        judgement: { ...honest.reading.judgement, low: 0, high: 100, verdict: 'pass', conformanceProbability: 1 },
+      },
+    };
+    const { event } = await server.ok('recordReading', { ...by(number), body: forged });
+    expect(event).toMatchObject({ kind: 'reading', reading: { judgement: { low: 24, high: 29, verdict: 'fail' } } });
+  });
+
+  test('When steps are skipped or the run is cut short, then its verdict is not done', async () => {
+    const { number } = await takeIn(server);
+    const run = newRun(server, 'h6-find');
+    const some = await server.ok('recordRun', { ...by(number), body: { ...run, steps: run.steps.slice(0, 3) } });
+    expect(some.verdict).toBe('not done');
+    pass(server, 20);
+    const cut = await server.ok('recordRun', { ...by(number), body: { ...newRun(server, 'h6-find'), interrupted: true } });
+    expect(cut.verdict).toBe('not done');
+  });
+
+  test('When the log gives expectations and verdicts of its own, then the captures decide', async () => {
+    const { number } = await takeIn(server);
+    const forge = (step: StepResult): StepResult =>
+      step.kind === 'expect' ? { ...step, seen: 'ready blink only', verdict: 'pass' } : step;
+    const run = newRun(server, 'h6-find', { panels: { lamps: 'ready blink' }, change: forge });
+    expect((await server.ok('recordRun', { ...by(number), body: run })).verdict).toBe('inconclusive');
+    const stored = await server.ok('getRun', { as: server.people.technician, params: { id: run.id } });
+    expect(stored.steps.find((step) => step.kind === 'expect')).toMatchObject({ verdict: 'inconclusive', seen: 'no code' });
+
+    const lenient = {
+      ...newRun(server, 'h6-prove'),
+      steps: newRun(server, 'h6-prove').steps.map((step) => (step.kind === 'expect' ? { ...step, expected: 'any' } : step)),
+    };
+    expect(
+      problemIn(await server.send('recordRun', { ...by(number), body: lenient })).errors?.some(({ pointer }) =>
+        pointer.endsWith('/expected'),
+      ),
+    ).toBe(true);
+  });
+});
+
+describe('Gate 4, no code must be proved', () => {
+  const proveWith = async (change: Parameters<typeof newRun>[2]) => {
+    const { number } = await takeIn(server);
+    await server.ok('recordRun', { ...by(number), body: newRun(server, 'h6-mend') });
+    pass(server, 5);
+    await server.ok('recordRun', { ...by(number), body: newRun(server, 'h6-prove', change) });
+    pass(server, 25);
+    return number;
+  };
+
+  test('When the proof shows a code, then it is a fail and stays one after a good capture', async () => {
+    const number = await proveWith({ panels: { lamps: 'G5K3' } });
+    expect(await ruleOf(number, 'no-code')).toMatchObject({ state: 'fail', evidence: 'shows G5K3' });
+    await server.ok('recordCapture', { ...by(number), body: newCapture(server) });
+    expect((await ruleOf(number, 'no-code'))?.state).toBe('fail');
+  });
+
+  test('When the codes were not cleared after the repair, then nothing is proved', async () => {
+    const forgotten = ({ stepId, title, startedAt, endedAt }: StepResult): StepResult => ({
+      ...{ stepId, title, startedAt, endedAt },
+      ...{ kind: 'skipped', stepKind: 'clear', judged: false, reason: 'forgotten' },
+    });
+    const number = await proveWith({ change: (step) => (step.kind === 'clear' ? forgotten(step) : step) });
+    expect(await ruleOf(number, 'no-code')).toMatchObject({ state: 'missing', evidence: 'stored codes were not cleared after the repair' });
+  });
+
+  test('When the capture is too short, then it is inconclusive', async () => {
+    const short = captureFile('ready blink')
+      .split('\n')
+      .filter((line) => !line.startsWith('[') || Number(/\d+/.exec(line)?.[0]) < 15_000_000)
+      .map((line) => (line.startsWith('{"end"') ? '{"end":15000000}' : line))
+      .join('\n');
+    const number = await proveWith({ change: (step) => (step.kind === 'capture' ? { ...step, file: short } : step) });
+    expect(await ruleOf(number, 'no-code')).toMatchObject({ state: 'inconclusive', evidence: '15 s long, the sheet asks for 20 s' });
+  });
+});
+
+describe('Gate 5, no retesting until it passes', () => {
+  test('When a failed check is measured again without a repair, then the fail stands', async () => {
+    const { number } = await takeIn(server);
+    await server.ok('recordReading', { ...by(number), body: newReading(server, 'heater', 31) });
+    await server.ok('recordReading', { ...by(number), body: newReading(server, 'heater') });
+    expect(await ruleOf(number, 'checks')).toMatchObject({ state: 'fail', evidence: 'Heater: fail' });
+  });
+});
+
+describe('Gate 6, simulated results never count outside the demo shop', () => {
+  test('When everything was simulated, then the shop’s rules see nothing of it, and the demo shop’s do', async () => {
+    const real = await takeIn(server);
+    await server.ok('recordRun', { ...by(real.number), body: newRun(server, 'h6-mend', { simulated: true }) });
+    await server.ok('recordInspection', { ...by(real.number), body: newInspection(server, 'pass', true) });
+    expect(
+      (await server.send('recordReading', { ...by(real.number), body: newReading(server, 'protective-conductor', undefined, true) }))
+        .status,
+    ).toBe(403);
+    expect((await page(real.number)).readiness.met).toBe(0);
+    expect(
+      (await server.send('recordCapture', { ...by(real.number), body: newCapture(server, 'ready blink', { source: 'simulated' }) })).status,
+    ).toBe(403);
+    expect((await server.send('recordRun', { ...by(real.number), body: newRun(server, 'h6-prove', { simulated: true }) })).status).toBe(
+      403,
+    );
+
+    const shown = await takeIn(demo);
+    await mendAndProve(demo, shown.number, { simulated: true });
+    expect((await page(shown.number, demo)).readiness).toMatchObject({ met: 4, readyToSign: true });
+  });
+
+  test('When a real rig asks in the demo shop, then simulated dead tests open nothing', async () => {
+    const { number } = await takeIn(demo);
+    await passDeadTests(demo, number, true);
+    expect(
+      (await demo.send('recordCapture', { ...by(number, demo), body: newCapture(demo, 'ready blink', { source: 'probe' }) })).status,
+    ).toBe(403);
+    expect(
+      (await demo.send('recordCapture', { ...by(number, demo), body: newCapture(demo, 'ready blink', { source: 'simulated' }) })).status,
+    ).toBe(201);
+  });
+
+  test('When a capture calls itself simulated on a rig that does not, then it is simulated', async () => {
+    const { number } = await takeIn(server);
+    const file = captureFile('ready blink', { source: 'simulated' });
+    const run = newRun(server, 'h6-find', { change: (step) => (step.kind === 'capture' ? { ...step, file } : step) });
+    await server.ok('recordRun', { ...by(number), body: run });
+    const events = (await page(number)).events;
+    expect(events.filter((event) => event.simulated).map((event) => event.kind)).toEqual(['capture']);
+    expect(await ruleOf(number, 'no-code')).toMatchObject({ state: 'missing' });
+  });
+
+  test('When a capture comes from a file, then it is kept, and counts only if it names this unit and is newer than the repair', async () => {
+    const { number } = await takeIn(server);
+    const noCode = async (header: { unit?: string; capturedAt?: string }) => {
+      await server.ok('recordCapture', { ...by(number), body: newCapture(server, 'ready blink', { fromFile: true, ...header }) });
+      return (await ruleOf(number, 'no-code'))?.state;
+    };
+    expect(await noCode({})).toBe('missing');
+    expect(await noCode({ unit: '9999' })).toBe('missing');
+    pass(server, 5);
+    const beforeRepair = server.time.now.toISOString();
+    pass(server, 5);
+    await server.ok('recordRepair', { ...by(number), body: newRepair(server) });
+    pass(server, 1);
+    await server.ok('recordRun', {
+      ...by(number),
+      body: newRun(server, 'h6-prove', { change: (step) => (step.kind === 'capture' || step.kind === 'expect' ? undefined : step) }),
+    });
+    pass(server, 25);
+    expect(await noCode({ unit: String(number), capturedAt: beforeRepair })).toBe('missing');
+    expect(await noCode({ unit: `0${String(number)}` })).toBe('met');
+  });
+});
+
+describe('Gate 7, four eyes', () => {
+  test('When a lead did the work, then that lead can’t sign and another one can', async () => {
+    const { number } = await takeIn(server);
+    await mendAndProve(server, number, { as: server.people.lead });
+    const own = problemIn(
+      await server.send('signOff', { params: { number }, as: server.people.lead, body: await rulesSeen(server, number) }),
+    );
+    expect(own).toMatchObject({ status: 403, kind: 'gate' });
+    expect(own.errors?.map(({ reason }) => reason)).toEqual([expect.stringContaining('Four eyes: fail, Maren Holt worked on it')]);
+    await server.ok('signOff', { params: { number }, as: server.otherLead, body: await rulesSeen(server, number) });
+  });
+
+  test('When a lead took only one reading, then that counts as hands on it', async () => {
+    const { number } = await takeIn(server);
+    await server.ok('recordReading', { params: { number }, as: server.people.lead, body: newReading(server, 'heater') });
+    pass(server, 1);
+    await mendAndProve(server, number);
+    expect(
+      (await server.send('signOff', { params: { number }, as: server.people.lead, body: await rulesSeen(server, number) })).status,
+    ).toBe(403);
+  });
+
+  test('When the shop has one person and switched it off, then that person signs, and the tag says so', async () => {
+    const alone = await startTestServer({ shop: { fourEyes: false } });
+    await addHeron(alone);
+    const { number } = await takeIn(alone);
+    await mendAndProve(alone, number, { as: alone.people.lead });
+    const tag = await alone.ok('signOff', { params: { number }, as: alone.people.lead, body: await rulesSeen(alone, number) });
+    expect(tag.content.fourEyes).toBe(false);
+    await alone.close();
+  });
+});
+
+describe('Gate 8, what withdraws a tag', () => {
+  const withdrawnBecause = async (number: number) => (await server.ok('getUnitTag', by(number))).withdrawn?.reason;
+
+  test('When a check fails, the machine is mended, or a code shows afterwards, then the tag ends in the same moment', async () => {
+    const failing = await signedOffUnit(server);
+    await server.ok('recordReading', { ...by(failing.unit.number), body: newReading(server, 'heater', 31) });
+    expect(await withdrawnBecause(failing.unit.number)).toBe('a later check did not pass: Heater, fail');
+    expect((await page(failing.unit.number)).stage).toBe('proving');
+
+    const mended = await signedOffUnit(server);
+    await server.ok('recordRepair', { ...by(mended.unit.number), body: newRepair(server, { part: 'Lid lock' }) });
+    expect(await withdrawnBecause(mended.unit.number)).toBe('the machine was mended again after the sign-off: Lid lock');
+
+    const blinking = await signedOffUnit(server);
+    await server.ok('recordCapture', { ...by(blinking.unit.number), body: newCapture(server, 'G5K3') });
+    expect(await withdrawnBecause(blinking.unit.number)).toBe('the lamps showed G5K3 afterwards');
+    expect((await page(blinking.unit.number)).events.at(-1)).toMatchObject({ kind: 'tag withdrawn', by: { name: 'Wil Tarrow' } });
+  });
+
+  test('When a passing check or a look comes afterwards, then the tag stands', async () => {
+    const { unit } = await signedOffUnit(server);
+    await server.ok('recordReading', { ...by(unit.number), body: newReading(server, 'heater') });
+    await server.ok('recordCapture', { ...by(unit.number), body: newCapture(server) });
+    expect((await page(unit.number)).tag?.standing).toBe('stands');
+  });
+
+  test('When a part is taken out of a unit with a standing tag, then that tag ends and its history says where the part went', async () => {
+    const donor = await signedOffUnit(server);
+    const { number } = await takeIn(server);
+    await server.ok('recordRepair', {
+      ...by(number),
+      body: newRepair(server, { partSource: { kind: 'used', fromUnit: donor.unit.number } }),
+    });
+    expect(await withdrawnBecause(donor.unit.number)).toBe('a part was removed: Drain pump');
+    expect((await page(donor.unit.number)).events.findLast((event) => event.kind === 'note')).toMatchObject({
+      text: `Drain pump taken out, for unit ${String(number).padStart(4, '0')}`,
+    });
+  });
+
+  test('When the donor is not there, or is the unit itself, then the repair is refused', async () => {
+    const { number } = await takeIn(server);
+    for (const fromUnit of [999_999, number, 9_007_199_254_740_991]) {
+      const problem = problemIn(
+        await server.send('recordRepair', { ...by(number), body: newRepair(server, { partSource: { kind: 'used', fromUnit } }) }),
+      );
+      expect(problem).toMatchObject({ status: 422, errors: [{ pointer: '/repair/partSource/fromUnit' }] });
+    }
+  });
+});
+
+describe('Gate 11, a licensed person only', () => {
+  test('When a fridge is on the bench, then no script runs on it and nothing energises it, override or not', async () => {
+    const { number } = await takeIn(server, { appliance: 'fridge' });
+    await server.ok('recordOverride', {
+      params: { number },
+      as: server.people.lead,
+      body: { gate: 'dead tests', reason: 'a licensed person is here' },
+    });
+    for (const name of ['h6-find', 'h6-mend'] as const) {
+      expect(problemIn(await server.send('recordRun', { ...by(number), body: newRun(server, name) }))).toMatchObject({
+        status: 403,
+        kind: 'gate',
+      });
+    }
+    expect((await server.send('recordCapture', { ...by(number), body: newCapture(server) })).status).toBe(403);
+  });
+});
