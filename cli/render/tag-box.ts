@@ -62,15 +62,13 @@ export function tagLines({ content, state, withdrawn, url }: TagPage, style: Sty
   const room = roomIn(style);
   const rule = (style.unicode ? '─' : '-').repeat(room);
   const serial = content.plate.serial === undefined ? 'serial unreadable' : `serial ${content.plate.serial}`;
-  const tested = table(content.tested.map(({ title, reading, spread: u, limit, verdict }) => [title, reading, u ?? '', limit, verdictText(verdict, style)]), style);
-  const tooWide = tested.some((line) => widthOf(line) > room);
-  const rows = tooWide ? content.tested.flatMap(({ title, reading, spread: u, limit, verdict }) => [title, `  ${[reading, u, limit].filter(Boolean).join('  ')}  ${verdictText(verdict, style)}`]) : tested;
+  const rows = testedRows(content.tested, style, room);
   const head = withdrawn ? 'WITHDRAWN' : 'READY';
   const mended = content.mended.map(({ part, source, at, by }) => `Mended: ${part.toLowerCase()}, ${source === 'none' ? 'no part changed' : source}, ${dayText(at)}, by ${by}`);
   return box(
     [
       spread(ink.bold(head) + (content.sample ? `   ${ink.bold('SAMPLE')}` : ''), ink.bold(`tag ${state.number}`), room),
-      ...(content.sample ? ['SAMPLE: these results are simulated. This is no tag of a real machine.'] : []),
+      ...(content.sample ? wrap('Simulated results: this is no tag of a real machine.', room) : []),
       ...(withdrawn ? wrap(`Withdrawn ${dayText(withdrawn.at)}: ${withdrawn.reason}`, room) : []),
       ...wrap(`${content.plate.maker} ${content.plate.model}, ${content.appliance}, ${serial}`, room),
       rule,
@@ -83,6 +81,18 @@ export function tagLines({ content, state, withdrawn, url }: TagPage, style: Sty
     ],
     style,
   );
+}
+
+/** Titles up to so many columns stand in a row with their figures; a longer one has a line of its own, its figures below it. */
+const TITLE_COLUMNS = 20;
+
+function testedRows(tested: TagPage['content']['tested'], style: Style, room: number): string[] {
+  const inRow = (title: string): boolean => widthOf(title) <= TITLE_COLUMNS;
+  const rows = table(tested.map(({ title, reading, spread: u, limit, verdict }) => [inRow(title) ? title : '', reading, u ?? '', limit, verdictText(verdict, style)]), style, { gap: style.unicode ? 2 : 1 });
+  return rows.flatMap((row, index) => {
+    const { title } = tested[index] ?? { title: '' };
+    return [...(inRow(title) ? [] : wrap(title, room)), row];
+  });
 }
 
 /** The address without its signature, as somebody would type it. */
