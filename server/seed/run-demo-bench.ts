@@ -1,8 +1,8 @@
-import { randomUUID } from 'node:crypto';
 import { existsSync, mkdirSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { execa } from 'execa';
-import { z } from 'zod';
+import { signedInSchema } from '../../shared/api/sessions.js';
+import { unitPageSchema, unitSchema } from '../../shared/api/units.js';
 import { packageRoot } from '../package-root.js';
 import type { DemoAccount } from './seed-demo-shop.js';
 
@@ -24,29 +24,36 @@ interface Command {
   endsWith?: number[];
 }
 
+/** As on labels and screens. */
+const unitNumberDigits = 4;
 const rig = 'sim:heron-mend';
+const script = (name: string): string => `server/seed/shop/${name}.yaml`;
 
-const signIn = ({ email, password }: DemoAccount): Command => ({ args: ['sign-in', email, '--password-stdin'], input: `${password}\n` });
+const signIn = ({ email, password }: DemoAccount): Command => ({
+  args: ['sign-in', '--email', email, '--password-stdin'],
+  input: `${password}\n`,
+});
 const takeIn: Command = {
   args: [
-    'unit',
-    'new',
-    '--maker',
-    'Demo',
-    '--model',
-    'Heron H6',
-    '--serial',
-    'DEMO-0001',
-    '--family',
-    'heron-h6',
-    '--complaint',
-    'does not fill',
-    '--json',
+    ...['unit', 'new', '--json', '--appliance', 'washing machine', '--maker', 'Brindle', '--model', 'BW 620', '--class', 'I'],
+    ...[
+      '--serial',
+      '6204 0311 0893',
+      '--family',
+      'heron-h6',
+      '--complaint',
+      'Does not pump out, lamps blink',
+      '--source',
+      'house clearance',
+    ],
+    // A first run that was stopped half-way has left the same machine on the books.
+    ...['--same-serial', 'other'],
   ],
 };
 const benchWork = (number: string): Command[] => [
-  { args: ['run', 'heron-find', '--unit', number, '--rig', rig], endsWith: [0, 1] },
-  { args: ['run', 'heron-prove', '--unit', number, '--rig', rig] },
+  { args: ['run', script('h6-find'), number, '--rig', rig, '--unattended'], endsWith: [0, 1] },
+  { args: ['run', script('h6-mend'), number, '--rig', rig, '--unattended'], endsWith: [0, 1] },
+  { args: ['run', script('h6-prove'), number, '--rig', rig, '--unattended'] },
 ];
 const printTag = (number: string): Command => ({ args: ['tag', number] });
 
@@ -64,7 +71,8 @@ export async function runDemoBench(bench: DemoBench): Promise<void> {
 
   bench.write('\nA first bench run, on simulated instruments:\n');
   await refettle(bench, home, signIn(technician));
-  const { number } = z.object({ number: z.string() }).parse(JSON.parse(await refettle(bench, home, takeIn)));
+  const unit = unitSchema.parse(JSON.parse(await refettle(bench, home, takeIn)));
+  const number = unit.number.toString().padStart(unitNumberDigits, '0');
   for (const command of benchWork(number)) await refettle(bench, home, command);
   await signOff(bench, lead, number);
   await refettle(bench, home, printTag(number));
@@ -79,8 +87,10 @@ function accountOf({ accounts }: DemoBench, role: string): DemoAccount {
 
 /** Its messages, and its answer unless that is JSON, go to the terminal as they come. */
 async function refettle({ address, write, signal }: DemoBench, home: string, { args, input, endsWith = [0] }: Command): Promise<string> {
-  write(`\n$ refettle ${args.join(' ')}\n`);
+  const line = `refettle ${args.map((arg) => (arg.includes(' ') ? `'${arg}'` : arg)).join(' ')}`;
+  write(`\n$ ${line}\n`);
   const result = await execa(process.execPath, [join(packageRoot, 'dist/cli/main.js'), ...args], {
+    cwd: packageRoot,
     env: { REFETTLE_HOME: home, REFETTLE_SERVER: address },
     ...(input === undefined ? { stdin: 'ignore' as const } : { input }),
     stdout: args.includes('--json') ? 'pipe' : 'inherit',
@@ -89,26 +99,26 @@ async function refettle({ address, write, signal }: DemoBench, home: string, { a
     cancelSignal: signal,
   });
   if (result.exitCode === undefined || !endsWith.includes(result.exitCode)) {
-    throw new Error(`refettle ${args.join(' ')} ended with ${String(result.exitCode ?? result.signal)}.`);
+    throw new Error(`${line} ended with ${String(result.exitCode ?? result.signal)}.`);
   }
   return result.stdout ?? '';
 }
 
-async function signOff({ address, write }: DemoBench, lead: DemoAccount, number: string): Promise<void> {
-  const post = async (path: string, body: unknown, token?: string): Promise<unknown> => {
+/** As the lead would in the browser: looks at the rules, then signs what was seen. */
+async function signOff({ address, write, signal }: DemoBench, lead: DemoAccount, number: string): Promise<void> {
+  const call = async (method: 'GET' | 'POST', path: string, token?: string, body?: unknown): Promise<unknown> => {
     const response = await fetch(`${address}${path}`, {
-      method: 'POST',
-      headers: {
-        'content-type': 'application/json',
-        'idempotency-key': randomUUID(),
-        ...(token ? { authorization: `Bearer ${token}` } : {}),
-      },
-      body: JSON.stringify(body),
+      method,
+      signal,
+      headers: { 'content-type': 'application/json', ...(token ? { authorization: `Bearer ${token}` } : {}) },
+      ...(body === undefined ? {} : { body: JSON.stringify(body) }),
     });
     if (!response.ok) throw new Error(`${path} answered ${response.status.toString()}: ${await response.text()}`);
     return response.json();
   };
-  const { token } = z.object({ token: z.string() }).parse(await post('/api/sessions', { email: lead.email, password: lead.password }));
-  await post(`/api/units/${number}/sign-off`, {}, token);
+  const { email, password } = lead;
+  const { token } = signedInSchema.parse(await call('POST', '/api/sessions', undefined, { email, password }));
+  const { readiness } = unitPageSchema.parse(await call('GET', `/api/units/${number}`, token));
+  await call('POST', `/api/units/${number}/sign-off`, token, { seen: readiness.rules.map(({ id, state }) => ({ id, state })) });
   write(`\nThe demo lead signed unit ${number} off.\n`);
 }
