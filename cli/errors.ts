@@ -7,7 +7,7 @@ export class UsageError extends Error {
 export class NobodyToAskError extends UsageError {
   override readonly name = 'NobodyToAskError';
   constructor(question: string, instead: string) {
-    super(`${question} Nobody is at a terminal to answer: ${instead}.`);
+    super(`${question.trim()}${/[.?!:]$/.test(question.trim()) ? '' : '?'} Nobody is at a terminal to answer: ${instead}.`);
   }
 }
 

@@ -28,7 +28,8 @@ export function wordsOf(error: unknown): string {
   return error instanceof Error ? ended(error.message) : String(error);
 }
 
-export const ended = (text: string): string => (/[.!?]$/.test(text) ? text : `${text}.`);
+/** A full stop, unless the text ends with one or with a command that is to be typed. */
+export const ended = (text: string): string => (/[.!?]$|refettle [a-z -]+$/.test(text) ? text : `${text}.`);
 export const capital = (text: string): string => text.charAt(0).toUpperCase() + text.slice(1);
 
 /** A fault of ours: the details go to a file, the terminal says where it is and what became of the work. */

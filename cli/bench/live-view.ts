@@ -9,6 +9,7 @@ import { faceLines } from '../render/face-lines.js';
 import { drawLanes, laneColumns, WEAK_BELOW, type Lane } from '../render/lanes.js';
 import { padRight, spread } from '../render/columns.js';
 import type { LampWindow } from './lamp-window.js';
+import { times } from '../render/words.js';
 
 /** How often a code must have shown before the technician is sent on to the next (look, terminal: "has shown 4 times"). */
 const SURE_REPEATS = 4;
@@ -97,7 +98,7 @@ function codeFace({ understood, sheet }: ViewParts, style: Style): string[] {
   const segment = understood.segments.findLast((one) => one.kind === 'code' || one.kind === 'unreadable');
   if (segment?.kind !== 'code') return [];
   const face = lampFace(segment.code, sheet);
-  const sure = `${segment.repeats === undefined ? '' : `${segment.repeats} times, `}confidence ${segment.confidence.toFixed(4)}`;
+  const sure = `${segment.repeats === undefined ? '' : `${times(segment.repeats)}, `}confidence ${segment.confidence.toFixed(4)}`;
   return face ? faceLines(face, style, [face.title ?? '', sure]) : [` ${style.ink.bold(segment.code)}   ${sheet.faults.find(({ code }) => code === segment.code)?.title ?? ''}   ${sure}`];
 }
 
@@ -105,7 +106,7 @@ function whatNow({ understood, waitsFor, window }: ViewParts): string {
   if (waitsFor !== undefined) return 'Hands off. It is watched until it ends.';
   if (window.samples === 0) return 'Waiting for the first sample.';
   const sure = sureCode(understood);
-  if (sure) return `${sure.code} has shown${sure.repeats === undefined ? '' : ` ${sure.repeats} times`}. Bring up the next code, then press space.`;
+  if (sure) return `${sure.code} has shown${sure.repeats === undefined ? '' : ` ${times(sure.repeats)}`}. Bring up the next code, then press space.`;
   const last = understood.segments.at(-1);
   if (last?.kind === 'unreadable') return last.reason.charAt(0).toUpperCase() + last.reason.slice(1);
   if (last?.kind === 'ready') return 'Service mode is on. Bring up the first code.';
@@ -126,8 +127,10 @@ function keyRow(window: LampWindow, sheet: Sheet, { ink }: Style): string {
 }
 
 /** Where nobody watches: a line now and then, so that a log says what is awaited and for how long. */
-export function progressLine(window: LampWindow, understood: Understanding, elapsedS: number, seconds: number | undefined): string {
-  const codes = understood.codes.map(({ code, repeats }) => `${code}${repeats === undefined ? '' : ` ${repeats} times`}`);
-  const seen = codes.length > 0 ? codes.join(', ') : (understood.segments.at(-1)?.kind ?? 'nothing yet');
-  return `  ${Math.round(elapsedS)} s${seconds === undefined ? '' : ` of ${seconds} s`}, ${window.samples} samples, ${seen === 'ready' ? 'ready blink' : seen}`;
+export function progressLine(window: LampWindow, understood: Understanding | undefined, elapsedS: number, seconds: number | undefined): string {
+  const time = `  ${Math.round(elapsedS)} s${seconds === undefined ? '' : ` of ${understood ? '' : 'at most '}${Math.round(seconds)} s`}, ${window.samples} samples`;
+  if (!understood) return time;
+  const codes = understood.codes.map(({ code, repeats }) => `${code}${repeats === undefined ? '' : ` ${times(repeats)}`}`);
+  const last = understood.segments.at(-1)?.kind ?? 'nothing yet';
+  return `${time}, ${codes.length > 0 ? codes.join(', ') : last === 'ready' ? 'ready blink' : last}`;
 }

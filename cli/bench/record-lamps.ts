@@ -70,6 +70,8 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
   const stop = new AbortController();
   const limitUs = seconds === undefined ? Infinity : Math.round(seconds * 1_000_000);
   let ended: RecordingEnd = 'done';
+  /** It is as long as it was to be. */
+  let full = false;
   const end = (how: RecordingEnd): void => {
     if (stop.signal.aborted) return;
     ended = how;
@@ -99,7 +101,7 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
   try {
     for await (const event of source.read(stop.signal)) {
       if (event.kind === 'sample' && event.tUs > limitUs) {
-        end('done');
+        full = true;
         break;
       }
       while (marks[0] !== undefined && event.kind === 'sample' && event.tUs >= marks[0]) {
@@ -113,7 +115,7 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
       window.push(event);
       if (watcher.seen(window)) end('done');
     }
-    file.end(Math.min(limitUs, Math.max(timeUs(), window.lastUs)));
+    file.end(full ? limitUs : Math.min(limitUs, Math.max(timeUs(), window.lastUs)));
     return { file, ended };
   } catch (error) {
     file.keep();

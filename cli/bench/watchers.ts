@@ -11,8 +11,9 @@ const DRAW_EVERY_MS = 250;
 /** The decoder looks again every second, and never takes more than a tenth of the time. */
 const UNDERSTAND_EVERY_MS = 1000;
 const REST_FACTOR = 10;
-/** Where nobody watches: one line in so many seconds of the capture. */
+/** Where nobody watches: one line in so many seconds of the capture, fewer where something is only waited for. */
 const PROGRESS_EVERY_S = 10;
+const WAITING_EVERY_S = 30;
 
 export interface WatchingParts {
   context: Context;
@@ -87,14 +88,15 @@ function onKeyOf(controls: Controls, waits: boolean): (key: string) => void {
 function quietWatcher(parts: WatchingParts, controls: Controls): Watcher {
   const { context, sheet } = parts;
   const over = lookNowAndThen(parts.over);
-  let nextS = PROGRESS_EVERY_S;
+  const everyS = parts.over ? WAITING_EVERY_S : PROGRESS_EVERY_S;
+  let nextS = everyS;
   if (parts.waitsFor !== undefined) context.stderr.write(`  ${parts.waitsFor}\n`);
   return {
     seen(window) {
       const elapsedS = window.lastUs / 1_000_000;
       if (elapsedS >= nextS) {
-        nextS += PROGRESS_EVERY_S;
-        context.stderr.write(`${progressLine(window, parts.over ? NOTHING_YET : understand(window, sheet), elapsedS, controls.seconds)}\n`);
+        nextS += everyS;
+        context.stderr.write(`${progressLine(window, parts.over ? undefined : understand(window, sheet), elapsedS, controls.seconds)}\n`);
       }
       return over(window);
     },

@@ -3,6 +3,7 @@ import { lampFace } from '../../shared/lamps/face.js';
 import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Style } from '../output.js';
 import { faceLines } from './face-lines.js';
+import { times } from './words.js';
 
 const INDENT = ' '.repeat(11);
 
@@ -11,7 +12,7 @@ export function answerLines(answer: DecodeAnswer, sheet: Sheet, style: Style): s
   const lines: string[] = [];
   for (const code of answer.codes) {
     const fault = sheet.faults.find((one) => one.code === code.code);
-    const seen = `${code.repeats === undefined ? '' : `${code.repeats} times, `}confidence ${code.confidence.toFixed(4)}`;
+    const seen = `${code.repeats === undefined ? '' : `${times(code.repeats)}, `}confidence ${code.confidence.toFixed(4)}`;
     lines.push(`${INDENT}${style.ink.bold(code.code)}  ${seen}`, ...(fault ? [`${INDENT}${fault.title}`] : []));
     const face = lampFace(code.code, sheet);
     if (face) lines.push(...faceLines(face, style).map((line) => `${INDENT.slice(1)}${line}`));

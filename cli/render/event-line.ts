@@ -2,12 +2,13 @@ import type { UnitEvent } from '../../shared/history/events.js';
 import { formatLimits, formatReading, formatSpread } from '../../shared/measure/format-reading.js';
 import type { Verdict } from '../../shared/verdict.js';
 import type { Style } from '../output.js';
-import { padRight, shown, widthOf, wrap } from './columns.js';
+import { padRight, shown, wrap } from './columns.js';
 import { repairText } from './repair-text.js';
 import { verdictText } from './verdict.js';
 import { dayText, timeText } from './words.js';
 
 const WHEN = 20;
+const VERDICT = 17;
 
 function wordsOf(event: UnitEvent): { what: string; verdict?: Verdict } {
   switch (event.kind) {
@@ -49,11 +50,13 @@ function wordsOf(event: UnitEvent): { what: string; verdict?: Verdict } {
   }
 }
 
-/** One thing that happened to a unit: when, what, by whom, and its verdict. */
+/** One thing that happened to a unit: when, its verdict (all in one column), what and by whom. */
 export function eventLine(event: UnitEvent, style: Style): string[] {
   const { what, verdict } = wordsOf(event);
-  const sign = verdict === undefined ? '' : `  ${verdictText(verdict, style)}`;
-  const by = `, ${event.by.name}${event.simulated ? ', simulated' : ''}`;
-  const [first = '', ...rest] = wrap(`${what}${by}`, Math.max(30, style.columns - WHEN - widthOf(sign) - 1));
-  return [`${padRight(`${dayText(event.at)}  ${timeText(event.at)}`, WHEN)}${first}${sign}`, ...rest.map((line) => `${' '.repeat(WHEN)}${line}`)].map((line) => shown(line, style));
+  const sign = verdict === undefined ? '' : verdictText(verdict, style);
+  const by = `${event.by.name}${event.simulated ? ', simulated' : ''}`;
+  const indent = WHEN + VERDICT;
+  const [first = '', ...rest] = wrap(`${what.replace(/\.$/, '')}, ${by}`, Math.max(30, style.columns - indent - 1));
+  const head = `${padRight(`${dayText(event.at)}  ${timeText(event.at)}`, WHEN)}${padRight(sign, VERDICT)}`;
+  return [`${head}${first}`, ...rest.map((line) => `${' '.repeat(indent)}${line}`)].map((line) => shown(line, style));
 }

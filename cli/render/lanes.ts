@@ -2,6 +2,7 @@ import type { PhaseView, Segment } from '../../shared/decode/answer.js';
 import type { Lamp } from '../../shared/sheet/schema.js';
 import type { Style } from '../output.js';
 import { padLeft, padRight, shown } from './columns.js';
+import { times } from './words.js';
 
 /** Four columns a second (look/tokens, Terminal). */
 export const COLUMNS_PER_SECOND = 4;
@@ -109,7 +110,7 @@ function codeLine(segments: readonly Segment[], columnOf: (atS: number) => numbe
     const to = Math.min(width, columnOf(segment.toS));
     if (to - from < 4) continue;
     if (segment.kind === 'ready') line = line.padEnd(from) + 'service mode on'.slice(0, to - from);
-    if (segment.kind === 'code') line = line.padEnd(from) + bracket(`${segment.code}${segment.repeats === undefined ? '' : `, ${segment.repeats} times`}`, to - from);
+    if (segment.kind === 'code') line = line.padEnd(from) + bracket(`${segment.code}${segment.repeats === undefined ? '' : `, ${times(segment.repeats)}`}`, to - from);
   }
   return line;
 }

@@ -9,7 +9,9 @@ import { repairText } from './repair-text.js';
 import { verdictText } from './verdict.js';
 import { timeText } from './words.js';
 
-const TITLE = 19;
+/** Titles get what the columns leave: 19 on a terminal of 80, no more than the longest needs. */
+const REST = 61;
+const TITLE = { least: 19, most: 40 };
 const READING = 10;
 const SPREAD = 6;
 const LIMITS = 14;
@@ -64,6 +66,7 @@ function remark(result: StepResult): string | undefined {
 
 /** A step's result: its number, kind, title, then reading, spread, limit and verdict in columns. A long title has a line of its own. */
 export function stepLines(number: number, result: StepResult, style: Style): string[] {
+  const titleWidth = Math.min(TITLE.most, Math.max(TITLE.least, style.columns - REST));
   const kind = result.kind === 'skipped' ? result.stepKind : result.kind;
   const verdict = stepVerdict(result);
   const head = `${padLeft(String(number), 2)} ${padRight(kind, 8)} `;
@@ -75,10 +78,10 @@ export function stepLines(number: number, result: StepResult, style: Style): str
   const underLines = under === undefined ? [] : wrap(under, Math.max(20, style.columns - INDENT - 1)).map((line) => `${' '.repeat(INDENT)}${line}`);
 
   if (tail !== '') {
-    const line = `${head}${padRight(result.title, TITLE)}  ${tail}`;
-    return widthOf(line) < style.columns ? [...[line], ...underLines] : [`${head}${result.title}`, ...wrap(tail, Math.max(20, style.columns - INDENT - 1)).map((text) => `${' '.repeat(INDENT)}${text}`), ...underLines];
+    const line = `${head}${padRight(result.title, titleWidth)}  ${tail}`;
+    return widthOf(line) < style.columns ? [line, ...underLines] : [`${head}${result.title}`, ...wrap(tail, Math.max(20, style.columns - INDENT - 1)).map((text) => `${' '.repeat(INDENT)}${text}`), ...underLines];
   }
-  const fits = widthOf(result.title) <= TITLE;
-  const lines = fits ? [`${head}${padRight(result.title, TITLE)} ${compared}${sign}`] : [`${head}${result.title}`, `${' '.repeat(INDENT + TITLE + 1)}${compared}${sign}`];
+  const fits = widthOf(result.title) <= titleWidth;
+  const lines = fits ? [`${head}${padRight(result.title, titleWidth)} ${compared}${sign}`] : [`${head}${result.title}`, `${' '.repeat(INDENT + titleWidth + 1)}${compared}${sign}`];
   return [...lines.map((line) => shown(line.trimEnd(), style)), ...underLines];
 }

@@ -23,3 +23,6 @@ export function durationText(milliseconds: number): string {
 }
 
 export const plural = (count: number, one: string, many = `${one}s`): string => `${count} ${count === 1 ? one : many}`;
+
+/** How often, in words: `once`, `4 times`. */
+export const times = (count: number): string => (count === 1 ? 'once' : `${count} times`);
