@@ -20,12 +20,15 @@ export function ReadingNote({ reading }: { reading: ReadingBody }) {
   const by = inside(reading);
   const unit = judgement.unit;
   const distance = formatReading(Math.abs(by), decimalsOf(resolution) === undefined ? 0 : resolution, unit);
-  const u = `U = ${judgement.coverageFactor}u = ${judgement.coverageFactor} × ${standardText(judgement.standardUncertainty)} = ${formatSpread(judgement.expandedUncertainty, resolution, unit).slice(1)}`;
+  const { coverageFactor, standardUncertainty, expandedUncertainty } = judgement;
   return (
     <p className="bg-unsure-ground px-3 py-2 text-[16px]">
-      <span className="num whitespace-normal!">
-        {formatReading(judgement.value, resolution, unit)} is {by >= 0 ? 'inside' : 'outside'} by {distance}, no more than {u}.
-      </span>{' '}
+      <span className="num">{formatReading(judgement.value, resolution, unit)}</span> is {by >= 0 ? 'inside' : 'outside'} by{' '}
+      <span className="num">{distance}</span>, no more than U = {coverageFactor}u ={' '}
+      <span className="num">
+        {coverageFactor} × {standardText(standardUncertainty)} = {formatSpread(expandedUncertainty, resolution, unit).slice(1)}
+      </span>
+      .{' '}
       {isSafety(reading)
         ? 'Too close for this meter: measure again with one of smaller uncertainty before the machine goes further.'
         : `${Math.round(judgement.conformanceProbability * 100)} of 100 such readings would be inside. A meter of smaller uncertainty can decide.`}

@@ -36,7 +36,7 @@ function FindBox() {
   return (
     <form
       role="search"
-      className="ml-auto hidden gap-2.5 min-[1100px]:flex"
+      className="find-box gap-2.5"
       onSubmit={(event) => {
         event.preventDefault();
         const find = new FormData(event.currentTarget).get('find');
@@ -87,14 +87,14 @@ export function ShopFrame({
           </nav>
         )}
         {find && <FindBox />}
-        <div className="ml-auto min-h-[52px] gap-4">
+        {user && (
+          <p className="top-who flex-col items-start! justify-center leading-tight">
+            {user.name}
+            <span className="lab">{user.role}</span>
+          </p>
+        )}
+        <div className="top-actions gap-4">
           <ThemeSwitch />
-          {user && (
-            <p className="leading-tight">
-              {user.name}
-              <span className="lab block">{user.role}</span>
-            </p>
-          )}
           {onSignOut && (
             <button type="button" className="min-h-11 cursor-pointer px-1 underline underline-offset-4" onClick={onSignOut}>
               Sign out

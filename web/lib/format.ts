@@ -9,6 +9,12 @@ const dateParts = (at: Date): string => DATE.format(at).replace('Sept', 'Sep');
 export const formatDate = (iso: string): string => dateParts(new Date(iso));
 /** `Thu 5 Mar 2026`. */
 export const formatDay = (iso: string): string => `${WEEKDAY.format(new Date(iso))} ${formatDate(iso)}`;
+/** `Thu 5 Mar` in the year of `nowMs`, `5 Mar 2025` in others: for narrow columns. */
+export function formatShortDay(iso: string, nowMs: number): string {
+  const date = new Date(iso);
+  if (date.getFullYear() !== new Date(nowMs).getFullYear()) return formatDate(iso);
+  return `${WEEKDAY.format(date)} ${dateParts(date).replace(/ \d{4}$/, '')}`;
+}
 /** `11:41`. */
 export const formatTime = (iso: string): string => TIME.format(new Date(iso));
 export const formatDayTime = (iso: string): string => `${formatDay(iso)}, ${formatTime(iso)}`;

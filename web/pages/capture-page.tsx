@@ -58,21 +58,21 @@ function CaptureInFull({ page }: { page: CapturePageData }) {
   ];
   return (
     <>
-      <div className="mb-3 flex flex-wrap items-baseline gap-x-6 gap-y-2">
+      <div className="mb-3 flex flex-wrap items-center gap-x-6 gap-y-2">
         <PageHeading title={`Capture of No. ${unitNumber(unit.number)}`}>
           Capture of{' '}
           <Link className="inline-block py-1 font-mono tracking-tight text-ink" to={paths.unit(unit.number)}>
             No. {unitNumber(unit.number)}
           </Link>
         </PageHeading>
-        <p className="lab text-[14px]!">{facts.filter(Boolean).join('; ')}</p>
+        <p className="lab w-full text-[14px]! wide:order-last">{facts.filter(Boolean).join('; ')}</p>
         <div className="flex w-full gap-2.5 wide:ml-auto wide:w-auto">
           {page.runId !== undefined && (
-            <Link className="button button-plain flex-1" to={paths.run(page.runId)}>
+            <Link className="button button-plain flex-1 whitespace-nowrap" to={paths.run(page.runId)}>
               Bench log
             </Link>
           )}
-          <button type="button" className="button button-plain flex-1" onClick={() => saveFile(page)}>
+          <button type="button" className="button button-plain flex-1 whitespace-nowrap" onClick={() => saveFile(page)}>
             Save the file
           </button>
         </div>

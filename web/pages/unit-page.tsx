@@ -145,7 +145,11 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
           <p role="status" className="sr-only">
             {plural(page.events.length, 'event')}
           </p>
-          {page.events.length === 0 ? <p className="py-4">Nothing yet.</p> : <Timeline page={page} currency={shop.currency} />}
+          {page.events.length === 0 ? (
+            <p className="py-4">Nothing yet.</p>
+          ) : (
+            <Timeline page={page} currency={shop.currency} nowMs={Date.now()} />
+          )}
           {page.runs.length === 0 && (
             <p className="py-4">
               Nothing was tested yet. At the bench: <code className="num">refettle run SCRIPT --unit {unitNumber(unit.number)}</code>

@@ -36,8 +36,8 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
   const { content } = tag;
   const stands = tag.state.standing === 'stands';
   return (
-    <div className="grid items-start gap-x-11 gap-y-6 min-[1100px]:grid-cols-[auto_minmax(0,420px)]">
-      <div className="beside-tag min-w-0 min-[1100px]:order-last">
+    <div className="grid items-start gap-x-11 gap-y-6 min-[1100px]:grid-cols-[auto_minmax(0,1fr)]">
+      <div className="beside-tag max-w-[620px] min-w-0 min-[1100px]:order-last">
         <TagStanding
           stands={stands}
           sample={content.sample}
@@ -83,7 +83,11 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
         <Caution className="mt-4">{content.cautions.join(' ')}</Caution>
         {stands && mayDo(user.role, 'tag.withdraw') && <WithdrawForm unit={unit} tag={content.tag} />}
       </div>
-      {stands && <TagSheet tag={tag} />}
+      {stands && (
+        <div>
+          <TagSheet tag={tag} />
+        </div>
+      )}
     </div>
   );
 }

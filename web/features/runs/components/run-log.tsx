@@ -45,13 +45,13 @@ function lineOf(step: StepResult, page: RunPage): StepLine {
       const line = readingLine(step.stepId, step.reading);
       return {
         ...line,
-        note: (
+        title: (
           <>
-            {line.note}
+            {line.title}{' '}
             {instrument !== undefined && (
-              <p className="lab px-3 py-1">
-                {instrument}, accuracy {step.reading.accuracy}, one digit {step.reading.resolution}
-              </p>
+              <span className="lab">
+                {instrument}, {step.reading.accuracy}
+              </span>
             )}
           </>
         ),

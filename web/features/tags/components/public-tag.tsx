@@ -185,7 +185,9 @@ export function NotOurs({ answer }: { answer: Of<'not ours'> }) {
           you on the phone.
         </p>
       </Caution>
-      <CallButton phone={answer.shop.phone} />
+      <div className="mt-5">
+        <CallButton phone={answer.shop.phone} />
+      </div>
       <p className="mt-4 text-[16px] text-ink2">
         Checked {formatDate(answer.checkedAt)}, {formatTime(answer.checkedAt)}. {answer.shop.name}, {answer.shop.address}
       </p>

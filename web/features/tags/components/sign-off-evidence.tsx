@@ -44,7 +44,7 @@ function ResultRow({ event, state }: Judged) {
   const void_ = state === 'no longer counts' || state === 'never counted';
   return (
     <li className="border-t border-line py-2">
-      <div className="grid grid-cols-[1fr_auto] items-baseline gap-x-4 wide:grid-cols-[220px_1fr_150px_170px]">
+      <div className="grid grid-cols-[1fr_auto] items-center gap-x-4 wide:grid-cols-[220px_1fr_150px_170px]">
         <span>
           {event.kind === 'reading' ? (
             <ReadingValue reading={event.reading} className={void_ ? 'text-ink2' : 'font-bold'} />
@@ -116,7 +116,7 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
         {calibrations.map((event) => (
           <div
             key={event.id}
-            className="grid grid-cols-[1fr_auto] items-baseline gap-x-4 border-t border-line py-2 wide:grid-cols-[1fr_150px_170px]"
+            className="grid grid-cols-[1fr_auto] items-center gap-x-4 border-t border-line py-2 wide:grid-cols-[1fr_150px_170px]"
           >
             <span>
               <b>Calibration run</b> {event.calibration.reason}{' '}

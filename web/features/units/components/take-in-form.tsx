@@ -141,24 +141,26 @@ export function TakeInForm({ sheets, currency, onTakenIn }: TakeInFormProps) {
           </div>
         </fieldset>
         <div className="grid gap-4">
-          <FormField {...field('appliance')}>
-            {(a11y) => (
-              <select {...a11y} {...register('appliance')} className="field">
-                {applianceSchema.options.map((one) => (
-                  <option key={one}>{one}</option>
-                ))}
-              </select>
-            )}
-          </FormField>
-          <div aria-live="polite">
-            {licensedOnly && (
-              <Caution>
-                <p>
-                  Gas, sealed refrigerant and microwave ovens are a licensed person’s work. The unit is marked so, and no script runs on it.
-                  Do not open it, do not plug it in.
-                </p>
-              </Caution>
-            )}
+          <div>
+            <FormField {...field('appliance')}>
+              {(a11y) => (
+                <select {...a11y} {...register('appliance')} className="field">
+                  {applianceSchema.options.map((one) => (
+                    <option key={one}>{one}</option>
+                  ))}
+                </select>
+              )}
+            </FormField>
+            <div aria-live="polite" className="[&>*]:mt-3">
+              {licensedOnly && (
+                <Caution>
+                  <p>
+                    Gas, sealed refrigerant and microwave ovens are a licensed person’s work. The unit is marked so, and no script runs on
+                    it. Do not open it, do not plug it in.
+                  </p>
+                </Caution>
+              )}
+            </div>
           </div>
           <FormField {...field('complaint', 'In the words of who gave it: what does it do, what not?')}>
             {(a11y) => <textarea {...a11y} {...register('complaint')} rows={3} className="field" />}

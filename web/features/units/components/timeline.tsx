@@ -8,7 +8,7 @@ import { clock } from '../../../../shared/script/judge-watch.js';
 import { CaptureSummary } from '../../../components/capture-summary.js';
 import { ReadingNote, ReadingValue } from '../../../components/reading-note.js';
 import { VerdictWord } from '../../../components/verdict.js';
-import { formatDay, formatDuration, formatMoney, formatTime, plural, unitNumber } from '../../../lib/format.js';
+import { formatShortDay, formatDuration, formatMoney, formatTime, plural, unitNumber } from '../../../lib/format.js';
 import { paths } from '../../../paths.js';
 import { RunSteps } from './run-steps.js';
 import { timelineOf, type TimelineItem } from './timeline-items.js';
@@ -163,14 +163,14 @@ function RunItem({ item, page }: { item: Extract<TimelineItem, { kind: 'run' }>;
 }
 
 /** Everything that ever happened to a unit, newest first, along the rail of its stages. */
-export function Timeline({ page, currency }: { page: UnitPage; currency: string }) {
+export function Timeline({ page, currency, nowMs }: { page: UnitPage; currency: string; nowMs: number }) {
   return (
     <div>
       {timelineOf(page).map((group) => (
         <section key={`${group.stage} ${group.items[0]?.id}`} className="stage-group">
           <h3>
             {group.stage}
-            <small>{formatDay(group.at)}</small>
+            <small>{formatShortDay(group.at, nowMs)}</small>
           </h3>
           <div className="min-w-0">
             {group.items.map((item) =>

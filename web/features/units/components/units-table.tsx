@@ -28,7 +28,7 @@ function standingInWords(row: UnitRow): string {
 
 function OnTheLamps({ lamps }: { lamps: UnitRow['lamps'] }) {
   if (lamps.state === 'not captured') return <span className="text-ink2">not captured yet</span>;
-  if (lamps.state === 'no code') return <span className="text-ink2">no code, proved</span>;
+  if (lamps.state === 'no code') return <span className="text-ink2">no code</span>;
   if (lamps.state === 'unreadable')
     return (
       <span className="flex items-center gap-2.5">
@@ -58,9 +58,6 @@ function Row({ row, currency, nowMs }: { row: UnitRow; currency: string; nowMs: 
       </td>
       <td className="units-machine">
         {row.plate.maker} {row.plate.model} <span className="text-ink2">{row.appliance}</span>
-        {row.licensedOnly && (
-          <b className="ml-2 bg-ink px-2 py-1 font-mono text-[13px] whitespace-nowrap text-enamel">licensed person only</b>
-        )}
       </td>
       <td className="units-tag">
         <span className="flex items-center gap-2 font-mono text-[15px] leading-tight">
@@ -69,7 +66,11 @@ function Row({ row, currency, nowMs }: { row: UnitRow; currency: string; nowMs: 
         </span>
       </td>
       <td className="units-lamps">
-        <OnTheLamps lamps={row.lamps} />
+        {row.licensedOnly ? (
+          <b className="bg-ink px-2 py-1 font-mono text-[13px] whitespace-nowrap text-enamel">licensed person only</b>
+        ) : (
+          <OnTheLamps lamps={row.lamps} />
+        )}
       </td>
       <td className="units-waits">{row.waitsFor}</td>
       <td className="units-since num">{formatAge(row.lastEventAt, nowMs)}</td>
