@@ -4,6 +4,7 @@ import helmet from 'helmet';
 import type { Logger } from 'pino';
 import { pinoHttp } from 'pino-http';
 import { v7 as newId } from 'uuid';
+import { ownOrigin } from './auth/origin.js';
 import { rateLimits } from './auth/rate-limits.js';
 import type { Config } from './config.js';
 import type { Db } from './db.js';
@@ -41,7 +42,10 @@ export function createApp(deps: AppDependencies): Express {
   app.set('trust proxy', 'loopback');
   app.set('query parser', 'simple');
   app.use(requestLog(deps.log));
-  app.use(helmet(securityHeaders(publicUrl?.startsWith('https:') === true)));
+  const [overHttps, overHttp] = [helmet(securityHeaders(true)), helmet(securityHeaders(false))];
+  app.use((request, response, next) => {
+    (ownOrigin(request, publicUrl).startsWith('https:') ? overHttps : overHttp)(request, response, next);
+  });
   app.use('/api', (_request, response, next) => {
     response.set('Cache-Control', 'no-store');
     next();
@@ -75,7 +79,7 @@ export function createApp(deps: AppDependencies): Express {
   return app;
 }
 
-/** Over plain http a browser that is told to upgrade shows a blank page. */
+/** Over plain http a browser that is told to upgrade shows a blank page, and one shop may be reached both ways. */
 const securityHeaders = (https: boolean) => ({
   contentSecurityPolicy: { directives: { upgradeInsecureRequests: https ? [] : null, imgSrc: ["'self'", 'data:', 'blob:'] } },
   strictTransportSecurity: https,
@@ -110,8 +114,11 @@ function serveWeb(app: Express, webDir: string): void {
       },
     }),
   );
-  const page = join(webDir, 'index.html');
+  app.get('/assets/*path', () => {
+    throw new NotFoundError('There is nothing at this address.');
+  });
+  // Every other address is a page, and the pages are one file. `root`: the folder's own path may have a dot in it.
   app.get(['/', '/*path'], (_request, response) => {
-    response.set('Cache-Control', 'no-cache').sendFile(page);
+    response.set('Cache-Control', 'no-cache').sendFile('index.html', { root: webDir, cacheControl: false });
   });
 }
