@@ -9,7 +9,8 @@ export interface Steps {
   labels: Int8Array;
   /** Standard deviation of a bin's level, counts. */
   noise: number;
-  found: boolean;
+  /** The usual step, counts; undefined when the lamp never stepped. */
+  stepSize: number | undefined;
 }
 
 /** Windows on either side of a step: short ones see the ready blink, long ones see through more noise. */
@@ -49,9 +50,9 @@ export function findSteps(bins: Bins, lane: Float64Array, fullScale: number): St
     labelBetween(peaksAbove(differences, Math.max(least, typical / 2)), used, labels);
     const small = peaksAbove(differences, least).filter((peak) => Math.abs(peak.size) <= typical / 2);
     doubtBetween(small, used, lane, labels, DOUBT_SHARE * typical);
-    return { labels, noise, found: true };
+    return { labels, noise, stepSize: typical };
   }
-  return { labels, noise, found: false };
+  return { labels, noise, stepSize: undefined };
 }
 
 /** From the differences of neighbouring bins, so that steps and drift hardly count; the median, so that outliers don't either. */

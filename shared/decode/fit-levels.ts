@@ -12,16 +12,24 @@ export interface LevelFit {
   noise: number;
 }
 
+/** What a fit is measured against, counts: full scale, the noise of a bin, and about what the lamp adds when lit. */
+export interface LevelScale {
+  fullScale: number;
+  noise: number;
+  amplitude: number;
+}
+
 /** Light that a neighbouring lamp throws: its amplitude while it is lit, else 0; counts, one value a bin. */
 export type Glow = Float64Array;
 
 /** Ambient light and gain may wander this slowly: one knot of the curve each so many seconds. */
 const KNOT_S = 10;
 const MOST_KNOTS = 24;
-/** How far a level may wander from knot to knot, as a share of full scale: one standard deviation. */
+/** How far a level may wander from knot to knot, one standard deviation: the dark level as a share of full scale, the amplitude of itself. */
 const DARK_WANDER = 0.03;
-const AMPLITUDE_WANDER = 0.03;
-const AMPLITUDE_FACTOR = 2.5;
+const AMPLITUDE_WANDER = 0.05;
+const LEAST_AMPLITUDE = 0.02;
+const AMPLITUDE_FACTOR = 1.7;
 /** How much a neighbour's glow adds, as a share of its amplitude, beforehand: one standard deviation; and at most. */
 const GLOW_SPREAD = 0.05;
 const MOST_GLOW = 0.25;
@@ -35,17 +43,11 @@ const ROUNDS = 2;
  * straight between knots 10 s apart, held together by a stated wander, so that a lamp that is not lit for a while keeps its amplitude.
  *
  * @param states 1 lit, 0 dark, -1 left out (near an edge, or not known)
- * @param lampCanBeLit false: fit the dark level and the glow alone
+ * @param scale what the curves are measured against; an amplitude of 0 fits the dark level and the glow alone
  */
-export function fitLevels(
-  bins: Bins,
-  lane: Float64Array,
-  states: Int8Array,
-  glows: readonly Glow[],
-  fullScale: number,
-  noise: number,
-  lampCanBeLit = true,
-): LevelFit {
+export function fitLevels(bins: Bins, lane: Float64Array, states: Int8Array, glows: readonly Glow[], scale: LevelScale): LevelFit {
+  const { fullScale, noise } = scale;
+  const lampCanBeLit = scale.amplitude > 0;
   const count = lane.length;
   const startS = bins.startsS[0] ?? 0;
   const spanS = Math.max((bins.endsS[count - 1] ?? 0) - startS, 1e-3);
@@ -63,7 +65,7 @@ export function fitLevels(
       matrix[row * size + column] = (matrix[row * size + column] as number) + value;
     };
     wander(add, 0, knots, DARK_WANDER * fullScale, fullScale);
-    wander(add, knots, knots, AMPLITUDE_WANDER * fullScale, fullScale);
+    wander(add, knots, knots, AMPLITUDE_WANDER * Math.max(scale.amplitude, LEAST_AMPLITUDE * fullScale), fullScale);
     // A neighbour takes no light away: a share that came out negative is held at zero.
     glows.forEach((_, index) => {
       const row = 2 * knots + index;

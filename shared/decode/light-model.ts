@@ -1,6 +1,7 @@
 import type { Bins } from './bin-levels.js';
-import { findSteps, NOT_TOLD } from './find-steps.js';
-import { fitLevels, type Glow, type LevelFit } from './fit-levels.js';
+import { findSteps, NOT_TOLD, type Steps } from './find-steps.js';
+import { fitLevels, type Glow, type LevelFit, type LevelScale } from './fit-levels.js';
+import { solveSymmetric } from './solve-symmetric.js';
 import { likeliestStates, litEvidence, MOST_BIN_NATS } from './lamp-states.js';
 
 /** What is known of one lamp's light in a capture. */
@@ -49,30 +50,23 @@ export function modelLight(bins: Bins, ids: readonly string[], fullScale: number
   const steps = lanes.map((lane) => findSteps(bins, lane, fullScale));
   const lamps: LampLight[] = ids.map((id, lamp) => {
     const lane = lanes[lamp] as Float64Array;
-    const { labels, noise, found } = steps[lamp] as ReturnType<typeof findSteps>;
-    if (!found) return steadyLight(bins, id, lane, fullScale, noise);
-    return steppingLight(bins, id, lane, labels, [], fullScale, noise);
+    const { labels, noise, stepSize } = steps[lamp] as Steps;
+    if (stepSize === undefined) return steadyLight(bins, id, lane, fullScale, noise);
+    return steppingLight(bins, id, lane, labels, [], { fullScale, noise, amplitude: stepSize });
   });
   for (let round = 1; round < ROUNDS; round += 1) {
     lamps.forEach((lamp, index) => {
       if (!lamp.changes) return;
       const glows = neighboursOf(lamps, index).map(glowOf);
       const lane = lanes[index] as Float64Array;
-      lamps[index] = steppingLight(
-        bins,
-        lamp.id,
-        lane,
-        awayFromEdges(lamp.states),
-        glows,
-        fullScale,
-        (steps[index] as { noise: number }).noise,
-      );
+      const scale = { fullScale, noise: (steps[index] as Steps).noise, amplitude: mean(lamp.fit.amplitude) };
+      lamps[index] = steppingLight(bins, lamp.id, lane, awayFromEdges(lamp.states), glows, scale);
     });
   }
   const glowShares = lamps.flatMap((lamp) => (lamp.changes ? lamp.fit.glowShares : []));
   const usualGlow = Math.max(USUAL_GLOW, 1.5 * median(glowShares));
   lamps.forEach((lamp, index) => {
-    if (lamp.changes && isOnlyGlow(bins, lanes[index] as Float64Array, lamps, index, usualGlow, fullScale)) {
+    if (lamp.changes && isOnlyGlow(bins, lanes[index] as Float64Array, lamps, index, usualGlow)) {
       lamps[index] = steadyLight(bins, lamp.id, darkened(lanes[index] as Float64Array, lamp), fullScale, lamp.fit.noise);
     }
   });
@@ -86,10 +80,9 @@ function steppingLight(
   lane: Float64Array,
   labels: Int8Array,
   glows: readonly Glow[],
-  fullScale: number,
-  noise: number,
+  scale: LevelScale,
 ): LampLight {
-  const fit = fitLevels(bins, lane, labels, glows, fullScale, noise);
+  const fit = fitLevels(bins, lane, labels, glows, scale);
   const evidence = litEvidence(bins, lane, fit);
   const states = likeliestStates(evidence);
   const everLit = states.includes(1);
@@ -99,7 +92,7 @@ function steppingLight(
 /** A lamp whose light never steps: its level is known, its state is told later by comparison. */
 function steadyLight(bins: Bins, id: string, lane: Float64Array, fullScale: number, noise: number): LampLight {
   const labels = new Int8Array(lane.length).fill(0);
-  const fit = fitLevels(bins, lane, labels, [], fullScale, noise, false);
+  const fit = fitLevels(bins, lane, labels, [], { fullScale, noise, amplitude: 0 });
   fit.amplitude.fill(0);
   return { id, states: labels, evidence: new Float64Array(lane.length), fit, changes: false, everLit: false, steadyDoubt: 0.5 };
 }
@@ -142,27 +135,29 @@ function awayFromEdges(states: Int8Array): Int8Array {
   return labels;
 }
 
-function isOnlyGlow(
-  bins: Bins,
-  lane: Float64Array,
-  lamps: readonly LampLight[],
-  index: number,
-  usualGlow: number,
-  fullScale: number,
-): boolean {
+/**
+ * Whether what looks like a weak lamp is only light of the lamps beside it: their light alone, in shares no larger than usual, must leave next
+ * to nothing of the difference between its lit and its dark bins.
+ */
+function isOnlyGlow(bins: Bins, lane: Float64Array, lamps: readonly LampLight[], index: number, usualGlow: number): boolean {
   const lamp = lamps[index] as LampLight;
-  const neighbours = neighboursOf(lamps, index);
-  const brightest = Math.max(0, ...neighbours.map((neighbour) => mean(neighbour.fit.amplitude)));
+  const glows = neighboursOf(lamps, index).map(glowOf);
+  const brightest = Math.max(0, ...neighboursOf(lamps, index).map((neighbour) => mean(neighbour.fit.amplitude)));
   if (brightest === 0 || mean(lamp.fit.amplitude) > MAYBE_GLOW * brightest) return false;
   const labels = awayFromEdges(lamp.states);
-  const { dark, glow, glowShares } = fitLevels(bins, lane, labels, neighbours.map(glowOf), fullScale, lamp.fit.noise, false);
-  if (glowShares.some((share) => share > usualGlow)) return false;
+  labels.forEach((_, bin) => {
+    if ((bins.weights[bin] as number) === 0) labels[bin] = NOT_TOLD;
+  });
+  const light = lane.map((level, bin) => level - (lamp.fit.dark[bin] as number));
+  const shares = glowSharesOf(light, labels, glows);
+  if (shares.some((share) => share > usualGlow)) return false;
   const left = [0, 0];
   const counts = [0, 0];
   let own = 0;
   labels.forEach((label, bin) => {
-    if (label < 0 || (bins.weights[bin] as number) === 0) return;
-    left[label] = (left[label] as number) + (lane[bin] as number) - (dark[bin] as number) - (glow[bin] as number);
+    if (label < 0) return;
+    const glow = glows.reduce((sum, lane_, which) => sum + (shares[which] as number) * (lane_[bin] as number), 0);
+    left[label] = (left[label] as number) + (light[bin] as number) - glow;
     counts[label] = (counts[label] as number) + 1;
     if (label === 1) own += lamp.fit.amplitude[bin] as number;
   });
@@ -170,6 +165,29 @@ function isOnlyGlow(
   if (darkCount === 0 || litCount === 0) return false;
   const unexplained = (left[1] as number) / litCount - (left[0] as number) / darkCount;
   return unexplained <= (GLOW_LEFT_SHARE * own) / litCount;
+}
+
+/** The shares of the neighbours' light that explain a lane best: least squares, none below zero. */
+function glowSharesOf(light: Float64Array, labels: Int8Array, glows: readonly Glow[]): number[] {
+  const size = glows.length;
+  const matrix = new Float64Array(size * size);
+  const right = new Float64Array(size);
+  labels.forEach((label, bin) => {
+    if (label < 0) return;
+    for (let row = 0; row < size; row += 1) {
+      const here = glows[row]?.[bin] ?? 0;
+      right[row] = (right[row] as number) + here * (light[bin] as number);
+      for (let column = 0; column <= row; column += 1) {
+        matrix[row * size + column] = (matrix[row * size + column] as number) + here * (glows[column]?.[bin] ?? 0);
+      }
+    }
+  });
+  const shares = [...solveSymmetric(Float64Array.from(matrix), Float64Array.from(right))];
+  const negative = shares.findIndex((share) => share < 0);
+  if (negative < 0) return shares;
+  const rest = glows.filter((_, which) => which !== negative);
+  const others = rest.length === 0 ? [] : glowSharesOf(light, labels, rest);
+  return [...others.slice(0, negative), 0, ...others.slice(negative)];
 }
 
 /** The lane of a lamp that was only glow, with the glow taken out. */

@@ -114,8 +114,9 @@ function readWeightedPhases(input: CodingInput, coding: WeightedPhases): CodingR
     for (const pieces of nonsense) {
       const fromS = pieces[0]?.fromS ?? 0;
       const toS = pieces.at(-1)?.toS ?? 0;
-      // Less than one phase is the panel on its way to the next thing.
-      if (toS - fromS <= Math.max(usualPhaseS, band[0]) * UNLISTED_PHASES) continue;
+      // Less than one phase is the panel on its way to the next thing; a whole phase is something that was shown.
+      const short = toS - fromS <= Math.max(usualPhaseS, band[0]) * UNLISTED_PHASES;
+      if (short && pieces.every((piece) => piece.kind !== 'phase')) continue;
       segments.push({
         kind: 'unreadable',
         fromS,
