@@ -8,7 +8,7 @@ import { pino } from 'pino';
 import request, { type Test } from 'supertest';
 import { expect } from 'vitest';
 import { v7 as newId } from 'uuid';
-import { problemSchema } from '../../shared/api/problem.js';
+import { problemSchema, type Problem } from '../../shared/api/problem.js';
 import { ROLES, type Role } from '../../shared/api/roles.js';
 import { routes, routeUrl, type Answer, type RouteName } from '../../shared/api/routes.js';
 import type { Shop, User } from '../../shared/api/sessions.js';
@@ -25,9 +25,11 @@ export interface SignedInPerson extends User {
   token: string;
 }
 
+type Texts = Record<string, string | number | boolean | undefined>;
+
 export interface Call {
-  params?: Record<string, unknown>;
-  query?: Record<string, unknown>;
+  params?: Texts;
+  query?: Texts;
   body?: unknown;
   /** Undefined: nobody. */
   as?: SignedInPerson | undefined;
@@ -93,7 +95,7 @@ export async function startTestServer({ shop = {}, config = {}, webDir }: TestSe
   const send = (name: RouteName, { params, query, body, as, key }: Call = {}): Test => {
     const route = routes[name];
     const method = route.method.toLowerCase() as 'get' | 'post' | 'delete';
-    let sent = request(app)[method](routeUrl(name, { params, query }));
+    let sent = request(app)[method](routeUrl(name, { ...(params ? { params } : {}), ...(query ? { query } : {}) }));
     if (as) sent = sent.set('Authorization', `Bearer ${as.token}`);
     if ('idempotent' in route) sent = sent.set('Idempotency-Key', key ?? newId());
     return body === undefined ? sent : sent.send(body as object);
@@ -121,7 +123,7 @@ export async function startTestServer({ shop = {}, config = {}, webDir }: TestSe
 }
 
 /** The problem that an answer holds: RFC 9457, with nothing of the server's inside in it. */
-export function problemIn(response: { status: number; type: string; body: unknown; text: string }) {
+export function problemIn(response: { status: number; type: string; body: unknown; text: string }): Problem & { kind: string } {
   expect(response.type).toBe('application/problem+json');
   const problem = problemSchema.parse(response.body);
   expect(problem.status).toBe(response.status);

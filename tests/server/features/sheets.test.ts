@@ -12,8 +12,8 @@ const text = shopFileText('heron-h6.yaml');
 const edition = (number: number, family = 'heron-h6') =>
   text.replace('edition: 1', `edition: ${String(number)}`).replace('family: heron-h6', `family: ${family}`);
 const add = (sheet: string) => server.send('addSheet', { as: server.people.lead, body: { text: sheet } });
-const get = (query: object = {}) =>
-  server.ok('getSheet', { as: server.people.technician, params: { family: 'heron-h6' }, query: query as Record<string, unknown> });
+const get = (query: { edition?: number } = {}) =>
+  server.ok('getSheet', { as: server.people.technician, params: { family: 'heron-h6' }, query });
 
 test('When editions are added, then each must be the next one, and all are kept to the letter', async () => {
   expect(problemIn(await add(edition(2)))).toMatchObject({ status: 409, kind: 'conflict' });

@@ -12,7 +12,8 @@ beforeAll(async () => {
 afterAll(() => server.close());
 
 const signOff = (number: number, body: object, as = server.people.lead) => server.send('signOff', { params: { number }, as, body });
-const look = (tag: string, query: Record<string, unknown>): Promise<PublicTag> => server.ok('getPublicTag', { params: { tag }, query });
+const look = (tag: string, query: Record<string, string | undefined>): Promise<PublicTag> =>
+  server.ok('getPublicTag', { params: { tag }, query });
 const readyUnit = async (): Promise<number> => {
   const { number } = await takeIn(server);
   await mendAndProve(server, number);

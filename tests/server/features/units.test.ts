@@ -10,7 +10,7 @@ beforeAll(async () => {
 });
 afterAll(() => server.close());
 
-const list = (query: Record<string, unknown> = {}) => server.ok('listUnits', { as: server.people.sales, query });
+const list = (query: Record<string, string | number> = {}) => server.ok('listUnits', { as: server.people.sales, query });
 const numbersOf = ({ items }: { items: { number: number }[] }) => items.map(({ number }) => number);
 
 test('When the first units are taken in, then they are numbered from 1 without a hole, also past a refused one', async () => {
