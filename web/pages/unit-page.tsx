@@ -77,6 +77,7 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
   const [query, setQuery] = useSearchParams();
   const sheet = useQuery(sheetQuery(unit.family));
   const stands = tag?.standing === 'stands';
+  const toGo = readiness.rules.filter((rule) => rule.state !== 'met' && rule.id !== 'four-eyes').length;
   const mayRepair = mayDo(user.role, 'repair.record');
   const maySign = mayDo(user.role, 'unit.sign-off') && readiness.readyToSign && !stands;
   const repairing = mayRepair && query.get('do') === 'repair';
@@ -124,9 +125,7 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
           </button>
         )}
         {!stands && !readiness.readyToSign && (
-          <p className="self-center text-ink2">
-            A lead signs off when every rule but four eyes is met. {plural(readiness.total - readiness.met, 'rule')} to go.
-          </p>
+          <p className="self-center text-ink2">A lead signs off when every rule but four eyes is met. {plural(toGo, 'rule')} to go.</p>
         )}
       </div>
       {repairing && (
