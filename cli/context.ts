@@ -46,6 +46,7 @@ export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextP
   const interruption = new Interruption(leaveNow);
   const errors = outputOn(stderr, env);
   const interactive = stdin.isTTY === true;
+  const now = (): Date => new Date();
   return {
     env,
     home,
@@ -54,15 +55,17 @@ export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextP
     stdout: outputOn(stdout, env),
     stderr: errors,
     interactive,
-    prompt: promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption }),
+    prompt: promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption, now }),
     interruption,
-    now: () => new Date(),
+    now,
     newId,
     sleep: (milliseconds) => new Promise((resolve) => setTimeout(resolve, milliseconds)),
     openRig: async (choice) => (await import('./instruments/rig.js')).openRig(choice, home.folder),
     api: async () => {
       const [{ createApi }, { readSession }] = await Promise.all([import('./api/api-client.js'), import('./session.js')]);
-      return createApi({ server, token: () => readSession(home, server)?.token, signal: interruption.signal });
+      // After Ctrl-C what was recorded is still sent; the second Ctrl-C leaves at once.
+      const signal = interruption.interrupted ? undefined : interruption.signal;
+      return createApi({ server, token: () => readSession(home, server)?.token, signal });
     },
   };
 }

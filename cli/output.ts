@@ -1,6 +1,7 @@
 import type { ChalkInstance } from 'chalk';
 import type { Environment } from './home.js';
 import { toAscii } from './render/ascii.js';
+import { wrapLines } from './render/columns.js';
 
 /** What a command writes to: a terminal, a pipe or a file. */
 export interface RawOutput {
@@ -13,6 +14,8 @@ export interface RawOutput {
 export interface Output {
   /** Text for people. Where the locale has no UTF-8, signs become plain letters. */
   write(text: string): void;
+  /** Sentences, with a line end: on a terminal no word is broken at its edge. */
+  say(text: string): void;
   /** As it is, for programs: JSON is UTF-8 everywhere. */
   writeExactly(text: string): void;
   readonly isTerminal: boolean;
@@ -50,8 +53,10 @@ export function outputOn(stream: RawOutput, env: Environment): Output {
   const colourLevel = colourLevelOf(isTerminal, env);
   const unicode = isUtf8(env);
   let ink: ChalkInstance | undefined;
+  const write = (text: string): void => void stream.write(unicode ? text : toAscii(text));
   return {
-    write: (text) => void stream.write(unicode ? text : toAscii(text)),
+    write,
+    say: (text) => write(`${isTerminal ? wrapLines(text, (stream.columns ?? USUAL_COLUMNS) - 1) : text}\n`),
     writeExactly: (text) => void stream.write(text),
     isTerminal,
     get columns() {

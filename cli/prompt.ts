@@ -3,6 +3,7 @@ import { NobodyToAskError, StoppedError } from './errors.js';
 import type { Interruption } from './interruption.js';
 import { readKeys } from './keyboard.js';
 import type { Output, RawOutput } from './output.js';
+import { timeText } from './render/words.js';
 
 export type InputStream = Readable & { isTTY?: boolean; setRawMode?: (raw: boolean) => unknown };
 
@@ -42,9 +43,10 @@ export interface PromptParts {
   rawOutput: RawOutput;
   interactive: boolean;
   interruption: Interruption;
+  now: () => Date;
 }
 
-export function promptOn({ stdin, output, rawOutput, interactive, interruption }: PromptParts): Prompt {
+export function promptOn({ stdin, output, rawOutput, interactive, interruption, now }: PromptParts): Prompt {
   const needSomebody = ({ message, instead }: Question): void => {
     if (!interactive) throw new NobodyToAskError(message, instead);
   };
@@ -82,7 +84,7 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption }
         interruption.signal.addEventListener('abort', onStop);
         const onKey = (pressed: string): void => {
           const answer = question.keys.find(({ key }) => key === pressed.toLowerCase());
-          if (answer) settle(() => (output.write(`${nameOfKey(answer.key)}\n`), resolve(answer.key)));
+          if (answer) settle(() => (output.write(`${nameOfKey(answer.key)}  ${timeText(now())}\n`), resolve(answer.key)));
           else output.write(`\n${question.again ?? 'There is no default: press one of these keys.'}\n${question.message}  ${row}   > `);
         };
         readKeys(stdin, onKey, () => interruption.interrupt()).then((opened) => {

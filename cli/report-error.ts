@@ -8,7 +8,7 @@ import { InstrumentError } from './instruments/instrument-error.js';
 /** Says on standard error what happened, where, and what to do; gives the exit code. */
 export function reportError(error: unknown, context: Pick<Context, 'stderr' | 'home' | 'now'>): number {
   const code = exitCodeOf(error);
-  context.stderr.write(code === EXIT.fault ? faultReport(error, context) : `${wordsOf(error)}\n`);
+  context.stderr.say(code === EXIT.fault ? faultReport(error, context) : wordsOf(error));
   return code;
 }
 
@@ -45,5 +45,5 @@ function faultReport(error: unknown, { home, now }: Pick<Context, 'home' | 'now'
   } catch {
     kept = `The report could not be written down: ${details.split('\n')[0] ?? ''}`;
   }
-  return `This is a fault of Refettle itself. Nothing that was recorded is lost: it is in ${home.path('journal')}, and 'refettle sync' sends it.\n${kept}\n`;
+  return `This is a fault of Refettle itself. Nothing that was recorded is lost: it is in ${home.path('journal')}, and 'refettle sync' sends it.\n${kept}`;
 }

@@ -22,7 +22,8 @@ export interface Api {
 export interface ApiParts {
   server: string;
   token: () => string | undefined;
-  signal: AbortSignal;
+  /** Ends a call that is under way. */
+  signal: AbortSignal | undefined;
   fetch?: typeof fetch;
 }
 
@@ -43,7 +44,7 @@ export function createApi({ server, token, signal, fetch: send = fetch }: ApiPar
           ...(request.idempotencyKey === undefined ? {} : { 'idempotency-key': request.idempotencyKey }),
         },
         ...(request.body === undefined ? {} : { body: JSON.stringify(request.body) }),
-        signal: AbortSignal.any([signal, AbortSignal.timeout(route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS)]),
+        signal: AbortSignal.any([...(signal ? [signal] : []), AbortSignal.timeout(route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS)]),
       });
       if (response.status >= 400) throw problemOf(response, server);
       const parsed = route.response.safeParse(response.status === 204 ? {} : response.json());

@@ -70,15 +70,16 @@ export class LampWindow {
   }
 
   /** The mean level of each lamp in the last `count` columns, 0 to 1 of full scale, and when the first of them begins. A column without a sample holds what stood before. */
-  columns(count: number): { fromS: number; levels: number[][] } {
-    const last = this.#columns.at(-1)?.index ?? 0;
+  columns(count: number, untilUs: number = this.lastUs): { fromS: number; levels: number[][] } {
+    const last = Math.max(this.#columns.at(-1)?.index ?? 0, Math.floor(untilUs / COLUMN_US));
     const first = Math.max(0, last - count + 1);
     const levels: number[][] = this.#levels.map(() => []);
     let at = this.#columns.findLastIndex((column) => column.index <= first);
     for (let index = first; index <= last; index += 1) {
       while ((this.#columns[at + 1]?.index ?? Infinity) <= index) at += 1;
       const column = this.#columns[at];
-      levels.forEach((lane, lamp) => lane.push(column ? (column.sums[lamp] ?? 0) / column.count / this.header.scale.max : 0));
+      // By keys a level holds until the next one; of a probe a column without samples was lost, and holds what stood before.
+      levels.forEach((lane, lamp) => lane.push(column === undefined ? 0 : index > column.index && column === this.#columns.at(-1) ? (this.now[lamp] ?? 0) : (column.sums[lamp] ?? 0) / column.count / this.header.scale.max));
     }
     return { fromS: first / COLUMNS_PER_SECOND, levels };
   }

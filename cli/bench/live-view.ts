@@ -7,7 +7,7 @@ import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Style } from '../output.js';
 import { faceLines } from '../render/face-lines.js';
 import { drawLanes, laneColumns, WEAK_BELOW, type Lane } from '../render/lanes.js';
-import { padRight, spread } from '../render/columns.js';
+import { padRight, spread, wrap } from '../render/columns.js';
 import type { LampWindow } from './lamp-window.js';
 import { times } from '../render/words.js';
 
@@ -61,7 +61,7 @@ export function liveLines(parts: ViewParts, style: Style, rows: number): string[
   const { window, sheet, understood, seconds, elapsedS } = parts;
   const { ink, columns } = style;
   const { coding } = sheet;
-  const shown = window.columns(laneColumns(columns));
+  const shown = window.columns(laneColumns(columns), parts.byKeys ? elapsedS * 1_000_000 : undefined);
   const levels = window.now;
   const lanes = sheet.lamps.map((lamp, index): Lane => {
     const known = understood.lamps[index];
@@ -82,7 +82,7 @@ export function liveLines(parts: ViewParts, style: Style, rows: number): string[
   const time = `${clock(elapsedS)}${seconds === undefined ? '' : ` of ${clock(seconds)}`}`;
   const lost = window.lost > 0 ? `, ${window.lost} lines lost` : '';
   const title = spread(` ${ink.bold(parts.waitsFor ?? (parts.byKeys ? 'The lamps, by keys' : 'The lamps'))}${lost}`, ink.bold(`going ${time}`), columns - 1);
-  const foot = [...(parts.byKeys ? [keyRow(window, sheet, style)] : []), ` ${ink.bold(whatNow(parts))}`, keyLine(parts, style)];
+  const foot = [...(parts.byKeys ? [keyRow(window, sheet, style)] : []), ...wrap(whatNow(parts), columns - 3).map((line) => ` ${ink.bold(line)}`), keyLine(parts, style)];
   const room = rows - 2 - strip.length - foot.length - 1;
   return [title, ...strip, ...fitted(codeFace(parts, style), room), ...foot];
 }

@@ -64,7 +64,9 @@ export async function runScript(parts: RunParts): Promise<RunEnd> {
   const record = (result: StepResult): void => {
     journal.record(result);
     results.push(result);
-    bench.say(...stepLines(results.length, result, style));
+    // What a person has just answered stands on the screen already, with its time.
+    const onScreen = technician.attended && (result.kind === 'caution' || result.kind === 'instruct');
+    if (!onScreen) bench.say(...stepLines(results.length, result, style));
   };
   const gate = (step: Step): GateState => stepGate(step, unit.sheet, { ...unit.facts, events: [...unit.facts.events, ...eventsSoFar(parts, results)] }, rig.simulated);
 
@@ -80,7 +82,7 @@ export async function runScript(parts: RunParts): Promise<RunEnd> {
     const asked = energisedStepsOf(step, script.steps.slice(index), unit);
     const closed = asked.map((one) => (isDeadTest(one, unit.sheet) ? gate(one) : (shut ?? gate(one)))).find(({ open }) => !open);
     if (closed) {
-      if (closed !== shut) bench.say(style.ink.bold(`A safety gate is shut: ${closed.reasons.join('; ')}.`), ...(closed.remedy === undefined ? [] : [`To open it: ${closed.remedy}.`]));
+      if (closed !== shut) stderr.say(`A safety gate is shut: ${closed.reasons.join('; ')}.${closed.remedy === undefined ? '' : `\nTo open it: ${closed.remedy}.`}`);
       if (asked.some((one) => !isDeadTest(one, unit.sheet))) shut = closed;
       record(skipped(step, bench, `a safety gate is shut: ${closed.reasons.join('; ')}`));
       continue;
@@ -121,7 +123,7 @@ async function tryStep(step: Step, index: number, bench: Bench, { context, techn
     const start = { startedAt: context.now().toISOString(), captureId: context.newId() };
     const records = step.kind === 'capture' || step.kind === 'watch';
     journal.begin({ stepId: step.id, kind: step.kind, title: step.title, at: start.startedAt, ...(records ? { captureId: start.captureId } : {}) });
-    if (technician.attended || records) bench.say(bench.style.ink.bold(`${String(index + 1).padStart(2)} ${step.kind.padEnd(8)} ${step.title}`));
+    if ((technician.attended && step.kind !== 'expect') || records) bench.say(bench.style.ink.bold(`${String(index + 1).padStart(2)} ${step.kind.padEnd(8)} ${step.title}`));
     try {
       return await runStep(step, bench, start);
     } catch (error) {

@@ -56,7 +56,7 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
     return sheet.lamps.map((_lamp, index) => recent.reduce((sum, levels) => sum + (levels[index] ?? 0), 0) / Math.max(1, recent.length));
   };
   try {
-    stderr.write('           Before the first capture: is each sensor on its own lamp? The machine stays dark for this.\n');
+    stderr.say('           Before the first capture: is each sensor on its own lamp? The machine stays dark for this.');
     for (const [index, lamp] of sheet.lamps.entries()) {
       for (;;) {
         const keys = [{ key: ' ', word: 'covered' }, { key: 'q', word: 'leave' }] as const;
@@ -70,7 +70,7 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
         await prompt.key({ message: '           Ready to try again?', keys: [{ key: ' ', word: 'go on' }], instead: 'run it at a terminal' });
       }
     }
-    stderr.write('           Every sensor is on its lamp.\n');
+    stderr.say('           Every sensor is on its lamp.');
   } finally {
     context.interruption.signal.removeEventListener('abort', onInterrupt);
     stop.abort();

@@ -8,7 +8,7 @@ import { readIfThere, writeWhole } from '../home.js';
 import { parseMoney } from '../money.js';
 import { parsePartSource } from '../part-source.js';
 import { parseJson } from '../session.js';
-import { wrap } from '../render/columns.js';
+import { indented, wrap } from '../render/columns.js';
 import { unitSign } from '../../shared/measure/format-reading.js';
 import type { Technician, TypedReading } from './technician.js';
 
@@ -44,13 +44,13 @@ export function terminalTechnician(context: Context, currency: string): Technici
     },
     hasDone: (_stepId, _kind, question) => yes(`${INDENT}${question}`),
     async looks(_stepId, question) {
-      stderr.write(`${wrap(question, Math.max(20, stderr.columns - INDENT.length - 1)).map((line) => `${INDENT}${line}\n`).join('')}`);
+      stderr.say(`${indented([question], stderr.columns).join('\n')}`);
       const keys = [
         { key: 'p', word: 'pass' },
         { key: 'f', word: 'fail' },
         { key: 'i', word: 'inconclusive' },
       ];
-      const key = await prompt.key({ message: INDENT.trimEnd(), keys, instead });
+      const key = await prompt.key({ message: `${INDENT}Verdict?`, keys, instead });
       const verdict = (keys.find((one) => one.key === key)?.word ?? 'inconclusive') as Verdict;
       if (verdict === 'pass') return { verdict };
       const note = await prompt.text({ message: 'What was seen', instead });

@@ -57,7 +57,7 @@ export async function unitOnBench(context: Context, number: number, sheetGiven?:
   if (unit.family === undefined && !sheetGiven) throw new BadInputError(`${unitLabel(number)} has no control family, so there is no service sheet to go by: a lead gives it one, or hand in --sheet`);
   const sheet = sheetGiven ? { value: sheetGiven, offline: false } : await sheetOf(context, unit.family ?? '');
   const offline = me.offline || page.offline || sheet.offline;
-  if (offline) context.stderr.write(`The server at ${context.server} can't be reached: working with what this bench knows from last time.\n`);
+  if (offline) context.stderr.say(`The server at ${context.server} can't be reached: working with what this bench knows from last time.`);
   const by = personOf(me.user);
   const waiting = eventsOfWaiting(context, number, sheet.value);
   return { page: page.value, sheet: sheet.value, me, by, offline, facts: factsOf(page.value, sheet.value, me, waiting) };

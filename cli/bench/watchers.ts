@@ -100,7 +100,7 @@ function quietWatcher(parts: WatchingParts, controls: Controls): Watcher {
       }
       return over(window);
     },
-    marked: () => context.stderr.write('  next code\n'),
+    marked: () => context.stderr.say('  next code'),
     close: () => undefined,
   };
 }

@@ -90,7 +90,7 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
         seconds: options.seconds,
         watcher: watching({ context, sheet, attended: technician.attended, byKeys: options.keys === true }),
       }).catch((error: unknown) => {
-        context.stderr.write(`What came until then is in ${captureFileOf(context.home, id)}\nIf it is of use: refettle capture ${options.number} --file ${captureFileOf(context.home, id)}\n`);
+        context.stderr.say(`What came until then is in ${captureFileOf(context.home, id)}\nIf it is of use: refettle capture ${options.number} --file ${captureFileOf(context.home, id)}`);
         throw error;
       });
       return { id, file: captureText(context.home, id), fromFile: false, interrupted: ended === 'interrupted' };
@@ -102,7 +102,7 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
 
 async function sourceOf(rig: OpenRig | undefined, context: Context, { sheet }: UnitOnBench, { keys }: CaptureOptions): Promise<LampSource> {
   if (!rig || keys === true) {
-    if (sheet.lamps.length > MOST_KEY_LAMPS) context.stderr.write(`Only the first ${MOST_KEY_LAMPS} lamps of the panel have a key.\n`);
+    if (sheet.lamps.length > MOST_KEY_LAMPS) context.stderr.say(`Only the first ${MOST_KEY_LAMPS} lamps of the panel have a key.`);
     return keySource(sheet);
   }
   if (!rig.simulated) await checkSensors(context, rig, sheet);
@@ -123,7 +123,7 @@ async function keepAndSay(options: CaptureOptions, context: Context, unit: UnitO
     params: { number: options.number },
     body: { id, file, fromFile, at },
   });
-  if (delivery.state !== 'sent') context.stderr.write(`${deliveryWords(delivery)}\n`);
+  if (delivery.state !== 'sent') context.stderr.say(deliveryWords(delivery));
   if (options.json === true) printJson(context, { id, unit: options.number, ...answer, sent: delivery.state === 'sent' });
   else {
     const style = await context.stdout.style();

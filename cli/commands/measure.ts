@@ -37,6 +37,9 @@ export interface MeasureOptions {
   json?: boolean;
 }
 
+/** An insulation test puts 500 V on the wiring and ends with discharge (gate 2). */
+const DISCHARGE = 'Discharge it now through the tester, wait, measure: below 50 V before anybody touches anything.';
+
 /** Takes one check of the unit's sheet: measured by the rig, typed in, or looked at. */
 export async function runMeasure(options: MeasureOptions, context: Context): Promise<number> {
   const unit = await unitOnBench(context, options.number);
@@ -65,7 +68,10 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
       route: 'recordReading',
       body: { id, at, simulated: rig?.simulated === true, reading },
     });
-    if (check.deadTest === 'insulation' && technician.attended) await technician.hasDone(check.id, 'instruct', 'Discharge it now through the tester, and measure: below 50 V. Discharged?');
+    if (check.deadTest === 'insulation') {
+      context.stderr.say(DISCHARGE);
+      if (technician.attended) await technician.hasDone(check.id, 'instruct', 'Discharged?');
+    }
     return await say(options, context, { check, verdict: reading.judgement.verdict, delivery, reading });
   } finally {
     await rig?.close();
@@ -77,14 +83,14 @@ async function readingOff(rig: OpenRig, technician: Technician, check: MeasuredC
   const meter = rig.meterInfo(check.quantity);
   for (;;) {
     if (meter && technician.attended) {
-      stderr.write(`${check.title}, meter ${meter.id}\n`);
+      stderr.say(`${check.title}, meter ${meter.id}`);
       if (!(await technician.hasDone(check.id, 'measure', 'Probes on?'))) return undefined;
     }
     try {
       return await takeReading(check, sheet, rig, technician, check.id);
     } catch (error) {
       if (!(error instanceof InstrumentError) || !technician.attended) throw error;
-      stderr.write(`${wordsOf(error)}\nNothing was recorded.\n`);
+      stderr.say(`${wordsOf(error)}\nNothing was recorded.`);
       if (!(await technician.triesAgain(check.id, 'Measure again?'))) throw error;
     }
   }
@@ -133,7 +139,7 @@ interface Said {
 
 async function say(options: MeasureOptions, context: Context, { check, verdict, delivery, reading, inspection }: Said): Promise<number> {
   const { stdout, stderr } = context;
-  if (delivery.state !== 'sent') stderr.write(`${deliveryWords(delivery)}\n`);
+  if (delivery.state !== 'sent') stderr.say(deliveryWords(delivery));
   const style = await stdout.style();
   if (options.json === true) printJson(context, { unit: options.number, check: check.id, verdict, sent: delivery.state === 'sent', ...(reading ? { reading } : { inspection }) });
   else if (reading && check.kind === 'measure') {

@@ -44,7 +44,7 @@ export async function runRepair(options: RepairOptions, context: Context): Promi
     params: { number: options.number },
     body: { id, at, simulated: false, repair },
   });
-  if (delivery.state !== 'sent') context.stderr.write(`${deliveryWords(delivery)}\n`);
+  if (delivery.state !== 'sent') context.stderr.say(deliveryWords(delivery));
   if (options.json === true) printJson(context, { id, unit: options.number, repair, sent: delivery.state === 'sent' });
   else context.stdout.write(`${unitLabel(options.number)} mended: ${repairText(repair)}. The dead tests come first again now.\n`);
   return delivery.state === 'sent' ? EXIT.good : EXIT.server;

@@ -16,7 +16,7 @@ import { sendWaiting, type Delivery } from '../journal/deliver.js';
 import { closeRun, recoverRuns } from '../journal/recover-runs.js';
 import { RunJournal, writtenRun } from '../journal/run-journal.js';
 import { printJson } from '../render/json.js';
-import { spread } from '../render/columns.js';
+import { cut, spread, widthOf } from '../render/columns.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printRunEnd } from '../render/run-end.js';
 import { unitLabel } from '../render/words.js';
@@ -37,7 +37,7 @@ export async function runScriptCommand(options: RunOptions, context: Context): P
   const unit = await unitOnBench(context, options.number);
   refuseFindings(script, unit.sheet, options.script);
   if (unit.page.unit.licensedOnly) {
-    context.stderr.write(`${unitLabel(options.number)} is for a licensed person only (gas, sealed refrigerant or a microwave oven): no script runs on it.\n`);
+    context.stderr.say(`${unitLabel(options.number)} is for a licensed person only (gas, sealed refrigerant or a microwave oven): no script runs on it.`);
     return EXIT.notGood;
   }
   const rig = await context.openRig(options.rig);
@@ -109,7 +109,9 @@ async function printHeader({ stderr }: Context, { page, sheet, me }: UnitOnBench
   const { ink, columns } = await stderr.style();
   const { number, plate } = page.unit;
   const left = `${ink.bold(unitLabel(number))}  ${plate.maker} ${plate.model}  ${sheet.title ?? sheet.family}`;
-  stderr.write(`${spread(left, `${script.name}, ${script.steps.length} steps   ${rig.name}, ${me.user.name}`, columns - 1)}\n${'─'.repeat(columns - 1)}\n`);
+  const about = `${script.name}, ${script.steps.length} steps`;
+  const whole = spread(left, `${about}   ${rig.name}, ${me.user.name}`, columns - 1);
+  stderr.say(`${widthOf(whole) < columns ? whole : cut(spread(left, about, columns - 1), columns - 1)}\n${'─'.repeat(columns - 1)}`);
 }
 
 interface Said {
@@ -125,7 +127,7 @@ interface Said {
 
 async function say(options: RunOptions, context: Context, said: Said): Promise<void> {
   const { delivery, results, verdict } = said;
-  if (delivery.state !== 'sent') context.stderr.write(`${deliveryWords(delivery)}\n`);
+  if (delivery.state !== 'sent') context.stderr.say(deliveryWords(delivery));
   if (options.json === true) {
     printJson(context, {
       run: said.runId,

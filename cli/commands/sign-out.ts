@@ -15,7 +15,7 @@ export async function runSignOut(_options: object, context: Context): Promise<nu
     // The token is gone from this bench either way; one that the server knows no longer needs no revoking.
     if (error instanceof ServerUnreachableError) {
       forgetSession(context.home);
-      context.stderr.write('The token is gone from this bench, but the server could not be told: it stays valid there until it runs out.\n');
+      context.stderr.say('The token is gone from this bench, but the server could not be told: it stays valid there until it runs out.');
       throw error;
     }
     if (!(error instanceof NotSignedInError)) throw error;

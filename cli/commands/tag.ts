@@ -29,7 +29,7 @@ export async function runTag({ number, pdf, json }: TagOptions, context: Context
       if (page) stdout.write(`${tagLines(page, style).join('\n')}\n\n`);
       stdout.write(`${blankTagLines(unit, style).join('\n')}\n`);
     }
-    if (pdf !== undefined) stderr.write(`${unitLabel(number)} has no standing tag: no PDF was written.\n`);
+    if (pdf !== undefined) stderr.say(`${unitLabel(number)} has no standing tag: no PDF was written.`);
     return EXIT.notGood;
   }
   if (json === true) printJson(context, { unit: number, ready: true, tag: page });
@@ -45,7 +45,7 @@ export async function runTag({ number, pdf, json }: TagOptions, context: Context
     } catch (error) {
       throw notWritable(pdf, error);
     }
-    stderr.write(`The tag is in ${pdf}: A6, print it at 100 %.\n`);
+    stderr.say(`The tag is in ${pdf}: A6, print it at 100 %.`);
   }
   return EXIT.good;
 }

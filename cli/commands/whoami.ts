@@ -9,7 +9,7 @@ export async function runWhoami(options: { json?: boolean | undefined }, context
   if (options.json === true) printJson(context, { server: context.server, offline, user, shop });
   else {
     context.stdout.write(`${user.name}, ${user.role}, ${user.email}\n${shop.name}, at ${context.server}\n`);
-    if (offline) context.stderr.write('The server can’t be reached now; this is from last time.\n');
+    if (offline) context.stderr.say('The server can’t be reached now; this is from last time.');
   }
   return EXIT.good;
 }

@@ -4,6 +4,20 @@ import type { Style } from '../output.js';
 // eslint-disable-next-line no-control-regex -- ESC begins a colour
 const COLOURS = /\u001b\[[0-9;]*m/g;
 
+/** Each line of a text wrapped to a width, further in where it was. */
+export function wrapLines(text: string, width: number): string {
+  return text
+    .split('\n')
+    .flatMap((line) => {
+      const inset = /^ */.exec(line)?.[0] ?? '';
+      return widthOf(line) <= width ? [line] : wrap(line, Math.max(20, width - inset.length)).map((piece) => inset + piece);
+    })
+    .join('\n');
+}
+
+/** Where the text of a step begins: behind its number and its kind. */
+export const STEP_INDENT = 11;
+
 /** How many columns a text takes; every sign of ours is one wide. */
 export const widthOf = (text: string): number => [...text.replace(COLOURS, '')].length;
 
@@ -43,6 +57,11 @@ export function wrap(text: string, width: number): string[] {
     else lines.push(word);
   }
   return lines.length > 0 ? lines : [''];
+}
+
+/** Texts under a step: wrapped, and as far in as the step's title. */
+export function indented(texts: readonly string[], columns: number): string[] {
+  return texts.flatMap((text) => wrap(text, Math.max(20, columns - STEP_INDENT - 1))).map((line) => ' '.repeat(STEP_INDENT) + line);
 }
 
 /** Rows in columns, each as wide as its widest cell; columns whose index is in `right` end at the right. */

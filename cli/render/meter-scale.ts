@@ -32,8 +32,8 @@ export function meterScale(judgement: Pick<Judgement, 'value' | 'low' | 'high' |
   const colour = verdict === 'pass' ? ink.green : verdict === 'fail' ? ink.red : ink.yellow;
   const wedge = `${' '.repeat(at)}${colour(signs[off ?? 'wedge'])}`;
 
-  const lowAt = low === undefined ? 0 : columnOf(low);
-  const highAt = high === undefined ? SCALE_COLUMNS - 1 : columnOf(high);
+  const lowAt = low === undefined ? -1 : columnOf(low);
+  const highAt = high === undefined ? SCALE_COLUMNS : columnOf(high);
   const axis = Array.from({ length: SCALE_COLUMNS }, (_, column) => {
     if ((low !== undefined && column === lowAt) || (high !== undefined && column === highAt)) return signs.limit;
     return column > lowAt && column < highAt ? signs.inside : signs.axis;

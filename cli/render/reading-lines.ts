@@ -1,7 +1,7 @@
 import type { ReadingBody } from '../../shared/history/events.js';
 import type { MeasuredCheck } from '../../shared/sheet/schema.js';
 import type { Style } from '../output.js';
-import { wrap } from './columns.js';
+import { indented } from './columns.js';
 import { meterScale } from './meter-scale.js';
 
 const INDENT = ' '.repeat(11);
@@ -13,7 +13,7 @@ const INDENT = ' '.repeat(11);
 export function readingLines(reading: ReadingBody, check: Pick<MeasuredCheck, 'safety' | 'part'>, style: Style): string[] {
   const scale = meterScale(reading.judgement, style).map((line) => `${INDENT}${line}`);
   const words = adviceFor(reading, check);
-  return words === undefined ? scale : [...scale, ...wrap(words, Math.max(20, style.columns - INDENT.length - 1)).map((line) => `${INDENT}${line}`)];
+  return words === undefined ? scale : [...scale, ...indented([words], style.columns)];
 }
 
 function adviceFor({ judgement, instrument }: ReadingBody, { safety, part }: Pick<MeasuredCheck, 'safety' | 'part'>): string | undefined {

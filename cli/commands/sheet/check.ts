@@ -24,7 +24,7 @@ export async function runSheetCheck({ file, script, json }: { file: string; scri
   } catch (error) {
     if (!(error instanceof BadInputError)) throw error;
     if (json === true) printJson(context, { file, good: false, findings: [{ severity: 'error', where: error.line === undefined ? '' : `line ${error.line}`, reason: error.message }] });
-    context.stderr.write(`${wordsOf(error)}\n`);
+    context.stderr.say(wordsOf(error));
     return EXIT.badInput;
   }
   const findings: Finding[] = checkSheet(sheet).map(({ severity, path, reason }) => ({ severity, where: path.join('.'), reason }));

@@ -44,7 +44,7 @@ export async function runUnitList({ find, stage, limit = USUAL_LIMIT, json }: Un
   const head = ['No.', 'Machine', 'Stage', 'Rules', 'Lamps', 'Waits for'].map((title) => ink.bold(title));
   const cells = rows.map((row) => [ink.bold(unitNumberText(row.number)), `${row.plate.maker} ${row.plate.model}`, row.stage, `${row.rulesMet} of ${row.rulesTotal}`, lampsText(row), row.waitsFor]);
   context.stdout.write(`${table([head, ...cells], style).join('\n')}\n`);
-  if (next !== undefined) context.stderr.write(`There are more: ask with --limit ${limit * 2}, or look for some with --find.\n`);
+  if (next !== undefined) context.stderr.say(`There are more: ask with --limit ${limit * 2}, or look for some with --find.`);
   return EXIT.good;
 }
 

@@ -45,7 +45,7 @@ export async function runUnitNew(options: UnitNewOptions, context: Context): Pro
     delivery = await take(context, me, { ...body, sameSerialReason: reason });
   }
   if (delivery.state !== 'sent') {
-    context.stderr.write(`${deliveryWords(delivery)}\n`);
+    context.stderr.say(deliveryWords(delivery));
     return EXIT.server;
   }
   const unit = unitSchema.parse(delivery.answer);
@@ -112,7 +112,7 @@ async function serialFrom(options: UnitNewOptions, context: Context): Promise<st
 
 /** The serial is on the books already: warned, listed, and taken in only with a reason. */
 async function sameSerialReason(context: Context, problem: ApiProblemError): Promise<z.infer<typeof newUnitSchema>['sameSerialReason'] & string> {
-  context.stderr.write(`${problem.message}\n`);
+  context.stderr.say(`${problem.message}`);
   const answer = await context.prompt.choice({
     message: 'Why is it taken in again',
     choices: SAME_SERIAL_REASONS.map((reason) => ({ value: reason, name: reason })),
@@ -125,6 +125,6 @@ async function printTakenIn({ stdout, stderr }: Context, unit: Unit): Promise<vo
   const { ink } = await stdout.style();
   stdout.write(`${ink.bold(unitLabel(unit.number))}  ${unit.plate.maker} ${unit.plate.model}, ${unit.appliance}, taken in.\n`);
   if (unit.sameSerial) stdout.write(`The same serial as ${unit.sameSerial.units.map(unitLabel).join(', ')}: ${unit.sameSerial.reason}.\n`);
-  if (unit.licensedOnly) stderr.write('Licensed person only: gas, sealed refrigerant or a microwave oven. No script runs on it.\n');
-  if (unit.family === undefined) stderr.write('It has no control family yet: without a service sheet its lamps can’t be decoded.\n');
+  if (unit.licensedOnly) stderr.say('Licensed person only: gas, sealed refrigerant or a microwave oven. No script runs on it.');
+  if (unit.family === undefined) stderr.say('It has no control family yet: without a service sheet its lamps can’t be decoded.');
 }

@@ -13,7 +13,7 @@ import { whoIsHere } from '../../session.js';
 /** Everything about a unit, newest first. */
 export async function runUnitShow({ number, json }: { number: number; json?: boolean }, context: Context): Promise<number> {
   const { value: page, offline } = await unitPage(context, number);
-  if (offline) context.stderr.write('The server can’t be reached: this is from last time.\n');
+  if (offline) context.stderr.say('The server can’t be reached: this is from last time.');
   if (json === true) {
     printJson(context, page);
     return EXIT.good;
