@@ -1,0 +1,109 @@
+// A shop that a real browser looks at: the whole server in this process, on a free port, with the built web.
+import { existsSync } from 'node:fs';
+import { createServer, type Server } from 'node:http';
+import type { AddressInfo } from 'node:net';
+import axe, { type AxeResults } from 'axe-core';
+import { chromium, type Browser, type BrowserContext, type Page } from 'playwright-core';
+import { expect, inject } from 'vitest';
+import type { Shop } from '../../shared/api/sessions.js';
+import { startTestServer, type SignedInPerson, type TestServer } from './test-server.js';
+
+export const DESK = { width: 1440, height: 900 };
+export const PHONE = { width: 390, height: 844 };
+
+export interface BrowserShop {
+  server: TestServer;
+  baseUrl: string;
+  /** A page of its own, signed in as somebody or as nobody. What the page complains about on its console ends up in `complaints`. */
+  open(as: SignedInPerson | undefined, options?: { viewport?: { width: number; height: number }; night?: boolean }): Promise<OpenPage>;
+  close(): Promise<void>;
+}
+
+export interface OpenPage {
+  page: Page;
+  context: BrowserContext;
+  complaints: string[];
+}
+
+function chromiumPath(): string {
+  const found = [process.env['CHROMIUM'], '/usr/bin/chromium', '/usr/bin/chromium-browser', '/usr/bin/google-chrome'].find(
+    (path) => path && existsSync(path),
+  );
+  if (!found) throw new Error('No Chromium on this machine: apt-get install -y chromium, or set CHROMIUM to its path.');
+  return found;
+}
+
+const launch = (): Promise<Browser> =>
+  chromium.launch({
+    executablePath: chromiumPath(),
+    args: [
+      '--headless',
+      '--no-sandbox',
+      '--disable-gpu',
+      '--disable-quic',
+      '--no-first-run',
+      '--disable-background-networking',
+      '--disable-component-update',
+      '--disable-sync',
+    ],
+  });
+
+export async function openShop(shop: Partial<Shop> = {}): Promise<BrowserShop> {
+  // The address is known before the app is made: tags carry it.
+  const http: Server = createServer();
+  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
+  const baseUrl = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
+  const server = await startTestServer({ shop, config: { publicUrl: baseUrl }, webDir: inject('webDir') });
+  // Browsers drop cookies by their own clock.
+  server.time.now = new Date();
+  http.on('request', server.app);
+  const browser = await launch();
+  return {
+    server,
+    baseUrl,
+    async open(as, { viewport = DESK, night = false } = {}) {
+      const context = await browser.newContext({ baseURL: baseUrl, viewport, colorScheme: night ? 'dark' : 'light' });
+      if (as) await context.addCookies([{ name: 'refettle_session', value: as.token, url: baseUrl, httpOnly: true, sameSite: 'Strict' }]);
+      const page = await context.newPage();
+      const complaints: string[] = [];
+      page.on('pageerror', (error) => complaints.push(error.message));
+      page.on('console', (message) => {
+        // The browser itself logs every refusal of the API; whether one was right is for the test to say.
+        if (['error', 'warning'].includes(message.type()) && !message.text().startsWith('Failed to load resource'))
+          complaints.push(message.text());
+      });
+      return { page, context, complaints };
+    },
+    async close() {
+      await browser.close();
+      await new Promise((closed) => http.close(closed));
+      http.closeAllConnections();
+      await server.close();
+    },
+  };
+}
+
+/** What axe finds on the page as it stands: the ids of the rules that are broken, with where. */
+export async function accessibilityFaults(page: Page): Promise<string[]> {
+  // CSP refuses a script tag; evaluate() is not subject to it.
+  await page.evaluate(axe.source);
+  const { violations } = await page.evaluate(() => (window as unknown as { axe: { run(): Promise<AxeResults> } }).axe.run());
+  return violations.map(
+    (violation) => `${violation.id} (${String(violation.impact)}): ${violation.nodes.map((node) => node.target.join(' ')).join(', ')}`,
+  );
+}
+
+/** The page is not wider than its window: nothing to scroll sideways but regions made for it. */
+export async function expectNoSidewaysScroll(page: Page): Promise<void> {
+  const { content, shown } = await page.evaluate(() => ({ content: document.documentElement.scrollWidth, shown: window.innerWidth }));
+  expect(content).toBeLessThanOrEqual(shown);
+}
+
+/** The accessible name of what has the focus, roughly: its label or its text. */
+export const focused = (page: Page): Promise<string> =>
+  page.evaluate(() => {
+    const element = document.activeElement;
+    if (element instanceof HTMLInputElement || element instanceof HTMLTextAreaElement || element instanceof HTMLSelectElement)
+      return element.labels?.[0]?.textContent?.trim() ?? '';
+    return element?.textContent?.trim() ?? '';
+  });

@@ -1,0 +1,20 @@
+// Before the first browser test: the web as it will be served, built into a folder of its own so that a running shop keeps its files.
+import { mkdtempSync, rmSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { build } from 'vite';
+import type { TestProject } from 'vitest/node';
+
+declare module 'vitest' {
+  interface ProvidedContext {
+    /** Where the built web is. */
+    webDir: string;
+  }
+}
+
+export async function setup(project: TestProject): Promise<() => void> {
+  const folder = mkdtempSync(join(tmpdir(), 'refettle-test-web-'));
+  await build({ logLevel: 'warn', build: { outDir: folder, emptyOutDir: true } });
+  project.provide('webDir', folder);
+  return () => rmSync(folder, { recursive: true, force: true });
+}
