@@ -101,6 +101,12 @@ describe('What can’t be used', () => {
     expect(problemIn(await server.send('listUnits', { as: server.people.technician, query: { find: 'a\u0000' } })).status).toBe(422);
   });
 
+  test('When a body is nested as deep as a request can be long, then it is 422 and the server stands', async () => {
+    const deep = (open: string, close: string) => `${open.repeat(300_000)}1${close.repeat(300_000)}`;
+    for (const text of [deep('[', ']'), deep('{"a":', '}')])
+      expect(problemIn(await post('/api/units').type('json').send(text)).status).toBe(422);
+  });
+
   test('When there is no body at all, then it is 422', async () => {
     expect(problemIn(await post('/api/units')).status).toBe(422);
     expect(problemIn(await post('/api/units').type('json').send('null')).status).toBe(422);

@@ -11,7 +11,7 @@ import { ConflictError, InvalidError } from '../../errors.js';
 import { refuseWhereShut } from '../../history/ask-gate.js';
 import { atPointer } from '../../history/at-pointer.js';
 import { insertCapture } from '../../history/capture-store.js';
-import { happenedAt } from '../../history/happened-at.js';
+import { happenedAt, refuseFuture } from '../../history/happened-at.js';
 import { factsOf, openUnitHistory, placeOf, recordEvents, refOf, unitNumberText } from '../../history/unit-history.js';
 import { refuseWhatIsNoText } from '../../request-faults.js';
 
@@ -30,6 +30,7 @@ export async function recordCapture(
 ): Promise<{ id: string; answer: DecodeAnswer }> {
   const at = happenedAt(request.at, now, '/at');
   const capture = atPointer('/file', () => readCapture(request.file));
+  refuseFuture(capture.header.capturedAt, now, '/file');
   const history = await openUnitHistory(db, unitNumber);
   const { unit, sheet } = history;
   if (!sheet)

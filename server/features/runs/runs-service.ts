@@ -15,7 +15,7 @@ import { ConflictError, GateError, InvalidError } from '../../errors.js';
 import { atPointer } from '../../history/at-pointer.js';
 import { insertCapture } from '../../history/capture-store.js';
 import { donorsOf, takePartFrom } from '../../history/donor.js';
-import { happenedAt } from '../../history/happened-at.js';
+import { happenedAt, refuseFuture } from '../../history/happened-at.js';
 import { insertRun } from '../../history/run-store.js';
 import { factsOf, openUnitHistory, placeOf, recordEvents, refOf, unitNumberText, type UnitHistory } from '../../history/unit-history.js';
 import { refuseWhatIsNoText } from '../../request-faults.js';
@@ -101,6 +101,7 @@ export async function recordRun(
   const by = refOf(person);
   const settled = settle(told, script, sheet, by);
   refuseWhatIsNoText(settled.events, '/steps');
+  for (const { body } of settled.captures) refuseFuture(body.capturedAt, now, '/steps');
   const place = placeOf(history, new Date(told.startedAt), now);
   askGates(history, settled, script, sheet, place.before);
 

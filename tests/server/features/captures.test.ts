@@ -54,6 +54,12 @@ test('When the header holds a character that no database keeps, then it is 422',
   expect(problemIn(await send(number, { file }))).toMatchObject({ status: 422, errors: [{ pointer: '/file' }] });
 });
 
+test('When the header says that it was recorded in the future, then it is refused, or it would be newer than every repair to come', async () => {
+  const { number } = await takeIn(server);
+  const file = example('01-one-code').replace(/"capturedAt":"[^"]+"/, '"capturedAt":"2026-03-07T09:00:00Z"');
+  expect(problemIn(await send(number, { file }))).toMatchObject({ status: 422, errors: [{ pointer: '/file' }] });
+});
+
 test('When one capture id is sent again under another key, then it is a conflict', async () => {
   const { number } = await takeIn(server);
   const id = anyId();
