@@ -24,6 +24,8 @@ export interface Hole {
 const TOGETHER_S = 0.12;
 const TOGETHER_BY_HAND_S = 0.3;
 
+const SLIVER_S = 0.06;
+
 /** The holes of a capture that are longer than `leastS`. */
 export function holesLongerThan(bins: Bins, leastS: number): Hole[] {
   const holes: Hole[] = [];
@@ -129,13 +131,14 @@ function absorbOnce(cells: readonly Cell[], leastS: number): Cell[] {
   waiting.forEach((cell, index) => {
     const left = kept.at(-1);
     const right = waiting[index + 1];
-    const side = cell.hole || cell.toS - cell.fromS >= leastS ? undefined : sideFor(cell, left, right);
+    const lengthS = cell.toS - cell.fromS;
+    // What a hole or the file's end cut short was longer: only a sliver of it is taken for a lag.
+    const isShort = lengthS < (cell.openStart || cell.openEnd ? Math.min(leastS, SLIVER_S) : leastS);
+    const side = cell.hole || !isShort ? undefined : sideFor(cell, left, right);
     if (side === 'left' && left !== undefined) {
       left.toS = cell.toS;
-      left.openEnd = cell.openEnd;
     } else if (side === 'right' && right !== undefined) {
       right.fromS = cell.fromS;
-      right.openStart = cell.openStart;
     } else kept.push(cell);
   });
   return kept;

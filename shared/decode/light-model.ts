@@ -29,6 +29,9 @@ const MAYBE_GLOW = 0.4;
 const USUAL_GLOW = 0.04;
 /** Pure glow must explain the light: no more than this share of what the lamp seemed to add may be left over. */
 const GLOW_LEFT_SHARE = 0.3;
+const SHARE_EVENLY = 0.01;
+/** The glow that is usual in a capture: what most pairs of lamps show at most. */
+const USUAL_GLOW_QUANTILE = 0.7;
 /** A steady level, when no lamp of the file gives a measure: ambient light is about so much of full scale, ± so much. */
 const AMBIENT_SHARE = 0.08;
 const AMBIENT_SPREAD = 0.1;
@@ -64,11 +67,10 @@ export function modelLight(bins: Bins, ids: readonly string[], fullScale: number
     });
   }
   const glowShares = lamps.flatMap((lamp) => (lamp.changes ? lamp.fit.glowShares : []));
-  const usualGlow = Math.max(USUAL_GLOW, 1.5 * median(glowShares));
+  const usualGlow = Math.max(USUAL_GLOW, 1.5 * quantile(glowShares, USUAL_GLOW_QUANTILE));
   lamps.forEach((lamp, index) => {
-    if (lamp.changes && isOnlyGlow(bins, lanes[index] as Float64Array, lamps, index, usualGlow)) {
-      lamps[index] = steadyLight(bins, lamp.id, darkened(lanes[index] as Float64Array, lamp), fullScale, lamp.fit.noise);
-    }
+    const withoutGlow = lamp.changes ? laneWithoutGlow(bins, lanes[index] as Float64Array, lamps, index, usualGlow) : undefined;
+    if (withoutGlow !== undefined) lamps[index] = steadyLight(bins, lamp.id, withoutGlow, fullScale, lamp.fit.noise);
   });
   compareSteadyLamps(lamps, lanes, fullScale);
   return lamps;
@@ -136,35 +138,41 @@ function awayFromEdges(states: Int8Array): Int8Array {
 }
 
 /**
- * Whether what looks like a weak lamp is only light of the lamps beside it: their light alone, in shares no larger than usual, must leave next
- * to nothing of the difference between its lit and its dark bins.
+ * Takes the neighbours' light out of a lane where what looks like a weak lamp is only that: their light alone, in shares no larger than usual,
+ * must leave next to nothing of the difference between its lit and its dark bins. Undefined where it doesn't: the lamp lights by itself.
  */
-function isOnlyGlow(bins: Bins, lane: Float64Array, lamps: readonly LampLight[], index: number, usualGlow: number): boolean {
+function laneWithoutGlow(
+  bins: Bins,
+  lane: Float64Array,
+  lamps: readonly LampLight[],
+  index: number,
+  usualGlow: number,
+): Float64Array | undefined {
   const lamp = lamps[index] as LampLight;
   const glows = neighboursOf(lamps, index).map(glowOf);
   const brightest = Math.max(0, ...neighboursOf(lamps, index).map((neighbour) => mean(neighbour.fit.amplitude)));
-  if (brightest === 0 || mean(lamp.fit.amplitude) > MAYBE_GLOW * brightest) return false;
+  if (brightest === 0 || mean(lamp.fit.amplitude) > MAYBE_GLOW * brightest) return undefined;
   const labels = awayFromEdges(lamp.states);
   labels.forEach((_, bin) => {
     if ((bins.weights[bin] as number) === 0) labels[bin] = NOT_TOLD;
   });
   const light = lane.map((level, bin) => level - (lamp.fit.dark[bin] as number));
   const shares = glowSharesOf(light, labels, glows);
-  if (shares.some((share) => share > usualGlow)) return false;
+  if (shares.some((share) => share > usualGlow)) return undefined;
   const left = [0, 0];
   const counts = [0, 0];
   let own = 0;
+  const glow = lane.map((_, bin) => glows.reduce((sum, neighbour, which) => sum + (shares[which] as number) * (neighbour[bin] as number), 0));
   labels.forEach((label, bin) => {
     if (label < 0) return;
-    const glow = glows.reduce((sum, lane_, which) => sum + (shares[which] as number) * (lane_[bin] as number), 0);
-    left[label] = (left[label] as number) + (light[bin] as number) - glow;
+    left[label] = (left[label] as number) + (light[bin] as number) - (glow[bin] as number);
     counts[label] = (counts[label] as number) + 1;
     if (label === 1) own += lamp.fit.amplitude[bin] as number;
   });
   const [darkCount = 0, litCount = 0] = counts;
-  if (darkCount === 0 || litCount === 0) return false;
+  if (darkCount === 0 || litCount === 0) return undefined;
   const unexplained = (left[1] as number) / litCount - (left[0] as number) / darkCount;
-  return unexplained <= (GLOW_LEFT_SHARE * own) / litCount;
+  return unexplained <= (GLOW_LEFT_SHARE * own) / litCount ? lane.map((level, bin) => level - (glow[bin] as number)) : undefined;
 }
 
 /** The shares of the neighbours' light that explain a lane best: least squares, none below zero. */
@@ -182,17 +190,15 @@ function glowSharesOf(light: Float64Array, labels: Int8Array, glows: readonly Gl
       }
     }
   });
+  // Lamps that only ever blink together can't be told apart: a little weight on small shares divides the light among them.
+  const brightest = Math.max(0, ...right.map((_, row) => matrix[row * size + row] as number));
+  for (let row = 0; row < size; row += 1) matrix[row * size + row] = (matrix[row * size + row] as number) + SHARE_EVENLY * brightest;
   const shares = [...solveSymmetric(Float64Array.from(matrix), Float64Array.from(right))];
   const negative = shares.findIndex((share) => share < 0);
   if (negative < 0) return shares;
   const rest = glows.filter((_, which) => which !== negative);
   const others = rest.length === 0 ? [] : glowSharesOf(light, labels, rest);
   return [...others.slice(0, negative), 0, ...others.slice(negative)];
-}
-
-/** The lane of a lamp that was only glow, with the glow taken out. */
-function darkened(lane: Float64Array, lamp: LampLight): Float64Array {
-  return Float64Array.from(lane, (level, bin) => level - (lamp.states[bin] === 1 ? (lamp.fit.amplitude[bin] as number) : 0));
 }
 
 /**
@@ -230,7 +236,7 @@ function mean(values: ArrayLike<number>): number {
   return values.length === 0 ? 0 : sum / values.length;
 }
 
-function median(values: readonly number[]): number {
+function quantile(values: readonly number[], share: number): number {
   const sorted = [...values].sort((a, b) => a - b);
-  return sorted[sorted.length >> 1] ?? 0;
+  return sorted[Math.min(sorted.length - 1, Math.floor(share * sorted.length))] ?? 0;
 }

@@ -19,6 +19,8 @@ export interface Piece {
   evidence: number[];
   openStart: boolean;
   openEnd: boolean;
+  /** Samples are missing just before it. */
+  afterHole: boolean;
 }
 
 /** Bins within one piece are not independent (flicker, drift): their evidence counts half. */
@@ -104,6 +106,7 @@ export function makePieces(cells: readonly Cell[], sums: EvidenceSums, band: Ban
     for (const cell of isOnePhase(run, band) ? [joined(run)] : run) pieces.push(pieceOf(cell, sums, band));
   }
   markBlanks(pieces);
+  pieces.forEach((piece, index) => (piece.afterHole = pieces[index - 1]?.kind === 'hole'));
   return pieces;
 }
 
@@ -162,6 +165,7 @@ function pieceOf(cell: Cell, sums: EvidenceSums, band: Band): Piece {
     evidence: cell.hole ? [] : sums.over(cell.fromS, cell.toS),
     openStart: cell.openStart,
     openEnd: cell.openEnd,
+    afterHole: false,
   };
 }
 

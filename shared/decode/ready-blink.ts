@@ -13,6 +13,8 @@ export interface ReadyStretch {
 /** Lamps that may be missing from the blink because they are burnt out (contract, section 3: "all but one or two"). */
 const MOST_MISSING = 2;
 const FEWEST_BLINKS = 2;
+/** With lamps missing, a hand's shadow over a code may look like two blinks. */
+const FEWEST_BLINKS_WITH_MISSING = 3;
 /** Periods are measured to within two edges of a few bins each; a hand taps less evenly. */
 const PERIOD_SLACK_S = 0.06;
 const PERIOD_SLACK_BY_HAND_S = 0.25;
@@ -21,7 +23,7 @@ const LEAST_HALF_SHARE = 0.2;
 
 /**
  * Finds the ready blink: all ready lamps, or all but one or two, lit together and dark together, again and again, with a period inside the
- * sheet's band. At least two blinks in a row; the same lamps each time.
+ * sheet's band. At least two blinks in a row, three with lamps missing; the same lamps each time.
  *
  * @param cells cut by the ready lamps' changes; bit k of `lit` is the k-th ready lamp
  * @returns the stretches in time order, from the first rise to the last fall
@@ -37,7 +39,8 @@ export function findReadyBlinks(cells: readonly Cell[], lampCount: number, perio
   const finish = (): void => {
     const first = chain[0];
     const last = chain.at(-1);
-    if (chain.length >= FEWEST_BLINKS && first !== undefined && last !== undefined) {
+    const fewest = first !== undefined && bitCount(first.lit) < lampCount ? FEWEST_BLINKS_WITH_MISSING : FEWEST_BLINKS;
+    if (chain.length >= fewest && first !== undefined && last !== undefined) {
       stretches.push({ fromS: first.fromS, toS: last.toS, lit: first.lit, blinks: chain.length });
     }
     chain = [];

@@ -74,16 +74,19 @@ function measure(pieces: Piece[], agreement: Agreement, usualPhaseS: number): Co
     pieces,
   };
   let before: Piece | undefined;
+  let acrossHole = false;
   for (const piece of pieces) {
+    acrossHole ||= piece.afterHole;
     const agrees = showsCode(piece, agreement);
     if (agrees && piece.kind !== 'fragment') {
       const evidence = piece.selectorLit ? stretch.onEvidence : stretch.offEvidence;
       piece.evidence.forEach((nats, lamp) => (evidence[lamp] = (evidence[lamp] as number) + nats));
     }
     if (piece.kind !== 'phase' && !(piece.kind === 'cut' && agrees)) continue;
-    if (before !== undefined && !before.openEnd && !piece.openStart) countBetween(stretch, before, piece, usualPhaseS);
+    if (before !== undefined && !acrossHole && !before.openEnd && !piece.openStart) countBetween(stretch, before, piece, usualPhaseS);
     if (piece.kind === 'phase' || (agrees && isFullLength(piece, pieces))) countOne(stretch, piece.selectorLit);
     before = piece;
+    acrossHole = false;
   }
   return stretch;
 }
