@@ -4,7 +4,7 @@ import type { OpenRig } from './instruments/rig.js';
 import { Interruption } from './interruption.js';
 import { newId } from './new-id.js';
 import { outputOn, type Output, type RawOutput } from './output.js';
-import { promptOn, type InputStream, type Prompt } from './prompt.js';
+import type { InputStream, Prompt } from './prompt.js';
 
 /** Where the server is unless told (contract, section 8: HOST and PORT of a fresh start). */
 const USUAL_SERVER = 'http://127.0.0.1:4780';
@@ -47,6 +47,7 @@ export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextP
   const errors = outputOn(stderr, env);
   const interactive = stdin.isTTY === true;
   const now = (): Date => new Date();
+  const prompt = async (): Promise<Prompt> => (await import('./prompt.js')).promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption, now });
   return {
     env,
     home,
@@ -55,7 +56,12 @@ export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextP
     stdout: outputOn(stdout, env),
     stderr: errors,
     interactive,
-    prompt: promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption, now }),
+    prompt: {
+      key: async (question) => (await prompt()).key(question),
+      text: async (question) => (await prompt()).text(question),
+      secret: async (question) => (await prompt()).secret(question),
+      choice: async (question) => (await prompt()).choice(question),
+    },
     interruption,
     now,
     newId,

@@ -1,7 +1,3 @@
-import { BadInputError } from '../shared/errors.js';
-import { InstrumentError } from './instruments/instrument-error.js';
-import { ServerError, StoppedError, UsageError } from './errors.js';
-
 /** Exit codes of the terminal (contract, section 5). */
 export const EXIT = { good: 0, notGood: 1, usage: 2, badInput: 3, instrument: 4, server: 5, fault: 70, stopped: 130 } as const;
 
@@ -11,14 +7,4 @@ const FIRST_FIRST: readonly number[] = [EXIT.usage, EXIT.fault, EXIT.stopped, EX
 /** The exit code where several apply; 0 where none does. */
 export function firstExitCode(codes: readonly number[]): number {
   return FIRST_FIRST.find((code) => codes.includes(code)) ?? EXIT.good;
-}
-
-/** The exit code an error ends the program with. What is none of ours is a fault of Refettle itself. */
-export function exitCodeOf(error: unknown): number {
-  if (error instanceof UsageError) return EXIT.usage;
-  if (error instanceof StoppedError) return EXIT.stopped;
-  if (error instanceof BadInputError) return EXIT.badInput;
-  if (error instanceof InstrumentError) return EXIT.instrument;
-  if (error instanceof ServerError) return EXIT.server;
-  return EXIT.fault;
 }

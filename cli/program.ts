@@ -1,7 +1,6 @@
 import { Command, CommanderError, InvalidArgumentError } from 'commander';
 import type { Context } from './context.js';
 import { EXIT } from './exit-codes.js';
-import { reportError } from './report-error.js';
 
 /** Reads the command line and does what it says. Gives the exit code; every error has been said by then. */
 export async function runProgram(args: readonly string[], context: Context): Promise<number> {
@@ -12,7 +11,7 @@ export async function runProgram(args: readonly string[], context: Context): Pro
     return outcome.code;
   } catch (error) {
     if (error instanceof CommanderError) return error.code === 'commander.helpDisplayed' || error.code === 'commander.version' ? EXIT.good : EXIT.usage;
-    return reportError(error, context);
+    return (await import('./report-error.js')).reportError(error, context);
   }
 }
 

@@ -1,9 +1,19 @@
 import { BadInputError } from '../shared/errors.js';
 import type { Context } from './context.js';
-import { ApiProblemError, ServerError, UsageError } from './errors.js';
-import { EXIT, exitCodeOf } from './exit-codes.js';
+import { ApiProblemError, ServerError, StoppedError, UsageError } from './errors.js';
+import { EXIT } from './exit-codes.js';
 import { writeWhole } from './home.js';
 import { InstrumentError } from './instruments/instrument-error.js';
+
+/** The exit code an error ends the program with. What is none of ours is a fault of Refettle itself. */
+export function exitCodeOf(error: unknown): number {
+  if (error instanceof UsageError) return EXIT.usage;
+  if (error instanceof StoppedError) return EXIT.stopped;
+  if (error instanceof BadInputError) return EXIT.badInput;
+  if (error instanceof InstrumentError) return EXIT.instrument;
+  if (error instanceof ServerError) return EXIT.server;
+  return EXIT.fault;
+}
 
 /** Says on standard error what happened, where, and what to do; gives the exit code. */
 export function reportError(error: unknown, context: Pick<Context, 'stderr' | 'home' | 'now'>): number {
