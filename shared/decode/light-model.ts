@@ -20,6 +20,8 @@ export interface LampLight {
 }
 
 const ROUNDS = 3;
+/** What adds less than this share of full scale, the neighbours' glow taken out, is no lamp. */
+const LEAST_LAMP = 0.04;
 /** Bins this near a change of state are left out of a fit: lamps warm up and go out over tens of milliseconds. */
 const EDGE_BEFORE_BINS = 1;
 const EDGE_AFTER_BINS = 3;
@@ -66,6 +68,11 @@ export function modelLight(bins: Bins, ids: readonly string[], fullScale: number
       lamps[index] = steppingLight(bins, lamp.id, lane, awayFromEdges(lamp.states), glows, scale);
     });
   }
+  lamps.forEach((lamp, index) => {
+    if (!lamp.changes || mean(lamp.fit.amplitude) >= LEAST_LAMP * fullScale) return;
+    const withoutGlow = (lanes[index] as Float64Array).map((level, bin) => level - (lamp.fit.glow[bin] as number));
+    lamps[index] = steadyLight(bins, lamp.id, withoutGlow, fullScale, lamp.fit.noise);
+  });
   const glowShares = lamps.flatMap((lamp) => (lamp.changes ? lamp.fit.glowShares : []));
   const usualGlow = Math.max(USUAL_GLOW, 1.5 * quantile(glowShares, USUAL_GLOW_QUANTILE));
   lamps.forEach((lamp, index) => {

@@ -82,9 +82,9 @@ function measure(pieces: Piece[], agreement: Agreement, usualPhaseS: number): Co
       const evidence = piece.selectorLit ? stretch.onEvidence : stretch.offEvidence;
       piece.evidence.forEach((nats, lamp) => (evidence[lamp] = (evidence[lamp] as number) + nats));
     }
-    if (piece.kind !== 'phase' && !(piece.kind === 'cut' && agrees)) continue;
+    if (!agrees || piece.kind === 'fragment') continue;
     if (before !== undefined && !acrossHole && !before.openEnd && !piece.openStart) countBetween(stretch, before, piece, usualPhaseS);
-    if (piece.kind === 'phase' || (agrees && isFullLength(piece, pieces))) countOne(stretch, piece.selectorLit);
+    if (piece.kind === 'phase' || isFullLength(piece, pieces)) countOne(stretch, piece.selectorLit);
     before = piece;
     acrossHole = false;
   }
