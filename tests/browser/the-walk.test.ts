@@ -33,7 +33,7 @@ async function scan(page: Page): Promise<string> {
   const code = page.getByRole('img', { name: /QR code/ });
   await code.waitFor();
   const picture = PNG.sync.read(await code.screenshot());
-  const found = jsQR(new Uint8ClampedArray(picture.data), picture.width, picture.height);
+  const found = jsQR.default(new Uint8ClampedArray(picture.data), picture.width, picture.height);
   if (!found) throw new Error('no QR code can be read off the tag');
   return found.data;
 }

@@ -1,6 +1,6 @@
 import type { DecodeAnswer, DecodeView } from '../../../../shared/decode/answer.js';
 import type { Sheet } from '../../../../shared/sheet/schema.js';
-import { WEAK_BELOW } from './strip-chart.js';
+import { WEAK_BELOW } from './strip-geometry.js';
 
 /** A probability of being wrong as it is said: `1 in 700`; rounded to one figure, thousands apart. */
 export function oneIn(confidence: number): string {

@@ -3,12 +3,10 @@ import { useMemo } from 'react';
 import type { DecodeAnswer, DecodeView, Segment } from '../../../../shared/decode/answer.js';
 import type { Capture } from '../../../../shared/lamps/capture.js';
 import type { Sheet } from '../../../../shared/sheet/schema.js';
-import { LEVELS_WIDTH, NAMES_WIDTH, stripOf, tracePath, type Strip } from './strip-geometry.js';
+import { LEVELS_WIDTH, NAMES_WIDTH, stripOf, tracePath, WEAK_BELOW, type Strip } from './strip-geometry.js';
 import { StripPhases } from './strip-phases.js';
 
 const MICROSECONDS = 1_000_000;
-/** A lamp that lights below this share of full scale is hard to read: clean or move the sensor. */
-export const WEAK_BELOW = 0.5;
 const LEAST_LOST_BAND_PX = 6;
 const FLAG_HEIGHT = 22;
 const FLAG_LETTER_PX = 8;

@@ -14,6 +14,9 @@ const PAPER_BELOW_LANES = 22;
 const FULL_LANE = 0.88;
 const TRACE_ERROR_PX = 0.6;
 
+/** A lamp that lights below this share of full scale is hard to read: clean or move the sensor. */
+export const WEAK_BELOW = 0.5;
+
 const PAPER_WIDTH = 1142;
 const LEAST_PX_PER_SECOND = 28.5;
 const MOST_PX_PER_SECOND = 57;

@@ -20,17 +20,22 @@ const formSchema = (currency: string) =>
       source: z.enum(['new', 'used', 'none']),
       fromUnit: z.string().trim(),
       minutes: wholeNumber('type the minutes as a whole number'),
-      cost: z.string().trim(),
+      cost: z
+        .string()
+        .trim()
+        .refine((typed) => typed === '' || !Number.isNaN(parseMoney(typed, currency)), 'type an amount such as 6.00'),
       note: z.string().trim(),
     })
-    .transform((typed, context): RepairBody => {
-      const costMinor = typed.cost === '' ? 0 : parseMoney(typed.cost, currency);
-      if (Number.isNaN(costMinor)) context.addIssue({ code: 'custom', path: ['cost'], message: 'type an amount such as 6.00' });
-      const fromUnit = Number(typed.fromUnit);
-      if (typed.source === 'used' && !(Number.isInteger(fromUnit) && fromUnit > 0))
-        context.addIssue({ code: 'custom', path: ['fromUnit'], message: 'type the number of the unit it came from' });
-      const partSource: RepairBody['partSource'] = typed.source === 'used' ? { kind: 'used', fromUnit } : { kind: typed.source };
-      return { part: typed.part, partSource, minutes: typed.minutes, costMinor, ...(typed.note === '' ? {} : { note: typed.note }) };
+    // Asked even where another field is at fault, so that every fault is named at once.
+    .refine(({ source, fromUnit }) => source !== 'used' || /^0*[1-9]\d{0,8}$/.test(fromUnit), {
+      path: ['fromUnit'],
+      message: 'type the number of the unit it came from',
+      when: () => true,
+    })
+    .transform(({ part, source, fromUnit, minutes, cost, note }): RepairBody => {
+      const partSource: RepairBody['partSource'] = source === 'used' ? { kind: 'used', fromUnit: Number(fromUnit) } : { kind: source };
+      const costMinor = source === 'none' || cost === '' ? 0 : parseMoney(cost, currency);
+      return { part, partSource, minutes, costMinor, ...(note === '' ? {} : { note }) };
     })
     .pipe(repairBodySchema);
 

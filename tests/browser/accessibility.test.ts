@@ -1,0 +1,139 @@
+import type { Page } from 'playwright-core';
+import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import { accessibilityFaults, DESK, expectNoSidewaysScroll, openShop, PHONE, type BrowserShop } from '../helpers/browser.js';
+import { addHeron, mendAndProve, newReading, newRepair, newRun, pass, rulesSeen, takeIn } from '../helpers/factories.js';
+
+let shop: BrowserShop;
+const at: Record<string, string> = {};
+
+/** Every page there is, with something on it: a page that is blank has no faults. */
+const SIGNED_IN = [
+  'units',
+  'none found',
+  'take in',
+  'just taken in',
+  'licensed only',
+  'repair form',
+  'ready to sign',
+  'inconclusive',
+  'sign-off',
+  'tag',
+  'withdrawn tag',
+  'capture',
+  'bench log',
+  'not found',
+  'no such unit',
+] as const;
+const PUBLIC = ['sign in', 'first admin', 'look up', 'stands', 'withdrawn', 'not ours'] as const;
+
+beforeAll(async () => {
+  shop = await openShop();
+  const { server } = shop;
+  const { technician, lead } = server.people;
+  await addHeron(server);
+
+  const intake = await takeIn(server);
+  const fridge = await takeIn(server, { appliance: 'fridge', family: undefined });
+  const ready = await takeIn(server);
+  await mendAndProve(server, ready.number);
+  const signed = await takeIn(server);
+  await mendAndProve(server, signed.number);
+  const tag = await server.ok('signOff', { params: { number: signed.number }, as: lead, body: await rulesSeen(server, signed.number) });
+  const broken = await takeIn(server);
+  await mendAndProve(server, broken.number);
+  const brokenTag = await server.ok('signOff', {
+    params: { number: broken.number },
+    as: lead,
+    body: await rulesSeen(server, broken.number),
+  });
+  pass(server, 1);
+  await server.ok('recordReading', { params: { number: broken.number }, as: technician, body: newReading(server, 'insulation', 0.62) });
+  const unsure = await takeIn(server);
+  // 179.5 Ω is inside 180 Ω by less than U (0.5 % of the reading and 3 digits of 0.1 Ω, doubled over √3): inconclusive.
+  const find = newRun(server, 'h6-find', { values: { 'drain-pump-winding': 179.5 } });
+  pass(server, find.steps.length + 1);
+  await server.ok('recordRun', { params: { number: unsure.number }, as: technician, body: find });
+  await server.ok('recordRepair', {
+    params: { number: unsure.number },
+    as: technician,
+    body: newRepair(server, { part: 'Pump filter', partSource: { kind: 'none' } }),
+  });
+  const capture = find.steps.find((step) => step.kind === 'capture');
+
+  Object.assign(at, {
+    units: '/units',
+    'none found': '/units?find=nothing-like-this',
+    'take in': '/units/new',
+    'just taken in': `/units/${intake.number}`,
+    'licensed only': `/units/${fridge.number}`,
+    'repair form': `/units/${ready.number}?do=repair`,
+    'ready to sign': `/units/${ready.number}`,
+    inconclusive: `/units/${unsure.number}`,
+    'sign-off': `/units/${ready.number}/sign-off`,
+    tag: `/units/${signed.number}/tag`,
+    'withdrawn tag': `/units/${broken.number}/tag`,
+    capture: `/captures/${capture?.captureId ?? ''}`,
+    'bench log': `/runs/${find.id}`,
+    'not found': '/no/such/page',
+    'no such unit': '/units/99999',
+    'sign in': '/sign-in',
+    'first admin': '/first-admin?token=any',
+    'look up': '/t',
+    stands: new URL(tag.url).pathname,
+    withdrawn: new URL(brokenTag.url).pathname,
+    'not ours': `/t/${tag.content.tag}?word=0000`,
+  });
+});
+afterAll(() => shop.close());
+
+async function look(page: Page, name: string): Promise<void> {
+  await page.goto(at[name] ?? '');
+  await page.getByRole('heading', { level: 1 }).waitFor();
+  // These have their heading before what they fetch.
+  if (['units', 'none found', 'tag'].includes(name)) await page.waitForLoadState('networkidle');
+}
+
+describe.each([
+  { bench: 'by day at the desk', night: false, viewport: DESK },
+  { bench: 'at night at the desk', night: true, viewport: DESK },
+  { bench: 'by day on a phone', night: false, viewport: PHONE },
+  { bench: 'at night on a phone', night: true, viewport: PHONE },
+])('$bench', ({ night, viewport }) => {
+  test.each([
+    { who: 'a lead', pages: SIGNED_IN },
+    { who: 'nobody', pages: PUBLIC },
+  ])(
+    'When $who opens each page, then axe finds nothing, nothing is wider than the window, and the console stays empty',
+    async ({ who, pages }) => {
+      const { page, context, complaints } = await shop.open(who === 'nobody' ? undefined : shop.server.people.lead, { night, viewport });
+      const faults: string[] = [];
+      for (const name of pages) {
+        await look(page, name);
+        expect(await page.evaluate(() => document.documentElement.dataset['theme'])).toBe(night ? 'night' : 'day');
+        await expectNoSidewaysScroll(page);
+        faults.push(...(await accessibilityFaults(page)).map((fault) => `${name}: ${fault}`));
+      }
+      expect(faults).toEqual([]);
+      expect(complaints).toEqual([]);
+      await context.close();
+    },
+  );
+});
+
+test('When a target stands alone, then it is at least 44 px high on a phone', async () => {
+  const { page, context } = await shop.open(shop.server.people.lead, { viewport: PHONE });
+  const small: string[] = [];
+  for (const name of ['units', 'take in', 'inconclusive', 'tag'] as const) {
+    await look(page, name);
+    // Links in a sentence or in a line of a table of steps are excepted (WCAG 2.2, 2.5.8, inline).
+    const found = await page.evaluate(() =>
+      [...document.querySelectorAll('button, .button, .tap, .field, .word-tabs a, summary, .units-number a')].flatMap((element) => {
+        const { height, width } = element.getBoundingClientRect();
+        return width > 0 && height < 44 ? [`${element.textContent?.trim() ?? ''} ${Math.round(height)}`] : [];
+      }),
+    );
+    small.push(...found.map((one) => `${name}: ${one}`));
+  }
+  expect(small).toEqual([]);
+  await context.close();
+});
