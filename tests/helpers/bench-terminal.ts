@@ -47,7 +47,7 @@ export function benchTerminal({ terminal = false, stdoutTerminal = terminal, env
     });
   };
   const context = createContext({
-    env: { LANG: 'C.UTF-8', NO_COLOR: '1', REFETTLE_HOME: home, REFETTLE_SERVER: 'http://127.0.0.1:9', ...env },
+    env: { LANG: 'C.UTF-8', NO_COLOR: '1', REFETTLE_HOME: home, REFETTLE_SERVER: 'http://127.0.0.1:65534', ...env },
     stdin,
     stdout: { isTTY: stdoutTerminal, columns: 80, rows: 24, write: (text: string) => (written.stdout += text) },
     stderr: {

@@ -1,0 +1,176 @@
+import { afterEach, describe, expect, test } from 'vitest';
+import { runScript, type RunEnd } from '../../../cli/bench/run-script.js';
+import { simulatedTechnician } from '../../../cli/bench/simulated-technician.js';
+import type { Technician } from '../../../cli/bench/technician.js';
+import { terminalTechnician } from '../../../cli/bench/terminal-technician.js';
+import { openRig, type OpenRig } from '../../../cli/instruments/rig.js';
+import { RunJournal, writtenRun } from '../../../cli/journal/run-journal.js';
+import type { UnitEvent } from '../../../shared/history/events.js';
+import { runVerdict, stepVerdict } from '../../../shared/script/run-verdict.js';
+import type { Script } from '../../../shared/script/schema.js';
+import { benchTerminal, type BenchTerminal } from '../../helpers/bench-terminal.js';
+import { inspection, intake, shopScript } from '../../helpers/unit-facts.js';
+import { unitOnTheBench } from '../../helpers/unit-on-bench.js';
+
+let bench: BenchTerminal;
+let rig: OpenRig;
+afterEach(async () => {
+  await rig.close();
+  bench.remove();
+});
+
+/** A run on a simulated rig, with the technician of its scenario or a person at the terminal. */
+async function run(script: Script, parts: { scenario?: string; person?: boolean; events?: UnitEvent[]; technician?: Partial<Technician> } = {}) {
+  const unit = unitOnTheBench(parts.events);
+  rig = await openRig(`sim:${parts.scenario ?? 'heron-mend'}`, bench.home);
+  const { context } = bench;
+  const technician = parts.person === true ? terminalTechnician(context, 'GBP') : rig.hands && { ...simulatedTechnician(context, rig.hands), ...parts.technician };
+  if (!technician) throw new Error('nobody is at the bench');
+  const { name, title, prove } = script;
+  const journal = new RunJournal(context.home, {
+    id: context.newId(),
+    server: context.server,
+    unit: 412,
+    by: unit.by,
+    script: { name, title, prove, text: '' },
+    rig: { name: rig.name, simulated: true },
+    startedAt: context.now().toISOString(),
+    pid: process.pid,
+  });
+  const end = await context.interruption.hold(() => runScript({ context, unit, script, scriptText: '', rig, technician, journal }));
+  journal.close();
+  expect(writtenRun(context.home, journal.header.id).results.map(({ stepId, kind }) => ({ stepId, kind }))).toEqual(end.results.map(({ stepId, kind }) => ({ stepId, kind })));
+  return { end, verdict: runVerdict(end.results, end.interrupted) };
+}
+
+const kinds = ({ results }: RunEnd): Record<string, string> => Object.fromEntries(results.map(({ stepId, kind }) => [stepId, kind]));
+/** Some steps of the script that finds the fault. */
+const stepsOf = (...ids: string[]): Script => {
+  const script = shopScript('h6-find');
+  return { ...script, steps: script.steps.filter(({ id }) => ids.includes(id)) };
+};
+const POWERED = stepsOf('power-caution', 'service-mode', 'lamps', 'code');
+
+describe('A bench run on a simulated rig', () => {
+  test('When the drain pump has shorted turns, then finding the fault reads both codes and the winding fails', async () => {
+    bench = benchTerminal();
+    const { end, verdict } = await run(shopScript('h6-find'));
+    expect([verdict, end.interrupted, end.exitCode]).toEqual(['fail', false, 0]);
+    // The scenario: codes G5K3 and G2K9, 96.4 ohm where the sheet asks for 140 to 180.
+    expect(end.results.find(({ stepId }) => stepId === 'code')).toMatchObject({ kind: 'expect', seen: 'G5K3, G2K9', verdict: 'pass' });
+    expect(end.results.find(({ stepId }) => stepId === 'drain-pump-winding')).toMatchObject({ reading: { judgement: { value: 96.4, unit: 'ohm', verdict: 'fail' }, instrument: { id: 'M-03' } } });
+    expect(bench.stderr()).toContain('> yes  (simulated technician)');
+    expect(bench.stdout()).toBe('');
+  });
+
+  test('When the dead tests are not done, then the gate is shut before anybody is told to switch on, and nothing energised is done', async () => {
+    bench = benchTerminal();
+    const { end, verdict } = await run(POWERED);
+    expect(kinds(end)).toEqual({ 'power-caution': 'skipped', 'service-mode': 'skipped', lamps: 'skipped', code: 'skipped' });
+    expect(verdict).toBe('not done');
+    expect(bench.stderr()).toMatch(/A safety gate is shut: visual check is not done; protective conductor is not done; insulation is not done/);
+    expect(bench.stderr()).toMatch(/To open it: do visual check, protective conductor, insulation in this order/);
+    expect(bench.stderr()).not.toContain('CAUTION');
+  });
+
+  test('When a dead test fails in the run itself, then the steps on mains that follow are skipped', async () => {
+    bench = benchTerminal();
+    const { end, verdict } = await run(shopScript('h6-find'), { technician: { looks: () => Promise.resolve({ verdict: 'fail', note: 'cord chafed' }) } });
+    expect(kinds(end)).toMatchObject({ visual: 'inspect', 'protective-conductor': 'skipped', insulation: 'skipped', 'power-caution': 'skipped', lamps: 'skipped', 'drain-pump-winding': 'measure' });
+    expect(verdict).toBe('fail');
+  });
+
+  test('When a gate was shut for a step on mains, then a dead test after it is still done', async () => {
+    bench = benchTerminal();
+    const find = shopScript('h6-find');
+    const pick = (id: string) => find.steps.filter((step) => step.id === id);
+    const { end } = await run({ ...find, steps: [...pick('power-caution'), ...pick('lamps'), ...pick('visual'), ...pick('protective-conductor')] });
+    expect(kinds(end)).toEqual({ 'power-caution': 'skipped', lamps: 'skipped', visual: 'inspect', 'protective-conductor': 'measure' });
+  });
+
+  test('When a caution is answered with no, then the rig is closed, the rest is skipped, and the run is not done', async () => {
+    bench = benchTerminal();
+    const { end, verdict } = await run(shopScript('h6-find'), { technician: { confirms: () => Promise.resolve('no') } });
+    expect(end.results[0]).toMatchObject({ kind: 'caution', answer: 'no' });
+    expect(end.results.slice(1).every((result) => result.kind === 'skipped')).toBe(true);
+    expect([verdict, end.interrupted]).toEqual(['not done', false]);
+  });
+
+  test('When only something is written down and nothing judged, then the run is inconclusive', async () => {
+    bench = benchTerminal();
+    const { end, verdict } = await run(shopScript('h6-mend'));
+    expect(end.results.find(({ stepId }) => stepId === 'mended')).toMatchObject({ kind: 'repair', repair: { part: 'Drain pump', costMinor: 2450 } });
+    expect(verdict).toBe('inconclusive');
+  });
+
+  test('When a meter has no number and nobody is there to try again, then nothing is recorded for it, the run is interrupted, and it is an instrument’s fault', async () => {
+    bench = benchTerminal();
+    const find = shopScript('h6-find');
+    const { end, verdict } = await run(
+      { ...find, steps: [{ id: 'isolate', kind: 'caution', title: 'Isolate', text: 'Plug out.' }, { id: 'heater', kind: 'measure', title: 'Heater', check: 'heater' }, { id: 'remarks', kind: 'note', title: 'Remarks' }] },
+      { scenario: 'heron-flaky' },
+    );
+    expect([end.exitCode, end.interrupted, verdict]).toEqual([4, true, 'not done']);
+    expect(kinds(end)).toEqual({ isolate: 'caution' });
+    expect(bench.stderr()).toContain('Nothing was recorded for this step.');
+  });
+
+  test('When Ctrl-C is pressed while lamps are recorded, then what came is a whole capture of the run, and the run is closed as interrupted', async () => {
+    bench = benchTerminal();
+    const { context } = bench;
+    const ready = [intake(), inspection()];
+    const script = stepsOf('visual', 'protective-conductor', 'insulation-caution', 'insulation', 'discharge', 'power-caution', 'service-mode', 'lamps', 'code');
+    const running = run(script, { events: ready });
+    const stopWhenGoing = setInterval(() => {
+      if (bench.stderr().includes('10 s of 45 s')) context.interruption.interrupt();
+    }, 5);
+    const { end, verdict } = await running.finally(() => clearInterval(stopWhenGoing));
+    expect([end.exitCode, end.interrupted, verdict]).toEqual([130, true, 'not done']);
+    const last = end.results.at(-1);
+    expect(last).toMatchObject({ kind: 'capture', stepId: 'lamps' });
+    expect(last?.kind === 'capture' && last.file).toMatch(/\{"end":\d+\}\n$/);
+    expect(bench.left()).toBe(0);
+  });
+});
+
+describe('A person at the terminal', () => {
+  test('When Enter is pressed at a caution, then it is asked again; the answers given are the run’s', async () => {
+    bench = benchTerminal({ terminal: true });
+    bench.when('Done?', '\r').when('Done?', 'y').when('Verdict?', 'p');
+    const { end, verdict } = await run(stepsOf('isolate', 'visual'), { person: true });
+    expect(bench.stderr()).toContain('A caution has no default');
+    expect(end.results.map((result) => [result.kind, stepVerdict(result)])).toEqual([
+      ['caution', undefined],
+      ['inspect', 'pass'],
+    ]);
+    expect(verdict).toBe('pass');
+  });
+
+  test('When the meter has no number, then the step is offered again, and the reading of the second try is the one that counts', async () => {
+    bench = benchTerminal({ terminal: true });
+    bench.when('probes on?', 'y').when('Try this step again?', 'y').when('probes on?', 'y');
+    const script = shopScript('h6-prove');
+    // The scenario heron-flaky: the meter says not a number once, then 26.8 ohm.
+    const { end } = await run({ ...script, steps: script.steps.filter(({ id }) => id === 'heater') }, { person: true, scenario: 'heron-flaky' });
+    expect(end.results).toMatchObject([{ kind: 'measure', reading: { judgement: { value: 26.8, verdict: 'pass' } } }]);
+    expect(bench.stderr()).toContain('Nothing was recorded for this step.');
+    expect(bench.raw()).toBe(0);
+  });
+
+  test('When probes are not put on, then the check is not done and nothing was measured', async () => {
+    bench = benchTerminal({ terminal: true });
+    bench.when('probes on?', 'n');
+    const script = shopScript('h6-prove');
+    const { end, verdict } = await run({ ...script, steps: script.steps.filter(({ id }) => id === 'heater') }, { person: true });
+    expect(kinds(end)).toEqual({ heater: 'skipped' });
+    expect(verdict).toBe('not done');
+  });
+
+  test('When Ctrl-C is pressed at a question, then the run ends as stopped with what it has', async () => {
+    bench = benchTerminal({ terminal: true });
+    bench.when('Done?', 'y').when('Verdict?', '\u0003');
+    const { end } = await run(stepsOf('isolate', 'visual'), { person: true });
+    expect([end.exitCode, end.interrupted, kinds(end)]).toEqual([130, true, { isolate: 'caution' }]);
+    expect(bench.raw()).toBe(0);
+  });
+});
