@@ -47,7 +47,8 @@ export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextP
   const errors = outputOn(stderr, env);
   const interactive = stdin.isTTY === true;
   const now = (): Date => new Date();
-  const prompt = async (): Promise<Prompt> => (await import('./prompt.js')).promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption, now });
+  const prompt = async (): Promise<Prompt> =>
+    (await import('./prompt.js')).promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption, now });
   return {
     env,
     home,

@@ -32,7 +32,11 @@ export class ServerError extends Error {
 export class ServerUnreachableError extends ServerError {
   override readonly name = 'ServerUnreachableError';
   constructor(server: string, why: string, options?: ErrorOptions) {
-    super(`The server at ${server} can't be reached: ${why}.`, 'Start it, check the network, or say where it is with REFETTLE_SERVER.', options);
+    super(
+      `The server at ${server} can't be reached: ${why}.`,
+      'Start it, check the network, or say where it is with REFETTLE_SERVER.',
+      options,
+    );
   }
 }
 
@@ -43,7 +47,14 @@ export class ApiProblemError extends ServerError {
   /** `gate`, `conflict`, `same-serial` and so on; empty where the answer named none. */
   readonly kind: string;
   readonly errors: readonly { pointer: string; reason: string }[];
-  constructor(problem: { status: number; kind: string; title: string; detail?: string | undefined; remedy: string; errors?: readonly { pointer: string; reason: string }[] | undefined }) {
+  constructor(problem: {
+    status: number;
+    kind: string;
+    title: string;
+    detail?: string | undefined;
+    remedy: string;
+    errors?: readonly { pointer: string; reason: string }[] | undefined;
+  }) {
     super([problem.title, problem.detail].filter(Boolean).join(': '), problem.remedy);
     this.status = problem.status;
     this.kind = problem.kind;

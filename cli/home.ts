@@ -84,5 +84,8 @@ export function filesIn(folder: string): string[] {
 /** Nothing is said to be done that could not be written down: the work stops here. */
 export function notWritable(file: string, error: unknown): BadInputError {
   const why = error instanceof Error ? error.message : String(error);
-  return new BadInputError(`nothing can be written down there, so the work stops here (${why}). Make room, or choose a folder you may write to (REFETTLE_HOME for what the bench keeps)`, { file });
+  return new BadInputError(
+    `nothing can be written down there, so the work stops here (${why}). Make room, or choose a folder you may write to (REFETTLE_HOME for what the bench keeps)`,
+    { file },
+  );
 }

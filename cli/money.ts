@@ -15,7 +15,9 @@ export function parseMoney(text: string, currency: string, option: string): numb
   const parts = /^(\d{1,7})(?:\.(\d+))?$/.exec(text.trim());
   const fraction = parts?.[2] ?? '';
   if (!parts || fraction.length > decimals) {
-    throw new UsageError(`${option}: '${text}' is no sum of money. Write it in ${currency}, like ${decimals === 0 ? '12' : `12.${'5'.padEnd(decimals, '0')}`}`);
+    throw new UsageError(
+      `${option}: '${text}' is no sum of money. Write it in ${currency}, like ${decimals === 0 ? '12' : `12.${'5'.padEnd(decimals, '0')}`}`,
+    );
   }
   return Number(`${parts[1] ?? '0'}${fraction.padEnd(decimals, '0')}`);
 }

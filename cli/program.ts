@@ -10,7 +10,8 @@ export async function runProgram(args: readonly string[], context: Context): Pro
     await program.parseAsync([...args], { from: 'user' });
     return outcome.code;
   } catch (error) {
-    if (error instanceof CommanderError) return error.code === 'commander.helpDisplayed' || error.code === 'commander.version' ? EXIT.good : EXIT.usage;
+    if (error instanceof CommanderError)
+      return error.code === 'commander.helpDisplayed' || error.code === 'commander.version' ? EXIT.good : EXIT.usage;
     return (await import('./report-error.js')).reportError(error, context);
   }
 }
@@ -84,7 +85,9 @@ export function createProgram(context: Context, done: (code: number) => void): C
     .description('a unit: plate, stage, what is missing until ready, history')
     .argument('<unit>', 'unit number, like 0412', unitNumber)
     .option(...json)
-    .action((number: number, options: { json?: boolean }) => does(async () => (await import('./commands/unit/show.js')).runUnitShow)({ ...options, number }));
+    .action((number: number, options: { json?: boolean }) =>
+      does(async () => (await import('./commands/unit/show.js')).runUnitShow)({ ...options, number }),
+    );
   unit
     .command('list')
     .description('the units, newest first')
@@ -101,19 +104,25 @@ export function createProgram(context: Context, done: (code: number) => void): C
     .argument('<file>', 'YAML or JSON')
     .option('--script <file>', 'check this bench script against the sheet too')
     .option(...json)
-    .action((file: string, options: { script?: string; json?: boolean }) => does(async () => (await import('./commands/sheet/check.js')).runSheetCheck)({ ...options, file }));
+    .action((file: string, options: { script?: string; json?: boolean }) =>
+      does(async () => (await import('./commands/sheet/check.js')).runSheetCheck)({ ...options, file }),
+    );
   sheet
     .command('add')
     .description('add a sheet to the shop, or its next edition (a lead)')
     .argument('<file>', 'YAML or JSON')
     .option(...json)
-    .action((file: string, options: { json?: boolean }) => does(async () => (await import('./commands/sheet/add.js')).runSheetAdd)({ ...options, file }));
+    .action((file: string, options: { json?: boolean }) =>
+      does(async () => (await import('./commands/sheet/add.js')).runSheetAdd)({ ...options, file }),
+    );
   sheet
     .command('show')
     .description('a sheet of the shop, as its file')
     .argument('<family>', 'control family, like heron-h6')
     .option(...json)
-    .action((family: string, options: { json?: boolean }) => does(async () => (await import('./commands/sheet/show.js')).runSheetShow)({ ...options, family }));
+    .action((family: string, options: { json?: boolean }) =>
+      does(async () => (await import('./commands/sheet/show.js')).runSheetShow)({ ...options, family }),
+    );
 
   const rig = ['--rig <rig>', 'rig file, or sim:NAME for simulated instruments (else rig.yaml in REFETTLE_HOME)'] as const;
   program
@@ -149,7 +158,9 @@ export function createProgram(context: Context, done: (code: number) => void): C
     .option('--sheet <file>', "decode by this sheet instead of the unit's own")
     .option('--out <file>', 'write the capture file here too')
     .option(...json)
-    .action((number: number, options: object) => does(async () => (await import('./commands/capture.js')).runCapture)({ ...options, number }));
+    .action((number: number, options: object) =>
+      does(async () => (await import('./commands/capture.js')).runCapture)({ ...options, number }),
+    );
   program
     .command('measure')
     .description("take one check of the unit's sheet")
@@ -163,7 +174,9 @@ export function createProgram(context: Context, done: (code: number) => void): C
     .option('--note <text>', 'what was seen, for a check that is looked at')
     .option(...rig)
     .option(...json)
-    .action((number: number, check: string, options: object) => does(async () => (await import('./commands/measure.js')).runMeasure)({ ...options, number, check }));
+    .action((number: number, check: string, options: object) =>
+      does(async () => (await import('./commands/measure.js')).runMeasure)({ ...options, number, check }),
+    );
   program
     .command('run')
     .description('run a bench script on a unit')
@@ -172,7 +185,9 @@ export function createProgram(context: Context, done: (code: number) => void): C
     .option(...rig)
     .option('--unattended', 'ask nobody; on a real rig a script with a caution then does not begin')
     .option(...json)
-    .action((script: string, number: number, options: object) => does(async () => (await import('./commands/run.js')).runScriptCommand)({ ...options, script, number }));
+    .action((script: string, number: number, options: object) =>
+      does(async () => (await import('./commands/run.js')).runScriptCommand)({ ...options, script, number }),
+    );
   program
     .command('repair')
     .description('put down what was mended')
@@ -183,14 +198,18 @@ export function createProgram(context: Context, done: (code: number) => void): C
     .option('--cost <money>', 'what the part cost, like 6.00')
     .option('--note <text>', 'a remark')
     .option(...json)
-    .action((number: number, options: object) => does(async () => (await import('./commands/repair.js')).runRepair)({ ...options, number }));
+    .action((number: number, options: object) =>
+      does(async () => (await import('./commands/repair.js')).runRepair)({ ...options, number }),
+    );
   program
     .command('override')
     .description('open the dead-test gate of a unit with a reason (a lead)')
     .argument('<unit>', 'unit number, like 0412', unitNumber)
     .option('--reason <text>', 'why; it is recorded')
     .option(...json)
-    .action((number: number, options: object) => does(async () => (await import('./commands/override.js')).runOverride)({ ...options, number }));
+    .action((number: number, options: object) =>
+      does(async () => (await import('./commands/override.js')).runOverride)({ ...options, number }),
+    );
   program
     .command('sync')
     .description('send what waits on this bench')

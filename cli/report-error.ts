@@ -30,7 +30,9 @@ export function wordsOf(error: unknown): string {
   }
   if (error instanceof InstrumentError) return `${ended(error.message)}\n${error.toDo}`;
   if (error instanceof ApiProblemError) {
-    const fields = error.errors.map(({ pointer, reason }) => `\n  ${pointer.replace(/^\//, '').replaceAll('/', '.') || 'request'}: ${reason}`);
+    const fields = error.errors.map(
+      ({ pointer, reason }) => `\n  ${pointer.replace(/^\//, '').replaceAll('/', '.') || 'request'}: ${reason}`,
+    );
     return `The server refuses. ${ended(error.message)}${fields.join('')}\n${ended(capital(error.remedy))}`;
   }
   if (error instanceof ServerError) return `${ended(error.message)}\n${ended(error.remedy)}`;

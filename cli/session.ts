@@ -50,7 +50,11 @@ export async function whoIsHere(context: Context): Promise<Me & { offline: boole
   }
 }
 
-export const personOf = (user: { id: string; name: string; role: PersonRef['role'] }): PersonRef => ({ id: user.id, name: user.name, role: user.role });
+export const personOf = (user: { id: string; name: string; role: PersonRef['role'] }): PersonRef => ({
+  id: user.id,
+  name: user.name,
+  role: user.role,
+});
 
 /** The value of a JSON text; undefined where it is none. */
 export function parseJson(text: string): unknown {

@@ -1,5 +1,14 @@
 import { problemSchema, PROBLEM_TYPE_PREFIX } from '../../shared/api/problem.js';
-import { routes, routeUrl, type Answer, type RequestBody, type RequestParams, type RequestQuery, type Route, type RouteName } from '../../shared/api/routes.js';
+import {
+  routes,
+  routeUrl,
+  type Answer,
+  type RequestBody,
+  type RequestParams,
+  type RequestQuery,
+  type Route,
+  type RouteName,
+} from '../../shared/api/routes.js';
 import { ApiProblemError, NotSignedInError, ServerError, ServerUnreachableError, StoppedError, UsageError } from '../errors.js';
 
 /** How long the server may take: to answer a question, and to store a bench log with its captures. */
@@ -29,7 +38,8 @@ export interface ApiParts {
 
 /** Calls the server by the table of routes; what it answers is checked by the same table. */
 export function createApi({ server, token, signal, fetch: send = fetch }: ApiParts): Api {
-  if (!/^https?:\/\/[^/]+/.test(server)) throw new UsageError(`REFETTLE_SERVER is no address: '${server}'. Write it like http://127.0.0.1:4780`);
+  if (!/^https?:\/\/[^/]+/.test(server))
+    throw new UsageError(`REFETTLE_SERVER is no address: '${server}'. Write it like http://127.0.0.1:4780`);
   return {
     server,
     async call(name, request = {}) {
@@ -44,7 +54,10 @@ export function createApi({ server, token, signal, fetch: send = fetch }: ApiPar
           ...(request.idempotencyKey === undefined ? {} : { 'idempotency-key': request.idempotencyKey }),
         },
         ...(request.body === undefined ? {} : { body: JSON.stringify(request.body) }),
-        signal: AbortSignal.any([...(signal ? [signal] : []), AbortSignal.timeout(route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS)]),
+        signal: AbortSignal.any([
+          ...(signal ? [signal] : []),
+          AbortSignal.timeout(route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS),
+        ]),
       });
       if (response.status >= 400) throw problemOf(response, server);
       const parsed = route.response.safeParse(response.status === 204 ? {} : response.json());
@@ -100,7 +113,10 @@ function whyUnreachable(error: unknown): string {
 }
 
 function notOurs(server: string): ServerError {
-  return new ServerError(`What answers at ${server} is not this version of Refettle.`, 'Check REFETTLE_SERVER; an admin brings bench and server to the same version.');
+  return new ServerError(
+    `What answers at ${server} is not this version of Refettle.`,
+    'Check REFETTLE_SERVER; an admin brings bench and server to the same version.',
+  );
 }
 
 /** Who can do something about a refusal where the server does not say. */

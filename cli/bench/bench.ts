@@ -48,6 +48,11 @@ export function resultBase(step: Step, { context }: Pick<Bench, 'context'>, { st
 /** Steps that judge nothing when they are left out: a remark, and a repair that is optional. Any other skipped step is not done. */
 const isJudged = (step: Step): boolean => step.kind !== 'note' && !(step.kind === 'repair' && step.optional === true);
 
-export function skipped(step: Step, bench: Pick<Bench, 'context'>, reason: string, startedAt: string = bench.context.now().toISOString()): StepResult {
+export function skipped(
+  step: Step,
+  bench: Pick<Bench, 'context'>,
+  reason: string,
+  startedAt: string = bench.context.now().toISOString(),
+): StepResult {
   return { ...resultBase(step, bench, { startedAt }), kind: 'skipped', stepKind: step.kind, judged: isJudged(step), reason };
 }

@@ -79,7 +79,15 @@ export class LampWindow {
       while ((this.#columns[at + 1]?.index ?? Infinity) <= index) at += 1;
       const column = this.#columns[at];
       // By keys a level holds until the next one; of a probe a column without samples was lost, and holds what stood before.
-      levels.forEach((lane, lamp) => lane.push(column === undefined ? 0 : index > column.index && column === this.#columns.at(-1) ? (this.now[lamp] ?? 0) : (column.sums[lamp] ?? 0) / column.count / this.header.scale.max));
+      levels.forEach((lane, lamp) =>
+        lane.push(
+          column === undefined
+            ? 0
+            : index > column.index && column === this.#columns.at(-1)
+              ? (this.now[lamp] ?? 0)
+              : (column.sums[lamp] ?? 0) / column.count / this.header.scale.max,
+        ),
+      );
     }
     return { fromS: first / COLUMNS_PER_SECOND, levels };
   }
@@ -87,7 +95,8 @@ export class LampWindow {
   /** The window as a capture of its own, and where it begins in the whole one. */
   capture(): { capture: Capture; fromUs: number } {
     const fromUs = this.#times[0] !== undefined && this.lastUs - this.#times[0] >= this.#spanUs ? this.#times[0] : 0;
-    const shift = <T extends { atUs: number }>(entries: readonly T[]): T[] => entries.filter(({ atUs }) => atUs >= fromUs).map((entry) => ({ ...entry, atUs: entry.atUs - fromUs }));
+    const shift = <T extends { atUs: number }>(entries: readonly T[]): T[] =>
+      entries.filter(({ atUs }) => atUs >= fromUs).map((entry) => ({ ...entry, atUs: entry.atUs - fromUs }));
     return {
       fromUs,
       capture: {

@@ -33,7 +33,11 @@ export function understand(window: LampWindow, sheet: Sheet): Understanding {
   if (capture.timesUs.length === 0) return NOTHING_YET;
   const answer = decodeCapture(capture, sheet);
   const view = viewCapture(capture, sheet);
-  const later = <T extends { fromS: number; toS: number }>(stretch: T): T => ({ ...stretch, fromS: stretch.fromS + fromUs / 1e6, toS: stretch.toS + fromUs / 1e6 });
+  const later = <T extends { fromS: number; toS: number }>(stretch: T): T => ({
+    ...stretch,
+    fromS: stretch.fromS + fromUs / 1e6,
+    toS: stretch.toS + fromUs / 1e6,
+  });
   const lamps = sheet.lamps.map(({ id }) => view.lamps.find((lamp) => lamp.id === id) ?? { threshold: null, litFraction: null });
   return { segments: answer.segments.map(later), codes: answer.codes, phases: view.phases.map(later), lamps, warnings: answer.warnings };
 }
@@ -81,8 +85,16 @@ export function liveLines(parts: ViewParts, style: Style, rows: number): string[
   const strip = drawLanes({ lanes, fromS: shown.fromS, marks, phases: understood.phases, segments: understood.segments, letters }, style);
   const time = `${clock(elapsedS)}${seconds === undefined ? '' : ` of ${clock(seconds)}`}`;
   const lost = window.lost > 0 ? `, ${window.lost} lines lost` : '';
-  const title = spread(` ${ink.bold(parts.waitsFor ?? (parts.byKeys ? 'The lamps, by keys' : 'The lamps'))}${lost}`, ink.bold(`going ${time}`), columns - 1);
-  const foot = [...(parts.byKeys ? [keyRow(window, sheet, style)] : []), ...wrap(whatNow(parts), columns - 3).map((line) => ` ${ink.bold(line)}`), keyLine(parts, style)];
+  const title = spread(
+    ` ${ink.bold(parts.waitsFor ?? (parts.byKeys ? 'The lamps, by keys' : 'The lamps'))}${lost}`,
+    ink.bold(`going ${time}`),
+    columns - 1,
+  );
+  const foot = [
+    ...(parts.byKeys ? [keyRow(window, sheet, style)] : []),
+    ...wrap(whatNow(parts), columns - 3).map((line) => ` ${ink.bold(line)}`),
+    keyLine(parts, style),
+  ];
   const room = rows - 2 - strip.length - foot.length - 1;
   return [title, ...strip, ...fitted(codeFace(parts, style), room), ...foot];
 }
@@ -99,14 +111,17 @@ function codeFace({ understood, sheet }: ViewParts, style: Style): string[] {
   if (segment?.kind !== 'code') return [];
   const face = lampFace(segment.code, sheet);
   const sure = `${segment.repeats === undefined ? '' : `${times(segment.repeats)}, `}confidence ${segment.confidence.toFixed(4)}`;
-  return face ? faceLines(face, style, [face.title ?? '', sure]) : [` ${style.ink.bold(segment.code)}   ${sheet.faults.find(({ code }) => code === segment.code)?.title ?? ''}   ${sure}`];
+  return face
+    ? faceLines(face, style, [face.title ?? '', sure])
+    : [` ${style.ink.bold(segment.code)}   ${sheet.faults.find(({ code }) => code === segment.code)?.title ?? ''}   ${sure}`];
 }
 
 function whatNow({ understood, waitsFor, window }: ViewParts): string {
   if (waitsFor !== undefined) return 'Hands off. It is watched until it ends.';
   if (window.samples === 0) return 'Waiting for the first sample.';
   const sure = sureCode(understood);
-  if (sure) return `${sure.code} has shown${sure.repeats === undefined ? '' : ` ${times(sure.repeats)}`}. Bring up the next code, then press space.`;
+  if (sure)
+    return `${sure.code} has shown${sure.repeats === undefined ? '' : ` ${times(sure.repeats)}`}. Bring up the next code, then press space.`;
   const last = understood.segments.at(-1);
   if (last?.kind === 'unreadable') return last.reason.charAt(0).toUpperCase() + last.reason.slice(1);
   if (last?.kind === 'ready') return 'Service mode is on. Bring up the first code.';
@@ -127,7 +142,12 @@ function keyRow(window: LampWindow, sheet: Sheet, { ink }: Style): string {
 }
 
 /** Where nobody watches: a line now and then, so that a log says what is awaited and for how long. */
-export function progressLine(window: LampWindow, understood: Understanding | undefined, elapsedS: number, seconds: number | undefined): string {
+export function progressLine(
+  window: LampWindow,
+  understood: Understanding | undefined,
+  elapsedS: number,
+  seconds: number | undefined,
+): string {
   const time = `  ${Math.round(elapsedS)} s${seconds === undefined ? '' : ` of ${understood ? '' : 'at most '}${Math.round(seconds)} s`}, ${window.samples} samples`;
   if (!understood) return time;
   const codes = understood.codes.map(({ code, repeats }) => `${code}${repeats === undefined ? '' : ` ${times(repeats)}`}`);

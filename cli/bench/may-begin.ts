@@ -33,16 +33,25 @@ export async function mayBegin({ context, unit, rig, step, caution, alreadyDone 
     stderr.say(`A safety gate is shut: ${gate.reasons.join('; ')}.${gate.remedy === undefined ? '' : `\nTo open it: ${gate.remedy}.`}`);
     return undefined;
   }
-  if (gate.override) stderr.say(`The dead tests are missing (${gate.reasons.join('; ')}); ${gate.override.by} opened the gate: ${gate.override.reason}`);
+  if (gate.override)
+    stderr.say(`The dead tests are missing (${gate.reasons.join('; ')}); ${gate.override.by} opened the gate: ${gate.override.reason}`);
   if (simulated && sinceOpened(unit.facts.events).some((event) => event.kind === 'repair')) rig?.hands?.repaired();
 
-  const technician = context.interactive ? terminalTechnician(context, unit.me.shop.currency) : rig?.hands ? simulatedTechnician(context, rig.hands) : undefined;
+  const technician = context.interactive
+    ? terminalTechnician(context, unit.me.shop.currency)
+    : rig?.hands
+      ? simulatedTechnician(context, rig.hands)
+      : undefined;
   if (energisingOf(step, unit.sheet) === 'dead') return technician ?? nobody(context, unit);
   if (alreadyDone) {
     stderr.say(`CAUTION  ${caution}`);
     return technician ?? nobody(context, unit);
   }
-  if (!technician) throw new NobodyToAskError('This energises the machine, and its caution waits for a person. No port was opened.', 'run it at a terminal');
+  if (!technician)
+    throw new NobodyToAskError(
+      'This energises the machine, and its caution waits for a person. No port was opened.',
+      'run it at a terminal',
+    );
   if (!technician.attended) stderr.say(`CAUTION  ${caution}`);
   if ((await technician.confirms(step.id, caution)) === 'yes') return technician;
   stderr.say('Not begun. Nothing was recorded.');
@@ -50,4 +59,7 @@ export async function mayBegin({ context, unit, rig, step, caution, alreadyDone 
 }
 
 /** Where nobody sits there: whatever must be asked says so. */
-const nobody = (context: Context, unit: UnitOnBench): Technician => ({ ...terminalTechnician(context, unit.me.shop.currency), attended: false });
+const nobody = (context: Context, unit: UnitOnBench): Technician => ({
+  ...terminalTechnician(context, unit.me.shop.currency),
+  attended: false,
+});

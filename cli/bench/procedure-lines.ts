@@ -4,7 +4,11 @@ import type { Bench } from './bench.js';
 const INDENT = 11;
 
 /** A text, or a procedure of the sheet with its cautions, its steps and what answers it. */
-export function procedureLines(procedureId: string | undefined, text: string | undefined, { unit, style }: Pick<Bench, 'unit' | 'style'>): string[] {
+export function procedureLines(
+  procedureId: string | undefined,
+  text: string | undefined,
+  { unit, style }: Pick<Bench, 'unit' | 'style'>,
+): string[] {
   const width = Math.max(20, style.columns - INDENT - 4);
   const indented = (lines: readonly string[], first = ''): string[] =>
     lines.map((line, index) => `${' '.repeat(INDENT)}${index === 0 ? first : ' '.repeat(first.length)}${line}`);

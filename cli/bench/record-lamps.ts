@@ -90,7 +90,7 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
       watcher.marked(window);
     },
     stop: end,
-    takeKey: source.takeKey,
+    takeKey: (key) => source.takeKey(key),
     elapsedS: () => timeUs() / 1_000_000,
     seconds,
   });

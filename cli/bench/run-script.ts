@@ -68,7 +68,8 @@ export async function runScript(parts: RunParts): Promise<RunEnd> {
     const onScreen = technician.attended && (result.kind === 'caution' || result.kind === 'instruct');
     if (!onScreen) bench.say(...stepLines(results.length, result, style));
   };
-  const gate = (step: Step): GateState => stepGate(step, unit.sheet, { ...unit.facts, events: [...unit.facts.events, ...eventsSoFar(parts, results)] }, rig.simulated);
+  const gate = (step: Step): GateState =>
+    stepGate(step, unit.sheet, { ...unit.facts, events: [...unit.facts.events, ...eventsSoFar(parts, results)] }, rig.simulated);
 
   let skipRest: string | undefined;
   let shut: GateState | undefined;
@@ -82,7 +83,10 @@ export async function runScript(parts: RunParts): Promise<RunEnd> {
     const asked = energisedStepsOf(step, script.steps.slice(index), unit);
     const closed = asked.map((one) => (isDeadTest(one, unit.sheet) ? gate(one) : (shut ?? gate(one)))).find(({ open }) => !open);
     if (closed) {
-      if (closed !== shut) stderr.say(`A safety gate is shut: ${closed.reasons.join('; ')}.${closed.remedy === undefined ? '' : `\nTo open it: ${closed.remedy}.`}`);
+      if (closed !== shut)
+        stderr.say(
+          `A safety gate is shut: ${closed.reasons.join('; ')}.${closed.remedy === undefined ? '' : `\nTo open it: ${closed.remedy}.`}`,
+        );
       if (asked.some((one) => !isDeadTest(one, unit.sheet))) shut = closed;
       record(skipped(step, bench, `a safety gate is shut: ${closed.reasons.join('; ')}`));
       continue;
@@ -93,7 +97,12 @@ export async function runScript(parts: RunParts): Promise<RunEnd> {
     if (outcome === 'left') return { results, interrupted: true, exitCode: EXIT.good };
     if (outcome === 'instrument') return { results, interrupted: true, exitCode: EXIT.instrument };
     record(outcome.result);
-    if (outcome.rest === 'stop') return { results, interrupted: index < script.steps.length - 1, exitCode: context.interruption.interrupted ? EXIT.stopped : EXIT.good };
+    if (outcome.rest === 'stop')
+      return {
+        results,
+        interrupted: index < script.steps.length - 1,
+        exitCode: context.interruption.interrupted ? EXIT.stopped : EXIT.good,
+      };
     if (outcome.rest === 'skip') skipRest = outcome.why ?? 'the run ended before it';
   }
   return { results, interrupted: false, exitCode: EXIT.good };
@@ -114,22 +123,39 @@ const isDeadTest = (step: Step, sheet: UnitOnBench['sheet']): boolean =>
 function eventsSoFar({ context, unit, script, journal }: RunParts, results: readonly StepResult[]) {
   const { id, startedAt, rig, script: about } = journal.header;
   const log = { id, script: about, rig, startedAt, endedAt: context.now().toISOString(), interrupted: true, steps: [...results] };
-  return settleRun(log, script, unit.sheet, unit.by, context.newId).events.filter((event) => event.kind !== 'run ended');
+  return settleRun(log, script, unit.sheet, unit.by, () => context.newId()).events.filter((event) => event.kind !== 'run ended');
 }
 
 /** Runs one step; after an instrument's failure a person may try it again. */
-async function tryStep(step: Step, index: number, bench: Bench, { context, technician, journal }: RunParts): Promise<Awaited<ReturnType<typeof runStep>> | 'stopped' | 'left' | 'instrument'> {
+async function tryStep(
+  step: Step,
+  index: number,
+  bench: Bench,
+  { context, technician, journal }: RunParts,
+): Promise<Awaited<ReturnType<typeof runStep>> | 'stopped' | 'left' | 'instrument'> {
   for (;;) {
     const start = { startedAt: context.now().toISOString(), captureId: context.newId() };
     const records = step.kind === 'capture' || step.kind === 'watch';
-    journal.begin({ stepId: step.id, kind: step.kind, title: step.title, at: start.startedAt, ...(records ? { captureId: start.captureId } : {}) });
-    if ((technician.attended && step.kind !== 'expect') || records) bench.say(bench.style.ink.bold(`${String(index + 1).padStart(2)} ${step.kind.padEnd(8)} ${step.title}`));
+    journal.begin({
+      stepId: step.id,
+      kind: step.kind,
+      title: step.title,
+      at: start.startedAt,
+      ...(records ? { captureId: start.captureId } : {}),
+    });
+    if ((technician.attended && step.kind !== 'expect') || records)
+      bench.say(bench.style.ink.bold(`${String(index + 1).padStart(2)} ${step.kind.padEnd(8)} ${step.title}`));
     try {
       return await runStep(step, bench, start);
     } catch (error) {
       if (error instanceof StoppedError) return context.interruption.interrupted ? 'stopped' : 'left';
       if (!(error instanceof InstrumentError)) throw error;
-      bench.say(...wordsOf(error).split('\n').map((line) => `           ${line}`), '           Nothing was recorded for this step.');
+      bench.say(
+        ...wordsOf(error)
+          .split('\n')
+          .map((line) => `           ${line}`),
+        '           Nothing was recorded for this step.',
+      );
       try {
         if (!(technician.attended && (await technician.triesAgain(step.id, 'Try this step again?')))) return 'instrument';
       } catch (answer) {

@@ -1,7 +1,6 @@
 import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Context } from '../context.js';
 import { StoppedError } from '../errors.js';
-import { InstrumentError } from '../instruments/instrument-error.js';
 import type { OpenRig } from '../instruments/rig.js';
 
 /** A hand over a sensor changes its level by at least this share of full scale (common practice, no published source). */
@@ -37,7 +36,7 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
   const stop = new AbortController();
   const onInterrupt = (): void => stop.abort();
   context.interruption.signal.addEventListener('abort', onInterrupt);
-  let failure: unknown;
+  let failure: Error | undefined;
   const reading = (async () => {
     try {
       for await (const event of probe.read(stop.signal)) {
@@ -46,7 +45,7 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
         if (recent.length > MOST_SAMPLES) recent.shift();
       }
     } catch (error) {
-      failure = error;
+      failure = error instanceof Error ? error : new Error(String(error));
     }
   })();
   const settledLevels = async (): Promise<number[]> => {
@@ -59,15 +58,26 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
     stderr.say('           Before the first capture: is each sensor on its own lamp? The machine stays dark for this.');
     for (const [index, lamp] of sheet.lamps.entries()) {
       for (;;) {
-        const keys = [{ key: ' ', word: 'covered' }, { key: 'q', word: 'leave' }] as const;
+        const keys = [
+          { key: ' ', word: 'covered' },
+          { key: 'q', word: 'leave' },
+        ] as const;
         const before = await settledLevels();
-        const key = await prompt.key({ message: `           Cover the sensor on ${lamp.label}, keep it covered`, keys, instead: 'run it at a terminal' });
+        const key = await prompt.key({
+          message: `           Cover the sensor on ${lamp.label}, keep it covered`,
+          keys,
+          instead: 'run it at a terminal',
+        });
         if (key === 'q') throw new StoppedError();
         const covered = coveredSensor(before, await settledLevels());
         if (covered === index) break;
         const seen = covered === undefined ? 'No sensor changed clearly.' : `The sensor for ${sheet.lamps[covered]?.label ?? ''} changed.`;
         stderr.write(`           ${seen} Move the sensors, or correct their order in the rig file. Take the hand away first.\n`);
-        await prompt.key({ message: '           Ready to try again?', keys: [{ key: ' ', word: 'go on' }], instead: 'run it at a terminal' });
+        await prompt.key({
+          message: '           Ready to try again?',
+          keys: [{ key: ' ', word: 'go on' }],
+          instead: 'run it at a terminal',
+        });
       }
     }
     stderr.say('           Every sensor is on its lamp.');
@@ -76,5 +86,5 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
     stop.abort();
     await reading;
   }
-  if (failure instanceof InstrumentError) throw failure;
+  if (failure) throw failure;
 }

@@ -40,7 +40,14 @@ export function terminalTechnician(context: Context, currency: string): Technici
       const { ink } = await stderr.style();
       const [first = '', ...rest] = wrap(text, Math.max(20, stderr.columns - INDENT.length - 1));
       stderr.write(`\n${ink.inverse(' CAUTION ')}  ${first}\n${rest.map((line) => `${INDENT}${line}\n`).join('')}`);
-      return (await prompt.key({ message: `${INDENT}Done?`, keys: YES_NO, instead, again: `${INDENT}A caution has no default: press y or n.` })) === 'y' ? 'yes' : 'no';
+      return (await prompt.key({
+        message: `${INDENT}Done?`,
+        keys: YES_NO,
+        instead,
+        again: `${INDENT}A caution has no default: press y or n.`,
+      })) === 'y'
+        ? 'yes'
+        : 'no';
     },
     hasDone: (_stepId, _kind, question) => yes(`${INDENT}${question}`),
     async looks(_stepId, question) {
@@ -59,22 +66,61 @@ export function terminalTechnician(context: Context, currency: string): Technici
     async mended(_stepId, { part: suggested, optional, parts }) {
       if (optional && !(await yes(`${INDENT}Was something mended?`))) return undefined;
       if (parts.length > 0) stderr.write(`${INDENT}Parts of the sheet: ${parts.join(', ')}\n`);
-      const part = await prompt.text({ message: 'Part, or what was done', initial: suggested, refuse: (text) => (text === '' ? 'say what was mended' : undefined), instead });
-      const source = await prompt.text({ message: 'Part from: new, used:NUMBER, or none', initial: 'new', refuse: (text) => refusalOf(() => parsePartSource(text)), instead });
-      const minutes = await prompt.text({ message: 'Minutes', refuse: (text) => (/^\d{1,4}$/.test(text) ? undefined : 'whole minutes, please'), instead });
-      const cost = await prompt.text({ message: `Cost of the part, ${currency}`, initial: '0', refuse: (text) => refusalOf(() => parseMoney(text, currency, 'Cost')), instead });
+      const part = await prompt.text({
+        message: 'Part, or what was done',
+        initial: suggested,
+        refuse: (text) => (text === '' ? 'say what was mended' : undefined),
+        instead,
+      });
+      const source = await prompt.text({
+        message: 'Part from: new, used:NUMBER, or none',
+        initial: 'new',
+        refuse: (text) => refusalOf(() => parsePartSource(text)),
+        instead,
+      });
+      const minutes = await prompt.text({
+        message: 'Minutes',
+        refuse: (text) => (/^\d{1,4}$/.test(text) ? undefined : 'whole minutes, please'),
+        instead,
+      });
+      const cost = await prompt.text({
+        message: `Cost of the part, ${currency}`,
+        initial: '0',
+        refuse: (text) => refusalOf(() => parseMoney(text, currency, 'Cost')),
+        instead,
+      });
       const note = await prompt.text({ message: 'Remark (may stay empty)', instead });
-      return { part, partSource: parsePartSource(source), minutes: Number(minutes), costMinor: parseMoney(cost, currency, 'Cost'), ...(note === '' ? {} : { note }) };
+      return {
+        part,
+        partSource: parsePartSource(source),
+        minutes: Number(minutes),
+        costMinor: parseMoney(cost, currency, 'Cost'),
+        ...(note === '' ? {} : { note }),
+      };
     },
     remarks: (_stepId, question) => prompt.text({ message: `${question} (may stay empty)`, instead }),
     async reads(_stepId, { title, quantity, unit }) {
       const file = context.home.path('cache', 'typed-meters.json');
       const known = knownMeters(readIfThere(file));
       const last = known[quantity];
-      const value = await prompt.text({ message: `${title}, in ${unitSign(unit)}`, refuse: (text) => refusalOf(() => parseQuantity(text)), instead: 'give it with --value' });
+      const value = await prompt.text({
+        message: `${title}, in ${unitSign(unit)}`,
+        refuse: (text) => refusalOf(() => parseQuantity(text)),
+        instead: 'give it with --value',
+      });
       const meter = await prompt.text({ message: 'Which meter', initial: last?.meter, instead: 'give it with --meter' });
-      const accuracy = await prompt.text({ message: 'Its accuracy, as its data sheet has it (like 0.8%+3)', initial: last?.accuracy, refuse: (text) => refusalOf(() => parseAccuracy(text)), instead: 'give it with --accuracy' });
-      const resolution = await prompt.text({ message: `Value of its last digit, in ${unitSign(unit)}`, initial: last?.resolution, refuse: (text) => refusalOf(() => parseQuantity(text)), instead: 'give it with --resolution' });
+      const accuracy = await prompt.text({
+        message: 'Its accuracy, as its data sheet has it (like 0.8%+3)',
+        initial: last?.accuracy,
+        refuse: (text) => refusalOf(() => parseAccuracy(text)),
+        instead: 'give it with --accuracy',
+      });
+      const resolution = await prompt.text({
+        message: `Value of its last digit, in ${unitSign(unit)}`,
+        initial: last?.resolution,
+        refuse: (text) => refusalOf(() => parseQuantity(text)),
+        instead: 'give it with --resolution',
+      });
       writeWhole(file, JSON.stringify({ ...known, [quantity]: { meter, accuracy, resolution } }));
       return { value, accuracy, resolution, ...(meter === '' ? {} : { meter }) };
     },

@@ -45,7 +45,9 @@ export async function unitPage(context: Context, number: number): Promise<{ valu
 
 async function sheetOf(context: Context, family: string): Promise<{ value: Sheet; offline: boolean }> {
   const file = context.home.path('cache', 'sheets', `${encodeURIComponent(family)}.json`);
-  const { value, offline } = await fetchOrKept(file, sheetPageSchema, async () => (await context.api()).call('getSheet', { params: { family } }));
+  const { value, offline } = await fetchOrKept(file, sheetPageSchema, async () =>
+    (await context.api()).call('getSheet', { params: { family } }),
+  );
   return { value: value.sheet, offline };
 }
 
@@ -54,7 +56,10 @@ export async function unitOnBench(context: Context, number: number, sheetGiven?:
   const me = await whoIsHere(context);
   const page = await unitPage(context, number);
   const { unit } = page.value;
-  if (unit.family === undefined && !sheetGiven) throw new BadInputError(`${unitLabel(number)} has no control family, so there is no service sheet to go by: a lead gives it one, or hand in --sheet`);
+  if (unit.family === undefined && !sheetGiven)
+    throw new BadInputError(
+      `${unitLabel(number)} has no control family, so there is no service sheet to go by: a lead gives it one, or hand in --sheet`,
+    );
   const sheet = sheetGiven ? { value: sheetGiven, offline: false } : await sheetOf(context, unit.family ?? '');
   const offline = me.offline || page.offline || sheet.offline;
   if (offline) context.stderr.say(`The server at ${context.server} can't be reached: working with what this bench knows from last time.`);

@@ -49,10 +49,19 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
       const tookMs = performance.now() - startedMs;
       understandAgainMs = performance.now() + Math.max(UNDERSTAND_EVERY_MS, REST_FACTOR * tookMs);
     }
-    block.draw(liveLines({ window, sheet, understood, elapsedS: controls.elapsedS(), seconds: controls.seconds, byKeys, waitsFor }, style, stderr.rows));
+    block.draw(
+      liveLines(
+        { window, sheet, understood, elapsedS: controls.elapsedS(), seconds: controls.seconds, byKeys, waitsFor },
+        style,
+        stderr.rows,
+      ),
+    );
   };
   const timer = setInterval(draw, DRAW_EVERY_MS);
-  const keyboard = parts.attended && context.interactive ? await readKeys(context.stdin, onKeyOf(controls, waitsFor !== undefined), () => context.interruption.interrupt()) : undefined;
+  const keyboard =
+    parts.attended && context.interactive
+      ? await readKeys(context.stdin, onKeyOf(controls, waitsFor !== undefined), () => context.interruption.interrupt())
+      : undefined;
   const over = lookNowAndThen(parts.over);
   return {
     seen(seenWindow) {

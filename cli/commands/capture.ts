@@ -45,9 +45,11 @@ interface Recorded {
 
 /** Records the lamps of a unit, by probe or by keys, or takes a capture that was recorded before. */
 export async function runCapture(options: CaptureOptions, context: Context): Promise<number> {
-  if (options.keys === true && (options.file !== undefined || options.rig !== undefined)) throw new UsageError('--keys goes without --rig and --file: the lamps come from one of them');
+  if (options.keys === true && (options.file !== undefined || options.rig !== undefined))
+    throw new UsageError('--keys goes without --rig and --file: the lamps come from one of them');
   if (options.keys === true && !context.interactive) throw new NobodyToAskError('Who taps the lamps?', 'run it at a terminal');
-  if (options.file === undefined && options.seconds === undefined && !context.interactive) throw new NobodyToAskError('How long shall it record?', 'give it with --seconds');
+  if (options.file === undefined && options.seconds === undefined && !context.interactive)
+    throw new NobodyToAskError('How long shall it record?', 'give it with --seconds');
   const sheet = options.sheet === undefined ? undefined : readSheet(textOf(options.sheet, 'service sheet'), options.sheet);
   const unit = await unitOnBench(context, options.number, sheet);
   const recorded = options.file === undefined ? await record(options, context, unit) : fromFile(options.file, context);
@@ -90,7 +92,9 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
         seconds: options.seconds,
         watcher: watching({ context, sheet, attended: technician.attended, byKeys: options.keys === true }),
       }).catch((error: unknown) => {
-        context.stderr.say(`What came until then is in ${captureFileOf(context.home, id)}\nIf it is of use: refettle capture ${options.number} --file ${captureFileOf(context.home, id)}`);
+        context.stderr.say(
+          `What came until then is in ${captureFileOf(context.home, id)}\nIf it is of use: refettle capture ${options.number} --file ${captureFileOf(context.home, id)}`,
+        );
         throw error;
       });
       return { id, file: captureText(context.home, id), fromFile: false, interrupted: ended === 'interrupted' };
@@ -110,7 +114,13 @@ async function sourceOf(rig: OpenRig | undefined, context: Context, { sheet }: U
   return probeSource(rig, sheet);
 }
 
-async function keepAndSay(options: CaptureOptions, context: Context, unit: UnitOnBench, recorded: Recorded, answer: DecodeAnswer): Promise<number> {
+async function keepAndSay(
+  options: CaptureOptions,
+  context: Context,
+  unit: UnitOnBench,
+  recorded: Recorded,
+  answer: DecodeAnswer,
+): Promise<number> {
   const { id, file, fromFile } = recorded;
   const at = context.now().toISOString();
   const delivery = await keepAndSend(context, {
@@ -128,7 +138,13 @@ async function keepAndSay(options: CaptureOptions, context: Context, unit: UnitO
   else {
     const style = await context.stdout.style();
     const sent = delivery.state === 'sent' ? 'Written down here, and sent.' : 'Written down here; not sent yet.';
-    context.stdout.write(`${style.ink.bold(unitLabel(options.number))}  ${Math.round(answer.durationS)} s, ${answer.samples} samples\n${answerLines(answer, unit.sheet, style).join('\n')}\n${sent}\n`);
+    context.stdout.write(
+      `${style.ink.bold(unitLabel(options.number))}  ${Math.round(answer.durationS)} s, ${answer.samples} samples\n${answerLines(answer, unit.sheet, style).join('\n')}\n${sent}\n`,
+    );
   }
-  return firstExitCode([recorded.interrupted ? EXIT.stopped : EXIT.good, isReadable(answer) ? EXIT.good : EXIT.notGood, delivery.state === 'sent' ? EXIT.good : EXIT.server]);
+  return firstExitCode([
+    recorded.interrupted ? EXIT.stopped : EXIT.good,
+    isReadable(answer) ? EXIT.good : EXIT.notGood,
+    delivery.state === 'sent' ? EXIT.good : EXIT.server,
+  ]);
 }

@@ -44,21 +44,31 @@ const DISCHARGE = 'Discharge it now through the tester, wait, measure: below 50 
 export async function runMeasure(options: MeasureOptions, context: Context): Promise<number> {
   const unit = await unitOnBench(context, options.number);
   const check = checkOf(unit.sheet, options.check);
-  if (!check) throw new BadInputError(`the sheet ${unit.sheet.family} has no check '${options.check}'; it has ${checksFor(unit.facts).map(({ id }) => id).join(', ')}`);
-  return context.interruption.hold(() => (check.kind === 'inspect' ? lookAt(options, context, unit, check) : measure(options, context, unit, check)));
+  if (!check)
+    throw new BadInputError(
+      `the sheet ${unit.sheet.family} has no check '${options.check}'; it has ${checksFor(unit.facts)
+        .map(({ id }) => id)
+        .join(', ')}`,
+    );
+  return context.interruption.hold(() =>
+    check.kind === 'inspect' ? lookAt(options, context, unit, check) : measure(options, context, unit, check),
+  );
 }
 
 async function measure(options: MeasureOptions, context: Context, unit: UnitOnBench, check: MeasuredCheck): Promise<number> {
   if (options.verdict !== undefined) throw new UsageError(`--verdict: '${check.id}' is measured, its verdict comes from the reading`);
   const byHand = options.value !== undefined;
-  if (byHand && (options.accuracy === undefined || options.resolution === undefined)) throw new UsageError('--value needs --accuracy and --resolution: those of the meter that took it, as its data sheet has them');
+  if (byHand && (options.accuracy === undefined || options.resolution === undefined))
+    throw new UsageError('--value needs --accuracy and --resolution: those of the meter that took it, as its data sheet has them');
   const rig = byHand ? undefined : await context.openRig(options.rig);
   try {
     const step: Step = { id: check.id, kind: 'measure', title: check.title, check: check.id };
     const technician = await mayBegin({ context, unit, rig, step, caution: check.cautions.join(' ') || check.title, alreadyDone: byHand });
     if (!technician) return EXIT.notGood;
     const { value = '', accuracy = '', resolution = '', meter } = options;
-    const reading = rig ? await readingOff(rig, technician, check, unit, context) : typedReading(check, unit.sheet, { value, accuracy, resolution, meter });
+    const reading = rig
+      ? await readingOff(rig, technician, check, unit, context)
+      : typedReading(check, unit.sheet, { value, accuracy, resolution, meter });
     if (reading === undefined) return EXIT.notGood;
     await rig?.close();
     const id = context.newId();
@@ -79,7 +89,13 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
 }
 
 /** A reading off the rig's meter; after a failure a person may try again. Undefined: the probes were not put on. */
-async function readingOff(rig: OpenRig, technician: Technician, check: MeasuredCheck, { sheet }: UnitOnBench, { stderr }: Context): Promise<ReadingBody | undefined> {
+async function readingOff(
+  rig: OpenRig,
+  technician: Technician,
+  check: MeasuredCheck,
+  { sheet }: UnitOnBench,
+  { stderr }: Context,
+): Promise<ReadingBody | undefined> {
   const meter = rig.meterInfo(check.quantity);
   for (;;) {
     if (meter && technician.attended) {
@@ -96,13 +112,19 @@ async function readingOff(rig: OpenRig, technician: Technician, check: MeasuredC
   }
 }
 
-async function lookAt(options: MeasureOptions, context: Context, unit: UnitOnBench, check: Extract<Check, { kind: 'inspect' }>): Promise<number> {
+async function lookAt(
+  options: MeasureOptions,
+  context: Context,
+  unit: UnitOnBench,
+  check: Extract<Check, { kind: 'inspect' }>,
+): Promise<number> {
   const step: Step = { id: check.id, kind: 'inspect', title: check.title, check: check.id };
   const rig = options.rig === undefined ? undefined : await context.openRig(options.rig);
   try {
     const technician = await mayBegin({ context, unit, rig, step, caution: check.cautions.join(' ') });
     if (!technician) return EXIT.notGood;
-    if (options.verdict === undefined && !context.interactive && !rig?.hands) throw new NobodyToAskError(check.question, 'give it with --verdict');
+    if (options.verdict === undefined && !context.interactive && !rig?.hands)
+      throw new NobodyToAskError(check.question, 'give it with --verdict');
     const seen = options.verdict === undefined ? await technician.looks(check.id, check.question) : given(options);
     const inspection = settleInspection({ checkId: check.id, title: check.title, ...seen }, unit.sheet);
     const id = context.newId();
@@ -141,7 +163,14 @@ async function say(options: MeasureOptions, context: Context, { check, verdict, 
   const { stdout, stderr } = context;
   if (delivery.state !== 'sent') stderr.say(deliveryWords(delivery));
   const style = await stdout.style();
-  if (options.json === true) printJson(context, { unit: options.number, check: check.id, verdict, sent: delivery.state === 'sent', ...(reading ? { reading } : { inspection }) });
+  if (options.json === true)
+    printJson(context, {
+      unit: options.number,
+      check: check.id,
+      verdict,
+      sent: delivery.state === 'sent',
+      ...(reading ? { reading } : { inspection }),
+    });
   else if (reading && check.kind === 'measure') {
     const { judgement, resolution } = reading;
     const { value, unit, low, high, expandedUncertainty } = judgement;

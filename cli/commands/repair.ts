@@ -53,13 +53,24 @@ export async function runRepair(options: RepairOptions, context: Context): Promi
 async function repairFrom(options: RepairOptions, context: Context, currency: string): Promise<RepairBody> {
   const { part, source, minutes, cost = '0', note } = options;
   if (part === undefined || source === undefined || minutes === undefined) {
-    const missing = [part === undefined ? '--part' : '', source === undefined ? '--source' : '', minutes === undefined ? '--minutes' : ''].filter(Boolean);
-    if (!context.interactive) throw new UsageError(`A repair needs ${missing.join(', ')}. Nobody is at a terminal to answer: give them as options`);
+    const missing = [
+      part === undefined ? '--part' : '',
+      source === undefined ? '--source' : '',
+      minutes === undefined ? '--minutes' : '',
+    ].filter(Boolean);
+    if (!context.interactive)
+      throw new UsageError(`A repair needs ${missing.join(', ')}. Nobody is at a terminal to answer: give them as options`);
     const mended = await terminalTechnician(context, currency).mended('repair', { part, optional: false, parts: [] });
     if (!mended) throw new BadInputError('nothing was mended');
     return mended;
   }
-  const parsed = repairBodySchema.safeParse({ part, partSource: parsePartSource(source), minutes, costMinor: parseMoney(cost, currency, '--cost'), ...(note === undefined ? {} : { note }) });
+  const parsed = repairBodySchema.safeParse({
+    part,
+    partSource: parsePartSource(source),
+    minutes,
+    costMinor: parseMoney(cost, currency, '--cost'),
+    ...(note === undefined ? {} : { note }),
+  });
   if (!parsed.success) throw new UsageError(parsed.error.issues.map(({ path, message }) => `${path.join('.')}: ${message}`).join('; '));
   return parsed.data;
 }

@@ -37,7 +37,9 @@ export async function runScriptCommand(options: RunOptions, context: Context): P
   const unit = await unitOnBench(context, options.number);
   refuseFindings(script, unit.sheet, options.script);
   if (unit.page.unit.licensedOnly) {
-    context.stderr.say(`${unitLabel(options.number)} is for a licensed person only (gas, sealed refrigerant or a microwave oven): no script runs on it.`);
+    context.stderr.say(
+      `${unitLabel(options.number)} is for a licensed person only (gas, sealed refrigerant or a microwave oven): no script runs on it.`,
+    );
     return EXIT.notGood;
   }
   const rig = await context.openRig(options.rig);
@@ -56,7 +58,11 @@ function technicianFor(options: RunOptions, context: Context, rig: OpenRig, scri
   if (attended) return terminalTechnician(context, currency);
   if (rig.hands) return simulatedTechnician(context, rig.hands);
   const asks = script.steps.find((step) => step.kind === 'caution') ?? script.steps.find((step) => step.kind !== 'expect');
-  if (asks) throw new NobodyToAskError(`Step '${asks.id}' (${asks.title}) waits for a person. Nothing was begun, no port was opened.`, 'run it at a terminal and without --unattended');
+  if (asks)
+    throw new NobodyToAskError(
+      `Step '${asks.id}' (${asks.title}) waits for a person. Nothing was begun, no port was opened.`,
+      'run it at a terminal and without --unattended',
+    );
   return terminalTechnician(context, currency);
 }
 
@@ -80,11 +86,11 @@ async function runAndSend(
   });
   await printHeader(context, unit, script, rig);
   let end: RunEnd | undefined;
-  let fault: unknown;
+  let fault: Error | undefined;
   try {
     end = await runScript({ context, journal, ...parts });
   } catch (error) {
-    fault = error;
+    fault = error instanceof Error ? error : new Error(String(error));
   }
   await rig.close();
   const results = end?.results ?? [];
@@ -94,12 +100,25 @@ async function runAndSend(
   journal.close();
   const entry = closeRun(context, writtenRun(context.home, journal.header.id));
   // A fault of ours, a full disk: what was recorded is in the outbox; sending it is not tried on top of that.
-  if (fault !== undefined) throw fault;
+  if (fault) throw fault;
 
-  const delivery = (await sendWaiting(context)).find((one) => one.entry.id === entry.id) ?? { state: 'waits', entry, why: 'it is being sent by another terminal' };
+  const delivery = (await sendWaiting(context)).find((one) => one.entry.id === entry.id) ?? {
+    state: 'waits',
+    entry,
+    why: 'it is being sent by another terminal',
+  };
   const verdict = runVerdict(results, interrupted);
   const code = firstExitCode([end?.exitCode ?? EXIT.good, codeOf(verdict), delivery.state === 'sent' ? EXIT.good : EXIT.server]);
-  await say(options, context, { unit, script, results, verdict, delivery, code, tookMs: endedAt.getTime() - startedAt.getTime(), runId: entry.id });
+  await say(options, context, {
+    unit,
+    script,
+    results,
+    verdict,
+    delivery,
+    code,
+    tookMs: endedAt.getTime() - startedAt.getTime(),
+    runId: entry.id,
+  });
   return code;
 }
 

@@ -18,17 +18,30 @@ export async function runSync({ status, drop, json }: SyncOptions, context: Cont
   recoverRuns(context);
   if (drop !== undefined) return giveUp(drop, context);
   const { entries, unreadable } = waitingEntries(context.home);
-  for (const file of unreadable) context.stderr.say(`${file}: this can't be read; it is left where it is. A newer version of Refettle may have written it.`);
+  for (const file of unreadable)
+    context.stderr.say(`${file}: this can't be read; it is left where it is. A newer version of Refettle may have written it.`);
   const deliveries = status === true ? [] : await sendWaiting(context, { again: true });
-  const left = status === true ? entries.map(describe) : deliveries.filter(({ state }) => state !== 'sent').map((one) => ({ ...describe(one.entry), state: one.state, why: 'why' in one ? one.why : '' }));
+  const left =
+    status === true
+      ? entries.map(describe)
+      : deliveries
+          .filter(({ state }) => state !== 'sent')
+          .map((one) => ({ ...describe(one.entry), state: one.state, why: 'why' in one ? one.why : '' }));
   const sent = deliveries.filter(({ state }) => state === 'sent').map(({ entry }) => ({ id: entry.id, what: entry.what }));
 
   if (json === true) printJson(context, { sent, left });
   else {
     for (const { what } of sent) context.stdout.write(`sent: ${what}\n`);
-    for (const { id, what, madeAt, state, why } of left) context.stdout.write(`${state}: ${what}, ${dayText(madeAt)} ${timeText(madeAt)}  (${id})\n${why.split('\n').map((line) => `  ${line}\n`).join('')}`);
+    for (const { id, what, madeAt, state, why } of left)
+      context.stdout.write(
+        `${state}: ${what}, ${dayText(madeAt)} ${timeText(madeAt)}  (${id})\n${why
+          .split('\n')
+          .map((line) => `  ${line}\n`)
+          .join('')}`,
+      );
     if (sent.length === 0 && left.length === 0) context.stdout.write('Nothing waits on this bench.\n');
-    else if (left.length > 0) context.stderr.say(`${plural(left.length, 'thing waits', 'things wait')} on this bench; nothing of it is lost.`);
+    else if (left.length > 0)
+      context.stderr.say(`${plural(left.length, 'thing waits', 'things wait')} on this bench; nothing of it is lost.`);
   }
   return firstExitCode([left.length > 0 ? EXIT.server : EXIT.good, unreadable.length > 0 ? EXIT.badInput : EXIT.good]);
 }
@@ -40,7 +53,9 @@ const describe = (entry: OutboxEntry) => ({
   server: entry.server,
   by: entry.by.name,
   state: entry.refused ? ('refused' as const) : ('waits' as const),
-  why: entry.refused ? `${entry.refused.reason}\n${entry.refused.remedy}` : `recorded by ${entry.by.name}, for ${entry.server}: refettle sync sends it`,
+  why: entry.refused
+    ? `${entry.refused.reason}\n${entry.refused.remedy}`
+    : `recorded by ${entry.by.name}, for ${entry.server}: refettle sync sends it`,
 });
 
 function giveUp(id: string, context: Context): number {

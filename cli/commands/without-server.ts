@@ -8,5 +8,7 @@ const streamsFor = (json: boolean | undefined, { stdout, stderr }: Context) => (
   stderr: { write: (text: string): void => stderr.write(text) },
 });
 
-export const decodeInContext = (options: DecodeOptions, context: Context): Promise<number> => runDecode(options, streamsFor(options.json, context));
-export const judgeInContext = (options: JudgeOptions, context: Context): Promise<number> => runJudge(options, streamsFor(options.json, context));
+export const decodeInContext = (options: DecodeOptions, context: Context): Promise<number> =>
+  runDecode(options, streamsFor(options.json, context));
+export const judgeInContext = (options: JudgeOptions, context: Context): Promise<number> =>
+  runJudge(options, streamsFor(options.json, context));

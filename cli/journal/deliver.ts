@@ -34,7 +34,9 @@ export async function sendWaiting(context: Context, { again = false } = {}): Pro
 export async function keepAndSend(context: Context, entry: OutboxEntry): Promise<Delivery> {
   keepEntry(context.home, entry);
   const deliveries = await sendWaiting(context);
-  return deliveries.find((delivery) => delivery.entry.id === entry.id) ?? { state: 'waits', entry, why: 'it is being sent by another terminal' };
+  return (
+    deliveries.find((delivery) => delivery.entry.id === entry.id) ?? { state: 'waits', entry, why: 'it is being sent by another terminal' }
+  );
 }
 
 /** What keeps this one from being sent now, though another one may go. */
@@ -42,7 +44,8 @@ function whyNotNow({ home, server }: Context, entry: OutboxEntry): string | unde
   if (entry.server !== server) return `it is for the server at ${entry.server}: set REFETTLE_SERVER to it`;
   const user = readSession(home, server)?.user;
   // The server takes down who signed in as who did it: nobody sends another's work as their own.
-  if (user && user.id !== entry.by.id) return `${entry.by.name} recorded it and must be the one to send it: sign in as ${entry.by.name}, then refettle sync`;
+  if (user && user.id !== entry.by.id)
+    return `${entry.by.name} recorded it and must be the one to send it: sign in as ${entry.by.name}, then refettle sync`;
   return undefined;
 }
 
@@ -53,7 +56,11 @@ async function send(context: Context, entry: OutboxEntry, again: boolean): Promi
   try {
     const api = await context.api();
     const { route, body, id } = entry;
-    const answer: unknown = await api.call(route, { ...('params' in entry ? { params: entry.params } : {}), body, idempotencyKey: id } as Parameters<typeof api.call>[1]);
+    const answer: unknown = await api.call(route, {
+      ...('params' in entry ? { params: entry.params } : {}),
+      body,
+      idempotencyKey: id,
+    });
     putAway(context.home, id, 'sent');
     return { state: 'sent', entry, answer };
   } catch (error) {
@@ -63,6 +70,10 @@ async function send(context: Context, entry: OutboxEntry, again: boolean): Promi
       keepEntry(context.home, { ...entry, refused });
       return { state: 'refused', entry, why: wordsOf(error), error };
     }
-    return { state: 'waits', entry, why: error instanceof NotSignedInError ? `${error.message} ${error.remedy}, then: refettle sync` : wordsOf(error).replace('\n', ' ') };
+    return {
+      state: 'waits',
+      entry,
+      why: error instanceof NotSignedInError ? `${error.message} ${error.remedy}, then: refettle sync` : wordsOf(error).replace('\n', ' '),
+    };
   }
 }

@@ -36,7 +36,9 @@ export function recoverRuns(context: Context): OutboxEntry[] {
     if (!written || isAlive(written.header.pid)) continue;
     const entry = closeRun(context, written);
     recovered.push(entry);
-    context.stderr.say(`The ${entry.what}, begun ${written.header.startedAt}, was broken off. ${written.results.length} steps of it are kept; it is closed as interrupted.`);
+    context.stderr.say(
+      `The ${entry.what}, begun ${written.header.startedAt}, was broken off. ${written.results.length} steps of it are kept; it is closed as interrupted.`,
+    );
   }
   return recovered;
 }

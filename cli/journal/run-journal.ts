@@ -20,7 +20,13 @@ const headerSchema = z.strictObject({
 });
 export type RunHeader = z.infer<typeof headerSchema>;
 
-const begunSchema = z.strictObject({ stepId: z.string(), kind: z.string(), title: z.string(), at: z.iso.datetime(), captureId: z.string().optional() });
+const begunSchema = z.strictObject({
+  stepId: z.string(),
+  kind: z.string(),
+  title: z.string(),
+  at: z.iso.datetime(),
+  captureId: z.string().optional(),
+});
 export type BegunStep = z.infer<typeof begunSchema>;
 const endSchema = z.strictObject({ endedAt: z.iso.datetime(), interrupted: z.boolean() });
 
@@ -43,7 +49,8 @@ export interface WrittenRun {
 }
 
 /** Only these hold a capture file; its text is kept beside the journal, not in it. */
-const withoutFile = (result: StepResult): StepResult => (result.kind === 'capture' || result.kind === 'watch' ? { ...result, file: '' } : result);
+const withoutFile = (result: StepResult): StepResult =>
+  result.kind === 'capture' || result.kind === 'watch' ? { ...result, file: '' } : result;
 
 /** The journal of a run that is going. Each step's result is on the disk before the next begins. */
 export class RunJournal {
@@ -112,12 +119,15 @@ export function writtenRun(home: Home, runId: string): WrittenRun {
  * and the lamps that were recorded when it broke off are kept as a capture that was cut.
  */
 export function logOf(home: Home, { header, results, begun, end }: WrittenRun): RunLog {
-  const steps = results.map((result): StepResult => (result.kind === 'capture' || result.kind === 'watch' ? { ...result, file: captureText(home, result.captureId) } : result));
+  const steps = results.map((result): StepResult =>
+    result.kind === 'capture' || result.kind === 'watch' ? { ...result, file: captureText(home, result.captureId) } : result,
+  );
   const lastAt = begun?.at ?? results.at(-1)?.endedAt ?? header.startedAt;
   if (!end && begun?.captureId !== undefined && begun.kind === 'capture') {
     const { stepId, title, at, captureId } = begun;
     const file = wholeLines(readIfThere(captureFileOf(home, captureId)) ?? '');
-    if (file.split('\n').length > 2) steps.push({ kind: 'capture', stepId, title, startedAt: at, endedAt: lastAt, captureId, file, fromFile: false });
+    if (file.split('\n').length > 2)
+      steps.push({ kind: 'capture', stepId, title, startedAt: at, endedAt: lastAt, captureId, file, fromFile: false });
   }
   const { id, script, rig, startedAt } = header;
   return { id, script, rig, startedAt, endedAt: end?.endedAt ?? lastAt, interrupted: end?.interrupted ?? true, steps };

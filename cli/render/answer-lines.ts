@@ -22,7 +22,8 @@ export function answerLines(answer: DecodeAnswer, sheet: Sheet, style: Style): s
   if (answer.segments.length === 0) lines.push(`${INDENT}nothing was recorded`);
   if (answer.codes.length === 0 && answer.segments.some(({ kind }) => kind === 'ready')) lines.push(`${INDENT}ready blink`);
   for (const segment of answer.segments) {
-    if (segment.kind === 'unreadable') lines.push(...indented([`${segment.fromS.toFixed(0)} to ${segment.toS.toFixed(0)} s unreadable: ${segment.reason}`], style.columns));
+    if (segment.kind === 'unreadable')
+      lines.push(...indented([`${segment.fromS.toFixed(0)} to ${segment.toS.toFixed(0)} s unreadable: ${segment.reason}`], style.columns));
   }
   return [...lines, ...indented(answer.warnings, style.columns)];
 }

@@ -41,6 +41,8 @@ const PLAIN: Readonly<Record<string, string>> = {
   '▇': '#',
   '█': '#',
 };
+const BEYOND_ASCII = /[\u0080-\u{10ffff}]/u;
+const EACH_BEYOND_ASCII = /[\u0080-\u{10ffff}]/gu;
 const SIGNS = new RegExp(Object.keys(PLAIN).join('|'), 'gu');
 
 /**
@@ -49,10 +51,10 @@ const SIGNS = new RegExp(Object.keys(PLAIN).join('|'), 'gu');
  * @example toAscii('■ pass 0.084 Ω') // '[=] pass 0.084 ohm'
  */
 export function toAscii(text: string): string {
-  if (/^[\x00-\x7f]*$/.test(text)) return text;
+  if (!BEYOND_ASCII.test(text)) return text;
   return text
     .replace(SIGNS, (sign) => PLAIN[sign] ?? '?')
     .normalize('NFD')
     .replace(/\p{M}/gu, '')
-    .replace(/[^\x00-\x7f]/gu, '?');
+    .replace(EACH_BEYOND_ASCII, '?');
 }

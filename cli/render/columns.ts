@@ -65,7 +65,11 @@ export function indented(texts: readonly string[], columns: number): string[] {
 }
 
 /** Rows in columns, each as wide as its widest cell; columns whose index is in `right` end at the right. */
-export function table(rows: readonly (readonly string[])[], style: Pick<Style, 'unicode'>, { right = [], gap = 2 }: { right?: readonly number[]; gap?: number } = {}): string[] {
+export function table(
+  rows: readonly (readonly string[])[],
+  style: Pick<Style, 'unicode'>,
+  { right = [], gap = 2 }: { right?: readonly number[]; gap?: number } = {},
+): string[] {
   const cells = rows.map((row) => row.map((cell) => shown(cell, style)));
   const widths = (cells[0] ?? []).map((_cell, column) => Math.max(...cells.map((row) => widthOf(row[column] ?? ''))));
   return cells.map((row) =>

@@ -19,11 +19,17 @@ function wordsOf(event: UnitEvent): { what: string; verdict?: Verdict } {
     case 'sold':
       return { what: 'sold' };
     case 'inspection':
-      return { what: `${event.inspection.title}${event.inspection.note === undefined ? '' : `: ${event.inspection.note}`}`, verdict: event.inspection.verdict };
+      return {
+        what: `${event.inspection.title}${event.inspection.note === undefined ? '' : `: ${event.inspection.note}`}`,
+        verdict: event.inspection.verdict,
+      };
     case 'reading': {
       const { judgement, resolution, title } = event.reading;
       const { value, unit, low, high, expandedUncertainty, verdict } = judgement;
-      return { what: `${title} ${formatReading(value, resolution, unit)} ${formatSpread(expandedUncertainty, resolution)}, ${formatLimits(low, high, '', resolution)}`, verdict };
+      return {
+        what: `${title} ${formatReading(value, resolution, unit)} ${formatSpread(expandedUncertainty, resolution)}, ${formatLimits(low, high, '', resolution)}`,
+        verdict,
+      };
     }
     case 'capture': {
       const codes = [...new Set(event.capture.answer.codes.map(({ code }) => code))];

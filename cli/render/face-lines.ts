@@ -12,7 +12,9 @@ export function faceLines(face: LampFace, style: Style, beside: readonly string[
   return face.rows.map((row, index) => {
     const lamps = face.lamps.flatMap((lamp, column) => {
       const lit = row.lit[column];
-      return lamp.group === 'outside' || lit === null || lit === undefined ? [] : [`${groups[column] ?? ''}${lampSign(lit, lamp.colour, style)}`];
+      return lamp.group === 'outside' || lit === null || lit === undefined
+        ? []
+        : [`${groups[column] ?? ''}${lampSign(lit, lamp.colour, style)}`];
     });
     const sum = `${row.terms.length === 0 ? '0' : row.terms.join(' + ')} = ${style.ink.bold(String(row.digit))}`;
     return shown(` ${padRight(row.letter, 2)} ${lamps.join(' ')}   ${padRight(sum, 12)} ${beside[index] ?? ''}`.trimEnd(), style);

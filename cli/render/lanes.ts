@@ -53,7 +53,8 @@ const eighth = (level: number): string => EIGHTHS[Math.max(0, Math.min(7, Math.r
 export function drawLanes(model: LanesModel, style: Style): string[] {
   const width = laneColumns(style.columns);
   const columnOf = (atS: number): number => Math.round((atS - model.fromS) * COLUMNS_PER_SECOND);
-  const framed = (left: string, text: string, right: string): string => `${padRight(left, LEFT)}│${padRight(text, width)}│ ${right}`.trimEnd();
+  const framed = (left: string, text: string, right: string): string =>
+    `${padRight(left, LEFT)}│${padRight(text, width)}│ ${right}`.trimEnd();
   const lanes = model.lanes.map((lane) => {
     const label = `${padRight(lane.label.toLowerCase().slice(0, LABEL_COLUMNS), LABEL_COLUMNS)}${padLeft(lane.weight === undefined ? '' : String(lane.weight), 2)}`;
     const percent = lane.litFraction === undefined ? '' : `${Math.round(lane.litFraction * 100)} %`;
@@ -62,7 +63,14 @@ export function drawLanes(model: LanesModel, style: Style): string[] {
   });
   const bare = (name: string, text: string): string => `${padRight(` ${name}`, LEFT)} ${text}`.trimEnd();
   return [
-    framed('', place(model.marks.map((mark) => ({ at: columnOf(mark.atS), text: `↓ ${mark.label}` })), width), 'lit'),
+    framed(
+      '',
+      place(
+        model.marks.map((mark) => ({ at: columnOf(mark.atS), text: `↓ ${mark.label}` })),
+        width,
+      ),
+      'lit',
+    ),
     ...lanes,
     framed('', place(fiveSeconds(model.fromS, width), width), ''),
     bare('phases', place(phaseTexts(model, columnOf), width)),
@@ -110,7 +118,8 @@ function codeLine(segments: readonly Segment[], columnOf: (atS: number) => numbe
     const to = Math.min(width, columnOf(segment.toS));
     if (to - from < 4) continue;
     if (segment.kind === 'ready') line = line.padEnd(from) + 'service mode on'.slice(0, to - from);
-    if (segment.kind === 'code') line = line.padEnd(from) + bracket(`${segment.code}${segment.repeats === undefined ? '' : `, ${times(segment.repeats)}`}`, to - from);
+    if (segment.kind === 'code')
+      line = line.padEnd(from) + bracket(`${segment.code}${segment.repeats === undefined ? '' : `, ${times(segment.repeats)}`}`, to - from);
   }
   return line;
 }

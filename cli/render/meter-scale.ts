@@ -21,11 +21,16 @@ function endsOf({ low, high }: Pick<Judgement, 'low' | 'high'>): [number, number
  * Three lines: a wedge over the axis where the reading is, the axis with its limits, the limits' values.
  * A reading off the scale is a wedge at the edge that points outwards.
  */
-export function meterScale(judgement: Pick<Judgement, 'value' | 'low' | 'high' | 'verdict'>, { ink, unicode }: Pick<Style, 'ink' | 'unicode'>): string[] {
+export function meterScale(
+  judgement: Pick<Judgement, 'value' | 'low' | 'high' | 'verdict'>,
+  { ink, unicode }: Pick<Style, 'ink' | 'unicode'>,
+): string[] {
   const { value, low, high, verdict } = judgement;
   const [from, to] = endsOf(judgement);
   const columnOf = (at: number): number => Math.round(((at - from) / (to - from)) * (SCALE_COLUMNS - 1));
-  const signs = unicode ? { wedge: '▼', left: '◀', right: '▶', axis: '─', inside: '━', limit: '┃' } : { wedge: 'V', left: '<', right: '>', axis: '-', inside: '=', limit: '|' };
+  const signs = unicode
+    ? { wedge: '▼', left: '◀', right: '▶', axis: '─', inside: '━', limit: '┃' }
+    : { wedge: 'V', left: '<', right: '>', axis: '-', inside: '=', limit: '|' };
 
   const off = value < from ? 'left' : value > to ? 'right' : undefined;
   const at = off === 'left' ? 0 : off === 'right' ? SCALE_COLUMNS - 1 : columnOf(value);
@@ -40,7 +45,10 @@ export function meterScale(judgement: Pick<Judgement, 'value' | 'low' | 'high' |
   }).join('');
 
   let values = '';
-  for (const [limit, column] of [[low, lowAt], [high, highAt]] as const) {
+  for (const [limit, column] of [
+    [low, lowAt],
+    [high, highAt],
+  ] as const) {
     if (limit === undefined) continue;
     const text = String(limit);
     const start = Math.max(values.length > 0 ? values.length + 1 : 0, column - Math.floor(text.length / 2));

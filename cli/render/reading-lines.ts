@@ -22,6 +22,9 @@ function adviceFor({ judgement, instrument }: ReadingBody, { safety, part }: Pic
     const likely = safety ? '' : `: ${Math.round(judgement.conformanceProbability * 100)} % likely inside`;
     return `${meter} can't decide this close to the limit${likely}. Measure with a meter of smaller uncertainty.`;
   }
-  if (judgement.verdict === 'fail') return safety ? 'It stops here until the machine is mended.' : `Outside its limits${part === undefined ? '' : `: suspect the ${part.toLowerCase()}`}.`;
+  if (judgement.verdict === 'fail')
+    return safety
+      ? 'It stops here until the machine is mended.'
+      : `Outside its limits${part === undefined ? '' : `: suspect the ${part.toLowerCase()}`}.`;
   return undefined;
 }

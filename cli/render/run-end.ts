@@ -30,18 +30,30 @@ export async function printRunEnd(context: Context, { unit, script, results, ver
   const style = await stdout.style();
   const lines: string[] = [];
   if (!(stdout.isTerminal && stderr.isTerminal)) {
-    lines.push(`${style.ink.bold(unitLabel(unit.page.unit.number))}  ${unit.page.unit.plate.maker} ${unit.page.unit.plate.model}  ${script.name}`);
+    lines.push(
+      `${style.ink.bold(unitLabel(unit.page.unit.number))}  ${unit.page.unit.plate.maker} ${unit.page.unit.plate.model}  ${script.name}`,
+    );
     lines.push(...results.flatMap((result, index) => stepLines(index + 1, result, style)));
   }
   if (script.prove) lines.push('', ...blankTagLines(await standingNow(context, unit, delivery), style));
-  const nothing = verdict === 'inconclusive' && !results.some(({ kind }) => ['measure', 'inspect', 'expect', 'watch'].includes(kind)) ? ' (nothing was judged)' : '';
+  const nothing =
+    verdict === 'inconclusive' && !results.some(({ kind }) => ['measure', 'inspect', 'expect', 'watch'].includes(kind))
+      ? ' (nothing was judged)'
+      : '';
   const sent = delivery.state === 'sent' ? 'Written down here, and sent.' : 'Written down here; not sent yet.';
-  lines.push('', spread(` Ended ${verdictText(verdict, style)}${nothing}, ${durationText(tookMs)}. ${sent}`, `exit ${code}`, style.columns - 1));
+  lines.push(
+    '',
+    spread(` Ended ${verdictText(verdict, style)}${nothing}, ${durationText(tookMs)}. ${sent}`, `exit ${code}`, style.columns - 1),
+  );
   stdout.write(`${lines.join('\n')}\n`);
 }
 
 /** The unit's standing with this run on the books; by the bench's own knowledge where the server doesn't have it yet. */
-async function standingNow(context: Context, unit: UnitOnBench, delivery: Delivery): Promise<Pick<UnitPage, 'unit' | 'stage' | 'readiness'>> {
+async function standingNow(
+  context: Context,
+  unit: UnitOnBench,
+  delivery: Delivery,
+): Promise<Pick<UnitPage, 'unit' | 'stage' | 'readiness'>> {
   if (delivery.state === 'sent') {
     try {
       return (await unitPage(context, unit.page.unit.number)).value;

@@ -23,7 +23,11 @@ function figures(result: StepResult): [string, string, string] {
     case 'measure': {
       const { judgement, resolution } = result.reading;
       const { value, unit, low, high, expandedUncertainty } = judgement;
-      return [formatReading(value, resolution, unit), formatSpread(expandedUncertainty, resolution), formatLimits(low, high, '', resolution)];
+      return [
+        formatReading(value, resolution, unit),
+        formatSpread(expandedUncertainty, resolution),
+        formatLimits(low, high, '', resolution),
+      ];
     }
     case 'watch':
       return [clock(result.watched.seconds), '', result.watched.reason.replace(/^.*the sheet allows /, '')];
@@ -75,13 +79,22 @@ export function stepLines(number: number, result: StepResult, style: Style): str
   const compared = `${padLeft(reading, READING)} ${padRight(spread, SPREAD)} ${padRight(limits, LIMITS)} `;
   const sign = verdict === undefined ? '' : verdictText(verdict, style);
   const under = remark(result);
-  const underLines = under === undefined ? [] : wrap(under, Math.max(20, style.columns - INDENT - 1)).map((line) => `${' '.repeat(INDENT)}${line}`);
+  const underLines =
+    under === undefined ? [] : wrap(under, Math.max(20, style.columns - INDENT - 1)).map((line) => `${' '.repeat(INDENT)}${line}`);
 
   if (tail !== '') {
     const line = `${head}${padRight(result.title, titleWidth)}  ${tail}`;
-    return widthOf(line) < style.columns ? [line, ...underLines] : [`${head}${result.title}`, ...wrap(tail, Math.max(20, style.columns - INDENT - 1)).map((text) => `${' '.repeat(INDENT)}${text}`), ...underLines];
+    return widthOf(line) < style.columns
+      ? [line, ...underLines]
+      : [
+          `${head}${result.title}`,
+          ...wrap(tail, Math.max(20, style.columns - INDENT - 1)).map((text) => `${' '.repeat(INDENT)}${text}`),
+          ...underLines,
+        ];
   }
   const fits = widthOf(result.title) <= titleWidth;
-  const lines = fits ? [`${head}${padRight(result.title, titleWidth)} ${compared}${sign}`] : [`${head}${result.title}`, `${' '.repeat(INDENT + titleWidth + 1)}${compared}${sign}`];
+  const lines = fits
+    ? [`${head}${padRight(result.title, titleWidth)} ${compared}${sign}`]
+    : [`${head}${result.title}`, `${' '.repeat(INDENT + titleWidth + 1)}${compared}${sign}`];
   return [...lines.map((line) => shown(line.trimEnd(), style)), ...underLines];
 }

@@ -18,26 +18,39 @@ const INSET = 4;
 function box(content: readonly string[], style: Style): string[] {
   const lines = [...content, ...Array.from({ length: Math.max(0, 4 - content.length) }, () => '')];
   const inner = style.columns - 1 - LEFT - 2;
-  const edges = style.unicode ? { rise: '╱', fall: '╲', side: '│', line: '─', top: '┐', bottom: '┘', hole: '○' } : { rise: '/', fall: '\\', side: '|', line: '-', top: '.', bottom: "'", hole: 'o' };
-  const hole = Math.floor((lines.length - 1) / 2) + (lines.length > 5 ? 1 : 0);
+  const edges = style.unicode
+    ? { rise: '╱', fall: '╲', side: '│', line: '─', top: '┐', bottom: '┘', hole: '○' }
+    : { rise: '/', fall: '\\', side: '|', line: '-', top: '.', bottom: "'", hole: 'o' };
+  const hole = Math.floor(lines.length / 2);
   const rows = lines.map((line, index) => {
     const last = lines.length - 1;
     const edge = index === 0 ? `   ${edges.rise}` : index === last ? `    ${edges.fall}`.slice(1) : `  ${edges.side}`;
     const mark = index === hole ? ` ${edges.hole}` : '';
     return `${padRight(`${edge}${mark}`, LEFT)}${padRight(cut(shown(line, style), inner - INSET + 2), inner)}${edges.side}`;
   });
-  return [`    ${edges.rise}${edges.line.repeat(LEFT + inner - 5)}${edges.top}`, ...rows, `    ${edges.fall}${edges.line.repeat(LEFT + inner - 5)}${edges.bottom}`];
+  return [
+    `    ${edges.rise}${edges.line.repeat(LEFT + inner - 5)}${edges.top}`,
+    ...rows,
+    `    ${edges.fall}${edges.line.repeat(LEFT + inner - 5)}${edges.bottom}`,
+  ];
 }
 
 const roomIn = (style: Style): number => style.columns - 1 - LEFT - INSET;
 
 /** A rule that is met needs only its name; the others say what is missing and how to get it. */
-const STATE_VERDICT: Readonly<Record<RuleResult['state'], Verdict>> = { met: 'pass', fail: 'fail', inconclusive: 'inconclusive', missing: 'not done' };
+const STATE_VERDICT: Readonly<Record<RuleResult['state'], Verdict>> = {
+  met: 'pass',
+  fail: 'fail',
+  inconclusive: 'inconclusive',
+  missing: 'not done',
+};
 
 /** The tag of a unit that is not ready: what is met, then what is missing and the way to get it. */
 export function blankTagLines({ unit, stage, readiness }: Pick<UnitPage, 'unit' | 'stage' | 'readiness'>, style: Style): string[] {
   const room = roomIn(style);
-  const met = readiness.rules.filter(({ state }) => state === 'met').map(({ title, state }) => `${verdictSign(STATE_VERDICT[state], style)} ${title.toLowerCase()}`);
+  const met = readiness.rules
+    .filter(({ state }) => state === 'met')
+    .map(({ title, state }) => `${verdictSign(STATE_VERDICT[state], style)} ${title.toLowerCase()}`);
   const rows: string[] = [];
   for (const rule of met) {
     const last = rows.at(-1);
@@ -50,7 +63,10 @@ export function blankTagLines({ unit, stage, readiness }: Pick<UnitPage, 'unit' 
     .flatMap((rule) => {
       const [first = '', ...rest] = wrap(`${rule.title.toLowerCase()}: ${rule.evidence}`, room - 2);
       const how = rule.how === undefined ? [] : wrap(rule.how, room - 2);
-      return [`${verdictSign(STATE_VERDICT[rule.state], style)} ${style.ink.bold(first)}`, ...[...rest.map((line) => style.ink.bold(line)), ...how].map((line) => `  ${line}`)];
+      return [
+        `${verdictSign(STATE_VERDICT[rule.state], style)} ${style.ink.bold(first)}`,
+        ...[...rest.map((line) => style.ink.bold(line)), ...how].map((line) => `  ${line}`),
+      ];
     });
   const title = spread(`${style.ink.bold(unitLabel(unit.number))}  ${stage}`, `${readiness.met} of ${readiness.total} rules met`, room);
   return box([title, ...rows, ...open], style);
@@ -64,7 +80,10 @@ export function tagLines({ content, state, withdrawn, url }: TagPage, style: Sty
   const serial = content.plate.serial === undefined ? 'serial unreadable' : `serial ${content.plate.serial}`;
   const rows = testedRows(content.tested, style, room);
   const head = withdrawn ? 'WITHDRAWN' : 'READY';
-  const mended = content.mended.map(({ part, source, at, by }) => `Mended: ${part.toLowerCase()}, ${source === 'none' ? 'no part changed' : source}, ${dayText(at)}, by ${by}`);
+  const mended = content.mended.map(
+    ({ part, source, at, by }) =>
+      `Mended: ${part.toLowerCase()}, ${source === 'none' ? 'no part changed' : source}, ${dayText(at)}, by ${by}`,
+  );
   return box(
     [
       spread(ink.bold(head) + (content.sample ? `   ${ink.bold('SAMPLE')}` : ''), ink.bold(`tag ${state.number}`), room),
@@ -75,7 +94,10 @@ export function tagLines({ content, state, withdrawn, url }: TagPage, style: Sty
       ...rows,
       rule,
       ...(mended.length > 0 ? mended.flatMap((line) => wrap(line, room)) : ['Nothing had to be mended']),
-      ...wrap(`Signed off ${dayText(content.signedOffAt)}, ${timeText(content.signedOffAt)}, by ${content.signedOffBy}, lead${content.fourEyes ? '' : ', who worked on it too'}`, room),
+      ...wrap(
+        `Signed off ${dayText(content.signedOffAt)}, ${timeText(content.signedOffAt)}, by ${content.signedOffBy}, lead${content.fourEyes ? '' : ', who worked on it too'}`,
+        room,
+      ),
       `Warranty ${content.warrantyMonths} months from the day of sale`,
       `${shortUrl(url)}     look-up word ${content.lookUpWord}`,
     ],
@@ -88,7 +110,17 @@ const TITLE_COLUMNS = 20;
 
 function testedRows(tested: TagPage['content']['tested'], style: Style, room: number): string[] {
   const inRow = (title: string): boolean => widthOf(title) <= TITLE_COLUMNS;
-  const rows = table(tested.map(({ title, reading, spread: u, limit, verdict }) => [inRow(title) ? title : '', reading, u ?? '', limit, verdictText(verdict, style)]), style, { gap: style.unicode ? 2 : 1 });
+  const rows = table(
+    tested.map(({ title, reading, spread: u, limit, verdict }) => [
+      inRow(title) ? title : '',
+      reading,
+      u ?? '',
+      limit,
+      verdictText(verdict, style),
+    ]),
+    style,
+    { gap: style.unicode ? 2 : 1 },
+  );
   return rows.flatMap((row, index) => {
     const { title } = tested[index] ?? { title: '' };
     return [...(inRow(title) ? [] : wrap(title, room)), row];

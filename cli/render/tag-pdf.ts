@@ -21,7 +21,16 @@ const MOST_ROWS = 10;
 const ROW = { plain: 4.6, twoLines: 6 };
 const CAPTION_POINTS = 7.5;
 
-const COLUMNS = { title: LEFT, titleWidth: 33.5, readingRight: 66.5, readingWidth: 26, limit: 68.5, limitWidth: 18.5, mark: 88, word: RIGHT };
+const COLUMNS = {
+  title: LEFT,
+  titleWidth: 33.5,
+  readingRight: 66.5,
+  readingWidth: 26,
+  limit: 68.5,
+  limitWidth: 18.5,
+  mark: 88,
+  word: RIGHT,
+};
 const MARK_MM = 3.1;
 const PASS_MARK = 'M1 1H19V1.4L8.6 11.6 5.4 8.4 3.2 10.6 8.6 16 19 5.8V19H1z';
 const CAUTION_MARK = 'M12 0 24 22H0z M10.6 7.5h2.8v7.2h-2.8z M10.6 16.4h2.8v2.8h-2.8z';
@@ -40,16 +49,30 @@ export function tagPdf(page: TagPage): Promise<Buffer> {
   const rest = tested(pen, content.tested, tableTop, footTop - LOWER_HALF);
   lowerHalf(pen, page, rest.bottom, footTop);
   if (content.sample) sampleAcross(pen, tableTop, rest.bottom);
-  for (let left = rest.left; left.length > 0; ) left = overleaf(pen, page, left);
+  for (let left = rest.left; left.length > 0;) left = overleaf(pen, page, left);
   return pen.finish();
 }
 
 function outline(pen: TagPen): void {
   const { width, height } = PAGE;
-  pen.shape(`M${EDGE + CORNER} ${EDGE}H${width - EDGE - CORNER}L${width - EDGE} ${EDGE + CORNER}V${height - EDGE}H${EDGE}V${EDGE + CORNER}z`, { stroke: THICK });
+  pen.shape(
+    `M${EDGE + CORNER} ${EDGE}H${width - EDGE - CORNER}L${width - EDGE} ${EDGE + CORNER}V${height - EDGE}H${EDGE}V${EDGE + CORNER}z`,
+    { stroke: THICK },
+  );
   const { x, y, r } = HOLE;
-  pen.doc.circle(mm(x), mm(y), mm(r)).lineWidth(mm(0.4)).dash(mm(1.2), { space: mm(0.8) }).stroke('black').undash();
-  for (const [x1, y1, x2, y2] of [[-5, 0, -2.6, 0], [2.6, 0, 5, 0], [0, -5, 0, -2.6], [0, 2.6, 0, 5]] as const) pen.line(x + x1, y + y1, x + x2, y + y2, 0.3);
+  pen.doc
+    .circle(mm(x), mm(y), mm(r))
+    .lineWidth(mm(0.4))
+    .dash(mm(1.2), { space: mm(0.8) })
+    .stroke('black')
+    .undash();
+  for (const [x1, y1, x2, y2] of [
+    [-5, 0, -2.6, 0],
+    [2.6, 0, 5, 0],
+    [0, -5, 0, -2.6],
+    [0, 2.6, 0, 5],
+  ] as const)
+    pen.line(x + x1, y + y1, x + x2, y + y2, 0.3);
 }
 
 function head(pen: TagPen, { content }: TagPage): void {
@@ -62,7 +85,12 @@ function head(pen: TagPen, { content }: TagPage): void {
 /** What is on the machine's own plate. Gives where the table begins. */
 function plate(pen: TagPen, { content }: TagPage): number {
   const { maker, model, serial, volts, hertz, watts, massKg } = content.plate;
-  const rated = [volts === undefined ? '' : `${volts} V`, hertz === undefined ? '' : `${hertz} Hz`, watts === undefined ? '' : `${watts} W`, massKg === undefined ? '' : `${massKg} kg`].filter(Boolean);
+  const rated = [
+    volts === undefined ? '' : `${volts} V`,
+    hertz === undefined ? '' : `${hertz} Hz`,
+    watts === undefined ? '' : `${watts} W`,
+    massKg === undefined ? '' : `${massKg} kg`,
+  ].filter(Boolean);
   const runs: Run[] = [
     { text: `${maker} ${model} `, face: 'bold' },
     { text: `${content.appliance}, ${serial === undefined ? 'serial unreadable' : 'serial '}`, face: 'read' },
@@ -104,7 +132,8 @@ function titleLines(pen: TagPen, title: string): string[] {
   if (pen.widthOf(title, 'read', 8.5) <= COLUMNS.titleWidth) return [title];
   const words = title.split(' ');
   let first = words.shift() ?? '';
-  while (words[0] !== undefined && pen.widthOf(`${first} ${words[0]}`, 'read', SMALLEST_POINTS) <= COLUMNS.titleWidth) first += ` ${words.shift() ?? ''}`;
+  while (words[0] !== undefined && pen.widthOf(`${first} ${words[0]}`, 'read', SMALLEST_POINTS) <= COLUMNS.titleWidth)
+    first += ` ${words.shift() ?? ''}`;
   return [first, words.join(' ')].filter(Boolean);
 }
 
@@ -147,11 +176,28 @@ function lowerHalf(pen: TagPen, page: TagPage, top: number, bottom: number): voi
   const caption = word + pen.text('Or look up ', RIGHT - word, qr.bottom + 5, 'read', CAPTION_POINTS, 'right');
 
   const room = Math.min(qr.left, RIGHT - caption - 1) - LEFT;
-  const say = (y: number, label: string, text: string): number => pen.paragraph([{ text: `${label} `, face: 'bold' }, { text, face: 'read' }], LEFT, y, 8.5, room, 3.8) + 0.6;
+  const say = (y: number, label: string, text: string): number =>
+    pen.paragraph(
+      [
+        { text: `${label} `, face: 'bold' },
+        { text, face: 'read' },
+      ],
+      LEFT,
+      y,
+      8.5,
+      room,
+      3.8,
+    ) + 0.6;
   let y = top + 4.6;
   const [first, ...others] = content.mended;
-  y = first ? say(y, 'Mended:', `${mendedText(first)}${others.length === 0 ? '.' : `, and ${others.length} more, on the tag's page.`}`) : say(y, 'Mended:', 'nothing had to be.');
-  y = say(y, 'Signed off', `${dayText(content.signedOffAt)} by ${content.signedOffBy}, lead${content.fourEyes ? '' : ', who worked on it too'}.`);
+  y = first
+    ? say(y, 'Mended:', `${mendedText(first)}${others.length === 0 ? '.' : `, and ${others.length} more, on the tag's page.`}`)
+    : say(y, 'Mended:', 'nothing had to be.');
+  y = say(
+    y,
+    'Signed off',
+    `${dayText(content.signedOffAt)} by ${content.signedOffBy}, lead${content.fourEyes ? '' : ', who worked on it too'}.`,
+  );
   y = say(y, 'Warranty', `${content.warrantyMonths} months from the day of sale.`);
   for (const [index, label] of ['sold on', 'until'].entries()) {
     const at = Math.min(bottom - 2 - (1 - index) * 6, y + 3 + index * 6);
@@ -169,7 +215,18 @@ function mendedText({ part, source, at, by }: TagPage['content']['mended'][numbe
 function foot(pen: TagPen, { content }: TagPage): number {
   const { name, address, phone } = content.shop;
   pen.text('Says what this shop tested. Certifies no compliance.', LEFT, FOOT_BASELINE, 'read', 7.5);
-  pen.paragraph([{ text: name, face: 'bold' }, { text: `, ${address}, `, face: 'read' }, { text: phone, face: 'mono' }], LEFT, FOOT_BASELINE - FOOT_LINE, 7.5, RIGHT - LEFT, FOOT_LINE);
+  pen.paragraph(
+    [
+      { text: name, face: 'bold' },
+      { text: `, ${address}, `, face: 'read' },
+      { text: phone, face: 'mono' },
+    ],
+    LEFT,
+    FOOT_BASELINE - FOOT_LINE,
+    7.5,
+    RIGHT - LEFT,
+    FOOT_LINE,
+  );
 
   const word = { width: 20.5, height: 5.6 };
   const text = { x: LEFT + 1.6 + word.width + 2, width: RIGHT - LEFT - word.width - 5.6, line: 3.4 };
@@ -177,10 +234,19 @@ function foot(pen: TagPen, { content }: TagPage): number {
   const lines = linesOf(pen, content.cautions.join(' '), 8, text.width);
   const height = Math.max(word.height + 2.4, lines * text.line + 2.6);
   const top = FOOT_BASELINE - FOOT_LINE - 4 - height;
-  pen.doc.rect(mm(LEFT + THICK / 2), mm(top + THICK / 2), mm(RIGHT - LEFT - THICK), mm(height - THICK)).lineWidth(mm(THICK)).stroke('black');
+  pen.doc
+    .rect(mm(LEFT + THICK / 2), mm(top + THICK / 2), mm(RIGHT - LEFT - THICK), mm(height - THICK))
+    .lineWidth(mm(THICK))
+    .stroke('black');
   const wordTop = top + (height - word.height) / 2;
   pen.doc.rect(mm(LEFT + 1.6), mm(wordTop), mm(word.width), mm(word.height)).fill('black');
-  pen.doc.save().translate(mm(LEFT + 3), mm(wordTop + 1.1)).scale(mm(3.4 / 22)).path(CAUTION_MARK).fill('white', 'even-odd').restore();
+  pen.doc
+    .save()
+    .translate(mm(LEFT + 3), mm(wordTop + 1.1))
+    .scale(mm(3.4 / 22))
+    .path(CAUTION_MARK)
+    .fill('white', 'even-odd')
+    .restore();
   pen.reversed('Caution', LEFT + 7.6, wordTop + 3.8, 'monoBold', 8);
   pen.paragraph(cautions, text.x, top + (height - lines * text.line) / 2 + 2.6, 8, text.width, text.line);
   return top;

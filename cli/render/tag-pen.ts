@@ -54,7 +54,12 @@ export class TagPen {
   }
 
   widthOf(text: string, face: Face, points: number): number {
-    return this.#runs([{ text, face }]).reduce((sum, run) => sum + this.doc.font(run.face).fontSize(points).widthOfString(run.text, { features: NO_LIGATURES }), 0) / POINTS_PER_MM;
+    return (
+      this.#runs([{ text, face }]).reduce(
+        (sum, run) => sum + this.doc.font(run.face).fontSize(points).widthOfString(run.text, { features: NO_LIGATURES }),
+        0,
+      ) / POINTS_PER_MM
+    );
   }
 
   /** Text whose baseline stands at y. `right` and `centre` say what x is. Gives the width. */
@@ -71,7 +76,11 @@ export class TagPen {
 
   /** White on whatever is there. */
   reversed(text: string, x: number, y: number, face: Face, points: number): void {
-    this.doc.font(face).fontSize(points).fillColor('white').text(text, mm(x), mm(y), { lineBreak: false, baseline: 'alphabetic', features: NO_LIGATURES });
+    this.doc
+      .font(face)
+      .fontSize(points)
+      .fillColor('white')
+      .text(text, mm(x), mm(y), { lineBreak: false, baseline: 'alphabetic', features: NO_LIGATURES });
     this.doc.fillColor('black');
   }
 
@@ -107,7 +116,10 @@ export class TagPen {
   }
 
   /** An SVG path in millimetres (or in units of `scale` millimetres), moved to x, y. */
-  shape(path: string, { x = 0, y = 0, scale = 1, fill = false, stroke = 0 }: { x?: number; y?: number; scale?: number; fill?: boolean; stroke?: number }): void {
+  shape(
+    path: string,
+    { x = 0, y = 0, scale = 1, fill = false, stroke = 0 }: { x?: number; y?: number; scale?: number; fill?: boolean; stroke?: number },
+  ): void {
     this.doc.save().translate(mm(x), mm(y)).scale(mm(scale));
     this.doc.path(path);
     if (fill) this.doc.fill('black', 'even-odd');
@@ -117,6 +129,11 @@ export class TagPen {
 
   /** Ohms are in the Greek part of the mono face only. */
   #runs(runs: readonly Run[]): Run[] {
-    return runs.flatMap(({ text, face }) => text.split(/(Ω)/).filter(Boolean).map((piece): Run => ({ text: piece.replace('\u2212', '-'), face: piece === 'Ω' ? 'greek' : face })));
+    return runs.flatMap(({ text, face }) =>
+      text
+        .split(/(Ω)/)
+        .filter(Boolean)
+        .map((piece): Run => ({ text: piece.replace('\u2212', '-'), face: piece === 'Ω' ? 'greek' : face })),
+    );
   }
 }

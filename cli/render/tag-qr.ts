@@ -18,12 +18,14 @@ export function qrModules(text: string): boolean[][] {
   return Array.from({ length: pixx }, (_, row) => Array.from({ length: pixx }, (_column, column) => pixs[row * pixx + column] === 1));
 }
 
+/** How many printer dots wide a module is where a code has so many modules a side. */
+export const qrDots = (count: number): number => ((count + 2 * QUIET_MODULES) * MOST_DOTS * DOT_MM <= MOST_MM ? MOST_DOTS : FEWEST_DOTS);
+
 /** Draws a QR code at the right as squares, and says where its quiet zone ends. */
 export function drawQr(pen: TagPen, text: string, place: { right: number; top: number }): { left: number; bottom: number } {
   const modules = qrModules(text);
   const count = modules.length;
-  const dots = (count + 2 * QUIET_MODULES) * MOST_DOTS * DOT_MM <= MOST_MM ? MOST_DOTS : FEWEST_DOTS;
-  const module = dots * DOT_MM;
+  const module = qrDots(count) * DOT_MM;
   const quiet = QUIET_MODULES * module;
   // To the right of the text edge there is nothing but the outline, further away than the quiet zone is wide.
   const left = place.right - count * module;

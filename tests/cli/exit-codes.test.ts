@@ -9,7 +9,13 @@ import { join } from 'node:path';
 import { benchTerminal } from '../helpers/bench-terminal.js';
 
 // Codes and their order: contract, section 5.
-const problem = new ApiProblemError({ status: 409, kind: 'gate', title: 'A safety gate is shut', detail: 'insulation is not done', remedy: 'a lead overrides with a reason' });
+const problem = new ApiProblemError({
+  status: 409,
+  kind: 'gate',
+  title: 'A safety gate is shut',
+  detail: 'insulation is not done',
+  remedy: 'a lead overrides with a reason',
+});
 
 test.each([
   [new UsageError('x'), 2],
@@ -41,7 +47,9 @@ test.each([
 });
 
 test('When an error is said, then it says what happened, where, and what to do', () => {
-  expect(wordsOf(new BadInputError('the weight 2 stands twice', { file: 'heron.yaml', line: 12 }))).toBe('heron.yaml, line 12: the weight 2 stands twice.');
+  expect(wordsOf(new BadInputError('the weight 2 stands twice', { file: 'heron.yaml', line: 12 }))).toBe(
+    'heron.yaml, line 12: the weight 2 stands twice.',
+  );
   expect(wordsOf(problem)).toBe('The server refuses. A safety gate is shut: insulation is not done.\nA lead overrides with a reason.');
   expect(wordsOf(new ServerUnreachableError('http://127.0.0.1:4780', 'nothing listens there'))).toContain('REFETTLE_SERVER');
   expect(wordsOf(new OverloadError({ instrument: 'M-03', port: '/dev/ttyUSB0' }, 1))).toContain('M-03 on /dev/ttyUSB0');

@@ -16,9 +16,12 @@ test.each([
   expect(parseMoney(text, currency, '--cost')).toBe(minor);
 });
 
-test.each([['6,00'], ['-1'], ['1e3'], ['£6'], ['6.001'], ['']])("When '%s' is typed as money, then it is refused and the option is named", (text) => {
-  expect(() => parseMoney(text, 'GBP', '--cost')).toThrow(/--cost/);
-});
+test.each([['6,00'], ['-1'], ['1e3'], ['£6'], ['6.001'], ['']])(
+  "When '%s' is typed as money, then it is refused and the option is named",
+  (text) => {
+    expect(() => parseMoney(text, 'GBP', '--cost')).toThrow(/--cost/);
+  },
+);
 
 test('When money is shown, then it has the sign and the decimals of its currency', () => {
   expect(moneyText(600, 'GBP')).toBe('£6.00');

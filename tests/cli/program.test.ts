@@ -18,7 +18,11 @@ interface Outcome {
 /** The real program as a process of its own, without a terminal. Nothing listens at the server's port. */
 function refettle(...args: string[]): Promise<Outcome> {
   const env = { PATH: process.env['PATH'], LANG: 'C.UTF-8', REFETTLE_HOME: folder, REFETTLE_SERVER: 'http://127.0.0.1:65534' };
-  const child = spawn(process.execPath, ['--import', 'tsx', 'cli/main.ts', ...args], { cwd: repository, env, stdio: ['ignore', 'pipe', 'pipe'] });
+  const child = spawn(process.execPath, ['--import', 'tsx', 'cli/main.ts', ...args], {
+    cwd: repository,
+    env,
+    stdio: ['ignore', 'pipe', 'pipe'],
+  });
   const outcome = { code: null as number | null, stdout: '', stderr: '' };
   child.stdout.on('data', (chunk: Buffer) => (outcome.stdout += chunk.toString()));
   child.stderr.on('data', (chunk: Buffer) => (outcome.stderr += chunk.toString()));
@@ -31,7 +35,8 @@ describe('The program as a process', () => {
   test('When help is asked for, then it is on standard output, exits 0, and names every command', async () => {
     const { code, stdout, stderr } = await refettle('--help');
     expect([code, stderr]).toEqual([0, '']);
-    for (const command of ['sign-in', 'unit', 'sheet', 'decode', 'judge', 'capture', 'measure', 'run', 'repair', 'override', 'sync', 'tag']) expect(stdout).toMatch(new RegExp(`^ {2}${command}\\b`, 'm'));
+    for (const command of ['sign-in', 'unit', 'sheet', 'decode', 'judge', 'capture', 'measure', 'run', 'repair', 'override', 'sync', 'tag'])
+      expect(stdout).toMatch(new RegExp(`^ {2}${command}\\b`, 'm'));
   });
 
   test.each([

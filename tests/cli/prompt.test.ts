@@ -2,7 +2,14 @@ import { afterEach, describe, expect, test } from 'vitest';
 import { NobodyToAskError, StoppedError } from '../../cli/errors.js';
 import { benchTerminal, type BenchTerminal } from '../helpers/bench-terminal.js';
 
-const YES_NO = { keys: [{ key: 'y', word: 'yes' }, { key: 'n', word: 'no' }], message: 'Done?', instead: 'run it at a terminal' } as const;
+const YES_NO = {
+  keys: [
+    { key: 'y', word: 'yes' },
+    { key: 'n', word: 'no' },
+  ],
+  message: 'Done?',
+  instead: 'run it at a terminal',
+} as const;
 let bench: BenchTerminal;
 afterEach(() => bench.remove());
 
@@ -11,7 +18,12 @@ describe('Questions', () => {
     bench = benchTerminal();
     const { prompt } = bench.context;
     const instead = 'give it with --serial';
-    for (const asked of [prompt.key({ ...YES_NO, instead }), prompt.text({ message: 'Serial', instead }), prompt.secret({ message: 'Serial', instead }), prompt.choice({ message: 'Serial', choices: [], instead })]) {
+    for (const asked of [
+      prompt.key({ ...YES_NO, instead }),
+      prompt.text({ message: 'Serial', instead }),
+      prompt.secret({ message: 'Serial', instead }),
+      prompt.choice({ message: 'Serial', choices: [], instead }),
+    ]) {
       await expect(asked).rejects.toThrow(NobodyToAskError);
       await expect(asked).rejects.toThrow(/--serial/);
     }

@@ -29,7 +29,12 @@ export interface BenchTerminalOptions {
   home?: string;
 }
 
-export function benchTerminal({ terminal = false, stdoutTerminal = terminal, env = {}, home = mkdtempSync(join(tmpdir(), 'refettle-bench-')) }: BenchTerminalOptions = {}): BenchTerminal {
+export function benchTerminal({
+  terminal = false,
+  stdoutTerminal = terminal,
+  env = {},
+  home = mkdtempSync(join(tmpdir(), 'refettle-bench-')),
+}: BenchTerminalOptions = {}): BenchTerminal {
   const waiting: { says: string; press: string }[] = [];
   const written = { stdout: '', stderr: '', heard: 0 };
   let raw = 0;
@@ -79,7 +84,10 @@ export function benchTerminal({ terminal = false, stdoutTerminal = terminal, env
 }
 
 /** Somebody has signed in on this bench. */
-export function signedIn(bench: BenchTerminal, user: { id: string; name: string; email: string; role: 'technician' | 'lead' | 'sales' | 'admin'; token: string }): void {
+export function signedIn(
+  bench: BenchTerminal,
+  user: { id: string; name: string; email: string; role: 'technician' | 'lead' | 'sales' | 'admin'; token: string },
+): void {
   const { token, ...rest } = user;
   keepSession(bench.context.home, { server: bench.context.server, token, user: rest });
 }

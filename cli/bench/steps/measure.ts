@@ -13,7 +13,8 @@ export const runMeasure: StepRunner<'measure'> = async (step, bench, start) => {
   const meter = bench.rig.meterInfo(check.quantity);
   if (bench.technician.attended) {
     bench.say(...indented(check.cautions, bench.style.columns).map((line) => bench.style.ink.bold(line)));
-    if (meter && !(await bench.technician.hasDone(step.id, 'measure', `${meter.id}: probes on?`))) return { result: skipped(step, bench, 'the probes were not put on', start.startedAt) };
+    if (meter && !(await bench.technician.hasDone(step.id, 'measure', `${meter.id}: probes on?`)))
+      return { result: skipped(step, bench, 'the probes were not put on', start.startedAt) };
   }
   const reading = await takeReading(check, sheet, bench.rig, bench.technician, step.id);
   if (bench.technician.attended) bench.say(...readingLines(reading, check, bench.style));

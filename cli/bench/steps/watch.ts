@@ -22,7 +22,8 @@ export const runWatch: StepRunner<'watch'> = async (step, bench, start) => {
   const seconds = BEGINS_WITHIN_S + mostS + SETTLES_S;
   await bench.checkSensors();
   rig.hands?.lampsShow(step.id, 'watch');
-  const over = (window: LampWindow): boolean => judgeWatch(viewCapture(window.capture().capture, sheet), spec, window.lastUs / 1_000_000).over;
+  const over = (window: LampWindow): boolean =>
+    judgeWatch(viewCapture(window.capture().capture, sheet), spec, window.lastUs / 1_000_000).over;
   const { ended } = await recordLamps({
     context,
     captureId: start.captureId,
@@ -31,13 +32,26 @@ export const runWatch: StepRunner<'watch'> = async (step, bench, start) => {
     source: await probeSource(rig, sheet),
     seconds,
     windowSeconds: seconds + SETTLES_S,
-    watcher: watching({ context, sheet, attended: technician.attended, over, waitsFor: `${step.title}, ${clock(leastS)} to ${clock(mostS)}` }),
+    watcher: watching({
+      context,
+      sheet,
+      attended: technician.attended,
+      over,
+      waitsFor: `${step.title}, ${clock(leastS)} to ${clock(mostS)}`,
+    }),
   });
   const file = captureText(context.home, start.captureId);
   const capture = readCapture(file);
   const durationS = (capture.endUs ?? capture.timesUs.at(-1) ?? 0) / 1_000_000;
   const judged = judgeWatch(viewCapture(capture, sheet), spec, durationS);
   const watched = { seconds: judged.seconds, verdict: judged.verdict, reason: judged.reason, captureId: start.captureId };
-  const result = { ...resultBase(step, bench, start), kind: 'watch', captureId: start.captureId, file, calibration: step.calibration === true, watched } as const;
+  const result = {
+    ...resultBase(step, bench, start),
+    kind: 'watch',
+    captureId: start.captureId,
+    file,
+    calibration: step.calibration === true,
+    watched,
+  } as const;
   return ended === 'left' || ended === 'interrupted' ? { result, rest: 'stop' } : { result };
 };

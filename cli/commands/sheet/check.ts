@@ -17,26 +17,43 @@ interface Finding {
 }
 
 /** Whether a sheet, and a script that goes by it, hold together. Needs no server. */
-export async function runSheetCheck({ file, script, json }: { file: string; script?: string; json?: boolean }, context: Context): Promise<number> {
+export function runSheetCheck(
+  { file, script, json }: { file: string; script?: string; json?: boolean },
+  context: Context,
+): Promise<number> {
   let sheet: Sheet;
   try {
     sheet = readSheet(textOf(file, 'service sheet'), file);
   } catch (error) {
     if (!(error instanceof BadInputError)) throw error;
-    if (json === true) printJson(context, { file, good: false, findings: [{ severity: 'error', where: error.line === undefined ? '' : `line ${error.line}`, reason: error.message }] });
+    if (json === true)
+      printJson(context, {
+        file,
+        good: false,
+        findings: [{ severity: 'error', where: error.line === undefined ? '' : `line ${error.line}`, reason: error.message }],
+      });
     context.stderr.say(wordsOf(error));
-    return EXIT.badInput;
+    return Promise.resolve(EXIT.badInput);
   }
   const findings: Finding[] = checkSheet(sheet).map(({ severity, path, reason }) => ({ severity, where: path.join('.'), reason }));
   if (script !== undefined) {
     const read = readScript(textOf(script, 'bench script'), script);
-    findings.push(...checkScript(read, sheet).map(({ step, reason }) => ({ severity: 'error' as const, where: step === undefined ? script : `${script}, step ${step}`, reason })));
+    findings.push(
+      ...checkScript(read, sheet).map(({ step, reason }) => ({
+        severity: 'error' as const,
+        where: step === undefined ? script : `${script}, step ${step}`,
+        reason,
+      })),
+    );
   }
   const good = findings.every(({ severity }) => severity === 'warning');
   if (json === true) printJson(context, { file, good, family: sheet.family, edition: sheet.edition, findings });
   else {
     for (const { severity, where, reason } of findings) context.stdout.write(`${severity}: ${where}: ${reason}\n`);
-    if (good) context.stdout.write(`${sheet.title ?? sheet.family}, edition ${sheet.edition}: ${plural(sheet.lamps.length, 'lamp')}, ${plural(sheet.faults.length, 'fault')}, ${plural(sheet.checks.length, 'check')}. It holds together.\n`);
+    if (good)
+      context.stdout.write(
+        `${sheet.title ?? sheet.family}, edition ${sheet.edition}: ${plural(sheet.lamps.length, 'lamp')}, ${plural(sheet.faults.length, 'fault')}, ${plural(sheet.checks.length, 'check')}. It holds together.\n`,
+      );
   }
-  return good ? EXIT.good : EXIT.badInput;
+  return Promise.resolve(good ? EXIT.good : EXIT.badInput);
 }

@@ -20,7 +20,8 @@ const LARGEST_PAGE = 200;
 
 /** The units of the shop, newest first. */
 export async function runUnitList({ find, stage, limit = USUAL_LIMIT, json }: UnitListOptions, context: Context): Promise<number> {
-  if (stage !== undefined && !stageSchema.safeParse(stage).success) throw new UsageError(`--stage: '${stage}' is none of ${stageSchema.options.join(', ')}`);
+  if (stage !== undefined && !stageSchema.safeParse(stage).success)
+    throw new UsageError(`--stage: '${stage}' is none of ${stageSchema.options.join(', ')}`);
   const api = await context.api();
   const rows: UnitRow[] = [];
   let next: string | undefined;
@@ -36,13 +37,22 @@ export async function runUnitList({ find, stage, limit = USUAL_LIMIT, json }: Un
     return EXIT.good;
   }
   if (rows.length === 0) {
-    context.stderr.write(find === undefined && stage === undefined ? 'No units are on the books. Take one in: refettle unit new\n' : 'No unit is like that.\n');
+    context.stderr.write(
+      find === undefined && stage === undefined ? 'No units are on the books. Take one in: refettle unit new\n' : 'No unit is like that.\n',
+    );
     return EXIT.good;
   }
   const style = await context.stdout.style();
   const { ink } = style;
   const head = ['No.', 'Machine', 'Stage', 'Rules', 'Lamps', 'Waits for'].map((title) => ink.bold(title));
-  const cells = rows.map((row) => [ink.bold(unitNumberText(row.number)), `${row.plate.maker} ${row.plate.model}`, row.stage, `${row.rulesMet} of ${row.rulesTotal}`, lampsText(row), row.waitsFor]);
+  const cells = rows.map((row) => [
+    ink.bold(unitNumberText(row.number)),
+    `${row.plate.maker} ${row.plate.model}`,
+    row.stage,
+    `${row.rulesMet} of ${row.rulesTotal}`,
+    lampsText(row),
+    row.waitsFor,
+  ]);
   context.stdout.write(`${table([head, ...cells], style).join('\n')}\n`);
   if (next !== undefined) context.stderr.say(`There are more: ask with --limit ${limit * 2}, or look for some with --find.`);
   return EXIT.good;

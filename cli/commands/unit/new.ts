@@ -56,15 +56,35 @@ export async function runUnitNew(options: UnitNewOptions, context: Context): Pro
 
 function take(context: Context, me: Me, body: NewUnit): Promise<Delivery> {
   const what = `intake of a ${body.plate.maker} ${body.plate.model}`;
-  return keepAndSend(context, { route: 'takeInUnit', id: context.newId(), madeAt: context.now().toISOString(), server: context.server, by: personOf(me.user), what, body });
+  return keepAndSend(context, {
+    route: 'takeInUnit',
+    id: context.newId(),
+    madeAt: context.now().toISOString(),
+    server: context.server,
+    by: personOf(me.user),
+    what,
+    body,
+  });
 }
 
 async function newUnitFrom(options: UnitNewOptions, context: Context, { shop }: Me): Promise<NewUnit> {
   const { prompt, interactive } = context;
   const ask = async (given: string | undefined, message: string, option: string): Promise<string> =>
-    given ?? prompt.text({ message, refuse: (text) => (text === '' ? 'it can’t stay empty' : undefined), instead: `give it with ${option}` });
-  const choose = async <T extends string>(given: string | undefined, message: string, option: string, choices: readonly T[]): Promise<T> => {
-    const value = given ?? (await prompt.choice({ message, choices: choices.map((choice) => ({ value: choice, name: choice })), instead: `give it with ${option}` }));
+    given ??
+    prompt.text({ message, refuse: (text) => (text === '' ? 'it can’t stay empty' : undefined), instead: `give it with ${option}` });
+  const choose = async <T extends string>(
+    given: string | undefined,
+    message: string,
+    option: string,
+    choices: readonly T[],
+  ): Promise<T> => {
+    const value =
+      given ??
+      (await prompt.choice({
+        message,
+        choices: choices.map((choice) => ({ value: choice, name: choice })),
+        instead: `give it with ${option}`,
+      }));
     const known = choices.find((choice) => choice.toLowerCase() === value.toLowerCase());
     if (known === undefined) throw new UsageError(`${option}: '${value}' is none of ${choices.join(', ')}`);
     return known;
@@ -77,7 +97,11 @@ async function newUnitFrom(options: UnitNewOptions, context: Context, { shop }: 
   const protectionClass = await choose(options.class, 'Protection class', '--class', ['I', 'II', 'III']);
   const complaint = await ask(options.complaint, 'What is it said to do', '--complaint');
   // What may stay out is asked for only when somebody goes through all of it anyway.
-  const family = options.family ?? (interactive && options.complaint === undefined ? (await prompt.text({ message: 'Control family (may stay empty)', instead: 'give it with --family' })) || undefined : undefined);
+  const family =
+    options.family ??
+    (interactive && options.complaint === undefined
+      ? (await prompt.text({ message: 'Control family (may stay empty)', instead: 'give it with --family' })) || undefined
+      : undefined);
   const draft = {
     appliance,
     plate: {
@@ -96,7 +120,9 @@ async function newUnitFrom(options: UnitNewOptions, context: Context, { shop }: 
     complaint,
     source: options.source,
     costMinor: options.cost === undefined ? 0 : parseMoney(options.cost, shop.currency, '--cost'),
-    ...(options.sameSerial === undefined ? {} : { sameSerialReason: await choose(options.sameSerial, 'Why', '--same-serial', SAME_SERIAL_REASONS) }),
+    ...(options.sameSerial === undefined
+      ? {}
+      : { sameSerialReason: await choose(options.sameSerial, 'Why', '--same-serial', SAME_SERIAL_REASONS) }),
   };
   const parsed = newUnitSchema.safeParse(JSON.parse(JSON.stringify(draft)));
   if (!parsed.success) throw new UsageError(parsed.error.issues.map(({ path, message }) => `${path.join('.')}: ${message}`).join('; '));
@@ -107,11 +133,18 @@ async function serialFrom(options: UnitNewOptions, context: Context): Promise<st
   if (options.plateUnreadable === true) return options.serial;
   if (options.serial !== undefined) return options.serial;
   if (!context.interactive) throw new NobodyToAskError('Which serial number?', 'give it with --serial, or say --plate-unreadable');
-  return context.prompt.text({ message: 'Serial number', refuse: (text) => (text === '' ? 'type it, or start again with --plate-unreadable' : undefined), instead: 'give it with --serial' });
+  return context.prompt.text({
+    message: 'Serial number',
+    refuse: (text) => (text === '' ? 'type it, or start again with --plate-unreadable' : undefined),
+    instead: 'give it with --serial',
+  });
 }
 
 /** The serial is on the books already: warned, listed, and taken in only with a reason. */
-async function sameSerialReason(context: Context, problem: ApiProblemError): Promise<z.infer<typeof newUnitSchema>['sameSerialReason'] & string> {
+async function sameSerialReason(
+  context: Context,
+  problem: ApiProblemError,
+): Promise<z.infer<typeof newUnitSchema>['sameSerialReason'] & string> {
   context.stderr.say(`${problem.message}`);
   const answer = await context.prompt.choice({
     message: 'Why is it taken in again',

@@ -20,11 +20,17 @@ afterEach(async () => {
 });
 
 /** A run on a simulated rig, with the technician of its scenario or a person at the terminal. */
-async function run(script: Script, parts: { scenario?: string; person?: boolean; events?: UnitEvent[]; technician?: Partial<Technician> } = {}) {
+async function run(
+  script: Script,
+  parts: { scenario?: string; person?: boolean; events?: UnitEvent[]; technician?: Partial<Technician> } = {},
+) {
   const unit = unitOnTheBench(parts.events);
   rig = await openRig(`sim:${parts.scenario ?? 'heron-mend'}`, bench.home);
   const { context } = bench;
-  const technician = parts.person === true ? terminalTechnician(context, 'GBP') : rig.hands && { ...simulatedTechnician(context, rig.hands), ...parts.technician };
+  const technician =
+    parts.person === true
+      ? terminalTechnician(context, 'GBP')
+      : rig.hands && { ...simulatedTechnician(context, rig.hands), ...parts.technician };
   if (!technician) throw new Error('nobody is at the bench');
   const { name, title, prove } = script;
   const journal = new RunJournal(context.home, {
@@ -39,7 +45,9 @@ async function run(script: Script, parts: { scenario?: string; person?: boolean;
   });
   const end = await context.interruption.hold(() => runScript({ context, unit, script, scriptText: '', rig, technician, journal }));
   journal.close();
-  expect(writtenRun(context.home, journal.header.id).results.map(({ stepId, kind }) => ({ stepId, kind }))).toEqual(end.results.map(({ stepId, kind }) => ({ stepId, kind })));
+  expect(writtenRun(context.home, journal.header.id).results.map(({ stepId, kind }) => ({ stepId, kind }))).toEqual(
+    end.results.map(({ stepId, kind }) => ({ stepId, kind })),
+  );
   return { end, verdict: runVerdict(end.results, end.interrupted) };
 }
 
@@ -58,7 +66,9 @@ describe('A bench run on a simulated rig', () => {
     expect([verdict, end.interrupted, end.exitCode]).toEqual(['fail', false, 0]);
     // The scenario: codes G5K3 and G2K9, 96.4 ohm where the sheet asks for 140 to 180.
     expect(end.results.find(({ stepId }) => stepId === 'code')).toMatchObject({ kind: 'expect', seen: 'G5K3, G2K9', verdict: 'pass' });
-    expect(end.results.find(({ stepId }) => stepId === 'drain-pump-winding')).toMatchObject({ reading: { judgement: { value: 96.4, unit: 'ohm', verdict: 'fail' }, instrument: { id: 'M-03' } } });
+    expect(end.results.find(({ stepId }) => stepId === 'drain-pump-winding')).toMatchObject({
+      reading: { judgement: { value: 96.4, unit: 'ohm', verdict: 'fail' }, instrument: { id: 'M-03' } },
+    });
     expect(bench.stderr()).toContain('> yes  (simulated technician)');
     expect(bench.stdout()).toBe('');
   });
@@ -68,15 +78,26 @@ describe('A bench run on a simulated rig', () => {
     const { end, verdict } = await run(POWERED);
     expect(kinds(end)).toEqual({ 'power-caution': 'skipped', 'service-mode': 'skipped', lamps: 'skipped', code: 'skipped' });
     expect(verdict).toBe('not done');
-    expect(bench.stderr()).toMatch(/A safety gate is shut: visual check is not done; protective conductor is not done; insulation is not done/);
+    expect(bench.stderr()).toMatch(
+      /A safety gate is shut: visual check is not done; protective conductor is not done; insulation is not done/,
+    );
     expect(bench.stderr()).toMatch(/To open it: do visual check, protective conductor, insulation in this order/);
     expect(bench.stderr()).not.toContain('CAUTION');
   });
 
   test('When a dead test fails in the run itself, then the steps on mains that follow are skipped', async () => {
     bench = benchTerminal();
-    const { end, verdict } = await run(shopScript('h6-find'), { technician: { looks: () => Promise.resolve({ verdict: 'fail', note: 'cord chafed' }) } });
-    expect(kinds(end)).toMatchObject({ visual: 'inspect', 'protective-conductor': 'skipped', insulation: 'skipped', 'power-caution': 'skipped', lamps: 'skipped', 'drain-pump-winding': 'measure' });
+    const { end, verdict } = await run(shopScript('h6-find'), {
+      technician: { looks: () => Promise.resolve({ verdict: 'fail', note: 'cord chafed' }) },
+    });
+    expect(kinds(end)).toMatchObject({
+      visual: 'inspect',
+      'protective-conductor': 'skipped',
+      insulation: 'skipped',
+      'power-caution': 'skipped',
+      lamps: 'skipped',
+      'drain-pump-winding': 'measure',
+    });
     expect(verdict).toBe('fail');
   });
 
@@ -84,7 +105,10 @@ describe('A bench run on a simulated rig', () => {
     bench = benchTerminal();
     const find = shopScript('h6-find');
     const pick = (id: string) => find.steps.filter((step) => step.id === id);
-    const { end } = await run({ ...find, steps: [...pick('power-caution'), ...pick('lamps'), ...pick('visual'), ...pick('protective-conductor')] });
+    const { end } = await run({
+      ...find,
+      steps: [...pick('power-caution'), ...pick('lamps'), ...pick('visual'), ...pick('protective-conductor')],
+    });
     expect(kinds(end)).toEqual({ 'power-caution': 'skipped', lamps: 'skipped', visual: 'inspect', 'protective-conductor': 'measure' });
   });
 
@@ -99,7 +123,10 @@ describe('A bench run on a simulated rig', () => {
   test('When only something is written down and nothing judged, then the run is inconclusive', async () => {
     bench = benchTerminal();
     const { end, verdict } = await run(shopScript('h6-mend'));
-    expect(end.results.find(({ stepId }) => stepId === 'mended')).toMatchObject({ kind: 'repair', repair: { part: 'Drain pump', costMinor: 2450 } });
+    expect(end.results.find(({ stepId }) => stepId === 'mended')).toMatchObject({
+      kind: 'repair',
+      repair: { part: 'Drain pump', costMinor: 2450 },
+    });
     expect(verdict).toBe('inconclusive');
   });
 
@@ -107,7 +134,14 @@ describe('A bench run on a simulated rig', () => {
     bench = benchTerminal();
     const find = shopScript('h6-find');
     const { end, verdict } = await run(
-      { ...find, steps: [{ id: 'isolate', kind: 'caution', title: 'Isolate', text: 'Plug out.' }, { id: 'heater', kind: 'measure', title: 'Heater', check: 'heater' }, { id: 'remarks', kind: 'note', title: 'Remarks' }] },
+      {
+        ...find,
+        steps: [
+          { id: 'isolate', kind: 'caution', title: 'Isolate', text: 'Plug out.' },
+          { id: 'heater', kind: 'measure', title: 'Heater', check: 'heater' },
+          { id: 'remarks', kind: 'note', title: 'Remarks' },
+        ],
+      },
       { scenario: 'heron-flaky' },
     );
     expect([end.exitCode, end.interrupted, verdict]).toEqual([4, true, 'not done']);
@@ -119,7 +153,17 @@ describe('A bench run on a simulated rig', () => {
     bench = benchTerminal();
     const { context } = bench;
     const ready = [intake(), inspection()];
-    const script = stepsOf('visual', 'protective-conductor', 'insulation-caution', 'insulation', 'discharge', 'power-caution', 'service-mode', 'lamps', 'code');
+    const script = stepsOf(
+      'visual',
+      'protective-conductor',
+      'insulation-caution',
+      'insulation',
+      'discharge',
+      'power-caution',
+      'service-mode',
+      'lamps',
+      'code',
+    );
     const running = run(script, { events: ready });
     const stopWhenGoing = setInterval(() => {
       if (bench.stderr().includes('10 s of 45 s')) context.interruption.interrupt();
@@ -151,7 +195,10 @@ describe('A person at the terminal', () => {
     bench.when('probes on?', 'y').when('Try this step again?', 'y').when('probes on?', 'y');
     const script = shopScript('h6-prove');
     // The scenario heron-flaky: the meter says not a number once, then 26.8 ohm.
-    const { end } = await run({ ...script, steps: script.steps.filter(({ id }) => id === 'heater') }, { person: true, scenario: 'heron-flaky' });
+    const { end } = await run(
+      { ...script, steps: script.steps.filter(({ id }) => id === 'heater') },
+      { person: true, scenario: 'heron-flaky' },
+    );
     expect(end.results).toMatchObject([{ kind: 'measure', reading: { judgement: { value: 26.8, verdict: 'pass' } } }]);
     expect(bench.stderr()).toContain('Nothing was recorded for this step.');
     expect(bench.raw()).toBe(0);

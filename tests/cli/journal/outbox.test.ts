@@ -58,9 +58,20 @@ function repair(change: Partial<OutboxEntry> = {}): OutboxEntry {
 }
 const stored = (entry: OutboxEntry) => ({
   status: 201,
-  body: { event: { id: entry.id, at: entry.madeAt, by: wil, simulated: false, kind: 'repair', repair: (entry.body as { repair: object }).repair } },
+  body: {
+    event: { id: entry.id, at: entry.madeAt, by: wil, simulated: false, kind: 'repair', repair: (entry.body as { repair: object }).repair },
+  },
 });
-const gate = { status: 403, body: { type: 'urn:refettle:problem:gate', title: 'A safety gate is shut', status: 403, detail: 'insulation is not done', remedy: 'a lead overrides with a reason' } };
+const gate = {
+  status: 403,
+  body: {
+    type: 'urn:refettle:problem:gate',
+    title: 'A safety gate is shut',
+    status: 403,
+    detail: 'insulation is not done',
+    remedy: 'a lead overrides with a reason',
+  },
+};
 const states = (deliveries: { state: string }[]): string[] => deliveries.map(({ state }) => state);
 
 describe('What must not get lost', () => {
@@ -90,7 +101,9 @@ describe('What must not get lost', () => {
     keepEntry(bench.context.home, refused);
     answers.push(gate, stored(other));
     expect(await keepAndSend(bench.context, other)).toMatchObject({ state: 'sent' });
-    expect(waitingEntries(bench.context.home).entries).toMatchObject([{ id: refused.id, refused: { status: 403, remedy: 'a lead overrides with a reason' } }]);
+    expect(waitingEntries(bench.context.home).entries).toMatchObject([
+      { id: refused.id, refused: { status: 403, remedy: 'a lead overrides with a reason' } },
+    ]);
 
     expect(states(await sendWaiting(bench.context))).toEqual(['refused']);
     expect(asked).toHaveLength(2);
@@ -105,7 +118,10 @@ describe('What must not get lost', () => {
 
   test('When somebody else has signed in, then nobody sends another’s work as their own', async () => {
     const entry = repair({ by: { id: 'tamsin', name: 'Tamsin Oake', role: 'technician' } });
-    expect(await keepAndSend(bench.context, entry)).toMatchObject({ state: 'waits', why: expect.stringContaining('Tamsin Oake') as string });
+    expect(await keepAndSend(bench.context, entry)).toMatchObject({
+      state: 'waits',
+      why: expect.stringContaining('Tamsin Oake') as string,
+    });
     expect(asked).toEqual([]);
   });
 
@@ -120,7 +136,10 @@ describe('What must not get lost', () => {
   test('When the sign-in has run out, then it waits and says how to sign in', async () => {
     const entry = repair();
     answers.push({ status: 401, body: { type: 'urn:refettle:problem:not-signed-in', title: 'Sign in', status: 401 } });
-    expect(await keepAndSend(bench.context, entry)).toMatchObject({ state: 'waits', why: expect.stringContaining('refettle sign-in') as string });
+    expect(await keepAndSend(bench.context, entry)).toMatchObject({
+      state: 'waits',
+      why: expect.stringContaining('refettle sign-in') as string,
+    });
   });
 
   test('When a waiting file can’t be read, then it stays, is named, and the others are sent', async () => {

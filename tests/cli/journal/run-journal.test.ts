@@ -29,7 +29,14 @@ const header = (pid = process.pid): RunHeader => ({
   pid,
 });
 const caution: StepResult = { kind: 'caution', stepId: 'isolate', title: 'Isolate', startedAt: at(1), endedAt: at(2), answer: 'yes' };
-const looked: StepResult = { kind: 'inspect', stepId: 'visual', title: 'Visual check', startedAt: at(3), endedAt: at(4), inspection: { checkId: 'visual', title: 'Visual check', deadTest: 'visual', verdict: 'pass' } };
+const looked: StepResult = {
+  kind: 'inspect',
+  stepId: 'visual',
+  title: 'Visual check',
+  startedAt: at(3),
+  endedAt: at(4),
+  inspection: { checkId: 'visual', title: 'Visual check', deadTest: 'visual', verdict: 'pass' },
+};
 
 let home: Home;
 beforeEach(() => {
@@ -98,7 +105,16 @@ describe('The journal of a run', () => {
     const capture = startCapture();
     capture.end(20_000);
     const file = readFileSync(capture.path, 'utf8');
-    journal.record({ kind: 'capture', stepId: 'lamps', title: 'The lamps', startedAt: at(5), endedAt: at(6), captureId: CAPTURE, file, fromFile: false });
+    journal.record({
+      kind: 'capture',
+      stepId: 'lamps',
+      title: 'The lamps',
+      startedAt: at(5),
+      endedAt: at(6),
+      captureId: CAPTURE,
+      file,
+      fromFile: false,
+    });
     journal.end(at(7), false);
     journal.close();
     expect(readFileSync(journalFileOf(home, RUN), 'utf8')).not.toContain('refettle.lamps');
@@ -114,7 +130,9 @@ describe('Runs that were broken off', () => {
     journal.close();
     const bench = benchTerminal({ home: home.folder });
     expect(recoverRuns(bench.context).map(({ id }) => id)).toEqual([RUN]);
-    expect(waitingEntries(home).entries).toMatchObject([{ id: RUN, route: 'recordRun', params: { number: 412 }, body: { interrupted: true, steps: [caution] } }]);
+    expect(waitingEntries(home).entries).toMatchObject([
+      { id: RUN, route: 'recordRun', params: { number: 412 }, body: { interrupted: true, steps: [caution] } },
+    ]);
     expect(bench.stderr()).toContain('broken off');
     expect(existsSync(journalFileOf(home, RUN))).toBe(false);
     expect(recoverRuns(bench.context)).toEqual([]);
@@ -138,7 +156,10 @@ for (let step = 0; ; step += 1) {
   process.stdout.write(step + '\\n');
 }`,
     );
-    const child = spawn(process.execPath, ['--import', 'tsx', program], { cwd: new URL('../../..', import.meta.url), stdio: ['ignore', 'pipe', 'inherit'] });
+    const child = spawn(process.execPath, ['--import', 'tsx', program], {
+      cwd: new URL('../../..', import.meta.url),
+      stdio: ['ignore', 'pipe', 'inherit'],
+    });
     let said = '';
     await new Promise<void>((done) => {
       child.stdout.on('data', (chunk: Buffer) => {
@@ -150,6 +171,8 @@ for (let step = 0; ; step += 1) {
     const lastSaid = Number(said.slice(0, said.lastIndexOf('\n')).split('\n').at(-1));
     expect(lastSaid).toBeGreaterThan(30);
     const results = read()?.results ?? [];
-    expect(results.slice(0, lastSaid + 1).map(({ stepId }) => stepId)).toEqual(Array.from({ length: lastSaid + 1 }, (_, step) => `step-${step}`));
+    expect(results.slice(0, lastSaid + 1).map(({ stepId }) => stepId)).toEqual(
+      Array.from({ length: lastSaid + 1 }, (_, step) => `step-${step}`),
+    );
   });
 });

@@ -96,7 +96,15 @@ describe('A step that has ended', () => {
     kind: 'measure' as const,
     stepId: 'winding',
     title: 'Drain pump winding',
-    reading: { checkId: 'winding', title: 'Drain pump winding', condition: 'dead' as const, source: 'meter' as const, accuracy: '0.5%+3', resolution: 0.1, judgement: reading },
+    reading: {
+      checkId: 'winding',
+      title: 'Drain pump winding',
+      condition: 'dead' as const,
+      source: 'meter' as const,
+      accuracy: '0.5%+3',
+      resolution: 0.1,
+      judgement: reading,
+    },
   };
 
   test('When a check was measured, then reading, spread, limits and verdict stand in columns', () => {
@@ -111,7 +119,19 @@ describe('A step that has ended', () => {
   });
 
   test('When a step was skipped, then it says not done and why', () => {
-    const lines = stepLines(9, { ...base, kind: 'skipped', stepId: 'lamps', title: 'The lamps', stepKind: 'capture', judged: true, reason: 'a safety gate is shut: insulation is not done' }, plain);
+    const lines = stepLines(
+      9,
+      {
+        ...base,
+        kind: 'skipped',
+        stepId: 'lamps',
+        title: 'The lamps',
+        stepKind: 'capture',
+        judged: true,
+        reason: 'a safety gate is shut: insulation is not done',
+      },
+      plain,
+    );
     expect(lines[0]).toMatch(/^ 9 capture {2}The lamps +_ not done$/);
     expect(lines[1]).toBe('            a safety gate is shut: insulation is not done');
   });
@@ -131,11 +151,19 @@ describe('A picture that is drawn again in place', () => {
 });
 
 describe('The window on a capture', () => {
-  const header: CaptureHeader = { format: 'refettle.lamps', version: 1, capturedAt: '2026-03-05T11:00:00Z', source: 'probe', lamps: ['a'], scale: { unit: 'counts', max: 100 } };
+  const header: CaptureHeader = {
+    format: 'refettle.lamps',
+    version: 1,
+    capturedAt: '2026-03-05T11:00:00Z',
+    source: 'probe',
+    lamps: ['a'],
+    scale: { unit: 'counts', max: 100 },
+  };
 
   test('When a capture goes on for an hour, then its memory stays bounded and the newest levels are there', () => {
     const window = new LampWindow(header, 10);
-    for (let sample = 0; sample < 36_000; sample += 1) window.push({ kind: 'sample', tUs: sample * 100_000, levels: [sample < 35_990 ? 0 : 100] });
+    for (let sample = 0; sample < 36_000; sample += 1)
+      window.push({ kind: 'sample', tUs: sample * 100_000, levels: [sample < 35_990 ? 0 : 100] });
     const { capture, fromUs } = window.capture();
     expect(capture.timesUs.length).toBeLessThanOrEqual(126);
     expect(fromUs).toBeGreaterThan(3_580_000_000);

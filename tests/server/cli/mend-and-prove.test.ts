@@ -64,16 +64,36 @@ async function inProcess(args: string[]): Promise<Outcome> {
 function refettle(args: string[], { input = '' }: { input?: string } = {}): Promise<Outcome> {
   return new Promise((done) => {
     const env = { PATH: process.env['PATH'], LANG: 'C.UTF-8', REFETTLE_HOME: home, REFETTLE_SERVER: address };
-    const child = execFile(process.execPath, ['--import', 'tsx', 'cli/main.ts', ...args], { cwd: repository, env }, (error, stdout, stderr) => {
-      done({ code: error === null ? 0 : typeof error.code === 'number' ? error.code : -1, stdout, stderr });
-    });
+    const child = execFile(
+      process.execPath,
+      ['--import', 'tsx', 'cli/main.ts', ...args],
+      { cwd: repository, env },
+      (error, stdout, stderr) => {
+        done({ code: error === null ? 0 : typeof error.code === 'number' ? error.code : -1, stdout, stderr });
+      },
+    );
     child.stdin?.end(input);
   });
 }
 
 async function takeIn(serial: string): Promise<number> {
   const { code, stdout, stderr } = await inProcess([
-    ...['unit', 'new', '--appliance', 'washing machine', '--maker', 'Brindle', '--model', 'BW 714', '--serial', serial, '--class', 'I', '--mass', '68'],
+    ...[
+      'unit',
+      'new',
+      '--appliance',
+      'washing machine',
+      '--maker',
+      'Brindle',
+      '--model',
+      'BW 714',
+      '--serial',
+      serial,
+      '--class',
+      'I',
+      '--mass',
+      '68',
+    ],
     ...['--family', 'heron-h6', '--complaint', 'stands full of water', '--cost', '12.50', '--json'],
   ]);
   expect([code, stderr]).toEqual([0, '']);
@@ -127,12 +147,33 @@ describe('A machine from the gate to its tag, through the terminal', () => {
     expect(readFileSync(pdf).subarray(0, 5).toString()).toBe('%PDF-');
 
     const page = await server.ok('getUnit', { as: server.people.lead, params: { number } });
-    expect(page.runs.map(({ script, verdict }) => [script, verdict])).toEqual(expect.arrayContaining([['h6-find', 'fail'], ['h6-mend', 'inconclusive'], ['h6-prove', 'pass']]));
+    expect(page.runs.map(({ script, verdict }) => [script, verdict])).toEqual(
+      expect.arrayContaining([
+        ['h6-find', 'fail'],
+        ['h6-mend', 'inconclusive'],
+        ['h6-prove', 'pass'],
+      ]),
+    );
     expect(page.stage).toBe('signed off');
   });
 
   test('When the serial is on the books already, then it is warned of, and taken in only with a reason', async () => {
-    const again = ['unit', 'new', '--appliance', 'washing machine', '--maker', 'Brindle', '--model', 'BW 714', '--serial', '7143 0968 2251', '--class', 'I', '--complaint', 'back again'];
+    const again = [
+      'unit',
+      'new',
+      '--appliance',
+      'washing machine',
+      '--maker',
+      'Brindle',
+      '--model',
+      'BW 714',
+      '--serial',
+      '7143 0968 2251',
+      '--class',
+      'I',
+      '--complaint',
+      'back again',
+    ];
     const refused = await inProcess(again);
     expect(refused).toMatchObject({ code: 2, stdout: '' });
     expect(refused.stderr).toMatch(/--same-serial/);
@@ -142,45 +183,52 @@ describe('A machine from the gate to its tag, through the terminal', () => {
 });
 
 describe('Without the network', () => {
-  test('When the network goes away, then the bench goes on, the gates know what was done, and sync stores each thing once', { timeout: 120_000 }, async () => {
-    const number = await takeIn('7143 0001');
-    const unit = String(number);
-    // The bench has seen the unit and its sheet.
-    expect((await inProcess(['measure', unit, 'visual', '--verdict', 'pass'])).code).toBe(0);
-    const { port } = new URL(address);
-    await unplug();
+  test(
+    'When the network goes away, then the bench goes on, the gates know what was done, and sync stores each thing once',
+    { timeout: 120_000 },
+    async () => {
+      const number = await takeIn('7143 0001');
+      const unit = String(number);
+      // The bench has seen the unit and its sheet.
+      expect((await inProcess(['measure', unit, 'visual', '--verdict', 'pass'])).code).toBe(0);
+      const { port } = new URL(address);
+      await unplug();
 
-    const find = await inProcess(['run', shop('h6-find'), unit, ...rig]);
-    // A failed run whose result still waits is 1, and says that it waits (contract, section 5).
-    expect(find.code, find.stderr).toBe(1);
-    expect(find.stderr).toContain('refettle sync');
-    const mend = await inProcess(['repair', unit, '--part', 'Drain pump', '--source', 'new', '--minutes', '30', '--cost', '24.50']);
-    expect(mend.code).toBe(5);
-    // The repair that only this bench knows of shuts the gate again: dead tests come first.
-    const capture = await inProcess(['capture', unit, '--seconds', '5', ...rig]);
-    expect(capture.code).toBe(1);
-    expect(capture.stderr).toContain('A safety gate is shut');
+      const find = await inProcess(['run', shop('h6-find'), unit, ...rig]);
+      // A failed run whose result still waits is 1, and says that it waits (contract, section 5).
+      expect(find.code, find.stderr).toBe(1);
+      expect(find.stderr).toContain('refettle sync');
+      const mend = await inProcess(['repair', unit, '--part', 'Drain pump', '--source', 'new', '--minutes', '30', '--cost', '24.50']);
+      expect(mend.code).toBe(5);
+      // The repair that only this bench knows of shuts the gate again: dead tests come first.
+      const capture = await inProcess(['capture', unit, '--seconds', '5', ...rig]);
+      expect(capture.code).toBe(1);
+      expect(capture.stderr).toContain('A safety gate is shut');
 
-    const status = await inProcess(['sync', '--status']);
-    expect(status.code).toBe(5);
-    expect(status.stdout).toContain('bench run h6-find');
-    expect(status.stdout).toContain('repair of');
-    expect((await inProcess(['sync'])).code).toBe(5);
+      const status = await inProcess(['sync', '--status']);
+      expect(status.code).toBe(5);
+      expect(status.stdout).toContain('bench run h6-find');
+      expect(status.stdout).toContain('repair of');
+      expect((await inProcess(['sync'])).code).toBe(5);
 
-    await listen(Number(port));
-    expect(await inProcess(['sync'])).toMatchObject({ code: 0 });
-    const page = await server.ok('getUnit', { as: server.people.lead, params: { number } });
-    expect(page.runs).toHaveLength(1);
-    expect(page.events.filter(({ kind }) => kind === 'repair')).toMatchObject([{ repair: { part: 'Drain pump', costMinor: 2450 } }]);
-    expect(await inProcess(['sync'])).toMatchObject({ code: 0, stdout: 'Nothing waits on this bench.\n' });
-  });
+      await listen(Number(port));
+      expect(await inProcess(['sync'])).toMatchObject({ code: 0 });
+      const page = await server.ok('getUnit', { as: server.people.lead, params: { number } });
+      expect(page.runs).toHaveLength(1);
+      expect(page.events.filter(({ kind }) => kind === 'repair')).toMatchObject([{ repair: { part: 'Drain pump', costMinor: 2450 } }]);
+      expect(await inProcess(['sync'])).toMatchObject({ code: 0, stdout: 'Nothing waits on this bench.\n' });
+    },
+  );
 });
 
 describe('Safety at the terminal', () => {
   test('When a real rig meets a caution and nobody is there, then the run ends with 2 before a port is opened', async () => {
     const number = await takeIn('7143 0002');
     const file = join(home, 'real-rig.yaml');
-    writeFileSync(file, 'format: refettle.rig\nversion: 1\nname: bench 2\ninstruments:\n  - {id: P-01, kind: light-probe, port: /dev/not-there}\n');
+    writeFileSync(
+      file,
+      'format: refettle.rig\nversion: 1\nname: bench 2\ninstruments:\n  - {id: P-01, kind: light-probe, port: /dev/not-there}\n',
+    );
     const run = await inProcess(['run', shop('h6-find'), String(number), '--rig', file, '--unattended']);
     expect(run).toMatchObject({ code: 2, stdout: '' });
     expect(run.stderr).toContain('no port was opened');
@@ -198,10 +246,25 @@ describe('Safety at the terminal', () => {
 
   test('When a reading is typed in, then it is judged by the sheet with that meter’s accuracy', async () => {
     const number = await takeIn('7143 0004');
-    const typed = await inProcess(['measure', String(number), 'heater', '--value', '24.1', '--accuracy', '0.8%+3', '--resolution', '0.1', '--meter', 'H-1', '--json']);
+    const typed = await inProcess([
+      'measure',
+      String(number),
+      'heater',
+      '--value',
+      '24.1',
+      '--accuracy',
+      '0.8%+3',
+      '--resolution',
+      '0.1',
+      '--meter',
+      'H-1',
+      '--json',
+    ]);
     // U = 2 x (0.8 % of 24.1 + 3 x 0.1)/√3 = 0.57 (contract, section 4): 0.1 above the limit of 24 can't be decided.
     expect(typed.code).toBe(1);
     expect(JSON.parse(typed.stdout)).toMatchObject({ check: 'heater', verdict: 'inconclusive', sent: true });
-    expect((await inProcess(['measure', String(number), 'heater', '--value', '24,1', '--accuracy', '0.8%+3', '--resolution', '0.1'])).code).toBe(3);
+    expect(
+      (await inProcess(['measure', String(number), 'heater', '--value', '24,1', '--accuracy', '0.8%+3', '--resolution', '0.1'])).code,
+    ).toBe(3);
   });
 });
