@@ -14,7 +14,7 @@ export const paths = {
   unitTag: (number: number) => `${paths.unit(number)}/tag`,
   capture: (id: string) => `/captures/${encodeURIComponent(id)}`,
   run: (id: string) => `/runs/${encodeURIComponent(id)}`,
-  lookUpTag: () => '/t',
+  lookUpTag: (tag?: string) => (tag === undefined ? '/t' : `/t?${new URLSearchParams({ tag }).toString()}`),
   publicTagByWord: (tag: string, word: string) => `/t/${encodeURIComponent(tag)}?${new URLSearchParams({ word }).toString()}`,
 };
 

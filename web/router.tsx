@@ -24,7 +24,7 @@ export const router = createBrowserRouter([
         path: 't',
         lazy: async () => ({ Component: (await import('./pages/public-tag-page.js')).PublicTagFrame }),
         children: [
-          { index: true, lazy: async () => ({ Component: (await import('./pages/public-tag-page.js')).LookUpTagPage }) },
+          { index: true, lazy: async () => ({ Component: (await import('./pages/look-up-tag-page.js')).LookUpTagPage }) },
           { path: ':tag', lazy: async () => ({ Component: (await import('./pages/public-tag-page.js')).PublicTagPage }) },
           { path: ':tag/:signature', lazy: async () => ({ Component: (await import('./pages/public-tag-page.js')).PublicTagPage }) },
         ],

@@ -192,3 +192,18 @@ test('When the server does not answer, then the page says so and offers to try a
   await page.getByRole('button', { name: 'Try again' }).click();
   await page.getByRole('heading', { name: 'What happened, newest first' }).waitFor();
 });
+
+test('When somebody else records on a unit whose page is open, then it is announced and nothing moves until it is asked for', async () => {
+  const { server } = shop;
+  const unit = (await takeIn(server)).number;
+  const { page } = await shop.open(server.people.lead);
+  await page.goto(`/units/${unit}`);
+  await page.getByRole('heading', { name: 'What happened, newest first' }).waitFor();
+  await passDeadTests(server, unit);
+  const news = page.getByRole('button', { name: '3 new' });
+  await news.waitFor();
+  expect(await page.getByRole('heading', { name: /^Visual check/ }).count()).toBe(0);
+  await news.click();
+  await page.getByRole('heading', { name: /^Visual check/ }).waitFor();
+  expect(await news.count()).toBe(0);
+});

@@ -14,7 +14,11 @@ declare module 'vitest' {
 
 export async function setup(project: TestProject): Promise<() => void> {
   const folder = mkdtempSync(join(tmpdir(), 'refettle-test-web-'));
+  // Vitest calls this a test, for which React would bring its development build: heavier, and not what is served.
+  const before = process.env['NODE_ENV'];
+  process.env['NODE_ENV'] = 'production';
   await build({ logLevel: 'warn', build: { outDir: folder, emptyOutDir: true } });
+  process.env['NODE_ENV'] = before;
   project.provide('webDir', folder);
   return () => rmSync(folder, { recursive: true, force: true });
 }

@@ -1,5 +1,5 @@
 import type { ReactNode } from 'react';
-import { Link, NavLink, Outlet, useNavigate } from 'react-router-dom';
+import { Link, NavLink, Outlet, ScrollRestoration, useNavigate } from 'react-router-dom';
 import { mayDo } from '../../shared/api/roles.js';
 import type { User } from '../../shared/api/sessions.js';
 import { pickTheme, useTheme } from '../lib/theme.js';
@@ -73,6 +73,7 @@ export function ShopFrame({
   return (
     <>
       <MarkDefinitions />
+      <ScrollRestoration />
       <a className="skip" href="#main">
         Skip to the page
       </a>

@@ -1,12 +1,10 @@
 import { useEffect } from 'react';
 import { useQuery } from '@tanstack/react-query';
-import { Link, Outlet, useNavigate, useParams, useSearchParams } from 'react-router-dom';
+import { Link, Navigate, Outlet, ScrollRestoration, useParams, useSearchParams } from 'react-router-dom';
 import type { PublicTag } from '../../shared/api/tags.js';
-import { PageHeading } from '../components/page-heading.js';
 import { Fetched } from '../components/page-states.js';
 import { MarkDefinitions } from '../components/verdict.js';
 import { publicTagQuery } from '../features/tags/api/get-public-tag.js';
-import { LookUpForm } from '../features/tags/components/look-up-form.js';
 import { NotOurs, OurTag } from '../features/tags/components/public-tag.js';
 import { paths } from '../paths.js';
 
@@ -19,6 +17,7 @@ export function PublicTagFrame() {
   return (
     <div className="mx-auto max-w-[480px] text-[18px]">
       <MarkDefinitions />
+      <ScrollRestoration />
       <a className="skip" href="#main">
         Skip to the page
       </a>
@@ -34,7 +33,7 @@ export function PublicTagPage() {
   const [query] = useSearchParams();
   const word = query.get('word');
   const proof = { ...(signature === undefined ? {} : { signature }), ...(word === null ? {} : { word }) };
-  if (signature === undefined && word === null) return <LookUpTagPage tag={tag} />;
+  if (signature === undefined && word === null) return <Navigate to={paths.lookUpTag(tag)} replace />;
   return <Checked key={`${tag} ${signature} ${word}`} tag={tag} proof={proof} />;
 }
 
@@ -51,16 +50,5 @@ function Checked({ tag, proof }: { tag: string; proof: { signature?: string; wor
         </>
       )}
     </Fetched>
-  );
-}
-
-export function LookUpTagPage({ tag = '' }: { tag?: string }) {
-  const navigate = useNavigate();
-  return (
-    <>
-      <PageHeading title="Does a tag still stand?" className="mt-4" />
-      <p className="my-3">Scan the code on the tag, or type the two things that stand under it: its number, and the word of four signs.</p>
-      <LookUpForm tag={tag} onAsked={(asked) => void navigate(paths.publicTagByWord(asked.tag, asked.word))} />
-    </>
   );
 }

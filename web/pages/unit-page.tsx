@@ -1,3 +1,4 @@
+import { lazy, Suspense } from 'react';
 import { useQuery } from '@tanstack/react-query';
 import { Link, useSearchParams } from 'react-router-dom';
 import { mayDo } from '../../shared/api/roles.js';
@@ -5,20 +6,22 @@ import type { UnitPage as UnitPageData } from '../../shared/api/units.js';
 import { countingEvents, type UnitFacts } from '../../shared/readiness/facts.js';
 import type { RuleResult } from '../../shared/readiness/readiness.js';
 import { PageHeading } from '../components/page-heading.js';
-import { ErrorNote, Fetched } from '../components/page-states.js';
+import { ErrorNote, Fetched, Pending } from '../components/page-states.js';
 import { RatingPlate } from '../components/rating-plate.js';
 import { sheetQuery } from '../features/sheets/api/get-sheet.js';
 import { unitQuery } from '../features/units/api/get-unit.js';
 import { BeforeAfter } from '../features/units/components/before-after.js';
 import { GateBanner } from '../features/units/components/gate-banner.js';
 import { HangingTag } from '../features/units/components/hanging-tag.js';
-import { RepairForm } from '../features/units/components/repair-form.js';
 import { Timeline } from '../features/units/components/timeline.js';
 import { formatDate, formatMoney, plural, unitNumber } from '../lib/format.js';
 import { useSignedIn, type SignedIn } from '../lib/signed-in.js';
 import { useUnitNumber } from '../lib/unit-number.js';
 import { paths } from '../paths.js';
 import { NotFoundPage } from './not-found-page.js';
+
+/** Most who open a unit only look: the form comes when it is asked for. */
+const RepairForm = lazy(async () => ({ default: (await import('../features/units/components/repair-form.js')).RepairForm }));
 
 export function UnitPage() {
   const number = useUnitNumber();
@@ -94,7 +97,7 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
         Sign off
       </Link>
     ) : null;
-  const setRepairing = (open: boolean): void => setQuery(open ? { do: 'repair' } : {}, { replace: true });
+  const setRepairing = (open: boolean): void => setQuery(open ? { do: 'repair' } : {}, { replace: true, preventScrollReset: true });
 
   return (
     <>
@@ -129,25 +132,24 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
         )}
       </div>
       {repairing && (
-        <RepairForm
-          number={unit.number}
-          parts={sheet.data?.sheet.parts ?? []}
-          currency={shop.currency}
-          onDone={() => setRepairing(false)}
-        />
+        <Suspense fallback={<Pending what="the form" />}>
+          <RepairForm
+            number={unit.number}
+            parts={sheet.data?.sheet.parts ?? []}
+            currency={shop.currency}
+            onDone={() => setRepairing(false)}
+          />
+        </Suspense>
       )}
       <div className="mt-7 grid items-start gap-x-11 gap-y-7 min-[1100px]:grid-cols-[minmax(0,1fr)_minmax(0,440px)]">
         <section aria-labelledby="happened" className="min-w-0">
           <h2 id="happened" className="section-heading">
             What happened, newest first
           </h2>
-          <p role="status" className="sr-only">
-            {plural(page.events.length, 'event')}
-          </p>
           {page.events.length === 0 ? (
             <p className="py-4">Nothing yet.</p>
           ) : (
-            <Timeline page={page} currency={shop.currency} nowMs={Date.now()} />
+            <Timeline page={page} userId={user.id} currency={shop.currency} nowMs={Date.now()} />
           )}
           {page.runs.length === 0 && (
             <p className="py-4">

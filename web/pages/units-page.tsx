@@ -28,7 +28,7 @@ function useFindInAddress(): { find: string; setFind: (find: string) => void; st
           else next.delete('find');
           return next;
         },
-        { replace: true },
+        { replace: true, preventScrollReset: true },
       );
     }, TYPING_PAUSE_MS);
     return () => clearTimeout(timer);

@@ -1,4 +1,4 @@
-import { useState } from 'react';
+import { useEffect, useRef, useState } from 'react';
 import { zodResolver } from '@hookform/resolvers/zod';
 import { useForm } from 'react-hook-form';
 import { z } from 'zod';
@@ -66,6 +66,8 @@ export function RepairForm({
 }) {
   const record = useRecordRepair(number);
   const submissionFor = useSubmission();
+  const heading = useRef<HTMLHeadingElement>(null);
+  useEffect(() => heading.current?.focus(), []);
   const [schema] = useState(() => formSchema(currency));
   const { register, handleSubmit, formState, watch } = useForm<z.input<typeof schema>, unknown, RepairBody>({
     resolver: zodResolver(schema),
@@ -96,7 +98,7 @@ export function RepairForm({
 
   return (
     <form noValidate aria-labelledby="repair-heading" className="mt-6 max-w-[760px]" onSubmit={(event) => void handleSubmit(send)(event)}>
-      <h2 id="repair-heading" tabIndex={-1} className="section-heading mb-4">
+      <h2 ref={heading} id="repair-heading" tabIndex={-1} className="section-heading mb-4">
         Record a repair
       </h2>
       <ErrorSummary faults={faults} attempt={formState.submitCount + record.failureCount} />

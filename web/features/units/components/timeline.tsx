@@ -1,5 +1,5 @@
 import './timeline.css';
-import type { ReactNode } from 'react';
+import { useState, type ReactNode } from 'react';
 import { Link } from 'react-router-dom';
 import type { UnitPage } from '../../../../shared/api/units.js';
 import type { RepairBody, UnitEvent } from '../../../../shared/history/events.js';
@@ -162,11 +162,31 @@ function RunItem({ item, page }: { item: Extract<TimelineItem, { kind: 'run' }>;
   );
 }
 
+/**
+ * What happened while the page was open waits until somebody asks for it, so that what is being read stays where it is.
+ * One's own doing is shown at once: it was just asked for.
+ */
+function useShown(page: UnitPage, userId: string): { shown: UnitPage; waiting: number; showAll: () => void } {
+  const [count, setCount] = useState(page.events.length);
+  const fresh = page.events.slice(count);
+  const own = fresh.every((event) => event.by.id === userId);
+  const shown = own ? page : { ...page, events: page.events.slice(0, count) };
+  return { shown, waiting: own ? 0 : fresh.length, showAll: () => setCount(page.events.length) };
+}
+
 /** Everything that ever happened to a unit, newest first, along the rail of its stages. */
-export function Timeline({ page, currency, nowMs }: { page: UnitPage; currency: string; nowMs: number }) {
+export function Timeline({ page, userId, currency, nowMs }: { page: UnitPage; userId: string; currency: string; nowMs: number }) {
+  const { shown, waiting, showAll } = useShown(page, userId);
   return (
     <div>
-      {timelineOf(page).map((group) => (
+      <div aria-live="polite">
+        {waiting > 0 && (
+          <button type="button" className="button button-plain my-3" onClick={showAll}>
+            {waiting} new
+          </button>
+        )}
+      </div>
+      {timelineOf(shown).map((group) => (
         <section key={`${group.stage} ${group.items[0]?.id}`} className="stage-group">
           <h3>
             {group.stage}
@@ -175,9 +195,9 @@ export function Timeline({ page, currency, nowMs }: { page: UnitPage; currency: 
           <div className="min-w-0">
             {group.items.map((item) =>
               item.kind === 'run' ? (
-                <RunItem key={item.id} item={item} page={page} />
+                <RunItem key={item.id} item={item} page={shown} />
               ) : (
-                <EventItem key={item.id} event={item.event} page={page} currency={currency} />
+                <EventItem key={item.id} event={item.event} page={shown} currency={currency} />
               ),
             )}
           </div>
