@@ -1,5 +1,4 @@
 import type { DecodeAnswer } from '../decode/answer.js';
-import type { UnitEventOf } from '../history/events.js';
 import type { Sheet } from '../sheet/schema.js';
 import type { Verdict } from '../verdict.js';
 import { countingEvents, sinceOpened, type UnitFacts } from './facts.js';
@@ -7,6 +6,8 @@ import { countingEvents, sinceOpened, type UnitFacts } from './facts.js';
 export interface NoCodeJudgement {
   verdict: Verdict;
   reason: string;
+  /** How long the lamps were watched, seconds. */
+  durationS: number;
 }
 
 /**
@@ -15,19 +16,18 @@ export interface NoCodeJudgement {
  * Pass: a ready blink with every lamp of it lit, nothing unreadable, at least `sheet.noCodeS` long, and no code.
  * Fail: a code was read. Everything else is inconclusive.
  *
- * @example judgeNoCode(answerOfReadyBlinkOnly, heron) // { verdict: 'pass', reason: 'ready blink only, 25 s' }
+ * @example judgeNoCode(answerOfReadyBlinkOnly, heron) // { verdict: 'pass', reason: 'ready blink only, 25 s', durationS: 25 }
  */
 export function judgeNoCode(answer: DecodeAnswer, sheet: Sheet): NoCodeJudgement {
-  const seconds = `${Math.floor(answer.durationS)} s`;
-  if (answer.codes.length > 0)
-    return { verdict: 'fail', reason: `shows ${[...new Set(answer.codes.map((code) => code.code))].join(', ')}` };
-  if (answer.segments.some((segment) => segment.kind === 'unreadable'))
-    return { verdict: 'inconclusive', reason: 'a stretch of it is unreadable' };
-  if (!answer.segments.some((segment) => segment.kind === 'ready')) return { verdict: 'inconclusive', reason: 'no ready blink in it' };
-  if (answer.deadLamps.length > 0) return { verdict: 'inconclusive', reason: `${answer.deadLamps.join(', ')} does not light` };
-  if (answer.durationS < sheet.noCodeS)
-    return { verdict: 'inconclusive', reason: `${seconds} long, the sheet asks for ${sheet.noCodeS} s` };
-  return { verdict: 'pass', reason: `ready blink only, ${seconds}` };
+  const { durationS } = answer;
+  const seconds = `${Math.floor(durationS)} s`;
+  const judged = (verdict: Verdict, reason: string): NoCodeJudgement => ({ verdict, reason, durationS });
+  if (answer.codes.length > 0) return judged('fail', `shows ${[...new Set(answer.codes.map((code) => code.code))].join(', ')}`);
+  if (answer.segments.some((segment) => segment.kind === 'unreadable')) return judged('inconclusive', 'a stretch of it is unreadable');
+  if (!answer.segments.some((segment) => segment.kind === 'ready')) return judged('inconclusive', 'no ready blink in it');
+  if (answer.deadLamps.length > 0) return judged('inconclusive', `${answer.deadLamps.join(', ')} does not light`);
+  if (durationS < sheet.noCodeS) return judged('inconclusive', `${seconds} long, the sheet asks for ${sheet.noCodeS} s`);
+  return judged('pass', `ready blink only, ${seconds}`);
 }
 
 /**
@@ -40,32 +40,25 @@ export function judgeNoCode(answer: DecodeAnswer, sheet: Sheet): NoCodeJudgement
  */
 export function noCodeProof(facts: UnitFacts): NoCodeJudgement {
   const { sheet } = facts;
-  if (!sheet) return { verdict: 'not done', reason: 'no service sheet for this unit' };
+  const notDone = (reason: string): NoCodeJudgement => ({ verdict: 'not done', reason, durationS: 0 });
+  if (!sheet) return notDone('no service sheet for this unit');
   const events = sinceOpened(countingEvents(facts));
   const lastRepair = events.findLastIndex((event) => event.kind === 'repair');
   let proof = events.slice(lastRepair + 1);
   if (lastRepair >= 0 && sheet.procedures.some((procedure) => procedure.id === CLEAR_CODES)) {
     const cleared = proof.findIndex((event) => event.kind === 'codes cleared');
-    if (cleared < 0) return { verdict: 'not done', reason: 'stored codes were not cleared after the repair' };
+    if (cleared < 0) return notDone('stored codes were not cleared after the repair');
     proof = proof.slice(cleared + 1);
   }
-  const captures = proof.filter((event): event is UnitEventOf<'capture'> => event.kind === 'capture');
-  let standing: (NoCodeJudgement & { durationS: number }) | undefined;
-  for (const { capture } of captures) {
-    const judged = { ...judgeNoCode(capture.answer, sheet), durationS: capture.answer.durationS };
-    if (
-      !standing ||
-      judged.verdict === 'fail' ||
-      standing.verdict === 'pass' ||
-      (standing.verdict === 'inconclusive' && judged.verdict === 'pass' && judged.durationS >= standing.durationS)
-    ) {
-      if (standing?.verdict !== 'fail') standing = judged;
-    }
-  }
-  return standing
-    ? { verdict: standing.verdict, reason: standing.reason }
-    : { verdict: 'not done', reason: 'no capture since the last repair' };
+  const judged = proof.filter((event) => event.kind === 'capture').map(({ capture }) => judgeNoCode(capture.answer, sheet));
+  const code = judged.find(({ verdict }) => verdict === 'fail');
+  if (code) return code;
+  return judged.reduce<NoCodeJudgement | undefined>(replaced, undefined) ?? notDone('no capture since the last repair');
 }
+
+/** Of two captures without a code the later one stands, unless the earlier one was inconclusive and longer. */
+const replaced = (standing: NoCodeJudgement | undefined, later: NoCodeJudgement): NoCodeJudgement =>
+  standing?.verdict === 'inconclusive' && standing.durationS > later.durationS ? standing : later;
 
 /** The id of the procedure in a service sheet that clears stored codes. */
 export const CLEAR_CODES = 'clear-codes';

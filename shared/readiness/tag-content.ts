@@ -39,11 +39,12 @@ export function testedOnTag(facts: UnitFacts): TagContent['tested'] {
       verdict: 'pass',
     });
   }
-  if (facts.sheet && noCodeProof(facts).verdict === 'pass') {
+  const noCode = noCodeProof(facts);
+  if (facts.sheet && noCode.verdict === 'pass') {
     const ready = facts.sheet.ready?.lamps ?? [];
     tested.push({
       title: 'Lamps: no code',
-      reading: `${facts.sheet.noCodeS} s`,
+      reading: `${Math.floor(noCode.durationS)} s`,
       limit: 'ready blink',
       verdict: 'pass',
       lamps: facts.sheet.lamps.map((lamp) => ready.includes(lamp.id)),

@@ -91,7 +91,7 @@ describe('Gate 4, "no code" must be proved', () => {
   });
 
   test('When the stored codes were not cleared after the repair, then no capture proves anything', () => {
-    expect(noCodeProof(facts([intake(), capture(showsCode('G5K3')), repair(), capture()]))).toEqual({
+    expect(noCodeProof(facts([intake(), capture(showsCode('G5K3')), repair(), capture()]))).toMatchObject({
       verdict: 'not done',
       reason: 'stored codes were not cleared after the repair',
     });
@@ -114,6 +114,16 @@ describe('Gate 4, "no code" must be proved', () => {
     const events = [intake(), repair(), cleared(), capture(unreadable(60)), capture(answer({ durationS: 25 }))];
     expect(noCodeProof(facts(events)).verdict).toBe('inconclusive');
     expect(noCodeProof(facts([...events, capture(answer({ durationS: 60 }))])).verdict).toBe('pass');
+  });
+
+  test('When a long unreadable capture stands among short ones, then it is the one that a proof has to match', () => {
+    const captures = [
+      capture(answer({ durationS: 5 })),
+      capture(unreadable(60)),
+      capture(answer({ durationS: 5 })),
+      capture(answer({ durationS: 25 })),
+    ];
+    expect(noCodeProof(facts([intake(), repair(), cleared(), ...captures])).verdict).toBe('inconclusive');
   });
 
   test('When a later capture is unreadable, then the earlier proof no longer stands', () => {
