@@ -56,6 +56,8 @@ export interface ViewParts {
   elapsedS: number;
   seconds: number | undefined;
   byKeys: boolean;
+  /** Somebody sits there: the keys are shown. */
+  attended: boolean;
   /** A watch waits for something: no codes are asked for. */
   waitsFor?: string | undefined;
 }
@@ -93,7 +95,7 @@ export function liveLines(parts: ViewParts, style: Style, rows: number): string[
   const foot = [
     ...(parts.byKeys ? [keyRow(window, sheet, style)] : []),
     ...wrap(whatNow(parts), columns - 3).map((line) => ` ${ink.bold(line)}`),
-    keyLine(parts, style),
+    ...(parts.attended ? [keyLine(parts, style)] : []),
   ];
   const room = rows - 2 - strip.length - foot.length - 1;
   return [title, ...strip, ...fitted(codeFace(parts, style), room), ...foot];
@@ -116,7 +118,8 @@ function codeFace({ understood, sheet }: ViewParts, style: Style): string[] {
     : [` ${style.ink.bold(segment.code)}   ${sheet.faults.find(({ code }) => code === segment.code)?.title ?? ''}   ${sure}`];
 }
 
-function whatNow({ understood, waitsFor, window }: ViewParts): string {
+function whatNow({ understood, waitsFor, window, attended }: ViewParts): string {
+  if (!attended) return window.samples === 0 ? 'Waiting for the first sample.' : 'Nobody is asked; it ends by itself.';
   if (waitsFor !== undefined) return 'Hands off. It is watched until it ends.';
   if (window.samples === 0) return 'Waiting for the first sample.';
   const sure = sureCode(understood);

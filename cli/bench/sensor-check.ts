@@ -56,28 +56,30 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
   };
   try {
     stderr.say('           Before the first capture: is each sensor on its own lamp? The machine stays dark for this.');
+    // With every sensor free: the hand is still on the last lamp when the next one is asked for.
+    let free = await settledLevels();
     for (const [index, lamp] of sheet.lamps.entries()) {
       for (;;) {
         const keys = [
           { key: ' ', word: 'covered' },
           { key: 'q', word: 'leave' },
         ] as const;
-        const before = await settledLevels();
         const key = await prompt.key({
           message: `           Cover the sensor on ${lamp.label}, keep it covered`,
           keys,
           instead: 'run it at a terminal',
         });
         if (key === 'q') throw new StoppedError();
-        const covered = coveredSensor(before, await settledLevels());
+        const covered = coveredSensor(free, await settledLevels());
         if (covered === index) break;
         const seen = covered === undefined ? 'No sensor changed clearly.' : `The sensor for ${sheet.lamps[covered]?.label ?? ''} changed.`;
-        stderr.write(`           ${seen} Move the sensors, or correct their order in the rig file. Take the hand away first.\n`);
+        stderr.write(`           ${seen} Move the sensors, or correct their order in the rig file.\n`);
         await prompt.key({
-          message: '           Ready to try again?',
-          keys: [{ key: ' ', word: 'go on' }],
+          message: '           Take the hand away',
+          keys: [{ key: ' ', word: 'it is away' }],
           instead: 'run it at a terminal',
         });
+        free = await settledLevels();
       }
     }
     stderr.say('           Every sensor is on its lamp.');

@@ -51,7 +51,16 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
     }
     block.draw(
       liveLines(
-        { window, sheet, understood, elapsedS: controls.elapsedS(), seconds: controls.seconds, byKeys, waitsFor },
+        {
+          window,
+          sheet,
+          understood,
+          elapsedS: controls.elapsedS(),
+          seconds: controls.seconds,
+          byKeys,
+          waitsFor,
+          attended: parts.attended && context.interactive,
+        },
         style,
         stderr.rows,
       ),
