@@ -11,12 +11,16 @@ export interface Steps {
   noise: number;
   /** The usual step, counts; undefined when the lamp never stepped. */
   stepSize: number | undefined;
+  /** What a step must measure to be seen every time, counts. */
+  clearStep: number;
 }
 
 /** Windows on either side of a step: short ones see the ready blink, long ones see through more noise. */
-const WINDOWS_S = [0.16, 0.4] as const;
+const WINDOWS_S = [0.16, 0.4, 0.8] as const;
 /** A step must stand out by this many standard deviations: by chance alone less than one in 10^8 positions. */
 const STEP_SIGMAS = 6;
+/** A lamp whose usual step stands out by this many is seen at every step: one in 30 000 falls below the threshold. */
+const CLEAR_SIGMAS = 10;
 /** A change smaller than this share of full scale is no lamp: glow of a neighbour, flicker, a cloud. */
 const LEAST_STEP = 0.05;
 /** Between small steps a level this far (as a share of the typical step) from the usual one of its kind is not told. */
@@ -38,21 +42,33 @@ export function findSteps(bins: Bins, lane: Float64Array, fullScale: number): St
   const sums = new Float64Array(used.length + 1);
   used.forEach((bin, index) => (sums[index + 1] = (sums[index] as number) + (lane[bin] as number)));
   const widthS = usualWidthS(bins, used);
+  let seen: { window: number; typical: number; least: number; differences: Float64Array } | undefined;
   for (const windowS of WINDOWS_S) {
     const window = Math.max(2, Math.round(windowS / widthS));
     const differences = stepDifferences(sums, window);
-    const least = Math.max(STEP_SIGMAS * noise * Math.sqrt(2 / window), LEAST_STEP * fullScale);
-    const first = peaksAbove(differences, least);
-    if (first.length === 0) continue;
-    const sizes = first.map((peak) => Math.abs(peak.size)).sort((a, b) => b - a);
+    const least = Math.max(STEP_SIGMAS * stepNoise(noise, window), LEAST_STEP * fullScale);
+    const sizes = peaksAbove(differences, least)
+      .map((peak) => Math.abs(peak.size))
+      .sort((a, b) => b - a);
     // The second largest: one spike doesn't set the scale; half of it keeps a neighbour's glow out.
-    const typical = sizes[1] ?? sizes[0] ?? 0;
-    labelBetween(peaksAbove(differences, Math.max(least, typical / 2)), used, labels);
-    const small = peaksAbove(differences, least).filter((peak) => Math.abs(peak.size) <= typical / 2);
-    doubtBetween(small, used, lane, labels, DOUBT_SHARE * typical);
-    return { labels, noise, stepSize: typical };
+    const typical = sizes[1] ?? sizes[0];
+    if (typical === undefined) continue;
+    seen = { window, typical, least, differences };
+    if (typical >= CLEAR_SIGMAS * stepNoise(noise, window)) break;
   }
-  return { labels, noise, stepSize: undefined };
+  const longest = Math.max(2, Math.round((WINDOWS_S.at(-1) ?? 1) / widthS));
+  const clearStep = CLEAR_SIGMAS * stepNoise(noise, longest);
+  if (seen === undefined) return { labels, noise, stepSize: undefined, clearStep };
+  const { window, typical, least, differences } = seen;
+  labelBetween(peaksAbove(differences, Math.max(least, typical / 2)), used, labels);
+  const small = peaksAbove(differences, least).filter((peak) => Math.abs(peak.size) <= typical / 2);
+  doubtBetween(small, used, lane, labels, DOUBT_SHARE * typical);
+  return { labels, noise, stepSize: typical, clearStep: CLEAR_SIGMAS * stepNoise(noise, window) };
+}
+
+/** The standard deviation of the difference of two means of `window` bins. */
+function stepNoise(noise: number, window: number): number {
+  return noise * Math.sqrt(2 / window);
 }
 
 /** From the differences of neighbouring bins, so that steps and drift hardly count; the median, so that outliers don't either. */

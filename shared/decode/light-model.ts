@@ -17,9 +17,17 @@ export interface LampLight {
   everLit: boolean;
   /** The probability that a lamp that never changed is taken for the wrong state, steadily; 0 when it changed. */
   steadyDoubt: number;
+  /** It changes, but too weakly for the noise to trust when: it has no states and no evidence. */
+  unclear: boolean;
+  /** It was never seen lit, and in this noise a dim lamp could have been missed. */
+  couldHide: boolean;
 }
 
 const ROUNDS = 3;
+/** A lamp's fitted amplitude is a little below its largest steps: it must reach this share of a clear step. */
+const CLEAR_SHARE = 0.85;
+/** A dim lamp, as a share of full scale, that must not hide in the noise. */
+const DIM_LAMP = 0.15;
 /** What adds less than this share of full scale, the neighbours' glow taken out, is no lamp. */
 const LEAST_LAMP = 0.04;
 /** Bins this near a change of state are left out of a fit: lamps warm up and go out over tens of milliseconds. */
@@ -80,6 +88,11 @@ export function modelLight(bins: Bins, ids: readonly string[], fullScale: number
     if (withoutGlow !== undefined) lamps[index] = steadyLight(bins, lamp.id, withoutGlow, fullScale, lamp.fit.noise);
   });
   compareSteadyLamps(lamps, lanes, fullScale);
+  lamps.forEach((lamp, index) => {
+    const { clearStep } = steps[index] as Steps;
+    lamp.couldHide = !lamp.everLit && clearStep > DIM_LAMP * fullScale;
+    if (lamp.changes && mean(lamp.fit.amplitude) < CLEAR_SHARE * clearStep) markUnclear(lamp);
+  });
   return lamps;
 }
 
@@ -95,7 +108,7 @@ function steppingLight(
   const evidence = litEvidence(bins, lane, fit);
   const states = likeliestStates(evidence);
   const everLit = states.includes(1);
-  return { id, states, evidence, fit, changes: everLit && states.includes(0), everLit, steadyDoubt: 0 };
+  return { id, states, evidence, fit, changes: everLit && states.includes(0), everLit, steadyDoubt: 0, unclear: false, couldHide: false };
 }
 
 /** A lamp whose light never steps: its level is known, its state is told later by comparison. */
@@ -103,7 +116,7 @@ function steadyLight(bins: Bins, id: string, lane: Float64Array, fullScale: numb
   const labels = new Int8Array(lane.length).fill(0);
   const fit = fitLevels(bins, lane, labels, [], { fullScale, noise, amplitude: 0 });
   fit.amplitude.fill(0);
-  return { id, states: labels, evidence: new Float64Array(lane.length), fit, changes: false, everLit: false, steadyDoubt: 0.5 };
+  return { id, states: labels, evidence: new Float64Array(lane.length), fit, changes: false, everLit: false, steadyDoubt: 0.5, unclear: false, couldHide: false };
 }
 
 function typedLight(bins: Bins, id: string, lane: Float64Array, fullScale: number): LampLight {
@@ -122,7 +135,15 @@ function typedLight(bins: Bins, id: string, lane: Float64Array, fullScale: numbe
     changes: everLit && states.includes(0),
     everLit,
     steadyDoubt: 0,
+    unclear: false,
+    couldHide: false,
   };
+}
+
+function markUnclear(lamp: LampLight): void {
+  lamp.unclear = true;
+  lamp.states.fill(0);
+  lamp.evidence.fill(0);
 }
 
 function neighboursOf(lamps: readonly LampLight[], index: number): LampLight[] {

@@ -8,10 +8,15 @@ export interface LampKnowledge {
   id: string;
   dead: boolean;
   everLit: boolean;
+  unclear: boolean;
   steadyDoubt: number;
 }
 
 const seconds = (value: number): string => `${value.toFixed(2)} s`;
+
+function weak(lamps: readonly LampKnowledge[]): string {
+  return `lamp ${lamps.map((lamp) => `'${lamp.id}'`).join(' and ')} is too weak for the noise: move the sensor closer, shade it, and capture again`;
+}
 
 /** Why nothing in a stretch reads as a code at all. */
 export function reasonForNonsense(pieces: readonly Piece[], coding: WeightedPhases, selector: LampKnowledge): string {
@@ -47,6 +52,8 @@ export function reasonForDoubt(
     const sum = sums[0] > coding.maxDigit ? sums[0] : sums[1];
     return `the lamps add up to ${sum} while the selector is ${which}: more than the largest digit ${coding.maxDigit}`;
   }
+  const unclear = lamps.filter((lamp) => lamp.unclear);
+  if (unclear.length > 0) return weak(unclear);
   if (repeats === 0) return 'the code was not seen whole: capture for at least two full turns of the selector';
   if (dead.length > 0 && candidates.length > 1 && (likeliest?.probability ?? 0) < 0.9) {
     return `lamp ${dead.join(' and ')} is burnt out and could change the code: replace it and capture again`;

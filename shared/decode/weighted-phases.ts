@@ -14,6 +14,8 @@ import { reasonForDoubt, reasonForNonsense, type LampKnowledge } from './unreada
 
 /** The chance that a lamp never seen lit is burnt out (contract, section 3). */
 export const BURNT_OUT_PRIOR = 0.005;
+/** The same where the noise could hide a dim lamp. */
+const HIDDEN_PRIOR = 0.05;
 /** Confidence is never stated higher than this (contract, section 3). */
 const MOST_CONFIDENCE = 0.9999;
 /** Candidates that are less likely than this help nobody. */
@@ -54,7 +56,7 @@ function readWeightedPhases(input: CodingInput, coding: WeightedPhases): CodingR
   const weighted = Object.keys(coding.weights).map((id) => lights.get(id) as LampLight);
   const codingLamps = [lights.get(coding.selector) as LampLight, ...weighted];
 
-  const readyLamps = (sheet.ready?.lamps ?? []).flatMap((id) => lights.get(id) ?? []);
+  const readyLamps = (sheet.ready?.lamps ?? []).flatMap((id) => lights.get(id) ?? []).filter((lamp) => !lamp.unclear);
   const ready =
     sheet.ready === undefined || readyLamps.length === 0
       ? []
@@ -69,6 +71,7 @@ function readWeightedPhases(input: CodingInput, coding: WeightedPhases): CodingR
     id: lamp.id,
     dead: deadLamps.includes(lamp.id),
     everLit: lamp.everLit,
+    unclear: lamp.unclear,
     steadyDoubt: lamp.changes ? 0 : lamp.steadyDoubt,
   });
 
@@ -107,7 +110,7 @@ function readWeightedPhases(input: CodingInput, coding: WeightedPhases): CodingR
   const trust = weighted.map((lamp): LampTrust => {
     const { dead, everLit, steadyDoubt } = know(lamp);
     if (dead) return { burntOut: 1, swapped: 0 };
-    return { burntOut: everLit ? 0 : BURNT_OUT_PRIOR, swapped: Math.min(steadyDoubt, 0.5) };
+    return { burntOut: everLit ? 0 : lamp.couldHide ? HIDDEN_PRIOR : BURNT_OUT_PRIOR, swapped: Math.min(steadyDoubt, 0.5) };
   });
   for (const { codes, nonsense } of found) {
     for (const stretch of codes) segments.push(stateStretch(stretch, coding, trust, weighted.map(know), input.minConfidence));
