@@ -11,7 +11,7 @@ export function readingLine(id: string, reading: ReadingBody): StepLine {
     kind: 'measure',
     title: (
       <>
-        {title}, <span className="num whitespace-normal!">{formatLimits(judgement.low, judgement.high, judgement.unit, resolution)}</span>
+        {title}, <span className="num">{formatLimits(judgement.low, judgement.high, judgement.unit, resolution)}</span>
       </>
     ),
     value: <ReadingValue reading={reading} />,

@@ -88,10 +88,9 @@ export function RepairForm({
     const { idempotencyKey, id, at } = submissionFor(repair);
     record.mutate({ body: { id, at, repair }, idempotencyKey }, { onSuccess: onDone });
   };
-  const field = (name: keyof z.input<typeof schema>, hint?: string) => ({
+  const field = (name: keyof z.input<typeof schema>) => ({
     id: fieldId(name),
-    label: LABELS[name] ?? name,
-    ...(hint === undefined ? {} : { hint }),
+    label: name === 'cost' ? `${LABELS[name]}, ${currency}` : (LABELS[name] ?? name),
     error: errors[name]?.message,
   });
   const source = watch('source');
@@ -131,7 +130,7 @@ export function RepairForm({
           {(a11y) => <input {...a11y} {...register('minutes')} inputMode="numeric" autoComplete="off" className="field" />}
         </FormField>
         {source !== 'none' && (
-          <FormField {...field('cost', `In ${currency}, with decimals.`)}>
+          <FormField {...field('cost')}>
             {(a11y) => <input {...a11y} {...register('cost')} inputMode="decimal" autoComplete="off" className="field" />}
           </FormField>
         )}
