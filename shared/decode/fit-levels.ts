@@ -46,102 +46,156 @@ const ROUNDS = 2;
  * @param scale what the curves are measured against; an amplitude of 0 fits the dark level and the glow alone
  */
 export function fitLevels(bins: Bins, lane: Float64Array, states: Int8Array, glows: readonly Glow[], scale: LevelScale): LevelFit {
-  const { fullScale, noise } = scale;
-  const lampCanBeLit = scale.amplitude > 0;
-  const count = lane.length;
+  const axis = knotAxis(bins);
+  let solution: Float64Array | undefined;
+  let sigma = scale.noise;
+  for (let round = 0; round < ROUNDS; round += 1) {
+    const equations = priorEquations(axis.knots, glows.length, scale, solution);
+    const spread = addBins(equations, axis, bins, lane, states, glows, sigma, scale.amplitude > 0, solution);
+    solution = solveSymmetric(equations.matrix, equations.right);
+    if (spread !== undefined) sigma = Math.max(spread, scale.noise / 2);
+  }
+  return curvesOf(solution ?? new Float64Array(2 * axis.knots + glows.length), axis, glows, sigma);
+}
+
+/** Where each bin's middle stands among the knots: `knot[bin]` and the share of the way to the next. */
+interface KnotAxis {
+  knots: number;
+  knot: Int32Array;
+  share: Float64Array;
+}
+
+function knotAxis(bins: Bins): KnotAxis {
+  const count = bins.startsS.length;
   const startS = bins.startsS[0] ?? 0;
   const spanS = Math.max((bins.endsS[count - 1] ?? 0) - startS, 1e-3);
   const knots = Math.min(MOST_KNOTS, Math.max(2, Math.ceil(spanS / KNOT_S) + 1));
-  const size = 2 * knots + glows.length;
-  const position = (bin: number): number =>
-    Math.min(knots - 1 - 1e-9, ((((bins.startsS[bin] as number) + (bins.endsS[bin] as number)) / 2 - startS) / spanS) * (knots - 1));
+  const knot = new Int32Array(count);
+  const share = new Float64Array(count);
+  for (let bin = 0; bin < count; bin += 1) {
+    const middleS = ((bins.startsS[bin] as number) + (bins.endsS[bin] as number)) / 2;
+    const at = Math.max(0, Math.min(knots - 1, ((middleS - startS) / spanS) * (knots - 1)));
+    knot[bin] = Math.min(knots - 2, Math.floor(at));
+    share[bin] = at - (knot[bin] as number);
+  }
+  return { knots, knot, share };
+}
 
-  let solution = new Float64Array(size);
-  let sigma = noise;
-  for (let round = 0; round < ROUNDS; round += 1) {
-    const matrix = new Float64Array(size * size);
-    const right = new Float64Array(size);
-    const add = (row: number, column: number, value: number): void => {
-      matrix[row * size + column] = (matrix[row * size + column] as number) + value;
-    };
-    wander(add, 0, knots, DARK_WANDER * fullScale, fullScale);
-    wander(add, knots, knots, AMPLITUDE_WANDER * Math.max(scale.amplitude, LEAST_AMPLITUDE * fullScale), fullScale);
+/** Normal equations; unknowns: dark level at each knot, amplitude at each knot, then one share a glow. */
+interface Equations {
+  matrix: Float64Array;
+  right: Float64Array;
+}
+
+function priorEquations(knots: number, glowCount: number, scale: LevelScale, before: Float64Array | undefined): Equations {
+  const size = 2 * knots + glowCount;
+  const matrix = new Float64Array(size * size);
+  const add = (row: number, column: number, value: number): void => {
+    matrix[row * size + column] = (matrix[row * size + column] as number) + value;
+  };
+  wander(add, 0, knots, DARK_WANDER * scale.fullScale, scale.fullScale);
+  wander(add, knots, knots, AMPLITUDE_WANDER * Math.max(scale.amplitude, LEAST_AMPLITUDE * scale.fullScale), scale.fullScale);
+  for (let row = 2 * knots; row < size; row += 1) {
     // A neighbour takes no light away: a share that came out negative is held at zero.
-    glows.forEach((_, index) => {
-      const row = 2 * knots + index;
-      add(row, row, 1 / (round > 0 && (solution[row] as number) <= 0 ? NO_GLOW_SPREAD : GLOW_SPREAD) ** 2);
-    });
-    const indexes = new Int32Array(4 + glows.length);
-    const factors = new Float64Array(4 + glows.length);
-    let squares = 0;
-    let total = 0;
-    for (let bin = 0; bin < count; bin += 1) {
-      const state = states[bin] as number;
-      if (state < 0 || (bins.weights[bin] as number) === 0) continue;
-      const at = position(bin);
-      const knot = Math.floor(at);
-      const share = at - knot;
-      const lit = state === 1 && lampCanBeLit ? 1 : 0;
-      indexes[0] = knot;
-      factors[0] = 1 - share;
-      indexes[1] = knot + 1;
-      factors[1] = share;
-      indexes[2] = knots + knot;
-      factors[2] = lit * (1 - share);
-      indexes[3] = knots + knot + 1;
-      factors[3] = lit * share;
-      glows.forEach((glow, index) => {
-        indexes[4 + index] = 2 * knots + index;
-        factors[4 + index] = glow[bin] as number;
-      });
-      let weight = 1 / sigma ** 2;
-      if (round > 0) {
-        let fitted = 0;
-        for (let k = 0; k < indexes.length; k += 1) fitted += (factors[k] as number) * (solution[indexes[k] as number] as number);
-        const residual = (lane[bin] as number) - fitted;
-        const robust = 1 / (1 + (residual / (OUTLIER_SIGMAS * sigma)) ** 2);
-        weight *= robust;
-        squares += robust * residual ** 2;
-        total += robust;
-      }
-      for (let k = 0; k < indexes.length; k += 1) {
-        const factor = factors[k] as number;
-        if (factor === 0) continue;
-        const row = indexes[k] as number;
-        right[row] = (right[row] as number) + weight * factor * (lane[bin] as number);
-        for (let m = 0; m <= k; m += 1) {
-          const other = factors[m] as number;
-          if (other !== 0) add(row, indexes[m] as number, weight * factor * other);
-        }
+    const negative = before !== undefined && (before[row] as number) <= 0;
+    add(row, row, 1 / (negative ? NO_GLOW_SPREAD : GLOW_SPREAD) ** 2);
+  }
+  return { matrix, right: new Float64Array(size) };
+}
+
+/** Adds every told bin; with a solution from before, outliers count less, and the spread around it is returned. */
+function addBins(
+  equations: Equations,
+  axis: KnotAxis,
+  bins: Bins,
+  lane: Float64Array,
+  states: Int8Array,
+  glows: readonly Glow[],
+  sigma: number,
+  lampCanBeLit: boolean,
+  before: Float64Array | undefined,
+): number | undefined {
+  const { matrix, right } = equations;
+  const size = right.length;
+  const factors = new Float64Array(4 + glows.length);
+  const rows = new Int32Array(4 + glows.length);
+  let squares = 0;
+  let total = 0;
+  for (let bin = 0; bin < lane.length; bin += 1) {
+    const state = states[bin] as number;
+    if (state < 0 || bins.weights[bin] === 0) continue;
+    const knot = axis.knot[bin] as number;
+    const share = axis.share[bin] as number;
+    let used = 2;
+    rows[0] = knot;
+    factors[0] = 1 - share;
+    rows[1] = knot + 1;
+    factors[1] = share;
+    if (state === 1 && lampCanBeLit) {
+      rows[2] = axis.knots + knot;
+      factors[2] = 1 - share;
+      rows[3] = axis.knots + knot + 1;
+      factors[3] = share;
+      used = 4;
+    }
+    for (let index = 0; index < glows.length; index += 1) {
+      const light = (glows[index] as Glow)[bin] as number;
+      if (light === 0) continue;
+      rows[used] = 2 * axis.knots + index;
+      factors[used] = light;
+      used += 1;
+    }
+    const level = lane[bin] as number;
+    let weight = 1 / (sigma * sigma);
+    if (before !== undefined) {
+      let residual = level;
+      for (let k = 0; k < used; k += 1) residual -= (factors[k] as number) * (before[rows[k] as number] as number);
+      const relative = residual / (OUTLIER_SIGMAS * sigma);
+      const robust = 1 / (1 + relative * relative);
+      weight *= robust;
+      squares += robust * residual * residual;
+      total += robust;
+    }
+    for (let k = 0; k < used; k += 1) {
+      const row = rows[k] as number;
+      const weighted = weight * (factors[k] as number);
+      right[row] = (right[row] as number) + weighted * level;
+      for (let m = 0; m <= k; m += 1) {
+        const cell = row * size + (rows[m] as number);
+        matrix[cell] = (matrix[cell] as number) + weighted * (factors[m] as number);
       }
     }
-    solution = new Float64Array(solveSymmetric(matrix, right));
-    if (total > 0) sigma = Math.max(Math.sqrt(squares / total), noise / 2);
   }
+  return total > 0 ? Math.sqrt(squares / total) : undefined;
+}
 
+function curvesOf(solution: Float64Array, axis: KnotAxis, glows: readonly Glow[], noise: number): LevelFit {
+  const { knots } = axis;
+  const count = axis.knot.length;
+  keepNear(solution.subarray(knots, 2 * knots));
+  const glowShares = glows.map((_, index) => Math.min(MOST_GLOW, Math.max(0, solution[2 * knots + index] as number)));
   const dark = new Float64Array(count);
   const amplitude = new Float64Array(count);
   const glow = new Float64Array(count);
-  const glowShares = glows.map((_, index) => Math.min(MOST_GLOW, Math.max(0, solution[2 * knots + index] as number)));
   for (let bin = 0; bin < count; bin += 1) {
-    const at = Math.max(0, position(bin));
-    const knot = Math.floor(at);
-    const share = at - knot;
+    const knot = axis.knot[bin] as number;
+    const share = axis.share[bin] as number;
     dark[bin] = (1 - share) * (solution[knot] as number) + share * (solution[knot + 1] as number);
     amplitude[bin] = (1 - share) * (solution[knots + knot] as number) + share * (solution[knots + knot + 1] as number);
-    glows.forEach((lane_, index) => (glow[bin] = (glow[bin] as number) + (glowShares[index] as number) * (lane_[bin] as number)));
+    for (let index = 0; index < glows.length; index += 1) {
+      glow[bin] = (glow[bin] as number) + (glowShares[index] as number) * ((glows[index] as Glow)[bin] as number);
+    }
   }
-  keepNear(amplitude);
-  return { dark, amplitude, glow, glowShares, noise: sigma };
+  return { dark, amplitude, glow, glowShares, noise };
 }
 
-/** Gain wanders, but not without bounds: an amplitude stays within a factor of its median. */
-function keepNear(amplitude: Float64Array): void {
-  const sorted = Float64Array.from(amplitude).sort();
+/** Gain wanders, but not without bounds: the amplitude at each knot stays within a factor of the median. */
+function keepNear(amplitudes: Float64Array): void {
+  const sorted = Float64Array.from(amplitudes).sort();
   const median = Math.max(0, sorted[sorted.length >> 1] ?? 0);
-  for (let bin = 0; bin < amplitude.length; bin += 1) {
-    amplitude[bin] = Math.min(median * AMPLITUDE_FACTOR, Math.max(median / AMPLITUDE_FACTOR, amplitude[bin] as number));
-  }
+  amplitudes.forEach((amplitude, knot) => {
+    amplitudes[knot] = Math.min(median * AMPLITUDE_FACTOR, Math.max(median / AMPLITUDE_FACTOR, amplitude));
+  });
 }
 
 /** A weak pull of each knot towards the one before, and of the first towards zero, so that nothing is undetermined. */

@@ -37,6 +37,9 @@ const EDGE_AFTER_BINS = 3;
 const MAYBE_GLOW = 0.4;
 /** Glow is believed in up to this share of a neighbour, or 1.5 times what other lamps of the capture show. */
 const USUAL_GLOW = 0.04;
+/** A lamp below this share of its brightest neighbour is looked at again with the glow taken out, if there is this much of it. */
+const DIM_BESIDE_BRIGHT = 0.6;
+const LEAST_GLOW = 0.015;
 /** Pure glow must explain the light: no more than this share of what the lamp seemed to add may be left over. */
 const GLOW_LEFT_SHARE = 0.3;
 const SHARE_EVENLY = 0.01;
@@ -76,6 +79,7 @@ export function modelLight(bins: Bins, ids: readonly string[], fullScale: number
       lamps[index] = steppingLight(bins, lamp.id, lane, awayFromEdges(lamp.states), glows, scale);
     });
   }
+  lookAgainBesideBright(bins, lanes, lamps, steps, fullScale);
   lamps.forEach((lamp, index) => {
     if (!lamp.changes || mean(lamp.fit.amplitude) >= LEAST_LAMP * fullScale) return;
     const withoutGlow = (lanes[index] as Float64Array).map((level, bin) => level - (lamp.fit.glow[bin] as number));
@@ -94,6 +98,41 @@ export function modelLight(bins: Bins, ids: readonly string[], fullScale: number
     if (lamp.changes && mean(lamp.fit.amplitude) < CLEAR_SHARE * clearStep) markUnclear(lamp);
   });
   return lamps;
+}
+
+/**
+ * A dim lamp's steps drown in those of bright lamps beside it. Once the bright ones are known, and how much they glow in this capture, their
+ * light is taken out of the dim lamp's lane and its steps are looked for again.
+ */
+function lookAgainBesideBright(bins: Bins, lanes: readonly Float64Array[], lamps: LampLight[], steps: Steps[], fullScale: number): void {
+  const isDim = (index: number): boolean => {
+    const brightest = Math.max(0, ...neighboursOf(lamps, index).map((neighbour) => mean(neighbour.fit.amplitude)));
+    return (lamps[index] as LampLight).changes && mean((lamps[index] as LampLight).fit.amplitude) < DIM_BESIDE_BRIGHT * brightest;
+  };
+  const dim = lamps.map((_, index) => index).filter(isDim);
+  const glowShare = quantile(
+    lamps.flatMap((lamp, index) => (lamp.changes && !dim.includes(index) ? lamp.fit.glowShares : [])),
+    USUAL_GLOW_QUANTILE,
+  );
+  if (glowShare < LEAST_GLOW) return;
+  for (const index of dim) {
+    const lamp = lamps[index] as LampLight;
+    const lane = lanes[index] as Float64Array;
+    const glows = neighboursOf(lamps, index).map(glowOf);
+    const own = lane.map((level, bin) => level - glowShare * glows.reduce((sum, glow) => sum + (glow[bin] as number), 0));
+    const found = findSteps(bins, own, fullScale);
+    steps[index] = found;
+    if (found.stepSize === undefined) {
+      lamps[index] = steadyLight(bins, lamp.id, own, fullScale, found.noise);
+      continue;
+    }
+    let labels = found.labels;
+    for (let round = 0; round < ROUNDS; round += 1) {
+      const again = steppingLight(bins, lamp.id, lane, labels, glows, { fullScale, noise: found.noise, amplitude: found.stepSize });
+      lamps[index] = again;
+      labels = awayFromEdges(again.states);
+    }
+  }
 }
 
 function steppingLight(
@@ -116,7 +155,17 @@ function steadyLight(bins: Bins, id: string, lane: Float64Array, fullScale: numb
   const labels = new Int8Array(lane.length).fill(0);
   const fit = fitLevels(bins, lane, labels, [], { fullScale, noise, amplitude: 0 });
   fit.amplitude.fill(0);
-  return { id, states: labels, evidence: new Float64Array(lane.length), fit, changes: false, everLit: false, steadyDoubt: 0.5, unclear: false, couldHide: false };
+  return {
+    id,
+    states: labels,
+    evidence: new Float64Array(lane.length),
+    fit,
+    changes: false,
+    everLit: false,
+    steadyDoubt: 0.5,
+    unclear: false,
+    couldHide: false,
+  };
 }
 
 function typedLight(bins: Bins, id: string, lane: Float64Array, fullScale: number): LampLight {
@@ -151,7 +200,9 @@ function neighboursOf(lamps: readonly LampLight[], index: number): LampLight[] {
 }
 
 function glowOf(lamp: LampLight): Glow {
-  return Float64Array.from(lamp.states, (state, bin) => (state === 1 ? (lamp.fit.amplitude[bin] as number) : 0));
+  const glow = new Float64Array(lamp.states.length);
+  for (let bin = 0; bin < glow.length; bin += 1) if (lamp.states[bin] === 1) glow[bin] = lamp.fit.amplitude[bin] as number;
+  return glow;
 }
 
 function awayFromEdges(states: Int8Array): Int8Array {
@@ -190,7 +241,9 @@ function laneWithoutGlow(
   const left = [0, 0];
   const counts = [0, 0];
   let own = 0;
-  const glow = lane.map((_, bin) => glows.reduce((sum, neighbour, which) => sum + (shares[which] as number) * (neighbour[bin] as number), 0));
+  const glow = lane.map((_, bin) =>
+    glows.reduce((sum, neighbour, which) => sum + (shares[which] as number) * (neighbour[bin] as number), 0),
+  );
   labels.forEach((label, bin) => {
     if (label < 0) return;
     left[label] = (left[label] as number) + (light[bin] as number) - (glow[bin] as number);

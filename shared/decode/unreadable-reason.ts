@@ -14,8 +14,14 @@ export interface LampKnowledge {
 
 const seconds = (value: number): string => `${value.toFixed(2)} s`;
 
+/** "lamp 'drain' is", "lamps 'rinse' and 'drain' are". */
+function subject(lamps: readonly LampKnowledge[], one: string, many: string): string {
+  const names = lamps.map((lamp) => `'${lamp.id}'`).join(' and ');
+  return lamps.length === 1 ? `lamp ${names} ${one}` : `lamps ${names} ${many}`;
+}
+
 function weak(lamps: readonly LampKnowledge[]): string {
-  return `lamp ${lamps.map((lamp) => `'${lamp.id}'`).join(' and ')} is too weak for the noise: move the sensor closer, shade it, and capture again`;
+  return `${subject(lamps, 'is', 'are')} too weak for the noise: move the sensor closer, shade it, and capture again`;
 }
 
 /** Why nothing in a stretch reads as a code at all. */
@@ -45,7 +51,7 @@ export function reasonForDoubt(
   const weights = Object.values(coding.weights);
   const likeliest = candidates[0];
   const sums = [litSum(weights, stretch.onLit), litSum(weights, stretch.offLit)] as const;
-  const dead = lamps.filter((lamp) => lamp.dead).map((lamp) => `'${lamp.id}'`);
+  const dead = lamps.filter((lamp) => lamp.dead);
   const validAlready = sums.every((sum) => sum <= coding.maxDigit);
   if (!validAlready) {
     const which = sums[0] > coding.maxDigit ? 'lit' : 'dark';
@@ -56,14 +62,14 @@ export function reasonForDoubt(
   if (unclear.length > 0) return weak(unclear);
   if (repeats === 0) return 'the code was not seen whole: capture for at least two full turns of the selector';
   if (dead.length > 0 && candidates.length > 1 && (likeliest?.probability ?? 0) < 0.9) {
-    return `lamp ${dead.join(' and ')} is burnt out and could change the code: replace it and capture again`;
+    return `${subject(dead, 'is', 'are')} burnt out and could change the code: replace ${dead.length === 1 ? 'it' : 'them'} and capture again`;
   }
   const steady = lamps.find((lamp) => lamp.steadyDoubt > 1e-4);
   if (steady !== undefined)
     return `lamp '${steady.id}' never changed: its light can't be told from ambient light; capture the ready blink too, or shade the probe`;
-  const unproved = lamps.filter((lamp) => !lamp.everLit && !lamp.dead).map((lamp) => `'${lamp.id}'`);
+  const unproved = lamps.filter((lamp) => !lamp.everLit && !lamp.dead);
   if (unproved.length > 0 && candidates.length > 1) {
-    return `lamp ${unproved.join(' and ')} was never seen lit and could change the code if burnt out: capture the ready blink too`;
+    return `${subject(unproved, 'was', 'were')} never seen lit and could change the code if burnt out: capture the ready blink too`;
   }
   return 'the code was seen too seldom, or too unclearly, to be sure: capture it for longer, and shade the probe';
 }
