@@ -1,4 +1,5 @@
 import type { StepResult } from '../../shared/script/run-log.js';
+import { isJudged } from '../../shared/script/run-verdict.js';
 import type { Script, Step, StepKind, StepOf } from '../../shared/script/schema.js';
 import type { Context } from '../context.js';
 import type { OpenRig } from '../instruments/rig.js';
@@ -44,9 +45,6 @@ export type StepRunner<K extends StepKind> = (step: StepOf<K>, bench: Bench, sta
 export function resultBase(step: Step, { context }: Pick<Bench, 'context'>, { startedAt }: Pick<StepStart, 'startedAt'>) {
   return { stepId: step.id, title: step.title, startedAt, endedAt: context.now().toISOString() };
 }
-
-/** Steps that judge nothing when they are left out: a remark, and a repair that is optional. Any other skipped step is not done. */
-const isJudged = (step: Step): boolean => step.kind !== 'note' && !(step.kind === 'repair' && step.optional === true);
 
 export function skipped(
   step: Step,

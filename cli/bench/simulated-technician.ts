@@ -10,7 +10,8 @@ import type { Technician } from './technician.js';
 export function simulatedTechnician({ stderr }: Context, hands: Hands): Technician {
   const answerOf = (stepId: string, kind: string, question: string): string => {
     const answer = hands.answer(stepId, kind);
-    if (answer === undefined) throw new NobodyToAskError(question, `run it at a terminal, or give the scenario an answer to '${stepId}' or '${kind}'`);
+    if (answer === undefined)
+      throw new NobodyToAskError(question, `run it at a terminal, or give the scenario an answer to '${stepId}' or '${kind}'`);
     return answer;
   };
   const say = (answer: string): void => void stderr.write(`           > ${answer}  (simulated technician)\n`);
@@ -44,7 +45,8 @@ export function simulatedTechnician({ stderr }: Context, hands: Hands): Technici
       say(text || question);
       return Promise.resolve(text);
     },
-    reads: (stepId, { title }) => Promise.reject(new NobodyToAskError(`No meter of this rig measures ${title}.`, `give the scenario a measurement for '${stepId}'`)),
+    reads: (stepId, { title }) =>
+      Promise.reject(new NobodyToAskError(`No meter of this rig measures ${title}.`, `give the scenario a measurement for '${stepId}'`)),
     triesAgain: () => Promise.resolve(false),
   };
 }

@@ -1,6 +1,6 @@
 import { BadInputError } from '../../shared/errors.js';
 import type { ReadingBody } from '../../shared/history/events.js';
-import { settleReading } from '../../shared/history/settle-run.js';
+import { settleReading } from '../../shared/history/settle-reading.js';
 import { parseAccuracy } from '../../shared/measure/parse-accuracy.js';
 import { parseQuantity } from '../../shared/measure/parse-quantity.js';
 import type { MeasuredCheck, Sheet } from '../../shared/sheet/schema.js';

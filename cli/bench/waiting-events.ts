@@ -1,6 +1,7 @@
 import { parse as parseYaml } from 'yaml';
 import type { UnitEvent } from '../../shared/history/events.js';
-import { captureBody, settleInspection, settleReading, settleRun } from '../../shared/history/settle-run.js';
+import { settleInspection, settleReading } from '../../shared/history/settle-reading.js';
+import { captureBody, settleRun } from '../../shared/history/settle-run.js';
 import { readCapture } from '../../shared/lamps/read-capture.js';
 import { scriptSchema } from '../../shared/script/schema.js';
 import type { Sheet } from '../../shared/sheet/schema.js';

@@ -1,6 +1,6 @@
 import { BadInputError } from '../../shared/errors.js';
 import type { InspectionBody, ReadingBody } from '../../shared/history/events.js';
-import { settleInspection } from '../../shared/history/settle-run.js';
+import { settleInspection } from '../../shared/history/settle-reading.js';
 import { formatLimits, formatReading, formatSpread } from '../../shared/measure/format-reading.js';
 import { checksFor } from '../../shared/readiness/facts.js';
 import { checkOf } from '../../shared/script/energised.js';

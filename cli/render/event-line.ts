@@ -5,7 +5,7 @@ import type { Style } from '../output.js';
 import { padRight, shown, wrap } from './columns.js';
 import { repairText } from './repair-text.js';
 import { verdictText } from './verdict.js';
-import { dayText, timeText } from './words.js';
+import { dayText, timeText, unitLabel } from './words.js';
 
 const WHEN = 20;
 const VERDICT = 17;
@@ -41,6 +41,8 @@ function wordsOf(event: UnitEvent): { what: string; verdict?: Verdict } {
       return { what: `${event.script} ended`, verdict: event.verdict };
     case 'repair':
       return { what: `mended: ${repairText(event.repair)}` };
+    case 'part removed':
+      return { what: `part taken out: ${event.part}, for ${unitLabel(event.toUnit)}` };
     case 'calibration':
       return { what: `calibration run: ${event.calibration.reason}`, verdict: event.calibration.verdict };
     case 'codes cleared':

@@ -66,6 +66,9 @@ export const calibrationBodySchema = z.strictObject({
   verdict: verdictSchema,
   reason: z.string(),
   captureId: z.string().optional(),
+  /** What the capture's header says of itself (gate 6); absent before the server has read it. */
+  capturedAt: z.iso.datetime({ offset: true }).optional(),
+  headerUnit: z.string().optional(),
 });
 export type CalibrationBody = z.infer<typeof calibrationBodySchema>;
 
@@ -98,6 +101,8 @@ export const unitEventSchema = z.discriminatedUnion('kind', [
     steps: z.number().int(),
   }),
   z.strictObject({ ...eventBase, kind: z.literal('repair'), repair: repairBodySchema }),
+  /** A part was taken out for another unit: the machine is opened again as by a repair. */
+  z.strictObject({ ...eventBase, kind: z.literal('part removed'), part: z.string(), toUnit: z.number().int().positive() }),
   z.strictObject({ ...eventBase, kind: z.literal('calibration'), calibration: calibrationBodySchema }),
   z.strictObject({ ...eventBase, kind: z.literal('codes cleared'), procedure: z.string() }),
   z.strictObject({ ...eventBase, kind: z.literal('note'), text: z.string() }),

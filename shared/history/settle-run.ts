@@ -3,56 +3,14 @@ import { decodeCapture } from '../decode/decode-capture.js';
 import { viewCapture } from '../decode/view-capture.js';
 import type { Capture } from '../lamps/capture.js';
 import { readCapture } from '../lamps/read-capture.js';
-import { judge } from '../measure/judge.js';
-import { parseAccuracy } from '../measure/parse-accuracy.js';
-import { checkOf } from '../script/energised.js';
 import { judgeExpectation } from '../script/judge-expect.js';
 import { judgeWatch, watchSpec } from '../script/judge-watch.js';
 import type { RunLog, StepResult } from '../script/run-log.js';
-import { runVerdict } from '../script/run-verdict.js';
+import { isJudged, runVerdict } from '../script/run-verdict.js';
 import type { Script } from '../script/schema.js';
 import type { Sheet } from '../sheet/schema.js';
-import type { CaptureBody, InspectionBody, PersonRef, ReadingBody, UnitEvent } from './events.js';
-
-/**
- * A reading judged by the sheet's own limits, whatever limits it came with.
- *
- * Takes what was measured and by what; the check's title, limits, condition and place in the dead tests come from the sheet.
- * Refuses (BadInputError) a check the sheet does not measure, a value that is no reading, and a meter that claims no uncertainty.
- */
-export function settleReading(reading: ReadingBody, sheet: Sheet): ReadingBody {
-  const check = checkOf(sheet, reading.checkId);
-  if (check?.kind !== 'measure') throw new BadInputError(`the sheet has no measured check '${reading.checkId}'`);
-  const accuracy = parseAccuracy(reading.accuracy);
-  if (accuracy.percentOfReading === 0 && accuracy.digits === 0)
-    throw new BadInputError('no meter is without uncertainty: give its accuracy as its data sheet has it');
-  // The coverage factor is the shop's (2), never the sender's: a small one would turn inconclusive into pass.
-  const judgement = judge({
-    value: reading.judgement.value,
-    unit: check.unit,
-    low: check.low,
-    high: check.high,
-    accuracy,
-    resolution: reading.resolution,
-  });
-  const { deadTest: _told, ...rest } = reading;
-  return {
-    ...rest,
-    title: check.title,
-    condition: check.condition,
-    ...(check.deadTest === undefined ? {} : { deadTest: check.deadTest }),
-    judgement,
-  };
-}
-
-/** An inspection with its title and its place in the dead tests from the sheet, where the sheet knows it. */
-export function settleInspection(inspection: InspectionBody, sheet: Sheet | undefined): InspectionBody {
-  const { deadTest: _told, ...rest } = inspection;
-  const check = sheet && checkOf(sheet, inspection.checkId);
-  if (inspection.checkId !== undefined && check?.kind !== 'inspect')
-    throw new BadInputError(`the sheet has no inspection '${inspection.checkId}'`);
-  return { ...rest, title: check?.title ?? inspection.title, ...(check?.deadTest === undefined ? {} : { deadTest: check.deadTest }) };
-}
+import type { CaptureBody, PersonRef, UnitEvent } from './events.js';
+import { settleInspection, settleReading } from './settle-reading.js';
 
 /** What is kept of a capture beside its file: its header's word on itself, and the decoder's answer. */
 export function captureBody(capture: Capture, sheet: Sheet, about: { captureId: string; fromFile: boolean }): CaptureBody {
@@ -134,15 +92,21 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
         const step = script.steps.find((one) => one.id === result.stepId);
         if (step?.kind !== 'watch') throw new BadInputError(`the script has no watch step '${result.stepId}'`);
         const capture = keepCapture(result, false);
-        const durationS = (bodies.get(result.captureId) as CaptureBody).answer.durationS;
-        const { seconds, verdict, reason } = judgeWatch(viewCapture(capture, sheet), watchSpec(step, sheet), durationS);
-        const watched = { seconds, verdict, reason, captureId: result.captureId };
-        if (step.calibration)
-          events.push({
-            ...base(result.endedAt, result.stepId, capture.header.source === 'simulated'),
-            kind: 'calibration',
-            calibration: watched,
-          });
+        const body = bodies.get(result.captureId) as CaptureBody;
+        const { seconds, verdict, reason } = judgeWatch(viewCapture(capture, sheet), watchSpec(step, sheet), body.answer.durationS);
+        const { capturedAt, headerUnit } = body;
+        const watched = {
+          seconds,
+          verdict,
+          reason,
+          captureId: result.captureId,
+          capturedAt,
+          ...(headerUnit === undefined ? {} : { headerUnit }),
+        };
+        const event = base(result.endedAt, result.stepId, body.source === 'simulated');
+        if (step.calibration) events.push({ ...event, kind: 'calibration', calibration: watched });
+        // Every capture counts for gate 4: a code that blinks while something else is watched for is a code.
+        if (body.answer.codes.length > 0) events.push({ ...event, id: newId(), kind: 'capture', capture: body });
         return { ...result, calibration: step.calibration === true, watched };
       }
       case 'repair':
@@ -154,9 +118,13 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
       case 'note':
         events.push({ ...base(result.endedAt, result.stepId), kind: 'note', text: result.text });
         return result;
+      case 'skipped': {
+        // Whether a skipped step counts is the script's word, never the sender's.
+        const step = script.steps.find((one) => one.id === result.stepId);
+        return step ? { ...result, stepKind: step.kind, judged: isJudged(step) } : { ...result, judged: true };
+      }
       case 'caution':
       case 'instruct':
-      case 'skipped':
         return result;
     }
   });

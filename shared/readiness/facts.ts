@@ -1,4 +1,6 @@
-import type { UnitEvent } from '../history/events.js';
+import type { UnitEvent, UnitEventOf } from '../history/events.js';
+import { settleReading } from '../history/settle-reading.js';
+import { checkOf } from '../script/energised.js';
 import type { Check, Sheet } from '../sheet/schema.js';
 
 /** What the safety gates and the readiness rules are asked with: facts in, verdicts with reasons out. */
@@ -11,21 +13,38 @@ export interface UnitFacts {
   shop: { demo: boolean; fourEyes: boolean };
 }
 
+/** Whether an event opens the machine: a repair, or a part taken out for another unit. What was measured before no longer counts. */
+export const isMend = (event: UnitEvent): boolean => event.kind === 'repair' || event.kind === 'part removed';
+
 /**
- * The events that count: simulated results never do outside the demo shop, and a capture from a file only if its
- * header names this unit and it was recorded after the last repair (gate 6).
+ * The events that count, readings judged by the sheet as it stands now.
+ *
+ * Gate 6: simulated results never count outside the demo shop. A capture, and a calibration run watched in one, counts only if its header
+ * does not name another unit and was written after everything up to the last repair; one taken from a file must name this unit.
+ * A reading in another unit of measurement than the sheet now asks for says nothing about its limits and is left out.
  */
-export function countingEvents({ unit, events, shop }: UnitFacts): UnitEvent[] {
-  let lastRepairAt = '';
-  return events.filter((event) => {
-    if (event.kind === 'repair' || event.kind === 'returned') lastRepairAt = event.at;
-    if (event.simulated && !shop.demo) return false;
-    if (event.kind !== 'capture' || !event.capture.fromFile) return true;
-    return (
-      Number(event.capture.headerUnit) === unit.number &&
-      Date.parse(event.capture.capturedAt) > (lastRepairAt ? Date.parse(lastRepairAt) : 0)
-    );
+export function countingEvents({ unit, sheet, events, shop }: UnitFacts): UnitEvent[] {
+  let latest = 0;
+  let openedAt = 0;
+  return events.flatMap((event) => {
+    latest = Math.max(latest, Date.parse(event.at));
+    if (isMend(event) || event.kind === 'returned') openedAt = latest;
+    if (event.simulated && !shop.demo) return [];
+    if (event.kind === 'reading') return judgedNow(event, sheet);
+    const header = event.kind === 'capture' ? event.capture : event.kind === 'calibration' ? event.calibration : undefined;
+    if (!header) return [event];
+    const named = header.headerUnit === undefined ? undefined : Number(header.headerUnit);
+    const fromFile = event.kind === 'capture' && event.capture.fromFile;
+    if (named === undefined ? fromFile : named !== unit.number) return [];
+    return header.capturedAt === undefined || Date.parse(header.capturedAt) > openedAt ? [event] : [];
   });
+}
+
+/** The limits may be tighter than on the day it was taken; a check that the sheet no longer has keeps its old verdict, and no rule asks for it. */
+function judgedNow(event: UnitEventOf<'reading'>, sheet: Sheet | undefined): UnitEvent[] {
+  const check = sheet && checkOf(sheet, event.reading.checkId);
+  if (!sheet || check?.kind !== 'measure') return [event];
+  return check.unit === event.reading.judgement.unit ? [{ ...event, reading: settleReading(event.reading, sheet) }] : [];
 }
 
 /** The events since the unit was opened: since the last intake or return, that event included. */
@@ -40,7 +59,7 @@ export function sinceOpened(events: readonly UnitEvent[]): UnitEvent[] {
 
 /** The events after the last repair, or since intake or return where nothing was mended since. */
 export function sinceRepair(events: readonly UnitEvent[]): UnitEvent[] {
-  return events.slice(events.findLastIndex((event) => event.kind === 'intake' || event.kind === 'returned' || event.kind === 'repair') + 1);
+  return events.slice(events.findLastIndex((event) => event.kind === 'intake' || event.kind === 'returned' || isMend(event)) + 1);
 }
 
 /** The sheet's checks that apply to a machine of this protection class. */

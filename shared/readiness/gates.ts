@@ -76,7 +76,10 @@ export function energisingGate(facts: UnitFacts, question: EnergisingQuestion): 
   }
   if (reasons.length === 0) return OPEN;
   const override = events.findLast((event) => event.kind === 'override' && event.by.role === 'lead');
-  if (override?.kind === 'override') return { open: true, reasons, override: { by: override.by.name, reason: override.reason } };
+  // A lead's reason covers what the lead knew: not a test that failed afterwards.
+  const lastBad = events.findLastIndex((event) => isCheckEvent(event) && deadTestOf(event) !== undefined && verdictOf(event) !== 'pass');
+  if (override?.kind === 'override' && events.indexOf(override) > lastBad)
+    return { open: true, reasons, override: { by: override.by.name, reason: override.reason } };
   const failed = reasons.some((reason) => /: (fail|inconclusive)$/.test(reason));
   return {
     open: false,

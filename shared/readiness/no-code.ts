@@ -1,7 +1,7 @@
 import type { DecodeAnswer } from '../decode/answer.js';
 import type { Sheet } from '../sheet/schema.js';
 import type { Verdict } from '../verdict.js';
-import { countingEvents, sinceOpened, type UnitFacts } from './facts.js';
+import { countingEvents, isMend, sinceOpened, type UnitFacts } from './facts.js';
 
 export interface NoCodeJudgement {
   verdict: Verdict;
@@ -9,6 +9,9 @@ export interface NoCodeJudgement {
   /** How long the lamps were watched, seconds. */
   durationS: number;
 }
+
+/** From this share of a capture on the ready blink fills it: reaction time at both ends is left out. */
+const MOSTLY = 0.8;
 
 /**
  * Gate 4, "no code" must be proved: what one capture says about it.
@@ -27,7 +30,14 @@ export function judgeNoCode(answer: DecodeAnswer, sheet: Sheet): NoCodeJudgement
   if (!answer.segments.some((segment) => segment.kind === 'ready')) return judged('inconclusive', 'no ready blink in it');
   if (answer.deadLamps.length > 0) return judged('inconclusive', `${answer.deadLamps.join(', ')} does not light`);
   if (durationS < sheet.noCodeS) return judged('inconclusive', `${seconds} long, the sheet asks for ${sheet.noCodeS} s`);
-  return judged('pass', `ready blink only, ${seconds}`);
+  const readySeconds = answer.segments.reduce((sum, segment) => sum + (segment.kind === 'ready' ? segment.toS - segment.fromS : 0), 0);
+  // The gate asks for the capture's length; a panel that blinked for a moment and then went dark is told as it was.
+  return judged(
+    'pass',
+    readySeconds >= durationS * MOSTLY
+      ? `ready blink only, ${seconds}`
+      : `ready blink for ${Math.floor(readySeconds)} s and no code, ${seconds} watched`,
+  );
 }
 
 /**
@@ -43,7 +53,7 @@ export function noCodeProof(facts: UnitFacts): NoCodeJudgement {
   const notDone = (reason: string): NoCodeJudgement => ({ verdict: 'not done', reason, durationS: 0 });
   if (!sheet) return notDone('no service sheet for this unit');
   const events = sinceOpened(countingEvents(facts));
-  const lastRepair = events.findLastIndex((event) => event.kind === 'repair');
+  const lastRepair = events.findLastIndex(isMend);
   let proof = events.slice(lastRepair + 1);
   if (lastRepair >= 0 && sheet.procedures.some((procedure) => procedure.id === CLEAR_CODES)) {
     const cleared = proof.findIndex((event) => event.kind === 'codes cleared');
@@ -53,7 +63,10 @@ export function noCodeProof(facts: UnitFacts): NoCodeJudgement {
   const judged = proof.filter((event) => event.kind === 'capture').map(({ capture }) => judgeNoCode(capture.answer, sheet));
   const code = judged.find(({ verdict }) => verdict === 'fail');
   if (code) return code;
-  return judged.reduce<NoCodeJudgement | undefined>(replaced, undefined) ?? notDone('no capture since the last repair');
+  return (
+    judged.reduce<NoCodeJudgement | undefined>(replaced, undefined) ??
+    notDone(lastRepair >= 0 ? 'no capture since the last repair' : 'no capture yet')
+  );
 }
 
 /** Of two captures without a code the later one stands, unless the earlier one was inconclusive and longer. */

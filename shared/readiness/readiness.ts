@@ -1,7 +1,7 @@
 import { z } from 'zod';
 import type { PersonRef, UnitEvent } from '../history/events.js';
 import type { Check } from '../sheet/schema.js';
-import { checksFor, countingEvents, sinceOpened, sinceRepair, type UnitFacts } from './facts.js';
+import { checksFor, countingEvents, isMend, sinceOpened, sinceRepair, type UnitFacts } from './facts.js';
 import { noCodeProof } from './no-code.js';
 import { checkIdOf, isCheckEvent, standingResult, verdictOf } from './standing.js';
 
@@ -54,10 +54,11 @@ function judgeChecks(facts: UnitFacts, checks: readonly Check[]): Judged {
       how: 'Too close for this meter: measure with one of smaller uncertainty.',
     };
   const missing = open.map((one) => one.check.title);
+  const mended = sinceOpened(facts.events).some(isMend);
   return {
     state: 'missing',
     evidence: `${checks.length - open.length} of ${checks.length}`,
-    how: `Not done since the last repair: ${missing.join(', ')}.`,
+    how: `${mended ? 'Not done since the last repair' : 'Not done yet'}: ${missing.join(', ')}.`,
   };
 }
 
@@ -80,7 +81,9 @@ function judgeNoCodeRule(facts: UnitFacts): Judged {
  */
 function judgeCalibration(facts: UnitFacts): Judged {
   const events = sinceOpened(countingEvents(facts));
-  const lastSwap = events.findLastIndex((event) => event.kind === 'repair' && event.repair.partSource.kind !== 'none');
+  const lastSwap = events.findLastIndex(
+    (event) => event.kind === 'part removed' || (event.kind === 'repair' && event.repair.partSource.kind !== 'none'),
+  );
   const run = events.slice(lastSwap + 1).findLast((event) => event.kind === 'calibration');
   const how = 'Run the calibration procedure and let the lamps be watched (a step of the proof script).';
   if (run?.kind !== 'calibration')
@@ -97,7 +100,7 @@ export function handsOn(events: readonly UnitEvent[]): PersonRef[] {
     if (
       event.kind === 'run began' ||
       event.kind === 'run ended' ||
-      event.kind === 'repair' ||
+      isMend(event) ||
       event.kind === 'calibration' ||
       event.kind === 'capture' ||
       event.kind === 'codes cleared' ||

@@ -1,5 +1,5 @@
 import type { SettledRun } from '../history/settle-run.js';
-import { deadTestOfStep, energisingOf, usesCaution } from '../script/energised.js';
+import { deadTestOfStep, energisingOf } from '../script/energised.js';
 import type { Script, Step } from '../script/schema.js';
 import type { Sheet } from '../sheet/schema.js';
 import type { UnitFacts } from './facts.js';
@@ -12,42 +12,58 @@ import { energisingGate, type GateState } from './gates.js';
  * isolated is always free.
  */
 export function stepGate(step: Step, sheet: Sheet, facts: UnitFacts, rigSimulated: boolean): GateState {
+  if (energisingOf(step, sheet) === 'mains') return energisingGate(facts, { rigSimulated });
   const deadTest = deadTestOfStep(step, sheet);
   if (deadTest) return energisingGate(facts, { rigSimulated, before: deadTest });
-  if (energisingOf(step, sheet) === 'mains') return energisingGate(facts, { rigSimulated });
   return { open: true, reasons: [] };
+}
+
+export interface GateBreach {
+  stepId: string;
+  reasons: string[];
+  remedy: string | undefined;
 }
 
 /**
  * The first step of a recorded run that a safety gate should have kept from happening, or undefined.
  *
- * Gate 1: dead tests before power, walked through in the order of the log. Gate 2: every energised step has a caution of
- * its own, answered yes, since the energised step before it. The bench asks before each step; the server asks here again,
- * for a log may come from anywhere. `facts` are those from before the run.
+ * The log must follow the script: its steps, each once, in its order. Gate 1: dead tests before power, walked through step by step.
+ * Gate 2: the caution that stands before an energised step was answered with yes, and an insulation test was followed by its discharge
+ * before anything else was done. The bench asks before each step; the server asks here again, for a log may come from anywhere.
+ * `facts` are those from before the run, `script` has passed `checkScript`.
  */
-export function runGateBreach(
-  run: SettledRun,
-  script: Script,
-  sheet: Sheet,
-  facts: UnitFacts,
-): { stepId: string; reasons: string[]; remedy: string | undefined } | undefined {
+export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, facts: UnitFacts): GateBreach | undefined {
   const events = [...facts.events];
-  let cautioned = false;
+  const confirmed = new Set<string>();
+  let place = -1;
+  let charged = false;
   for (const result of run.log.steps) {
-    const step = script.steps.find((one) => one.id === result.stepId);
-    if (!step) return { stepId: result.stepId, reasons: ['the script has no such step'], remedy: undefined };
-    if (result.kind === 'caution') cautioned = result.answer === 'yes';
-    else if (result.kind !== 'skipped') {
-      if (result.kind !== step.kind)
-        return { stepId: step.id, reasons: [`the log calls it ${result.kind}, the script ${step.kind}`], remedy: undefined };
-      if (energisingOf(step, sheet) !== 'dead') {
-        if (!cautioned)
-          return { stepId: step.id, reasons: ['its caution was not answered with yes'], remedy: 'run it again from its caution' };
-        if (usesCaution(step)) cautioned = false;
-      }
-      const gate = stepGate(step, sheet, { ...facts, events }, run.log.rig.simulated);
-      if (!gate.open) return { stepId: step.id, reasons: gate.reasons, remedy: gate.remedy };
+    const breach = (reason: string | string[], remedy?: string): GateBreach => ({
+      stepId: result.stepId,
+      reasons: [reason].flat(),
+      remedy,
+    });
+    const index = script.steps.findIndex((one) => one.id === result.stepId);
+    const step = script.steps[index];
+    if (!step) return breach('the script has no such step');
+    if (index <= place) return breach('it stands out of the order of the script, or twice');
+    place = index;
+    if (result.kind === 'skipped') continue;
+    if (result.kind !== step.kind) return breach(`the log calls it ${result.kind}, the script ${step.kind}`);
+
+    if (charged) {
+      if (!(step.kind === 'instruct' && step.discharge))
+        return breach('the machine was not discharged after the insulation test', 'discharge it, then run from there');
+      charged = result.kind === 'instruct' && result.answer !== 'done';
     }
+    if (result.kind === 'caution' && result.answer === 'yes') confirmed.add(step.id);
+    const energising = energisingOf(step, sheet);
+    const caution = script.steps.slice(0, index).findLast((one) => one.kind === 'caution');
+    if (energising !== 'dead' && !(caution && confirmed.has(caution.id)))
+      return breach('its caution was not answered with yes', 'run it again from its caution');
+    const gate = stepGate(step, sheet, { ...facts, events }, run.log.rig.simulated);
+    if (!gate.open) return breach(gate.reasons, gate.remedy);
+    if (energising === 'test voltage') charged = true;
     events.push(...run.events.filter((event) => event.stepId === result.stepId));
   }
   return undefined;

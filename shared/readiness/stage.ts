@@ -36,6 +36,7 @@ export function stageOf(events: readonly UnitEvent[]): Stage {
         if (event.prove && event.verdict === 'fail') stage = 'repair';
         break;
       case 'repair':
+      case 'part removed':
         stage = 'repair';
         break;
       case 'sign-off':

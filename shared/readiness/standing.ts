@@ -18,7 +18,8 @@ const SEVERITY: Record<Verdict, number> = { fail: 3, inconclusive: 2, 'not done'
  * larger of the two values, for a share of the reading shrinks with the reading itself.
  */
 function takenMoreClosely(later: CheckEvent, earlier: CheckEvent): boolean {
-  if (later.kind !== 'reading' || earlier.kind !== 'reading') return false;
+  // A typed accuracy is somebody's word: until meters are registered it takes nothing back.
+  if (later.kind !== 'reading' || earlier.kind !== 'reading' || later.reading.source === 'typed') return false;
   const at = Math.max(Math.abs(later.reading.judgement.value), Math.abs(earlier.reading.judgement.value));
   const spreadOf = ({ accuracy, resolution, judgement }: ReadingBody): number =>
     readingUncertainty(at, parseAccuracy(accuracy), resolution, judgement.coverageFactor).expanded;
@@ -38,7 +39,13 @@ function takenMoreClosely(later: CheckEvent, earlier: CheckEvent): boolean {
 export function standingResult(results: readonly CheckEvent[]): CheckEvent | undefined {
   let standing: CheckEvent | undefined;
   for (const result of results) {
-    if (!standing || SEVERITY[verdictOf(result)] >= SEVERITY[verdictOf(standing)] || takenMoreClosely(result, standing)) standing = result;
+    if (
+      !standing ||
+      verdictOf(standing) === 'not done' ||
+      SEVERITY[verdictOf(result)] >= SEVERITY[verdictOf(standing)] ||
+      takenMoreClosely(result, standing)
+    )
+      standing = result;
   }
   return standing;
 }

@@ -13,6 +13,7 @@ export function whatWithdraws(facts: UnitFacts, tag: string): string | undefined
   if (signed < 0) return undefined;
   for (const event of events.slice(signed + 1)) {
     if (event.kind === 'repair') return `the machine was mended again after the sign-off: ${event.repair.part}`;
+    if (event.kind === 'part removed') return `a part was taken out: ${event.part}`;
     if (event.kind === 'returned') return 'the machine came back';
     if (isCheckEvent(event) && verdictOf(event) !== 'pass') {
       return `a later check did not pass: ${event.kind === 'reading' ? event.reading.title : event.inspection.title}, ${verdictOf(event)}`;

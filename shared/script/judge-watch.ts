@@ -10,8 +10,8 @@ export interface WatchSpec {
   withinS: readonly [number, number];
 }
 
-/** How long the ending pattern must hold before it is believed: longer than the dark half of a slow blink (0.4 Hz: 1.25 s). */
-const ENDED_HOLD_SECONDS = 2;
+/** How long the ending pattern must hold before it is believed: several times the dark half of a slow blink (0.4 Hz: 1.25 s). */
+const ENDED_HOLD_SECONDS = 5;
 
 /**
  * The spec of a watch step. A calibration run begins when the lock lamp lights and ends well when the lid unlocks and the
@@ -52,9 +52,10 @@ export function judgeWatch(
 
   const beganS = edges.find((atS) => holds(spec.begins, atS));
   if (beganS === undefined) return { seconds: 0, verdict: 'inconclusive', reason: 'it never began', over: false, begun: false };
-  const endedS = edges.find(
-    (atS, index) => atS > beganS && holds(spec.ends, atS) && (edges[index + 1] ?? durationS) - atS >= ENDED_HOLD_SECONDS,
-  );
+  // The end holds to the last sample: a dropout on the way is no end.
+  const lastBroken = edges.findLastIndex((atS) => !holds(spec.ends, atS));
+  const heldFromS = edges[lastBroken + 1];
+  const endedS = heldFromS !== undefined && heldFromS > beganS && durationS - heldFromS >= ENDED_HOLD_SECONDS ? heldFromS : undefined;
   if (endedS === undefined) {
     const seconds = durationS - beganS;
     const late = seconds > mostS + ENDED_HOLD_SECONDS;

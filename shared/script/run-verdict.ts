@@ -1,5 +1,9 @@
 import { worstVerdict, type Verdict } from '../verdict.js';
 import type { StepResult } from './run-log.js';
+import type { Step } from './schema.js';
+
+/** Steps that judge nothing when they are left out: a remark, and a repair that is optional. Any other skipped step is not done. */
+export const isJudged = (step: Step): boolean => step.kind !== 'note' && !(step.kind === 'repair' && step.optional === true);
 
 /** The verdict of one step's result; undefined for a step that judges nothing (a caution, a note). */
 export function stepVerdict(result: StepResult): Verdict | undefined {

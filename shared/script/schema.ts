@@ -8,7 +8,7 @@ const lampStatesSchema = z.record(slugSchema, z.enum(['on', 'off']));
 
 /**
  * The step kinds of a bench script. A new kind is one line here, one file in `cli/bench/steps/`,
- * and a line in `shared/history/events-of-run.ts` if it leaves an event.
+ * and a line in `shared/history/settle-run.ts` if it leaves an event.
  */
 export const stepSchema = z.discriminatedUnion('kind', [
   /** Waits for a person's yes or no; it has no default, and `no` goes to the safe state. */

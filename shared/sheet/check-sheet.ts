@@ -1,4 +1,4 @@
-import type { Sheet } from './schema.js';
+import type { Check, Sheet } from './schema.js';
 
 /** One thing that a sheet says wrongly, or that a shop should know about it. */
 export interface SheetFinding {
@@ -135,6 +135,9 @@ function checkCoding(sheet: Sheet): SheetFinding[] {
   return findings;
 }
 
+const classesMeet = (one: Check, other: Check): boolean =>
+  !one.classes || !other.classes || one.classes.some((name) => other.classes?.includes(name));
+
 function checkRest(sheet: Sheet): SheetFinding[] {
   const findings = [
     ...repeated(
@@ -160,7 +163,16 @@ function checkRest(sheet: Sheet): SheetFinding[] {
       findings.push(error(['calibration', 'procedure'], `procedure '${procedure}' is not among the sheet's procedures`));
   }
   sheet.checks.forEach((check, index) => {
+    const rival = sheet.checks
+      .slice(0, index)
+      .find((one) => one.deadTest !== undefined && one.deadTest === check.deadTest && classesMeet(one, check));
+    if (rival)
+      findings.push(
+        error(['checks', index, 'deadTest'], `'${check.id}' and '${rival.id}' are both the ${check.deadTest} test: the gate needs one`),
+      );
     if (check.kind !== 'measure') return;
+    if (check.deadTest !== undefined && check.condition === 'energised')
+      findings.push(error(['checks', index, 'condition'], `'${check.id}' is a dead test: its condition is dead`));
     if (check.low === undefined && check.high === undefined)
       findings.push(error(['checks', index], `check '${check.id}' is measured and has no limits: give low, high or both`));
     if (check.low !== undefined && check.high !== undefined && check.low > check.high)

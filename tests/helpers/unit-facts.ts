@@ -2,7 +2,7 @@
 import { readFileSync } from 'node:fs';
 import { parse } from 'yaml';
 import type { DecodeAnswer } from '../../shared/decode/answer.js';
-import type { CaptureBody, PersonRef, ReadingBody, UnitEvent } from '../../shared/history/events.js';
+import type { CalibrationBody, CaptureBody, PersonRef, ReadingBody, UnitEvent } from '../../shared/history/events.js';
 import { judge } from '../../shared/measure/judge.js';
 import type { UnitFacts } from '../../shared/readiness/facts.js';
 import { scriptSchema, type Script } from '../../shared/script/schema.js';
@@ -43,7 +43,13 @@ export function inspection(verdict: Verdict = 'pass', { by = wil, simulated = fa
 export function reading(
   checkId: string,
   value: number,
-  { by = wil, simulated = false, accuracy = '0.5%+3', resolution = 0.01 }: Options & { accuracy?: string; resolution?: number } = {},
+  {
+    by = wil,
+    simulated = false,
+    accuracy = '0.5%+3',
+    resolution = 0.01,
+    source = 'meter',
+  }: Options & { accuracy?: string; resolution?: number; source?: 'meter' | 'typed' } = {},
 ): UnitEvent {
   const check = heron.checks.find((one) => one.id === checkId);
   if (check?.kind !== 'measure') throw new Error(`no measured check ${checkId}`);
@@ -53,7 +59,7 @@ export function reading(
     title: check.title,
     condition: check.condition,
     ...(check.deadTest ? { deadTest: check.deadTest } : {}),
-    source: 'meter',
+    source,
     accuracy,
     resolution,
     judgement: judge({
@@ -143,11 +149,15 @@ export const repair = (
   kind: 'repair',
   repair: { part, partSource: swapped ? { kind: 'new' } : { kind: 'none' }, minutes: 30, costMinor: 2450 },
 });
+export const partRemoved = (): UnitEvent => ({ ...next(wil, false), kind: 'part removed', part: 'Drain pump', toUnit: 413 });
 export const cleared = (): UnitEvent => ({ ...next(wil, false), kind: 'codes cleared', procedure: 'clear-codes' });
-export const calibration = (verdict: Verdict = 'pass', { simulated = false }: Options = {}): UnitEvent => ({
+export const calibration = (
+  verdict: Verdict = 'pass',
+  { simulated = false, ...over }: Options & Partial<CalibrationBody> = {},
+): UnitEvent => ({
   ...next(wil, simulated),
   kind: 'calibration',
-  calibration: { seconds: 150, verdict, reason: '2:30, the sheet allows 2:00 to 3:00' },
+  calibration: { seconds: 150, verdict, reason: '2:30, the sheet allows 2:00 to 3:00', ...over },
 });
 export const runBegan = (prove: boolean): UnitEvent => ({
   ...next(wil, false),

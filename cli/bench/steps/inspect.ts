@@ -1,4 +1,4 @@
-import { settleInspection } from '../../../shared/history/settle-run.js';
+import { settleInspection } from '../../../shared/history/settle-reading.js';
 import { checkOf } from '../../../shared/script/energised.js';
 import { resultBase, type StepRunner } from '../bench.js';
 

@@ -5,5 +5,7 @@ import { procedureLines } from '../procedure-lines.js';
 export const runInstruct: StepRunner<'instruct'> = async (step, bench, start) => {
   bench.say(...procedureLines(step.procedure, step.text, bench));
   const done = await bench.technician.hasDone(step.id, 'instruct', 'Done?');
-  return { result: { ...resultBase(step, bench, start), kind: 'instruct', answer: done ? 'done' : 'not done' } };
+  const result = { ...resultBase(step, bench, start), kind: 'instruct' as const, answer: done ? ('done' as const) : ('not done' as const) };
+  // Nothing else is done on a machine that may still hold the test's charge.
+  return step.discharge && !done ? { result, rest: 'skip', why: 'the machine was not discharged' } : { result };
 };

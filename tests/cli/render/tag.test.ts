@@ -50,7 +50,7 @@ describe('The tag at the terminal', () => {
     expect(text).toContain('No. 0412  intake');
     expect(text).toContain('0 of 5 rules met');
     expect(text).toMatch(/_ four eyes: no sign-off/);
-    expect(text).toMatch(/_ checks passed: 0 of 3[\s\S]*Not done since the last repair: Drain pump winding/);
+    expect(text).toMatch(/_ checks passed: 0 of 3[\s\S]*Not done yet: Drain pump winding/);
     expect(text).not.toContain('■');
   });
 

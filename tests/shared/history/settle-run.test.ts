@@ -1,6 +1,7 @@
 import { describe, expect, test } from 'vitest';
 import { BadInputError } from '../../../shared/errors.js';
-import { settleReading, settleRun } from '../../../shared/history/settle-run.js';
+import { settleReading } from '../../../shared/history/settle-reading.js';
+import { settleRun } from '../../../shared/history/settle-run.js';
 import { runGateBreach } from '../../../shared/readiness/run-gates.js';
 import { readiness } from '../../../shared/readiness/readiness.js';
 import type { RunLog } from '../../../shared/script/run-log.js';
@@ -61,6 +62,44 @@ describe('A bench log made into what the shop believes', () => {
     expect(() => settleReading({ ...readingBody('heater'), accuracy: '0%+0' }, heron)).toThrow(BadInputError);
   });
 
+  test.each([
+    ['a last digit that no meter has', { resolution: 1e-300, accuracy: '0%+1' }, 26.8],
+    ['no half-width at all at zero', { accuracy: '1%+0', resolution: 0.1 }, 0],
+    ['a resistance far below zero', {}, -100],
+  ])('When it brings %s, then it is refused, for it would get round the guard band', (_, over, value) => {
+    expect(() => settleReading({ ...readingBody('heater', value), ...over }, heron)).toThrow(BadInputError);
+  });
+
+  test('When a skipped step is called unjudged by the sender, then the script decides, and the run is not done (gate 3)', () => {
+    const { verdict } = settle(
+      logOf('h6-prove', {
+        change: (step) =>
+          step.kind === 'measure'
+            ? {
+                stepId: step.stepId,
+                title: step.title,
+                startedAt: step.startedAt,
+                endedAt: step.endedAt,
+                kind: 'skipped',
+                stepKind: 'note',
+                judged: false,
+                reason: 'no',
+              }
+            : step,
+      }),
+      'h6-prove',
+    );
+    expect(verdict).toBe('not done');
+  });
+
+  test('When a code blinks in the capture of a watch, then it counts as a code (gate 4)', () => {
+    const { events } = settle(logOf('h6-prove', { panels: { calibration: 'G5K3' } }), 'h6-prove');
+    expect(events.filter((event) => event.kind === 'capture').map((event) => event.capture.answer.codes.map(({ code }) => code))).toEqual([
+      [],
+      ['G5K3'],
+    ]);
+  });
+
   test('When the sheet has no such check, then the reading is refused', () => {
     expect(() => settleReading({ ...readingBody('heater'), checkId: 'belt' }, heron)).toThrow("the sheet has no measured check 'belt'");
   });
@@ -111,6 +150,51 @@ describe('The gates, walked again over a bench log', () => {
         change: (step) => (step.stepId === 'insulation-caution' && step.kind === 'caution' ? { ...step, answer: 'no' } : step),
       }),
     ).toMatchObject({ stepId: 'insulation' });
+  });
+  test('Gate 1: when the log is out of the order of its script, or names a step twice, then it is refused', () => {
+    const log = logOf('h6-find');
+    const lampsFirst = [...log.steps].sort((a, b) => Number(b.stepId === 'lamps') - Number(a.stepId === 'lamps'));
+    const ask = (steps: RunLog['steps']) =>
+      runGateBreach(settle({ ...log, steps }, 'h6-find'), shopScript('h6-find'), heron, facts([intake()]));
+    expect(ask(lampsFirst)?.reasons).toEqual(['its caution was not answered with yes']);
+    expect(ask([...log.steps, ...log.steps.slice(1, 2)])?.reasons).toEqual(['it stands out of the order of the script, or twice']);
+    const skippedThenDone = log.steps.flatMap((step) =>
+      step.stepId === 'visual'
+        ? [
+            {
+              stepId: 'visual',
+              title: 'x',
+              startedAt: step.startedAt,
+              endedAt: step.endedAt,
+              kind: 'skipped' as const,
+              stepKind: 'inspect',
+              judged: true,
+              reason: 'later',
+            },
+          ]
+        : [step],
+    );
+    expect(ask([...skippedThenDone, ...log.steps.slice(1, 2)])).toMatchObject({
+      stepId: 'protective-conductor',
+      reasons: ['visual check is not done'],
+    });
+  });
+  test("Gate 2: when only an earlier step's caution was answered, then it does not do for the insulation test", () => {
+    expect(breach('h6-find', { change: (step) => (step.stepId === 'insulation-caution' ? undefined : step) })).toMatchObject({
+      stepId: 'insulation',
+    });
+  });
+  test('Gate 2: when the machine was not discharged after the insulation test, then whatever comes next is the breach', () => {
+    const reasons = ['the machine was not discharged after the insulation test'];
+    expect(breach('h6-find', { change: (step) => (step.stepId === 'discharge' ? undefined : step) })).toMatchObject({
+      stepId: 'power-caution',
+      reasons,
+    });
+    expect(
+      breach('h6-find', {
+        change: (step) => (step.stepId === 'discharge' && step.kind === 'instruct' ? { ...step, answer: 'not done' } : step),
+      }),
+    ).toMatchObject({ reasons });
   });
   test('When a log brings a step that the script does not have, or calls it by another kind, then it is refused', () => {
     expect(breach('h6-find', { change: (step) => (step.stepId === 'visual' ? { ...step, stepId: 'glance' } : step) })).toMatchObject({

@@ -71,6 +71,12 @@ describe('Gate 1, dead tests before power', () => {
     expect(asked([intake(), override(), repair()]).open).toBe(false);
   });
 
+  test('When a dead test fails after the override, then the reason given before does not cover it', () => {
+    const gate = asked([intake(), override(), reading('insulation', 0.01)]);
+    expect(gate.open).toBe(false);
+    expect(asked([intake(), override(), reading('insulation', 0.01), override()]).open).toBe(true);
+  });
+
   test('When a technician writes an override into the list, then it opens nothing', () => {
     expect(asked([intake(), override(wil)]).open).toBe(false);
   });

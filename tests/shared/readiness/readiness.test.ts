@@ -18,6 +18,7 @@ import {
   inspection,
   maren,
   mendedAndProved,
+  partRemoved,
   reading,
   repair,
   showsCode,
@@ -52,6 +53,15 @@ describe('Readiness', () => {
   test('When a part is changed after the proof, then checks, safety, no code and calibration are all due again', () => {
     const judged = readiness(facts([...mendedAndProved(), repair('Heater')]));
     expect(judged.rules.filter((one) => one.state === 'met')).toEqual([]);
+  });
+
+  test('When a part is taken out for another unit, then everything is due again, as after a repair', () => {
+    const judged = readiness(facts([...mendedAndProved(), partRemoved()]));
+    expect(judged.rules.filter((one) => one.state === 'met')).toEqual([]);
+  });
+
+  test('When an inspection was put down as not done, then doing it makes it good', () => {
+    expect(rule([...mendedAndProved(), inspection('not done'), inspection('pass')], 'electrical-safety')?.state).toBe('met');
   });
 
   test('When work was done without a part, then the calibration run stands, for only a swap makes it due', () => {
@@ -117,13 +127,9 @@ describe('Gate 4, "no code" must be proved', () => {
   });
 
   test('When a long unreadable capture stands among short ones, then it is the one that a proof has to match', () => {
-    const captures = [
-      capture(answer({ durationS: 5 })),
-      capture(unreadable(60)),
-      capture(answer({ durationS: 5 })),
-      capture(answer({ durationS: 25 })),
-    ];
-    expect(noCodeProof(facts([intake(), repair(), cleared(), ...captures])).verdict).toBe('inconclusive');
+    const short = (): UnitEvent => capture(answer({ durationS: 5 }));
+    const events = [intake(), repair(), cleared(), short(), capture(unreadable(60)), short(), capture(answer({ durationS: 25 }))];
+    expect(noCodeProof(facts(events)).verdict).toBe('inconclusive');
   });
 
   test('When a later capture is unreadable, then the earlier proof no longer stands', () => {
@@ -134,6 +140,12 @@ describe('Gate 4, "no code" must be proved', () => {
 describe('Gate 5, no retesting until it passes', () => {
   test('When a check failed and the same meter then passes it without a repair, then the fail stands', () => {
     expect(rule([intake(), ...deadTests(), reading('heater', 40), goodReading('heater')], 'checks')?.state).toBe('fail');
+  });
+  test('When the reading of smaller uncertainty was typed in, then it takes no worse one back', () => {
+    const events = [...mendedAndProved(), reading('protective-conductor-current', 3.44, { accuracy: '2%+5' })];
+    expect(
+      rule([...events, reading('protective-conductor-current', 3.41, { accuracy: '0.1%+1', source: 'typed' })], 'electrical-safety')?.state,
+    ).toBe('inconclusive');
   });
   test('When an inconclusive reading is followed by one of smaller uncertainty, then that one counts', () => {
     const inconclusive = [...mendedAndProved(), reading('protective-conductor-current', 3.44, { accuracy: '2%+5' })];
@@ -170,6 +182,48 @@ describe('Gate 6, simulated results never count outside the demo shop', () => {
   });
 });
 
+describe('Gate 6, captures with a header of another place or time', () => {
+  test('When a capture or a calibration run names another unit, then it does not count, file or not', () => {
+    const other = { headerUnit: '9999' };
+    expect(countingEvents(facts([intake(), capture(answer(), other), calibration('pass', other)])).map((event) => event.kind)).toEqual([
+      'intake',
+    ]);
+    expect(
+      countingEvents(facts([intake(), capture(answer(), { headerUnit: '0412' }), calibration('pass', { headerUnit: '412' })])),
+    ).toHaveLength(3);
+  });
+
+  test('When a capture is older than the last repair, then it does not count, and a backdated repair does not make it newer', () => {
+    const before = capture(showsCode('G5K3'));
+    const between = { capturedAt: new Date(Date.parse(before.at) - 30_000).toISOString() };
+    const backdated = { ...repair(), at: '2026-03-01T09:00:00Z' };
+    expect(
+      countingEvents(facts([intake(), before, backdated, cleared(), capture(answer(), between), calibration('pass', between)])).map(
+        (event) => event.kind,
+      ),
+    ).toEqual(['intake', 'capture', 'repair', 'codes cleared']);
+  });
+});
+
+describe('A sheet that changed', () => {
+  test('When a limit was made tighter after the reading, then the reading is judged by the new one', () => {
+    const tighter = {
+      ...heron,
+      checks: heron.checks.map((check) => (check.id === 'heater' && check.kind === 'measure' ? { ...check, low: 27.5 } : check)),
+    };
+    expect(rule(mendedAndProved(), 'checks', undefined, { sheet: tighter })).toMatchObject({ state: 'fail', evidence: 'Heater: fail' });
+  });
+  test('When the check is now in another unit of measurement, then the old reading says nothing', () => {
+    const other = {
+      ...heron,
+      checks: heron.checks.map((check) =>
+        check.id === 'heater' && check.kind === 'measure' ? { ...check, unit: 'Mohm' as const } : check,
+      ),
+    };
+    expect(rule(mendedAndProved(), 'checks', undefined, { sheet: other })).toMatchObject({ state: 'missing' });
+  });
+});
+
 describe('Gate 7, four eyes', () => {
   test('When the lead recorded a single reading, then that lead may not sign', () => {
     const events = [...mendedAndProved(), goodReading('heater', { by: maren })];
@@ -200,6 +254,7 @@ describe('Gate 8, what withdraws a tag', () => {
     ['a later check that fails', () => [reading('heater', 40)], 'a later check did not pass: Heater, fail'],
     ['a later check that is inconclusive', () => [reading('heater', 29)], 'a later check did not pass: Heater, inconclusive'],
     ['a failed visual check', () => [inspection('fail')], 'a later check did not pass: Visual check, fail'],
+    ['a part taken out', () => [partRemoved()], 'a part was taken out: Drain pump'],
     ['a repair', () => [repair('Lid lock')], 'the machine was mended again after the sign-off: Lid lock'],
     ['a code on the lamps', () => [capture(showsCode('G2K9'))], 'the lamps showed G2K9 afterwards'],
     [

@@ -26,6 +26,15 @@ describe('Watching a calibration run', () => {
     const view = viewOf({ lock: [{ fromS: 3, toS: 153 }], wash: [{ fromS: 3, toS: 200 }] });
     expect(judgeWatch(view, calibration, 200)).toMatchObject({ verdict: 'fail', reason: 'still going after 180 s', over: true });
   });
+  test('When every lamp is dark for 4 s on the way, then that is no end', () => {
+    const view = viewOf({
+      lock: [
+        { fromS: 3, toS: 126 },
+        { fromS: 130, toS: 390 },
+      ],
+    });
+    expect(judgeWatch(view, calibration, 400)).toMatchObject({ seconds: 387, verdict: 'fail' });
+  });
   test('When it ends too soon, then it fails', () => {
     expect(judgeWatch(viewOf({ lock: [{ fromS: 3, toS: 63 }] }), calibration, 70)).toMatchObject({ seconds: 60, verdict: 'fail' });
   });

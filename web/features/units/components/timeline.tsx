@@ -79,6 +79,11 @@ function tell(event: UnitEvent, { faces, unit }: UnitPage, currency: string): To
           </p>
         ),
       };
+    case 'part removed':
+      return {
+        title: `${event.part} taken out`,
+        body: <p>It went into No. {unitNumber(event.toUnit)}. What was measured before it no longer counts for readiness.</p>,
+      };
     case 'calibration':
       return {
         title: 'Calibration run',
