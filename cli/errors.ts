@@ -55,7 +55,9 @@ export class ApiProblemError extends ServerError {
     remedy: string;
     errors?: readonly { pointer: string; reason: string }[] | undefined;
   }) {
-    super([problem.title, problem.detail].filter(Boolean).join(': '), problem.remedy);
+    // A detail that begins as the title does says it all.
+    const { title, detail } = problem;
+    super(detail === undefined || detail.startsWith(title) ? (detail ?? title) : `${title}: ${detail}`, problem.remedy);
     this.status = problem.status;
     this.kind = problem.kind;
     this.errors = problem.errors ?? [];

@@ -89,6 +89,15 @@ export function createProgram(context: Context, done: (code: number) => void): C
       does(async () => (await import('./commands/unit/show.js')).runUnitShow)({ ...options, number }),
     );
   unit
+    .command('family')
+    .description('give a unit that came in without one its control family: the service sheet it goes by')
+    .argument('<unit>', 'unit number, like 0412', unitNumber)
+    .argument('<family>', 'control family, like heron-h6')
+    .option(...json)
+    .action((number: number, family: string, options: { json?: boolean }) =>
+      does(async () => (await import('./commands/unit/family.js')).runUnitFamily)({ ...options, number, family }),
+    );
+  unit
     .command('list')
     .description('the units, newest first')
     .option('--find <text>', 'a number, a maker, a model, a serial')

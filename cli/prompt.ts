@@ -85,7 +85,10 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
         const onKey = (pressed: string): void => {
           const answer = question.keys.find(({ key }) => key === pressed.toLowerCase());
           if (answer) settle(() => (output.write(`${nameOfKey(answer.key)}  ${timeText(now())}\n`), resolve(answer.key)));
-          else output.write(`\n${question.again ?? 'There is no default: press one of these keys.'}\n${question.message}  ${row}   > `);
+          else
+            output.write(
+              `\n${question.again ?? `${indentOf(question.message)}There is no default: press one of these keys.`}\n${question.message}  ${row}   > `,
+            );
         };
         readKeys(stdin, onKey, () => interruption.interrupt()).then((opened) => {
           keyboard = opened;
@@ -105,3 +108,6 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
 }
 
 const nameOfKey = (key: string): string => (key === ' ' ? 'space' : key === '\r' ? 'enter' : key);
+
+/** What is said again stands where the question stands. */
+const indentOf = (message: string): string => ' '.repeat(message.length - message.trimStart().length);

@@ -3,6 +3,7 @@ import { energisingOf } from '../../shared/script/energised.js';
 import { sinceOpened } from '../../shared/readiness/facts.js';
 import type { Step } from '../../shared/script/schema.js';
 import type { Context } from '../context.js';
+import { cautionLines } from '../render/caution-lines.js';
 import { NobodyToAskError } from '../errors.js';
 import type { OpenRig } from '../instruments/rig.js';
 import { simulatedTechnician } from './simulated-technician.js';
@@ -44,7 +45,7 @@ export async function mayBegin({ context, unit, rig, step, caution, alreadyDone 
       : undefined;
   if (energisingOf(step, unit.sheet) === 'dead') return technician ?? nobody(context, unit);
   if (alreadyDone) {
-    stderr.say(`CAUTION  ${caution}`);
+    stderr.say(cautionLines(caution, await stderr.style()).join('\n'));
     return technician ?? nobody(context, unit);
   }
   if (!technician)
@@ -52,7 +53,7 @@ export async function mayBegin({ context, unit, rig, step, caution, alreadyDone 
       'This energises the machine, and its caution waits for a person. No port was opened.',
       'run it at a terminal',
     );
-  if (!technician.attended) stderr.say(`CAUTION  ${caution}`);
+  if (!technician.attended) stderr.say(cautionLines(caution, await stderr.style()).join('\n'));
   if ((await technician.confirms(step.id, caution)) === 'yes') return technician;
   stderr.say('Not begun. Nothing was recorded.');
   return undefined;

@@ -8,7 +8,8 @@ import { readIfThere, writeWhole } from '../home.js';
 import { parseMoney } from '../money.js';
 import { parsePartSource } from '../part-source.js';
 import { parseJson } from '../session.js';
-import { indented, wrap } from '../render/columns.js';
+import { cautionLines } from '../render/caution-lines.js';
+import { indented } from '../render/columns.js';
 import { unitSign } from '../../shared/measure/format-reading.js';
 import type { Technician, TypedReading } from './technician.js';
 
@@ -37,9 +38,7 @@ export function terminalTechnician(context: Context, currency: string): Technici
   return {
     attended: true,
     async confirms(_stepId, text) {
-      const { ink } = await stderr.style();
-      const [first = '', ...rest] = wrap(text, Math.max(20, stderr.columns - INDENT.length - 1));
-      stderr.write(`\n${ink.inverse(' CAUTION ')}  ${first}\n${rest.map((line) => `${INDENT}${line}\n`).join('')}`);
+      stderr.write(`\n${cautionLines(text, await stderr.style()).join('\n')}\n`);
       return (await prompt.key({
         message: `${INDENT}Done?`,
         keys: YES_NO,

@@ -15,7 +15,12 @@ export async function runOverride(
       refuse: (text) => (text.length < 10 ? 'say why, in at least 10 characters' : undefined),
       instead: 'give it with --reason',
     }));
-  const { event } = await (await context.api()).call('recordOverride', { params: { number }, body: { gate: 'dead tests', reason: why } });
+  const api = await context.api();
+  const { event } = await api.call('recordOverride', {
+    params: { number },
+    body: { gate: 'dead tests', reason: why },
+    idempotencyKey: context.newId(),
+  });
   if (json === true) printJson(context, event);
   else
     context.stdout.write(

@@ -159,5 +159,8 @@ async function printTakenIn({ stdout, stderr }: Context, unit: Unit): Promise<vo
   stdout.write(`${ink.bold(unitLabel(unit.number))}  ${unit.plate.maker} ${unit.plate.model}, ${unit.appliance}, taken in.\n`);
   if (unit.sameSerial) stdout.write(`The same serial as ${unit.sameSerial.units.map(unitLabel).join(', ')}: ${unit.sameSerial.reason}.\n`);
   if (unit.licensedOnly) stderr.say('Licensed person only: gas, sealed refrigerant or a microwave oven. No script runs on it.');
-  if (unit.family === undefined) stderr.say('It has no control family yet: without a service sheet its lamps can’t be decoded.');
+  if (unit.family === undefined)
+    stderr.say(
+      `It has no control family yet, and without a service sheet its lamps can’t be decoded. When it is known: refettle unit family ${unit.number} FAMILY`,
+    );
 }
