@@ -1,4 +1,5 @@
 // What the server refuses with. Translated to problem+json in problem.ts and nowhere else.
+import { unitNumberText } from '../shared/unit-number.js';
 
 export interface Fault {
   /** Into the request, by JSON pointer (RFC 6901). */
@@ -50,7 +51,7 @@ export class ConflictError extends Error {
 export class SameSerialError extends Error {
   override readonly name = 'SameSerialError';
   constructor(readonly units: readonly number[]) {
-    super(`The serial number is on the books already: ${units.map((number) => String(number).padStart(4, '0')).join(', ')}.`);
+    super(`The serial number is on the books already: ${units.map(unitNumberText).join(', ')}.`);
   }
 }
 

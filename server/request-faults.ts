@@ -4,7 +4,7 @@ import { InvalidError, type Fault } from './errors.js';
 /** RFC 6901, section 3. */
 const token = (part: PropertyKey): string => `/${String(part).replaceAll('~', '~0').replaceAll('/', '~1')}`;
 
-export const pointerTo = (path: readonly PropertyKey[], below = ''): string => below + path.map(token).join('');
+const pointerTo = (path: readonly PropertyKey[], below = ''): string => below + path.map(token).join('');
 
 /** A request may be wrong in thousands of places; nobody reads more than these. */
 const FAULTS_AT_MOST = 50;

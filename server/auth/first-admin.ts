@@ -9,7 +9,7 @@ const LINK_LASTS_MS = 24 * 3_600_000;
 const EVERY_ADDRESS = new Set(['0.0.0.0', '::']);
 
 /** Where a browser on this machine finds us. */
-export function ownAddress({ publicUrl, host, port }: AppDependencies['config']): string {
+function ownAddress({ publicUrl, host, port }: AppDependencies['config']): string {
   if (publicUrl !== undefined) return publicUrl;
   const name = EVERY_ADDRESS.has(host) ? '127.0.0.1' : host;
   return `http://${name.includes(':') ? `[${name}]` : name}:${String(port)}`;

@@ -3,12 +3,12 @@ import { userSchema, type User } from '../../shared/api/sessions.js';
 import type { Role } from '../../shared/api/roles.js';
 import type { Db } from '../db.js';
 
-export const emailKey = (email: string): string => email.trim().toLowerCase();
+const emailKey = (email: string): string => email.trim().toLowerCase();
 
 const withPasswordSchema = z.object({ user: userSchema, passwordHash: z.string(), active: z.boolean() });
-export type PersonWithPassword = z.infer<typeof withPasswordSchema>;
+type PersonWithPassword = z.infer<typeof withPasswordSchema>;
 
-export interface NewPerson {
+interface NewPerson {
   id: string;
   email: string;
   name: string;

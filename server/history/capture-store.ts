@@ -26,7 +26,7 @@ const rowSchema = z
     body: row.body,
     file: row.file,
   }));
-export type StoredCapture = z.output<typeof rowSchema>;
+type StoredCapture = z.output<typeof rowSchema>;
 
 const captureRows = (db: Db) =>
   db('captures').join('people', 'people.id', 'captures.person_id').join('units', 'units.id', 'captures.unit_id');

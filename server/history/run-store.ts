@@ -67,7 +67,7 @@ const storedSchema = z
     verdict: row.verdict,
     steps: row.steps,
   }));
-export type StoredRun = z.output<typeof storedSchema>;
+type StoredRun = z.output<typeof storedSchema>;
 
 export async function findRun(db: Db, id: string): Promise<StoredRun | undefined> {
   const row: unknown = await db('runs')
@@ -78,7 +78,7 @@ export async function findRun(db: Db, id: string): Promise<StoredRun | undefined
   return row === undefined ? undefined : storedSchema.parse(row);
 }
 
-export interface NewRun {
+interface NewRun {
   unitId: string;
   by: PersonRef;
   /** Without the capture files: those are rows of their own. */

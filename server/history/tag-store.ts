@@ -51,7 +51,7 @@ export async function unitNumberOfTag(db: Db, number: string): Promise<number | 
   return found === undefined ? undefined : z.object({ number: z.number() }).parse(found).number;
 }
 
-export interface NewTag {
+interface NewTag {
   unitId: string;
   running: number;
   content: TagContent;

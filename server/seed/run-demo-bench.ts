@@ -3,10 +3,11 @@ import { join } from 'node:path';
 import { execa } from 'execa';
 import { signedInSchema } from '../../shared/api/sessions.js';
 import { unitPageSchema, unitSchema } from '../../shared/api/units.js';
+import { unitNumberText } from '../../shared/unit-number.js';
 import { packageRoot } from '../package-root.js';
 import type { DemoAccount } from './seed-demo-shop.js';
 
-export interface DemoBench {
+interface DemoBench {
   /** Of the running server. */
   address: string;
   dataDir: string;
@@ -24,8 +25,6 @@ interface Command {
   endsWith?: number[];
 }
 
-/** As on labels and screens. */
-const unitNumberDigits = 4;
 const rig = 'sim:heron-mend';
 const script = (name: string): string => `server/seed/shop/${name}.yaml`;
 
@@ -72,7 +71,7 @@ export async function runDemoBench(bench: DemoBench): Promise<void> {
   bench.write('\nA first bench run, on simulated instruments:\n');
   await refettle(bench, home, signIn(technician));
   const unit = unitSchema.parse(JSON.parse(await refettle(bench, home, takeIn)));
-  const number = unit.number.toString().padStart(unitNumberDigits, '0');
+  const number = unitNumberText(unit.number);
   for (const command of benchWork(number)) await refettle(bench, home, command);
   await signOff(bench, lead, number);
   await refettle(bench, home, printTag(number));

@@ -1,21 +1,10 @@
-import { lampFace } from '../../../shared/lamps/face.js';
-import type { Sheet } from '../../../shared/sheet/schema.js';
-import type { CaptureBody } from '../../../shared/history/events.js';
 import { NotFoundError } from '../../errors.js';
 import { findCapture } from '../../history/capture-store.js';
+import { codesNamed, facesOf } from '../../history/faces.js';
 import { findSheet } from '../../history/sheet-store.js';
 import { findUnit } from '../../history/unit-store.js';
 import type { RegisterRoute } from '../../route.js';
 import { recordCapture } from './captures-service.js';
-
-function facesOf({ answer }: CaptureBody, sheet: Sheet) {
-  const candidates = answer.segments.flatMap((segment) => (segment.kind === 'unreadable' ? segment.candidates : []));
-  const faces = [...answer.codes, ...candidates].flatMap(({ code }) => {
-    const face = lampFace(code, sheet);
-    return face ? [[code, face] as const] : [];
-  });
-  return Object.fromEntries(faces);
-}
 
 export function registerCaptureRoutes(route: RegisterRoute): void {
   route('recordCapture', ({ params, body, person, trx, now }) => recordCapture(trx, params.number, body, person, now));
@@ -37,7 +26,7 @@ export function registerCaptureRoutes(route: RegisterRoute): void {
       capture: body,
       file,
       sheet: stored.sheet,
-      faces: facesOf(body, stored.sheet),
+      faces: facesOf(codesNamed(body.answer), stored.sheet),
     };
   });
 }

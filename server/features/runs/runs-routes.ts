@@ -1,6 +1,6 @@
-import { lampFace } from '../../../shared/lamps/face.js';
 import { NotFoundError } from '../../errors.js';
 import { captureBodiesOfRun } from '../../history/capture-store.js';
+import { codesNamed, facesOf } from '../../history/faces.js';
 import { findRun } from '../../history/run-store.js';
 import { findSheet } from '../../history/sheet-store.js';
 import { findUnit } from '../../history/unit-store.js';
@@ -17,18 +17,15 @@ export function registerRunRoutes(route: RegisterRoute): void {
     const bodies = await captureBodiesOfRun(trx, run.id);
     const first = bodies[0];
     const sheet = first && (await findSheet(trx, first.family, first.sheetEdition))?.sheet;
-    const faces = bodies.flatMap(({ answer }) =>
-      answer.codes.flatMap(({ code }) => {
-        const face = sheet && lampFace(code, sheet);
-        return face ? [[code, face] as const] : [];
-      }),
-    );
     const { unitNumber: _number, ...rest } = run;
     return {
       ...rest,
       unit: { number: unit.number, maker: unit.plate.maker, model: unit.plate.model },
       answers: Object.fromEntries(bodies.map((body) => [body.captureId, body.answer])),
-      faces: Object.fromEntries(faces),
+      faces: facesOf(
+        bodies.flatMap(({ answer }) => codesNamed(answer)),
+        sheet,
+      ),
     };
   });
 }
