@@ -1,6 +1,7 @@
 import { z } from 'zod';
 import { unitEventSchema, type UnitEvent } from '../../shared/history/events.js';
 import type { Db } from '../db.js';
+import { ConflictError } from '../errors.js';
 
 const rowSchema = z.object({
   id: z.string(),
@@ -58,18 +59,19 @@ export async function historyOf(db: Db, unitId: string): Promise<PlacedEvent[]> 
   return (await historiesOf(db, [unitId])).get(unitId) ?? [];
 }
 
+/** Events may bring the ids that their benches gave them: one that is on the books already is a conflict. */
 export async function insertEvents(
   db: Db,
   unitId: string,
-  events: readonly UnitEvent[],
-  place: { orderedAt: Date; recordedAt: Date },
+  events: readonly Pick<PlacedEvent, 'event' | 'orderedAt'>[],
+  recordedAt: Date,
 ): Promise<void> {
-  const rows = events.map(({ id, at, by, simulated, runId, stepId, kind, ...body }) => ({
+  const rows = events.map(({ event: { id, at, by, simulated, runId, stepId, kind, ...body }, orderedAt }) => ({
     id,
     unit_id: unitId,
-    ordered_at: place.orderedAt,
+    ordered_at: orderedAt,
     at,
-    recorded_at: place.recordedAt,
+    recorded_at: recordedAt,
     person_id: by.id,
     person_role: by.role,
     kind,
@@ -78,5 +80,11 @@ export async function insertEvents(
     step_id: stepId,
     body: JSON.stringify(body),
   }));
-  if (rows.length > 0) await db('unit_events').insert(rows);
+  if (rows.length === 0) return;
+  const inserted: unknown[] = await db('unit_events').insert(rows).onConflict('id').ignore().returning('id');
+  if (inserted.length < rows.length)
+    throw new ConflictError(
+      'It is stored already, by this id.',
+      'Send it again under the key it was first sent with, or give new work a new id.',
+    );
 }

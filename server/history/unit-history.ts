@@ -2,10 +2,11 @@ import { v7 as newId } from 'uuid';
 import type { Shop, User } from '../../shared/api/sessions.js';
 import type { Unit } from '../../shared/api/units.js';
 import type { PersonRef, UnitEvent } from '../../shared/history/events.js';
-import type { UnitFacts } from '../../shared/readiness/facts.js';
+import { countingEvents, isMend, type UnitFacts } from '../../shared/readiness/facts.js';
 import { stageOf } from '../../shared/readiness/stage.js';
 import { whatWithdraws } from '../../shared/readiness/tag-standing.js';
 import type { Sheet } from '../../shared/sheet/schema.js';
+import { unitNumberText } from '../../shared/unit-number.js';
 import type { Db } from '../db.js';
 import { NotFoundError } from '../errors.js';
 import { historyOf, insertEvents, type PlacedEvent } from './event-store.js';
@@ -15,8 +16,6 @@ import { markWithdrawn, newestTag, type StoredTag } from './tag-store.js';
 import { findUnit, lockUnits, setStage } from './unit-store.js';
 
 export const refOf = ({ id, name, role }: User): PersonRef => ({ id, name, role });
-
-export const unitNumberText = (number: number): string => String(number).padStart(4, '0');
 
 /** A unit with all that is decided by: its history, its sheet, the shop, its tag. */
 export interface UnitHistory {
@@ -72,6 +71,10 @@ export interface Place {
   before: UnitEvent[];
 }
 
+/** Last; never before what stands already, should the server's clock have been set back. */
+export const arrivingNow = ({ placed }: Pick<UnitHistory, 'placed'>, now: Date): Date =>
+  new Date(Math.max(now.getTime(), placed.at(-1)?.orderedAt.getTime() ?? 0));
+
 /**
  * A history is in the order of arrival, with one exception: what a bench measured before the last repair and sent only afterwards
  * stands before that repair, for it says nothing about the mended machine. A repair with a clock that runs ahead counts from when
@@ -81,49 +84,64 @@ export function placeOf(history: UnitHistory, at: Date, now: Date): Place {
   const late = history.placed.find(
     ({ event, recordedAt }) => opensAnew(event) && at.getTime() < Math.min(Date.parse(event.at), recordedAt.getTime()),
   );
-  const newest = history.placed.at(-1)?.orderedAt.getTime() ?? 0;
-  // Never before what stands already, should the server's clock have been set back.
-  const orderedAt = late ? new Date(late.orderedAt.getTime() - 1) : new Date(Math.max(now.getTime(), newest));
+  const orderedAt = late ? new Date(late.orderedAt.getTime() - 1) : arrivingNow(history, now);
   return { orderedAt, before: history.placed.filter((one) => one.orderedAt <= orderedAt).map(({ event }) => event) };
 }
 
-const opensAnew = (event: UnitEvent): boolean => event.kind === 'repair' || event.kind === 'returned';
+const opensAnew = (event: UnitEvent): boolean => isMend(event) || event.kind === 'returned';
+
+/**
+ * Each event of a bench log by its own time, for the machine may have been mended while the run went on: what was measured before that
+ * stands before it, what was measured after it counts. The log's own order stays, should the bench's clock have been set back meanwhile.
+ */
+export function placeEach(history: UnitHistory, events: readonly UnitEvent[], now: Date): { event: UnitEvent; orderedAt: Date }[] {
+  let latest = 0;
+  return events.map((event) => {
+    latest = Math.max(latest, Date.parse(event.at));
+    return { event, orderedAt: placeOf(history, new Date(latest), now).orderedAt };
+  });
+}
 
 /**
  * Writes events into a unit's history, and everything that follows from them in the same transaction: its stage, and the end of
  * a standing tag that they contradict.
  */
-export async function recordEvents(db: Db, history: UnitHistory, events: readonly UnitEvent[], place: Place, now: Date): Promise<void> {
-  await insertEvents(db, history.unit.id, events, { orderedAt: place.orderedAt, recordedAt: now });
+export async function recordEvents(
+  db: Db,
+  history: UnitHistory,
+  events: readonly { event: UnitEvent; orderedAt: Date }[],
+  now: Date,
+): Promise<void> {
+  await insertEvents(db, history.unit.id, events, now);
   const placed = await historyOf(db, history.unit.id);
+  const facts = factsOf(history, eventsOf({ placed }));
   const tag = await newestTag(db, history.unit.id);
-  const broken = tag && !tag.withdrawn ? whatWithdraws(factsOf(history, eventsOf({ placed })), tag.number) : undefined;
-  const by = events.at(-1)?.by;
+  const broken = tag && !tag.withdrawn ? whatWithdraws(facts, tag.number) : undefined;
+  const by = events.at(-1)?.event.by;
   if (tag && broken !== undefined && by) {
-    await withdrawTag(db, { ...history, placed, tag }, { by, reason: broken, now, simulated: false });
+    await withdrawTag(db, { ...history, placed, tag }, { by, reason: broken, now });
     return;
   }
-  await setStage(db, history.unit.id, stageOf(eventsOf({ placed })));
+  await setStage(db, history.unit.id, stageOf(countingEvents(facts)));
 }
 
 /** The tag no longer stands: said in its row and in the history. */
 export async function withdrawTag(
   db: Db,
   history: UnitHistory & { tag: StoredTag },
-  why: { by: PersonRef; reason: string; now: Date; simulated: boolean },
+  why: { by: PersonRef; reason: string; now: Date },
 ): Promise<void> {
-  const { unit, tag, placed } = history;
+  const { unit, tag } = history;
   const event: UnitEvent = {
     id: newId(),
     at: why.now.toISOString(),
     by: why.by,
-    simulated: why.simulated,
+    simulated: false,
     kind: 'tag withdrawn',
     tag: tag.number,
     reason: why.reason,
   };
-  const newest = placed.at(-1)?.orderedAt.getTime() ?? 0;
   await markWithdrawn(db, tag.number, why.now, why.reason);
-  await insertEvents(db, unit.id, [event], { orderedAt: new Date(Math.max(why.now.getTime(), newest)), recordedAt: why.now });
-  await setStage(db, unit.id, stageOf([...eventsOf({ placed }), event]));
+  await insertEvents(db, unit.id, [{ event, orderedAt: arrivingNow(history, why.now) }], why.now);
+  await setStage(db, unit.id, stageOf(countingEvents(factsOf(history, [...eventsOf(history), event]))));
 }

@@ -153,11 +153,15 @@ export async function linkSameSerial(db: Db, numbers: readonly number[], to: num
     });
 }
 
+export async function setFamily(db: Db, unitId: string, family: string): Promise<void> {
+  await db('units').where({ id: unitId }).update({ family });
+}
+
 export async function setStage(db: Db, unitId: string, stage: Stage): Promise<void> {
   await db('units').where({ id: unitId }).update({ stage });
 }
 
-export interface UnitFilter {
+interface UnitFilter {
   find: string | undefined;
   stage: string | undefined;
   below: number | undefined;

@@ -7,7 +7,7 @@ import { newRunSchema, runPageSchema, runStoredSchema } from './runs.js';
 import { firstAdminSchema, meSchema, newPersonSchema, personSchema, signedInSchema, signInSchema } from './sessions.js';
 import { newSheetSchema, sheetPageSchema, sheetRowSchema } from './sheets.js';
 import { publicTagQuerySchema, publicTagSchema, signOffSchema, tagPageSchema, withdrawTagSchema } from './tags.js';
-import { newUnitSchema, overrideSchema, unitPageSchema, unitRowSchema, unitSchema } from './units.js';
+import { giveFamilySchema, newUnitSchema, overrideSchema, unitPageSchema, unitRowSchema, unitSchema } from './units.js';
 
 /** One route: the server checks requests by it, OpenAPI describes it, terminal and browser call it, the tests walk it. */
 export interface Route {
@@ -25,7 +25,13 @@ export interface Route {
   idempotent?: true;
 }
 
-const unitNumber = z.strictObject({ number: z.coerce.number().int().positive().max(2_000_000_000) });
+/** Digits and nothing else: JavaScript's other ways to write a number (`0x1`, `1e0`, blanks around it) are slips in an address. */
+const unitNumber = z.strictObject({
+  number: z.preprocess(
+    (text) => (/^\d+$/.test(String(text)) ? Number(text) : undefined),
+    z.number({ error: 'is the unit’s number in digits, like 412' }).int().positive().max(2_000_000_000),
+  ),
+});
 const byId = z.strictObject({ id: z.uuid() });
 const family = z.strictObject({ family: z.string().max(100) });
 const tagNumber = z.strictObject({ tag: z.string().max(40) });
@@ -141,6 +147,17 @@ export const routes = {
     status: 200,
     response: unitPageSchema,
   },
+  giveFamily: {
+    method: 'POST',
+    path: '/api/units/:number/family',
+    action: 'unit.take-in',
+    summary: 'Give a unit that came in without one its control family; 409 where it has one',
+    params: unitNumber,
+    body: giveFamilySchema,
+    status: 200,
+    response: unitSchema,
+    idempotent: true,
+  },
   recordOverride: {
     method: 'POST',
     path: '/api/units/:number/overrides',
@@ -150,6 +167,7 @@ export const routes = {
     body: overrideSchema,
     status: 201,
     response: eventStoredSchema,
+    idempotent: true,
   },
   recordCapture: {
     method: 'POST',
@@ -279,10 +297,7 @@ type Texts = Record<string, string | number | boolean | undefined> | undefined;
  *
  * @example routeUrl('getUnit', { params: { number: 412 } }) // '/api/units/412'
  */
-export function routeUrl(
-  name: RouteName,
-  request: { params?: Texts; query?: Texts } = {},
-): string {
+export function routeUrl(name: RouteName, request: { params?: Texts; query?: Texts } = {}): string {
   const path = routes[name].path.replace(/:(\w+)/g, (_, key: string) => encodeURIComponent(String(request.params?.[key])));
   const query = new URLSearchParams(
     Object.entries(request.query ?? {}).flatMap(([key, value]) => (value === undefined ? [] : [[key, String(value)]])),

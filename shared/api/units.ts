@@ -46,6 +46,9 @@ export const newUnitSchema = z.strictObject({
 });
 export type NewUnit = z.infer<typeof newUnitSchema>;
 
+/** The control family of a unit that came in without one. */
+export const giveFamilySchema = z.strictObject({ family: slugSchema });
+
 /** The tag a unit carries, if it ever had one. */
 export const tagStateSchema = z.strictObject({ number: z.string(), standing: z.enum(['stands', 'withdrawn']), signedOffAt: z.string() });
 

@@ -57,6 +57,10 @@ export const validCalls: Record<RouteName, MakeCall> = {
   listUnits: () => Promise.resolve({}),
   takeInUnit: () => Promise.resolve({ body: newUnit() }),
   getUnit: async (server) => ({ params: { number: (await takeIn(server)).number } }),
+  giveFamily: async (server) => {
+    const { number } = await takeIn(server, { family: undefined });
+    return { params: { number }, body: { family: 'heron-h6' } };
+  },
   recordOverride: onNewUnit(() => ({ gate: 'dead tests', reason: 'the insulation tester is away' })),
   recordCapture: onNewUnit((server) => newCapture(server), { ready: true }),
   getCapture: async (server) => {

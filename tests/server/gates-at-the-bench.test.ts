@@ -215,10 +215,13 @@ describe('Gate 4, no code must be proved', () => {
     });
     const number = await proveWith({ change: (step) => (step.kind === 'clear' ? forgotten(step) : step) });
     expect(await ruleOf(number, 'no-code')).toMatchObject({ state: 'missing', evidence: 'stored codes were not cleared after the repair' });
+    // The log calls the step unjudged; the script decides.
+    expect((await page(number)).runs.at(-1)?.verdict).toBe('not done');
   });
 
   test('When the capture is too short, then it is inconclusive', async () => {
-    const short = captureFile('ready blink')
+    const recordedWhileProving = new Date(server.time.now.getTime() + 6 * 60_000).toISOString();
+    const short = captureFile('ready blink', { capturedAt: recordedWhileProving })
       .split('\n')
       .filter((line) => !line.startsWith('[') || Number(/\d+/.exec(line)?.[0]) < 15_000_000)
       .map((line) => (line.startsWith('{"end"') ? '{"end":15000000}' : line))

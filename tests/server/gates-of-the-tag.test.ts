@@ -42,6 +42,10 @@ describe('Gate 6, simulated results never count outside the demo shop', () => {
         .status,
     ).toBe(403);
     expect((await page(real.number)).readiness.met).toBe(0);
+    // Nor do they move its stage, on its page or in the list.
+    expect((await page(real.number)).stage).toBe('intake');
+    const listed = await server.ok('listUnits', { as: server.people.sales, query: { stage: 'intake', limit: 200 } });
+    expect(listed.items.find((row) => row.number === real.number)).toMatchObject({ stage: 'intake' });
     expect(
       (await server.send('recordCapture', { ...by(real.number), body: newCapture(server, 'ready blink', { source: 'simulated' }) })).status,
     ).toBe(403);
@@ -164,10 +168,58 @@ describe('Gate 8, what withdraws a tag', () => {
       ...by(number),
       body: newRepair(server, { partSource: { kind: 'used', fromUnit: donor.unit.number } }),
     });
-    expect(await withdrawnBecause(donor.unit.number)).toBe('a part was removed: Drain pump');
-    expect((await page(donor.unit.number)).events.findLast((event) => event.kind === 'note')).toMatchObject({
-      text: `Drain pump taken out, for unit ${String(number).padStart(4, '0')}`,
+    expect(await withdrawnBecause(donor.unit.number)).toBe('a part was taken out: Drain pump');
+    const { events, stage } = await page(donor.unit.number);
+    expect(events.slice(-2)).toMatchObject([{ kind: 'part removed', part: 'Drain pump', toUnit: number }, { kind: 'tag withdrawn' }]);
+    expect(stage).toBe('repair');
+    const signed = await server.send('signOff', {
+      params: { number: donor.unit.number },
+      as: server.otherLead,
+      body: await rulesSeen(server, donor.unit.number),
     });
+    expect(problemIn(signed)).toMatchObject({ status: 403, kind: 'gate' });
+  });
+
+  test('When a part is taken out of a unit before anybody signed it, then its checks are due again and its gate is shut', async () => {
+    const donor = await takeIn(server);
+    await mendAndProve(server, donor.number);
+    expect((await page(donor.number)).readiness.readyToSign).toBe(true);
+    const { number } = await takeIn(server);
+    await server.ok('recordRun', {
+      ...by(number),
+      body: newRun(server, 'h6-mend', {
+        change: (step) =>
+          step.kind === 'repair' ? { ...step, repair: { ...step.repair, partSource: { kind: 'used', fromUnit: donor.number } } } : step,
+      }),
+    });
+    const { readiness, energising } = await page(donor.number);
+    expect(readiness.rules.map(({ id, state }) => [id, state])).toEqual([
+      ['checks', 'missing'],
+      ['no-code', 'missing'],
+      ['calibration', 'missing'],
+      ['electrical-safety', 'missing'],
+      ['four-eyes', 'missing'],
+    ]);
+    expect(energising.open).toBe(false);
+    expect(
+      (
+        await server.send('signOff', {
+          params: { number: donor.number },
+          as: server.people.lead,
+          body: await rulesSeen(server, donor.number),
+        })
+      ).status,
+    ).toBe(403);
+  });
+
+  test('When the repair that takes a part comes with a clock from before the donor’s own repair, then the donor’s tag ends all the same', async () => {
+    const { number } = await takeIn(server);
+    const early = newRepair(server);
+    pass(server, 5);
+    const donor = await signedOffUnit(server);
+    const body = { ...early, repair: { ...early.repair, partSource: { kind: 'used', fromUnit: donor.unit.number } } };
+    await server.ok('recordRepair', { ...by(number), body });
+    expect(await withdrawnBecause(donor.unit.number)).toBe('a part was taken out: Drain pump');
   });
 
   test('When the donor is not there, or is the unit itself, then the repair is refused', async () => {

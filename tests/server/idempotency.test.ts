@@ -1,6 +1,6 @@
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { tidyUp } from '../../server/housekeeping.js';
-import { addHeron, newReading, newRun, newUnit, takeIn } from '../helpers/factories.js';
+import { addHeron, newInspection, newReading, newRepair, newRun, newUnit, takeIn } from '../helpers/factories.js';
 import { problemIn, startTestServer, type TestServer } from '../helpers/test-server.js';
 
 let server: TestServer;
@@ -96,6 +96,33 @@ test('When a bench log is sent again after a lost answer, then it is stored once
   expect(page.events.filter((event) => event.kind === 'repair')).toHaveLength(1);
   // Under another key the id of the run still tells.
   expect(problemIn(await server.send('recordRun', { ...call, key: 'another' }))).toMatchObject({ status: 409 });
+});
+
+test('When one piece of work is sent under two keys, then its id tells, whatever kind it is', async () => {
+  const { number } = await takeIn(server);
+  const call = { as: server.people.technician, params: { number } };
+  const works = [
+    ['recordReading', newReading(server, 'heater')],
+    ['recordInspection', newInspection(server)],
+    ['recordRepair', newRepair(server)],
+  ] as const;
+  for (const [name, body] of works) {
+    expect((await server.ok(name, { ...call, body })).event.id).toBe(body.id);
+    expect(problemIn(await server.send(name, { ...call, body }))).toMatchObject({ status: 409, kind: 'conflict' });
+  }
+  expect(problemIn(await server.send('recordRepair', { ...call, body: { ...newRepair(server), id: works[0][1].id } })).status).toBe(409);
+  const page = await server.ok('getUnit', call);
+  expect(page.events.slice(1).map(({ id }) => id)).toEqual(works.map(([, { id }]) => id));
+});
+
+test('When an override is sent again after a lost answer, then the gate is opened once', async () => {
+  const { number } = await takeIn(server);
+  const body = { gate: 'dead tests', reason: 'the insulation tester is away' };
+  const call = { as: server.people.lead, params: { number }, key: 'the-override', body };
+  const [first, again] = [await server.send('recordOverride', call), await server.send('recordOverride', call)];
+  expect([first.status, again.text]).toEqual([201, first.text]);
+  const page = await server.ok('getUnit', { as: server.people.lead, params: { number } });
+  expect(page.events.filter(({ kind }) => kind === 'override')).toHaveLength(1);
 });
 
 test('When 90 days have passed, then the key is forgotten, and not before', async () => {

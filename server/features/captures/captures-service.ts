@@ -3,16 +3,19 @@ import type { z } from 'zod';
 import type { newCaptureSchema } from '../../../shared/api/captures.js';
 import type { User } from '../../../shared/api/sessions.js';
 import type { DecodeAnswer } from '../../../shared/decode/answer.js';
+import type { UnitEvent } from '../../../shared/history/events.js';
 import { captureBody } from '../../../shared/history/settle-run.js';
 import { readCapture } from '../../../shared/lamps/read-capture.js';
 import { energisingGate } from '../../../shared/readiness/gates.js';
+import { unitNumberText } from '../../../shared/unit-number.js';
 import type { Db } from '../../db.js';
-import { ConflictError, InvalidError } from '../../errors.js';
+import { ConflictError } from '../../errors.js';
 import { refuseWhereShut } from '../../history/ask-gate.js';
 import { atPointer } from '../../history/at-pointer.js';
 import { insertCapture } from '../../history/capture-store.js';
 import { happenedAt, refuseFuture } from '../../history/happened-at.js';
-import { factsOf, openUnitHistory, placeOf, recordEvents, refOf, unitNumberText } from '../../history/unit-history.js';
+import { sheetOf } from '../../history/sheet-of.js';
+import { factsOf, openUnitHistory, placeOf, recordEvents, refOf } from '../../history/unit-history.js';
 import { refuseWhatIsNoText } from '../../request-faults.js';
 
 type NewCapture = z.output<typeof newCaptureSchema>;
@@ -32,12 +35,8 @@ export async function recordCapture(
   const capture = atPointer('/file', () => readCapture(request.file));
   refuseFuture(capture.header.capturedAt, now, '/file');
   const history = await openUnitHistory(db, unitNumber);
-  const { unit, sheet } = history;
-  if (!sheet)
-    throw new InvalidError([
-      { pointer: '', reason: `unit ${unitNumberText(unit.number)} has no service sheet, so nothing can decode its lamps` },
-    ]);
-
+  const { unit } = history;
+  const sheet = sheetOf(history, 'nothing can decode its lamps');
   const simulated = capture.header.source === 'simulated';
   const place = placeOf(history, at, now);
   if (!request.fromFile) {
@@ -62,6 +61,7 @@ export async function recordCapture(
       'A capture with this id is stored already.',
       'Send the capture again under the key it was first sent with, or give it a new id.',
     );
-  await recordEvents(db, history, [{ id: newId(), at: at.toISOString(), by, simulated, kind: 'capture', capture: body }], place, now);
+  const event: UnitEvent = { id: newId(), at: at.toISOString(), by, simulated, kind: 'capture', capture: body };
+  await recordEvents(db, history, [{ event, orderedAt: place.orderedAt }], now);
   return { id: request.id, answer: body.answer };
 }

@@ -3,32 +3,35 @@ import type { z } from 'zod';
 import type { newInspectionSchema, newReadingSchema, newRepairSchema } from '../../../shared/api/readings.js';
 import type { User } from '../../../shared/api/sessions.js';
 import type { UnitEvent } from '../../../shared/history/events.js';
-import { settleInspection, settleReading } from '../../../shared/history/settle-run.js';
+import { settleInspection, settleReading } from '../../../shared/history/settle-reading.js';
 import { energisingGate, type EnergisingQuestion } from '../../../shared/readiness/gates.js';
+import { unitNumberText } from '../../../shared/unit-number.js';
 import type { Db } from '../../db.js';
-import { InvalidError } from '../../errors.js';
 import { refuseWhereShut } from '../../history/ask-gate.js';
 import { atPointer } from '../../history/at-pointer.js';
 import { donorsOf, takePartFrom } from '../../history/donor.js';
 import { happenedAt } from '../../history/happened-at.js';
+import { sheetOf } from '../../history/sheet-of.js';
 import {
+  arrivingNow,
   factsOf,
   openUnitHistory,
   placeOf,
   recordEvents,
   refOf,
-  unitNumberText,
   type Place,
   type UnitHistory,
 } from '../../history/unit-history.js';
 
 interface Recorded {
+  id: string;
   at: string;
   simulated: boolean;
 }
 
 const baseOf = (request: Recorded, person: User, at: Date) => ({
-  id: newId(),
+  // As PostgreSQL writes it.
+  id: request.id.toLowerCase(),
   at: at.toISOString(),
   by: refOf(person),
   simulated: request.simulated,
@@ -51,17 +54,13 @@ export async function recordReading(
 ): Promise<UnitEvent> {
   const at = happenedAt(request.at, now, '/at');
   const history = await openUnitHistory(db, unitNumber);
-  const { sheet } = history;
-  if (!sheet)
-    throw new InvalidError([
-      { pointer: '', reason: `unit ${unitNumberText(unitNumber)} has no service sheet, so there are no limits to judge a reading by` },
-    ]);
+  const sheet = sheetOf(history, 'there are no limits to judge a reading by');
   const reading = atPointer('/reading', () => settleReading(request.reading, sheet));
   const place = placeOf(history, at, now);
   if (reading.deadTest !== undefined) askGate(history, place, { rigSimulated: request.simulated, before: reading.deadTest }, reading.title);
   else if (reading.condition === 'energised') askGate(history, place, { rigSimulated: request.simulated }, reading.title);
   const event: UnitEvent = { ...baseOf(request, person, at), kind: 'reading', reading };
-  await recordEvents(db, history, [event], place, now);
+  await recordEvents(db, history, [{ event, orderedAt: place.orderedAt }], now);
   return event;
 }
 
@@ -80,7 +79,7 @@ export async function recordInspection(
   if (inspection.deadTest !== undefined)
     askGate(history, place, { rigSimulated: request.simulated, before: inspection.deadTest }, inspection.title);
   const event: UnitEvent = { ...baseOf(request, person, at), kind: 'inspection', inspection };
-  await recordEvents(db, history, [event], place, now);
+  await recordEvents(db, history, [{ event, orderedAt: place.orderedAt }], now);
   return event;
 }
 
@@ -96,8 +95,8 @@ export async function recordRepair(
   const history = await openUnitHistory(db, unitNumber, donorsOf([request.repair]));
   const base = baseOf(request, person, at);
   const event: UnitEvent = { ...base, kind: 'repair', repair: request.repair };
-  await takePartFrom(db, history, request.repair, { by: base.by, simulated: base.simulated, now, pointer: '/repair/partSource/fromUnit' });
-  await recordEvents(db, history, [event], placeOf(history, at, now), now);
+  await takePartFrom(db, history, request.repair, { ...base, now, pointer: '/repair/partSource/fromUnit' });
+  await recordEvents(db, history, [{ event, orderedAt: placeOf(history, at, now).orderedAt }], now);
   return event;
 }
 
@@ -113,6 +112,6 @@ export async function recordOverride(db: Db, unitNumber: number, reason: string,
     gate: 'dead tests',
     reason,
   };
-  await recordEvents(db, history, [event], placeOf(history, now, now), now);
+  await recordEvents(db, history, [{ event, orderedAt: arrivingNow(history, now) }], now);
   return event;
 }

@@ -10,6 +10,7 @@ import type { RunLog } from '../../../shared/script/run-log.js';
 import type { Script } from '../../../shared/script/schema.js';
 import type { Sheet } from '../../../shared/sheet/schema.js';
 import type { Verdict } from '../../../shared/verdict.js';
+import { unitNumberText } from '../../../shared/unit-number.js';
 import type { Db } from '../../db.js';
 import { ConflictError, GateError, InvalidError } from '../../errors.js';
 import { atPointer } from '../../history/at-pointer.js';
@@ -17,7 +18,17 @@ import { insertCapture } from '../../history/capture-store.js';
 import { donorsOf, takePartFrom } from '../../history/donor.js';
 import { happenedAt, refuseFuture } from '../../history/happened-at.js';
 import { insertRun } from '../../history/run-store.js';
-import { factsOf, openUnitHistory, placeOf, recordEvents, refOf, unitNumberText, type UnitHistory } from '../../history/unit-history.js';
+import { sheetOf } from '../../history/sheet-of.js';
+import {
+  factsOf,
+  openUnitHistory,
+  placeEach,
+  placeOf,
+  recordEvents,
+  refOf,
+  type Place,
+  type UnitHistory,
+} from '../../history/unit-history.js';
 import { refuseWhatIsNoText } from '../../request-faults.js';
 import { logFaults } from './log-against-script.js';
 
@@ -58,13 +69,7 @@ function settle(log: RunLog, script: Script, sheet: Sheet, by: PersonRef): Settl
   }
 }
 
-function askGates(
-  history: UnitHistory,
-  settled: SettledRun,
-  script: Script,
-  sheet: Sheet,
-  before: ReturnType<typeof placeOf>['before'],
-): void {
+function askGates(history: UnitHistory, settled: SettledRun, script: Script, sheet: Sheet, before: Place['before']): void {
   const number = unitNumberText(history.unit.number);
   if (history.unit.licensedOnly) {
     throw new GateError(
@@ -89,11 +94,8 @@ export async function recordRun(
   const told = withTimesInUtc(request, now);
   const repairs = told.steps.flatMap((step) => (step.kind === 'repair' ? [step.repair] : []));
   const history = await openUnitHistory(db, unitNumber, donorsOf(repairs));
-  const { unit, sheet } = history;
-  if (!sheet)
-    throw new InvalidError([
-      { pointer: '', reason: `unit ${unitNumberText(unitNumber)} has no service sheet, so no script can run on it` },
-    ]);
+  const { unit } = history;
+  const sheet = sheetOf(history, 'no script can run on it');
   const script = readScriptOf(told, sheet);
   const faults = logFaults(told, script);
   if (faults.length > 0) throw new InvalidError(faults);
@@ -102,8 +104,8 @@ export async function recordRun(
   const settled = settle(told, script, sheet, by);
   refuseWhatIsNoText(settled.events, '/steps');
   for (const { body } of settled.captures) refuseFuture(body.capturedAt, now, '/steps');
-  const place = placeOf(history, new Date(told.startedAt), now);
-  askGates(history, settled, script, sheet, place.before);
+  // What the bench could know when it began: what others wrote down meanwhile is placed around the run's steps, and shuts no gate behind it.
+  askGates(history, settled, script, sheet, placeOf(history, new Date(told.startedAt), now).before);
 
   const steps = settled.log.steps.map((step) => (step.kind === 'capture' || step.kind === 'watch' ? { ...step, file: '' } : step));
   const stored = await insertRun(db, { unitId: unit.id, by, log: { ...settled.log, steps }, verdict: settled.verdict, recordedAt: now });
@@ -112,13 +114,14 @@ export async function recordRun(
   for (const [index, step] of settled.log.steps.entries()) {
     if (step.kind !== 'repair') continue;
     await takePartFrom(db, history, step.repair, {
+      at: step.endedAt,
       by,
       simulated: settled.log.rig.simulated,
       now,
       pointer: `/steps/${String(index)}/repair/partSource/fromUnit`,
     });
   }
-  await recordEvents(db, history, settled.events, place, now);
+  await recordEvents(db, history, placeEach(history, settled.events, now), now);
   return { id: told.id, verdict: settled.verdict };
 }
 

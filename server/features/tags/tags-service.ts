@@ -5,18 +5,18 @@ import type { signOffSchema, PublicTag, TagContent } from '../../../shared/api/t
 import type { UnitEvent } from '../../../shared/history/events.js';
 import { readiness, type Readiness } from '../../../shared/readiness/readiness.js';
 import { cautionsOnTag, mendedOnTag, testedOnTag } from '../../../shared/readiness/tag-content.js';
+import { unitNumberText } from '../../../shared/unit-number.js';
 import type { Db } from '../../db.js';
 import { ConflictError, GateError, NotFoundError } from '../../errors.js';
 import { readShop } from '../../history/shop-store.js';
 import { findTag, insertTag, newestTag, unitNumberOfTag, type StoredTag } from '../../history/tag-store.js';
 import {
+  arrivingNow,
   eventsOf,
   factsOf,
   openUnitHistory,
-  placeOf,
   recordEvents,
   refOf,
-  unitNumberText,
   withdrawTag,
   type UnitHistory,
 } from '../../history/unit-history.js';
@@ -85,7 +85,7 @@ export async function signOff(db: Db, unitNumber: number, seen: Seen, person: Us
     rulesMet: judged.met,
     fourEyes: shop.fourEyes,
   };
-  await recordEvents(db, history, [event], placeOf(history, now, now), now);
+  await recordEvents(db, history, [{ event, orderedAt: arrivingNow(history, now) }], now);
   return storedTag(db, content.tag);
 }
 
@@ -105,7 +105,7 @@ export async function withdraw(db: Db, number: string, reason: string, person: U
     const stored = await storedTag(db, number);
     throw new ConflictError(`Tag ${number} was withdrawn already: ${stored.withdrawn?.reason ?? 'another tag stands in its place'}.`);
   }
-  await withdrawTag(db, { ...history, tag } satisfies UnitHistory, { by: refOf(person), reason, now, simulated: false });
+  await withdrawTag(db, { ...history, tag } satisfies UnitHistory, { by: refOf(person), reason, now });
   return storedTag(db, number);
 }
 

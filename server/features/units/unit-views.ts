@@ -1,10 +1,10 @@
 import type { UnitRow } from '../../../shared/api/units.js';
 import type { CaptureBody, UnitEvent } from '../../../shared/history/events.js';
-import { lampFace, type LampFace } from '../../../shared/lamps/face.js';
-import { sinceOpened } from '../../../shared/readiness/facts.js';
+import { countingEvents, sinceOpened } from '../../../shared/readiness/facts.js';
 import { readiness, type Readiness } from '../../../shared/readiness/readiness.js';
 import { stageOf, type Stage } from '../../../shared/readiness/stage.js';
 import type { Sheet } from '../../../shared/sheet/schema.js';
+import { codesNamed, facesOf } from '../../history/faces.js';
 import type { StoredTag } from '../../history/tag-store.js';
 import { eventsOf, factsOf, type UnitHistory } from '../../history/unit-history.js';
 
@@ -13,11 +13,6 @@ export const tagStateOf = (tag: StoredTag): NonNullable<UnitRow['tag']> => ({
   standing: tag.withdrawn ? 'withdrawn' : 'stands',
   signedOffAt: tag.signedOffAt,
 });
-
-export function facesOf(codes: readonly string[], sheet: Sheet | undefined): Record<string, LampFace> {
-  const faces = [...new Set(codes)].map((code) => [code, sheet && lampFace(code, sheet)] as const);
-  return Object.fromEntries(faces.filter((entry): entry is readonly [string, LampFace] => entry[1] !== undefined));
-}
 
 const codesOf = (capture: CaptureBody): string[] => [...new Set(capture.answer.codes.map(({ code }) => code))];
 
@@ -48,8 +43,9 @@ function waitsFor(history: UnitHistory, stage: Stage, { rules, readyToSign }: Re
 
 export function unitRowOf(history: UnitHistory): UnitRow {
   const events = eventsOf(history);
-  const judged = readiness(factsOf(history, events));
-  const stage = stageOf(events);
+  const facts = factsOf(history, events);
+  const judged = readiness(facts);
+  const stage = stageOf(countingEvents(facts));
   return {
     ...history.unit,
     stage,
@@ -62,15 +58,5 @@ export function unitRowOf(history: UnitHistory): UnitRow {
   };
 }
 
-export function codesInHistory(events: readonly UnitEvent[]): string[] {
-  return events.flatMap((event) =>
-    event.kind === 'capture'
-      ? [
-          ...codesOf(event.capture),
-          ...event.capture.answer.segments.flatMap((segment) =>
-            segment.kind === 'unreadable' ? segment.candidates.map(({ code }) => code) : [],
-          ),
-        ]
-      : [],
-  );
-}
+export const codesInHistory = (events: readonly UnitEvent[]): string[] =>
+  events.flatMap((event) => (event.kind === 'capture' ? codesNamed(event.capture.answer) : []));

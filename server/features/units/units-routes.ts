@@ -1,7 +1,9 @@
+import { countingEvents } from '../../../shared/readiness/facts.js';
 import { energisingGate } from '../../../shared/readiness/gates.js';
 import { readiness } from '../../../shared/readiness/readiness.js';
 import { stageOf } from '../../../shared/readiness/stage.js';
 import { historiesOf } from '../../history/event-store.js';
+import { facesOf } from '../../history/faces.js';
 import { runsOf } from '../../history/run-store.js';
 import { newestSheets } from '../../history/sheet-store.js';
 import { readShop } from '../../history/shop-store.js';
@@ -10,8 +12,8 @@ import { eventsOf, factsOf, readUnitHistory } from '../../history/unit-history.j
 import { listUnits } from '../../history/unit-store.js';
 import { cursorOf, numberCursor, pageOf } from '../../paging.js';
 import type { RegisterRoute } from '../../route.js';
-import { takeIn } from './units-service.js';
-import { codesInHistory, facesOf, tagStateOf, unitRowOf } from './unit-views.js';
+import { giveFamily, takeIn } from './units-service.js';
+import { codesInHistory, tagStateOf, unitRowOf } from './unit-views.js';
 
 export function registerUnitRoutes(route: RegisterRoute): void {
   route('listUnits', async ({ query, trx }) => {
@@ -43,13 +45,15 @@ export function registerUnitRoutes(route: RegisterRoute): void {
 
   route('takeInUnit', ({ body, person, trx, now }) => takeIn(trx, body, person, now));
 
+  route('giveFamily', ({ params, body, trx }) => giveFamily(trx, params.number, body.family));
+
   route('getUnit', async ({ params, trx }) => {
     const history = await readUnitHistory(trx, params.number);
     const events = eventsOf(history);
     const facts = factsOf(history, events);
     return {
       unit: history.unit,
-      stage: stageOf(events),
+      stage: stageOf(countingEvents(facts)),
       readiness: readiness(facts),
       // In the demo shop the page speaks for its simulated bench; a real rig asks for itself and is told otherwise.
       energising: energisingGate(facts, { rigSimulated: history.shop.demo }),

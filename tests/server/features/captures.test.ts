@@ -54,10 +54,19 @@ test('When the header holds a character that no database keeps, then it is 422',
   expect(problemIn(await send(number, { file }))).toMatchObject({ status: 422, errors: [{ pointer: '/file' }] });
 });
 
-test('When the header says that it was recorded in the future, then it is refused, or it would be newer than every repair to come', async () => {
+test('When the bench’s clock is more than 10 minutes ahead, then it is refused and says to set it; else it would be newer than a repair to come', async () => {
   const { number } = await takeIn(server);
-  const file = example('01-one-code').replace(/"capturedAt":"[^"]+"/, '"capturedAt":"2026-03-07T09:00:00Z"');
-  expect(problemIn(await send(number, { file }))).toMatchObject({ status: 422, errors: [{ pointer: '/file' }] });
+  const ahead = (milliseconds: number): string => new Date(server.time.now.getTime() + milliseconds).toISOString();
+  const recorded = (at: string): string => example('01-one-code').replace(/"capturedAt":"[^"]+"/, `"capturedAt":"${at}"`);
+  for (const [change, pointer] of [
+    [{ file: recorded(ahead(600_001)) }, '/file'],
+    [{ file: example('01-one-code'), at: ahead(600_001) }, '/at'],
+  ] as const) {
+    const problem = problemIn(await send(number, change));
+    expect(problem).toMatchObject({ status: 422, errors: [{ pointer }] });
+    expect(problem.errors?.[0]?.reason).toContain('set the clock of the bench');
+  }
+  await send(number, { file: recorded(ahead(600_000)), at: ahead(600_000) }).expect(201);
 });
 
 test('When one capture id is sent again under another key, then it is a conflict', async () => {

@@ -1,4 +1,5 @@
-import { afterAll, beforeAll, expect, test } from 'vitest';
+import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import type { Answer } from '../../../shared/api/routes.js';
 import type { StepResult } from '../../../shared/script/run-log.js';
 import { addHeron, newRepair, newRun, pass, shopFileText, takeIn } from '../../helpers/factories.js';
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
@@ -67,16 +68,16 @@ test('When a run is stored, then the unit’s history has its events in their or
 test('When times come with an offset, then they are stored in UTC; a clock that is far off is refused where it stands', async () => {
   const { number } = await takeIn(server);
   const run = newRun(server, 'h6-mend');
-  await send(number, { ...run, startedAt: '2026-03-05T10:00:00+01:00', endedAt: '2026-03-05T10:30:00.5+01:00' }).expect(201);
+  await send(number, { ...run, startedAt: '2026-03-05T09:40:00+01:00', endedAt: '2026-03-05T10:09:00.5+01:00' }).expect(201);
   const page = await server.ok('getRun', { as: server.people.sales, params: { id: run.id } });
-  expect([page.startedAt, page.endedAt]).toEqual(['2026-03-05T09:00:00.000Z', '2026-03-05T09:30:00.500Z']);
+  expect([page.startedAt, page.endedAt]).toEqual(['2026-03-05T08:40:00.000Z', '2026-03-05T09:09:00.500Z']);
 
   const next = newRun(server, 'h6-mend');
   for (const [change, pointer] of [
     [{ startedAt: '1999-12-31T23:59:59Z' }, '/startedAt'],
-    [{ endedAt: '2027-01-01T00:00:00Z' }, '/endedAt'],
+    [{ endedAt: '2026-03-05T09:10:00.001Z' }, '/endedAt'], // a millisecond more than 10 minutes ahead
     [{ startedAt: '0000-01-01T00:00:00Z' }, '/startedAt'],
-    [{ startedAt: '2026-03-05T10:00:00Z', endedAt: '2026-03-05T09:00:00Z' }, '/endedAt'],
+    [{ startedAt: '2026-03-05T09:01:00Z', endedAt: '2026-03-05T09:00:00Z' }, '/endedAt'],
   ] as const) {
     expect(problemIn(await send(number, { ...next, ...change }))).toMatchObject({ status: 422, errors: [{ pointer }] });
   }
@@ -139,7 +140,61 @@ test('When a used part is fitted in a run, then its donor is looked up and says 
   });
   await send(number, from(donor.number)).expect(201);
   const page = await server.ok('getUnit', { as: server.people.sales, params: { number: donor.number } });
-  expect(page.events.at(-1)).toMatchObject({ kind: 'note', text: `Drain pump taken out, for unit ${String(number).padStart(4, '0')}` });
+  expect(page.events.at(-1)).toMatchObject({ kind: 'part removed', part: 'Drain pump', toUnit: number });
+});
+
+describe('A run that was going on while somebody wrote down a repair', () => {
+  /** The repair is written down, by its own clock, a second after this step of the run. */
+  const runWithRepairAfter = async (stepId: string, values: Partial<Record<string, number>>) => {
+    const { number } = await takeIn(server);
+    pass(server, 1);
+    const run = newRun(server, 'h6-find', { values });
+    const mended = run.steps.find((step) => step.stepId === stepId);
+    pass(server, 10);
+    const repair = { ...newRepair(server), at: new Date(Date.parse(mended?.endedAt ?? '') + 1000).toISOString() };
+    await server.ok('recordRepair', { params: { number }, as: server.people.technician, body: repair });
+    pass(server, 1);
+    await send(number, run).expect(201);
+    const page = await server.ok('getUnit', { as: server.people.sales, params: { number } });
+    return { page, order: page.events.map(({ kind, stepId }) => stepId ?? kind) };
+  };
+  const ruleOf = (page: Answer<'getUnit'>, id: string) => page.readiness.rules.find((rule) => rule.id === id);
+
+  test('When a check failed after the repair, then that fail counts; the dead tests before it do not', async () => {
+    const { page, order } = await runWithRepairAfter('lamps', { 'drain-pump-winding': 900 });
+    expect(order).toEqual([
+      ...['intake', 'run began', 'visual', 'protective-conductor', 'insulation', 'lamps', 'repair'],
+      ...['drain-pump-winding', 'remarks', 'run ended'],
+    ]);
+    expect(ruleOf(page, 'checks')).toMatchObject({ state: 'fail', evidence: expect.stringContaining('rain pump') as unknown });
+    expect(ruleOf(page, 'electrical-safety')?.state).toBe('missing');
+    expect(page.energising.open).toBe(false);
+  });
+
+  test('When a check failed or passed before the repair, then neither counts', async () => {
+    const { page, order } = await runWithRepairAfter('drain-pump-winding', { 'drain-pump-winding': 900 });
+    expect(order.slice(-4)).toEqual(['drain-pump-winding', 'repair', 'remarks', 'run ended']);
+    expect(ruleOf(page, 'checks')?.state).toBe('missing');
+    expect(ruleOf(page, 'no-code')?.state).toBe('missing');
+  });
+});
+
+test('When the bench’s clock was set back during a run, then its steps stay in their order around the repair', async () => {
+  const { number } = await takeIn(server);
+  pass(server, 1);
+  const beforeTheRun = new Date(server.time.now.getTime() - 60_000).toISOString();
+  const run = newRun(server, 'h6-find', {
+    change: (step) => (step.stepId === 'drain-pump-winding' ? { ...step, endedAt: beforeTheRun } : step),
+  });
+  const lamps = run.steps.find((step) => step.stepId === 'lamps');
+  const at = new Date(Date.parse(lamps?.endedAt ?? '') - 10_000).toISOString();
+  pass(server, 6);
+  await server.ok('recordRepair', { params: { number }, as: server.people.technician, body: { ...newRepair(server), at } });
+  await send(number, run).expect(201);
+  const page = await server.ok('getUnit', { as: server.people.sales, params: { number } });
+  expect(page.events.map(({ kind, stepId }) => stepId ?? kind).slice(-5)).toEqual([
+    ...['repair', 'lamps', 'drain-pump-winding', 'remarks', 'run ended'],
+  ]);
 });
 
 test('When two benches fit parts out of each other’s units at the same moment, then both are stored', async () => {

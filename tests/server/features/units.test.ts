@@ -1,6 +1,17 @@
 import { v7 as newId, validate, version } from 'uuid';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
-import { addHeron, newCapture, newRun, newUnit, pass, passDeadTests, signedOffUnit, takeIn } from '../../helpers/factories.js';
+import {
+  addHeron,
+  newCapture,
+  newInspection,
+  newReading,
+  newRun,
+  newUnit,
+  pass,
+  passDeadTests,
+  signedOffUnit,
+  takeIn,
+} from '../../helpers/factories.js';
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 let server: TestServer;
@@ -53,6 +64,36 @@ test('When the control family has no sheet, then it is 422; when none is told, t
   expect((await list({ find: String(unit.number) })).items[0]?.waitsFor).toBe('A control family with a service sheet.');
 });
 
+describe('A unit that was taken in without a control family', () => {
+  const give = (number: number, family: string) =>
+    server.send('giveFamily', { params: { number }, as: server.people.technician, body: { family } });
+
+  test('When it is given one, then its page and its rules go by that sheet, and it can’t be given another', async () => {
+    const { number } = await takeIn(server, { family: undefined });
+    const ask = () => server.ok('getUnit', { as: server.people.sales, params: { number } });
+    expect((await ask()).readiness.rules.find(({ id }) => id === 'checks')?.how).toBe(
+      'Give the unit a control family with a service sheet.',
+    );
+    expect((await give(number, 'heron-h6')).body).toMatchObject({ number, family: 'heron-h6' });
+    const page = await ask();
+    expect(page.unit.family).toBe('heron-h6');
+    expect(page.readiness.rules.find(({ id }) => id === 'checks')).toMatchObject({ state: 'missing', evidence: '0 of 3' });
+    await passDeadTests(server, number);
+    expect(problemIn(await give(number, 'heron-h6'))).toMatchObject({ status: 409, kind: 'conflict' });
+  });
+
+  test('When the shop has no sheet for it, then it is 422, and the work that needs one says how to give it', async () => {
+    const { number } = await takeIn(server, { family: undefined });
+    expect(problemIn(await give(number, 'plover-p4'))).toMatchObject({ status: 422, errors: [{ pointer: '/family' }] });
+    const reading = await server.send('recordReading', {
+      params: { number },
+      as: server.people.technician,
+      body: newReading(server, 'heater'),
+    });
+    expect(problemIn(reading).detail).toContain(`refettle unit family ${String(number).padStart(4, '0')} FAMILY`);
+  });
+});
+
 test.each(['gas hob', 'fridge', 'microwave oven'] as const)(
   'When a %s is taken in, then it is for a licensed person only',
   async (appliance) => {
@@ -86,6 +127,27 @@ describe('The same serial number again', () => {
     await takeIn(server, { plate: plate(' - ') });
     await takeIn(server, { plate: plate('--') });
     await takeIn(server, { plate: plate('') });
+  });
+
+  test('When it is taken in again while a repair holds both of its units, then neither waits for the other for ever', async () => {
+    const first = await takeIn(server, { plate: plate('LOCK 1') });
+    const second = await takeIn(server, { plate: plate('LOCK 1'), sameSerialReason: 'other' });
+    // PostgreSQL would come upon the second one first: the row of the first one was written again later.
+    await server.ok('recordInspection', { as: server.people.technician, params: { number: first.number }, body: newInspection(server) });
+    const { db } = server.deps;
+    const lock = (trx: typeof db, number: number) => trx('units').where({ number }).forUpdate().select('id');
+    const waiting = async (): Promise<boolean> => (await db('pg_locks').where({ granted: false }).first('pid')) !== undefined;
+
+    const repair = await db.transaction();
+    await lock(repair, first.number);
+    const taken = server.ok('takeInUnit', {
+      as: server.people.technician,
+      body: newUnit({ plate: plate('LOCK 1'), sameSerialReason: 'other' }),
+    });
+    await expect.poll(waiting).toBe(true);
+    await lock(repair, second.number);
+    await repair.commit();
+    expect((await taken).sameSerial?.units).toEqual([first.number, second.number]);
   });
 
   test('When two take in one serial number at the same moment, then one of them is warned', async () => {
