@@ -5,7 +5,8 @@ import { call } from '../../../lib/call.js';
 export function useRecordOverride(number: number) {
   const queries = useQueryClient();
   return useMutation({
-    mutationFn: (body: RequestBody<'recordOverride'>) => call('recordOverride', { params: { number }, body }),
+    mutationFn: (work: { body: RequestBody<'recordOverride'>; idempotencyKey: string }) =>
+      call('recordOverride', { params: { number }, ...work }),
     onSuccess: () => queries.invalidateQueries({ queryKey: ['unit', number] }),
   });
 }

@@ -5,6 +5,7 @@ import { Caution } from '../../../components/caution.js';
 import { FormField } from '../../../components/form-field.js';
 import { ErrorNote } from '../../../components/page-states.js';
 import { fieldId } from '../../../lib/form-faults.js';
+import { useSubmission } from '../../../lib/submission.js';
 import { useRecordOverride } from '../api/record-override.js';
 
 const sentence = (reasons: readonly string[]): string =>
@@ -39,6 +40,7 @@ export function GateBanner({ gate, number, mayOverride }: { gate: GateState; num
 
 function OverrideForm({ number }: { number: number }) {
   const override = useRecordOverride(number);
+  const submissionFor = useSubmission();
   const [reason, setReason] = useState('');
   const [fault, setFault] = useState<string>();
   return (
@@ -51,7 +53,9 @@ function OverrideForm({ number }: { number: number }) {
           event.preventDefault();
           const parsed = overrideSchema.safeParse({ gate: 'dead tests', reason });
           setFault(parsed.error?.issues[0]?.message);
-          if (parsed.success) override.mutate(parsed.data);
+          if (!parsed.success) return;
+          const { idempotencyKey } = submissionFor(parsed.data);
+          override.mutate({ body: parsed.data, idempotencyKey });
         }}
       >
         <FormField
