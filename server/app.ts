@@ -19,6 +19,7 @@ import { registerSheetRoutes } from './features/sheets/sheets-routes.js';
 import type { SigningKey } from './features/tags/signing-key.js';
 import { registerTagRoutes } from './features/tags/tags-routes.js';
 import { registerUnitRoutes } from './features/units/units-routes.js';
+import { loggedError } from './logged-error.js';
 import { OPENAPI_PATH, openApiDocument } from './openapi.js';
 import { sendProblem } from './problem.js';
 import { refuseOtherMethods, routesOn } from './route.js';
@@ -98,6 +99,7 @@ const requestLog = (log: Logger) =>
         path: request.url?.split('?')[0],
       }),
       res: (response: { statusCode: number }) => ({ status: response.statusCode }),
+      err: loggedError,
     },
     customLogLevel: (_request, response) => (response.statusCode >= 500 ? 'error' : 'info'),
   });

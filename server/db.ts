@@ -22,6 +22,8 @@ export function openDb(url: string): Db {
     connection: { connectionString: url, application_name: 'refettle', options: '-c TimeZone=UTC' },
     pool: { min: 0, max: connectionsAtMost },
     log: { warn },
+    // An error's message is the statement without its values: addresses and hashes of passwords are among them.
+    compileSqlOnError: false,
   });
 }
 

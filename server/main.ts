@@ -11,6 +11,7 @@ import { migrate, openDb, type Db } from './db.js';
 import { loadSigningKey } from './features/tags/signing-key.js';
 import { keepTidy } from './housekeeping.js';
 import { addressOf, closeServer, listen, makeSureThatPortIsFree } from './listen.js';
+import { loggedError } from './logged-error.js';
 import { packageRoot } from './package-root.js';
 import { startOwnCluster } from './postgres/own-cluster.js';
 import { runDemoBench } from './seed/run-demo-bench.js';
@@ -43,7 +44,10 @@ async function main(): Promise<void> {
     signingKey: await loadSigningKey(config.dataDir),
     clock: () => new Date(),
     webDir: existsSync(builtWeb) ? builtWeb : undefined,
-    log: pino({ level: 'warn' }, pino.destination({ dest: 2, sync: true })),
+    log: pino(
+      { level: 'warn', serializers: { err: pino.stdSerializers.wrapErrorSerializer(loggedError) } },
+      pino.destination({ dest: 2, sync: true }),
+    ),
   };
   const accounts = config.demo ? await seedDemoShop(deps) : [];
   const server = await listen(createApp(deps), config.host, config.port);
