@@ -2,6 +2,7 @@ import { z } from 'zod';
 import { problemSchema } from '../shared/api/problem.js';
 import { ROLES_BY_ACTION } from '../shared/api/roles.js';
 import { routes, type Route } from '../shared/api/routes.js';
+import { SESSION_COOKIE } from './auth/session-cookie.js';
 import { IDEMPOTENCY_HEADER } from './idempotency.js';
 import { PROBLEM_MEDIA_TYPE } from './problem.js';
 
@@ -55,7 +56,8 @@ function operation(name: string, route: Route): Json {
     operationId: name,
     summary: route.summary,
     'x-roles': roles,
-    security: isPublic ? [] : [{ bearer: [] }],
+    // Either of them.
+    security: isPublic ? [] : [{ bearer: [] }, { cookie: [] }],
     ...(all.length > 0 ? { parameters: all } : {}),
     ...(route.body
       ? { requestBody: { required: true, content: { 'application/json': { schema: jsonSchema(route.body, 'input') } } } }
@@ -98,7 +100,15 @@ export function openApiDocument(): Json {
     },
     paths,
     components: {
-      securitySchemes: { bearer: { type: 'http', scheme: 'bearer', description: 'RFC 6750, in the Authorization header only.' } },
+      securitySchemes: {
+        bearer: { type: 'http', scheme: 'bearer', description: 'RFC 6750, in the Authorization header only.' },
+        cookie: {
+          type: 'apiKey',
+          in: 'cookie',
+          name: SESSION_COOKIE,
+          description: 'Set by POST /api/sessions with keep: "cookie"; a write by it must come from the server’s own pages.',
+        },
+      },
       schemas: { Problem: jsonSchema(problemSchema, 'output') },
     },
   };

@@ -8,6 +8,7 @@ import { authorise } from './auth/authenticate.js';
 import type { Db } from './db.js';
 import { InvalidError, MalformedError, type Fault } from './errors.js';
 import { idempotencyKeyOf, IDEMPOTENCY_HEADER, once, type StoredAnswer } from './idempotency.js';
+import { OPENAPI_PATH } from './openapi.js';
 import { faultsOf, textFaults } from './request-faults.js';
 
 type Part<N extends RouteName, K extends string> =
@@ -15,7 +16,7 @@ type Part<N extends RouteName, K extends string> =
 type IsPublic<N extends RouteName> = 'public' extends (typeof ROLES_BY_ACTION)[(typeof routes)[N]['action']][number] ? true : false;
 
 /** What a handler gets: parsed parts, who asks (nobody on a public route), and the transaction that everything happens in. */
-export interface RouteContext<N extends RouteName> {
+interface RouteContext<N extends RouteName> {
   params: Part<N, 'params'>;
   query: Part<N, 'query'>;
   body: Part<N, 'body'>;
@@ -25,7 +26,7 @@ export interface RouteContext<N extends RouteName> {
   /** For cookies and addresses only. */
   http: { request: Request; response: Response };
 }
-export type Handler<N extends RouteName> = (context: RouteContext<N>) => Promise<z.input<(typeof routes)[N]['response']>>;
+type Handler<N extends RouteName> = (context: RouteContext<N>) => Promise<z.input<(typeof routes)[N]['response']>>;
 export type RegisterRoute = <N extends RouteName>(name: N, handler: Handler<N>, options?: { limits?: RequestHandler[] }) => void;
 
 /** A capture of an hour, or a bench log with several in it. Everything else is small. */
@@ -118,7 +119,7 @@ function parseRequest(spec: Route, request: Request): { params: unknown; query: 
 
 /** After the last route: a path of the table with another method, and paths that are not in it. */
 export function refuseOtherMethods(app: Express): void {
-  const methodsByPath = new Map<string, string[]>();
+  const methodsByPath = new Map<string, string[]>([[OPENAPI_PATH, ['GET']]]);
   for (const { path, method } of Object.values(routes)) methodsByPath.set(path, [...(methodsByPath.get(path) ?? []), method]);
   for (const [path, methods] of methodsByPath) {
     app.all(path, (_request, response) => {

@@ -42,7 +42,7 @@ test('When the document is read, then it is OpenAPI 3.1 and describes every rout
 test.each(table)('When %s is described, then its roles are those that the server asks', (_name, route) => {
   const operation = operationOf(route);
   expect(operation?.['x-roles']).toEqual(ROLES_BY_ACTION[route.action]);
-  expect(operation?.security).toEqual(operation?.['x-roles'].includes('public') ? [] : [{ bearer: [] }]);
+  expect(operation?.security).toEqual(operation?.['x-roles'].includes('public') ? [] : [{ bearer: [] }, { cookie: [] }]);
 });
 
 test.each(table)('When %s is described, then its parts are the ones that it checks', (_name, route) => {
@@ -71,5 +71,8 @@ test('When a schema is printed, then it says what the server asks for and no mor
     required: true,
     schema: { type: 'integer' },
   });
-  expect(document.components.securitySchemes).toMatchObject({ bearer: { type: 'http', scheme: 'bearer' } });
+  expect(document.components.securitySchemes).toMatchObject({
+    bearer: { type: 'http', scheme: 'bearer' },
+    cookie: { type: 'apiKey', in: 'cookie', name: 'refettle_session' },
+  });
 });

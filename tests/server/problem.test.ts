@@ -51,6 +51,12 @@ describe('What is no request', () => {
     expect(response.headers['allow']).toBe('GET, POST'); // RFC 9110, 15.5.6
   });
 
+  test('When something is sent to the description of the API, then it is 405', async () => {
+    const response = await post('/api/openapi.json').send({});
+    expect(problemIn(response).status).toBe(405);
+    expect(response.headers['allow']).toBe('GET');
+  });
+
   test('When the address is broken, then it is 400', async () => {
     expect(
       problemIn(await request(server.app).get('/api/sheets/%E0%A4%A').set('Authorization', `Bearer ${server.people.technician.token}`))
@@ -91,6 +97,20 @@ describe('What can’t be used', () => {
     expect(problemIn(await server.send('getUnit', { as: server.people.technician, params: { number: 'x' } })).errors?.[0]?.pointer).toBe(
       '/params/number',
     );
+  });
+
+  test.each(['0x1', '1e0', '%201', '+1', '1.0', '0', '-1', '9999999999'])(
+    'When the address gives a unit number as %s, then it is 422: digits, and a number that a unit can have',
+    async (number) => {
+      const { token } = server.people.technician;
+      const problem = problemIn(await request(server.app).get(`/api/units/${number}`).set('Authorization', `Bearer ${token}`));
+      expect(problem).toMatchObject({ status: 422, errors: [{ pointer: '/params/number' }] });
+    },
+  );
+
+  test('When the address gives a unit number as its label has it, then the zeros in front do no harm', async () => {
+    const { number } = await takeIn(server);
+    expect((await server.ok('getUnit', { as: server.people.sales, params: { number: `000${String(number)}` } })).unit.number).toBe(number);
   });
 
   test('When a string holds what PostgreSQL can’t keep, then it is 422 and not a fault', async () => {
@@ -143,6 +163,24 @@ test('When something of ours breaks, then the answer holds an id and the log hol
   const line = server.logged.find((one) => one.includes('"msg":"fault"')) ?? '';
   expect(line).toContain(id);
   expect(line).toContain('sheets');
+});
+
+test('When a statement that carries secrets breaks, then the log says what broke and holds none of them', async () => {
+  const { db } = server.deps;
+  await db.raw("alter table people add constraint nobody_called_lorne check (name <> 'Lorne Pike')");
+  const before = server.logged.length;
+  const body = { email: 'lorne.pike@millrace.example', name: 'Lorne Pike', role: 'technician', password: 'a password of some length' };
+  const answer = await server.send('createPerson', { as: server.people.admin, body });
+  await db.raw('alter table people drop constraint nobody_called_lorne');
+
+  expect(problemIn(answer).status).toBe(500);
+  const lines = server.logged.slice(before).join('');
+  expect(lines).toContain('"msg":"fault"');
+  expect(lines).toContain('nobody_called_lorne');
+  expect(lines).toContain('"code":"23514"'); // PostgreSQL's appendix A: check_violation
+  for (const secret of ['lorne', '$argon2', body.password, server.people.admin.token]) {
+    expect(lines.replaceAll('nobody_called_lorne', '').toLowerCase()).not.toContain(secret.toLowerCase());
+  }
 });
 
 test('When the database does not answer, then health says so', async () => {
