@@ -8,7 +8,7 @@ import { putAway } from '../../journal/outbox.js';
 import { parseMoney } from '../../money.js';
 import { deliveryWords } from '../../render/delivery-words.js';
 import { printJson } from '../../render/json.js';
-import { unitLabel } from '../../render/words.js';
+import { unitLabel, unitNumberText } from '../../render/words.js';
 import { personOf, whoIsHere, type Me } from '../../session.js';
 
 export interface UnitNewOptions {
@@ -161,6 +161,6 @@ async function printTakenIn({ stdout, stderr }: Context, unit: Unit): Promise<vo
   if (unit.licensedOnly) stderr.say('Licensed person only: gas, sealed refrigerant or a microwave oven. No script runs on it.');
   if (unit.family === undefined)
     stderr.say(
-      `It has no control family yet, and without a service sheet its lamps can’t be decoded. When it is known: refettle unit family ${unit.number} FAMILY`,
+      `It has no control family yet, and without a service sheet its lamps can’t be decoded. When it is known: refettle unit family ${unitNumberText(unit.number)} FAMILY`,
     );
 }

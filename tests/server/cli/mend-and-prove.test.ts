@@ -180,6 +180,21 @@ describe('A machine from the gate to its tag, through the terminal', () => {
     expect((await inProcess([...again, '--same-serial', 'bought back'])).code).toBe(0);
     expect((await inProcess(['sync', '--status'])).stdout).toContain('Nothing waits');
   });
+
+  test('When it came in without a control family, then intake says how to give it one, once', async () => {
+    const plate = ['--appliance', 'washing machine', '--maker', 'Brindle', '--model', 'BW 714', '--serial', '7143 0042', '--class', 'I'];
+    const taken = await inProcess(['unit', 'new', ...plate, '--complaint', 'does nothing']);
+    const number = /refettle unit family (\d+) FAMILY/.exec(taken.stderr)?.[1] ?? '';
+    expect((await inProcess(['unit', 'family', number, 'plover-p4'])).code).toBe(5);
+    expect(await inProcess(['unit', 'family', number, 'heron-h6'])).toEqual({
+      code: 0,
+      stdout: `No. ${number} goes by the sheet of heron-h6 from now on.\n`,
+      stderr: '',
+    });
+    const again = await inProcess(['unit', 'family', number, 'heron-h6', '--json']);
+    expect(again).toMatchObject({ code: 5, stdout: '' });
+    expect(again.stderr).toContain('goes by the sheet of heron-h6 already');
+  });
 });
 
 describe('Without the network', () => {
