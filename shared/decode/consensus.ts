@@ -25,9 +25,9 @@ export const NO_CODE_IN_SERVICE_MODE: ConsensusModel = { noCode: Math.log(0.0002
 /** The panel goes on to another code without a mark: 5 % a phase. */
 const CHANGE = Math.log(0.05);
 /** From code to blinking without sense, and back. */
-const BREAK = Math.log(0.02);
-/** A phase shows another pattern than the code's (a hand, a glitch): 3 in 1000, any pattern alike. */
-const SPOILED = Math.log(0.003);
+const BREAK = Math.log(0.001);
+/** A phase shows another pattern than the code's (a hand, a glitch): 3 in 10 000, any pattern alike. */
+const SPOILED = Math.log(0.0003);
 /** A fragment within a code, or within senseless blinking. */
 const FRAGMENT_IN_CODE = -3;
 const FRAGMENT_IN_NONSENSE = -0.5;
@@ -179,9 +179,14 @@ function candidateCodes(pieces: readonly Piece[]): Code[] {
 function emissionsOf(piece: Piece, before: Piece | undefined, codes: readonly Code[], lampCount: number, byHand: boolean): Float64Array {
   const values = new Float64Array(codes.length + 1);
   const anyPattern = -lampCount * Math.LN2;
-  if (piece.kind !== 'phase' && piece.kind !== 'cut') {
+  if (piece.kind !== 'phase' && piece.kind !== 'cut' && piece.kind !== 'tail') {
     values.fill(FRAGMENT_IN_CODE);
     values[codes.length] = FRAGMENT_IN_NONSENSE;
+    return values;
+  }
+  if (piece.kind === 'tail') {
+    codes.forEach((code, index) => (values[index] = code.offLit === 0 && before?.selectorLit === true ? 0 : anyPattern));
+    values[codes.length] = anyPattern;
     return values;
   }
   const uneven = byHand ? 0 : unevenness(piece, before);

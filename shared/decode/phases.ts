@@ -7,9 +7,10 @@ import type { LampLight } from './light-model.js';
 export interface Piece {
   /**
    * phase: as long as the sheet says, both edges seen; cut: no longer than that, an edge not seen; blank: every lamp dark beside a phase
-   * whose selector is dark too; fragment: too short or too long; hole: no samples.
+   * whose selector is dark too; tail: the darkness that ends a block, which may hold a second digit of 0; fragment: too short or too long;
+   * hole: no samples.
    */
-  kind: 'phase' | 'cut' | 'blank' | 'fragment' | 'hole';
+  kind: 'phase' | 'cut' | 'blank' | 'tail' | 'fragment' | 'hole';
   fromS: number;
   toS: number;
   selectorLit: boolean;

@@ -18,6 +18,8 @@ export interface CodeStretch {
   /** How long its phases usually last, seconds. */
   usualPhaseS: number;
   endsWithOn: boolean;
+  /** It begins or ends beside other pieces, with no ready blink, darkness, mark or file's end between. */
+  unbounded: boolean;
   pieces: Piece[];
 }
 
@@ -51,13 +53,14 @@ export function stretchesOf(pieces: readonly Piece[], agreement: Agreement, most
     parts.at(-1)?.push(piece);
     if (agreeing[index]) lastAgreeingEndS = piece.toS;
   });
+  const unbounded = agreement.first > 0 || agreement.last < pieces.length - 1;
   return parts.map((part) => {
     const last = part.findLastIndex((piece) => showsCode(piece, agreement));
-    return measure(part.slice(0, last + 1), agreement, usualPhaseS);
+    return measure(part.slice(0, last + 1), agreement, usualPhaseS, unbounded);
   });
 }
 
-function measure(pieces: Piece[], agreement: Agreement, usualPhaseS: number): CodeStretch {
+function measure(pieces: Piece[], agreement: Agreement, usualPhaseS: number, unbounded: boolean): CodeStretch {
   const lamps = pieces[0]?.evidence.length ?? 0;
   const stretch: CodeStretch = {
     fromS: pieces[0]?.fromS ?? 0,
@@ -71,6 +74,7 @@ function measure(pieces: Piece[], agreement: Agreement, usualPhaseS: number): Co
     probability: agreement.probability,
     usualPhaseS,
     endsWithOn: pieces.at(-1)?.selectorLit ?? false,
+    unbounded,
     pieces,
   };
   let before: Piece | undefined;

@@ -35,6 +35,9 @@ const UNLISTED_PHASES = 1.1;
 const PROVING_PROBABILITY = 0.999;
 const PROVING_REPEATS = 3;
 
+/** A code between others that changes without a mark must repeat: a single turn is what lamps blinking at random show too. */
+const FEWEST_UNBOUNDED = 2;
+
 interface Found {
   codes: CodeStretch[];
   /** Pieces no code explains, in runs. */
@@ -164,7 +167,8 @@ function findCodes(
   starts.forEach((start, index) => {
     const part = pieces.slice(start, starts[index + 1]);
     const explained = new Set<Piece>();
-    for (const agreement of agree(part, digits ** 2, lampCount, model, input.bins.exact)) {
+    const tail = index === starts.length - 1 ? tailOf(part, block) : [];
+    for (const agreement of agree([...part, ...tail], digits ** 2, lampCount, model, input.bins.exact)) {
       for (const stretch of stretchesOf(part, agreement, mostPhaseS)) {
         stretch.pieces.forEach((piece) => explained.add(piece));
         codes.push(stretch);
@@ -183,6 +187,14 @@ function findCodes(
   const last = codes.at(-1);
   if (last !== undefined && last.pieces.at(-1) === pieces.at(-1)) addHiddenZero(last, block);
   return { codes, nonsense };
+}
+
+/** The darkness after a block's last first digit, where it is long enough to hold a second digit of 0. */
+function tailOf(part: readonly Piece[], block: Block): Piece[] {
+  const last = part.at(-1);
+  const darkness = block.darkness;
+  if (darkness === undefined || last?.kind !== 'phase' || !last.selectorLit) return [];
+  return darkness.toS - darkness.fromS >= ZERO_SHARE * (last.toS - last.fromS) ? [{ ...darkness, kind: 'tail' }] : [];
 }
 
 /** A code whose second digit is 0 ends in darkness that looks like what comes after it. */
@@ -225,7 +237,8 @@ function stateStretch(
   const repeats = repeatsOf(stretch);
   const likeliest = candidates[0];
   const confidence = likeliest === undefined ? 0 : roundedDown(likeliest.probability * stretch.probability);
-  if (likeliest !== undefined && repeats > 0 && confidence >= minConfidence) {
+  const fewest = stretch.unbounded ? FEWEST_UNBOUNDED : 1;
+  if (likeliest !== undefined && repeats >= fewest && confidence >= minConfidence) {
     return {
       kind: 'code',
       fromS,

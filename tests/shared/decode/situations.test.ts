@@ -218,7 +218,9 @@ describe('a poor view of the lamps', () => {
   );
 
   test('When noise hides a weak lamp, then that lamp is named and nothing is guessed', () => {
-    const answer = decode(play(code(6, 5, same(8)), { amplitude: { ...amplitude, fill: 0.08 }, noise: 0.12, sampleRateHz: 50 }));
+    const answer = decode(
+      play(code(6, 5, same(8)), { amplitude: { ...amplitude, fill: 0.08, rinse: 0.6, drain: 0.6 }, noise: 0.12, sampleRateHz: 50 }),
+    );
     expect(answer.codes).toEqual([]);
     expect(reasons(answer)).toMatch(/'fill'/);
   });
