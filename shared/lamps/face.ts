@@ -6,7 +6,15 @@ import { lampColourSchema } from '../sheet/schema.js';
 export const faceSchema = z.strictObject({
   code: z.string(),
   title: z.string().optional(),
-  lamps: z.array(z.strictObject({ id: z.string(), label: z.string(), colour: lampColourSchema, group: z.enum(['weighted', 'selector', 'outside']), weight: z.number().optional() })),
+  lamps: z.array(
+    z.strictObject({
+      id: z.string(),
+      label: z.string(),
+      colour: lampColourSchema,
+      group: z.enum(['weighted', 'selector', 'outside']),
+      weight: z.number().optional(),
+    }),
+  ),
   rows: z.array(
     z.strictObject({
       letter: z.string(),
@@ -22,9 +30,14 @@ export type LampFace = z.infer<typeof faceSchema>;
 
 /** The digits in a code's text, by the pattern of the sheet's coding; undefined when the text is no such code. */
 function digitsOf(code: string, pattern: string): { on: number; off: number } | undefined {
-  const escaped = pattern.replace(/[.*+?^$()|[\]\\]/g, '\\$&').replace('{on}', '(?<on>\\d+)').replace('{off}', '(?<off>\\d+)');
+  const escaped = pattern
+    .replace(/[.*+?^$()|[\]\\]/g, '\\$&')
+    .replace('{on}', '(?<on>\\d+)')
+    .replace('{off}', '(?<off>\\d+)');
   const match = new RegExp(`^${escaped}$`).exec(code);
-  return match?.groups?.on !== undefined && match.groups.off !== undefined ? { on: Number(match.groups.on), off: Number(match.groups.off) } : undefined;
+  return match?.groups?.on !== undefined && match.groups.off !== undefined
+    ? { on: Number(match.groups.on), off: Number(match.groups.off) }
+    : undefined;
 }
 
 /** The lamps whose weights add up to a digit, largest first. Weights of a checked sheet give each digit one way (binary: 8, 4, 2, 1). */
@@ -73,7 +86,11 @@ export function lampFace(code: string, sheet: Sheet): LampFace | undefined {
     ...(title === undefined ? {} : { title }),
     lamps: sheet.lamps.map((lamp) => {
       const weight = coding.weights[lamp.id];
-      return { ...lamp, group: lamp.id === coding.selector ? 'selector' : weight === undefined ? 'outside' : 'weighted', ...(weight === undefined ? {} : { weight }) };
+      return {
+        ...lamp,
+        group: lamp.id === coding.selector ? 'selector' : weight === undefined ? 'outside' : 'weighted',
+        ...(weight === undefined ? {} : { weight }),
+      };
     }),
     rows,
   };
