@@ -1,4 +1,5 @@
 import type { UnitPage } from '../../shared/api/units.js';
+import { countingEvents } from '../../shared/readiness/facts.js';
 import { readiness } from '../../shared/readiness/readiness.js';
 import { stageOf } from '../../shared/readiness/stage.js';
 import type { StepResult } from '../../shared/script/run-log.js';
@@ -61,5 +62,5 @@ async function standingNow(
       if (!(error instanceof ServerError)) throw error;
     }
   }
-  return { unit: unit.page.unit, stage: stageOf(unit.facts.events), readiness: readiness(unit.facts) };
+  return { unit: unit.page.unit, stage: stageOf(countingEvents(unit.facts)), readiness: readiness(unit.facts) };
 }

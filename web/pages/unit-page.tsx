@@ -149,7 +149,7 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
           {page.events.length === 0 ? (
             <p className="py-4">Nothing yet.</p>
           ) : (
-            <Timeline page={page} userId={user.id} currency={shop.currency} nowMs={Date.now()} />
+            <Timeline page={page} userId={user.id} currency={shop.currency} demo={shop.demo} nowMs={Date.now()} />
           )}
           {page.runs.length === 0 && (
             <p className="py-4">

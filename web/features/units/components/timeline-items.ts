@@ -15,13 +15,13 @@ export interface TimelineGroup {
 
 /**
  * A unit's history as its page shows it: newest first, grouped by the stage that it led to, the events of a bench run folded into the run.
- * A proof run stands under `proving` even where its verdict sent the unit back.
+ * Outside the demo shop simulated work moves no stage. A proof run stands under `proving` even where its verdict sent the unit back.
  */
-export function timelineOf(page: Pick<UnitPage, 'events' | 'runs'>): TimelineGroup[] {
+export function timelineOf(page: Pick<UnitPage, 'events' | 'runs'>, demo: boolean): TimelineGroup[] {
   const items: TimelineItem[] = [];
   const runs = new Map<string, Extract<TimelineItem, { kind: 'run' }>>();
   page.events.forEach((event, index) => {
-    const stage = stageOf(page.events.slice(0, index + 1));
+    const stage = stageOf(page.events.slice(0, index + 1).filter(({ simulated }) => demo || !simulated));
     if (event.runId === undefined) {
       items.push({ kind: 'event', id: event.id, at: event.at, stage, event });
       return;

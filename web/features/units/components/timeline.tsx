@@ -180,7 +180,19 @@ function useShown(page: UnitPage, userId: string): { shown: UnitPage; waiting: n
 }
 
 /** Everything that ever happened to a unit, newest first, along the rail of its stages. */
-export function Timeline({ page, userId, currency, nowMs }: { page: UnitPage; userId: string; currency: string; nowMs: number }) {
+export function Timeline({
+  page,
+  userId,
+  currency,
+  demo,
+  nowMs,
+}: {
+  page: UnitPage;
+  userId: string;
+  currency: string;
+  demo: boolean;
+  nowMs: number;
+}) {
   const { shown, waiting, showAll } = useShown(page, userId);
   return (
     <div>
@@ -191,7 +203,7 @@ export function Timeline({ page, userId, currency, nowMs }: { page: UnitPage; us
           </button>
         )}
       </div>
-      {timelineOf(shown).map((group) => (
+      {timelineOf(shown, demo).map((group) => (
         <section key={`${group.stage} ${group.items[0]?.id}`} className="stage-group">
           <h3>
             {group.stage}
