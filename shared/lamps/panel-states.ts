@@ -20,7 +20,7 @@ export function readyBlinkStates(lamps: readonly string[], times: number, period
  * @example codeStates(heron, 5, 3, [1.2, 1.2]) // [{ seconds: 1.2, lit: ['spin', 'rinse', 'fill'] }, { seconds: 1.2, lit: ['wash', 'fill'] }]
  */
 export function codeStates(
-  coding: WeightedPhases,
+  coding: Pick<WeightedPhases, 'selector' | 'weights'>,
   onDigit: number,
   offDigit: number,
   phasesS: readonly number[],
@@ -32,7 +32,7 @@ export function codeStates(
 }
 
 /** The lamps whose weights add up to a digit, the heaviest first. */
-export function lampsOfDigit(coding: WeightedPhases, digit: number): string[] {
+export function lampsOfDigit(coding: Pick<WeightedPhases, 'weights'>, digit: number): string[] {
   const entries = Object.entries(coding.weights).sort((a, b) => b[1] - a[1]);
   const search = (rest: number, from: number): string[] | undefined => {
     if (rest === 0) return [];
