@@ -35,6 +35,7 @@ const signIn = ({ email, password }: DemoAccount): Command => ({
 const takeIn: Command = {
   args: [
     ...['unit', 'new', '--json', '--appliance', 'washing machine', '--maker', 'Brindle', '--model', 'BW 620', '--class', 'I'],
+    ...['--volts', '230', '--hertz', '50', '--watts', '2050', '--mass', '68'],
     ...[
       '--serial',
       '6204 0311 0893',
