@@ -23,6 +23,9 @@ const STEP_SIGMAS = 6;
 const CLEAR_SIGMAS = 10;
 /** A change smaller than this share of full scale is no lamp: glow of a neighbour, flicker, a cloud. */
 const LEAST_STEP = 0.05;
+/** How much of a step the shortest window must see, less what noise may take from it. */
+const SHARP_SHARE = 0.7;
+const SHARP_SIGMAS = 3;
 /** Between small steps a level this far (as a share of the typical step) from the usual one of its kind is not told. */
 const DOUBT_SHARE = 0.3;
 /** A mean absolute deviation of normal noise, as a share of its standard deviation, for the median: 0.6745. */
@@ -42,12 +45,15 @@ export function findSteps(bins: Bins, lane: Float64Array, fullScale: number): St
   const sums = new Float64Array(used.length + 1);
   used.forEach((bin, index) => (sums[index + 1] = (sums[index] as number) + (lane[bin] as number)));
   const widthS = usualWidthS(bins, used);
+  const shortest = Math.max(2, Math.round(WINDOWS_S[0] / widthS));
+  const sharp = { differences: stepDifferences(sums, shortest), noise: stepNoise(noise, shortest) };
   let seen: { window: number; typical: number; least: number; differences: Float64Array } | undefined;
   for (const windowS of WINDOWS_S) {
     const window = Math.max(2, Math.round(windowS / widthS));
-    const differences = stepDifferences(sums, window);
+    const differences = window === shortest ? sharp.differences : stepDifferences(sums, window);
     const least = Math.max(STEP_SIGMAS * stepNoise(noise, window), LEAST_STEP * fullScale);
     const sizes = peaksAbove(differences, least)
+      .filter((peak) => isSharp(peak, window, sharp))
       .map((peak) => Math.abs(peak.size))
       .sort((a, b) => b - a);
     // The second largest: one spike doesn't set the scale; half of it keeps a neighbour's glow out.
@@ -60,10 +66,20 @@ export function findSteps(bins: Bins, lane: Float64Array, fullScale: number): St
   const clearStep = CLEAR_SIGMAS * stepNoise(noise, longest);
   if (seen === undefined) return { labels, noise, stepSize: undefined, clearStep };
   const { window, typical, least, differences } = seen;
-  labelBetween(peaksAbove(differences, Math.max(least, typical / 2)), used, labels);
+  const peaks = peaksAbove(differences, Math.max(least, typical / 2)).filter((peak) => isSharp(peak, window, sharp));
+  labelBetween(peaks, used, labels);
   const small = peaksAbove(differences, least).filter((peak) => Math.abs(peak.size) <= typical / 2);
   doubtBetween(small, used, lane, labels, DOUBT_SHARE * typical);
   return { labels, noise, stepSize: typical, clearStep: CLEAR_SIGMAS * stepNoise(noise, window) };
+}
+
+/** A lamp steps within tens of milliseconds: the shortest window must see most of what a longer one sees. Ambient light swells. */
+function isSharp(peak: Peak, window: number, sharp: { differences: Float64Array; noise: number }): boolean {
+  let most = 0;
+  for (let border = peak.border - (window >> 1); border <= peak.border + (window >> 1); border += 1) {
+    most = Math.max(most, Math.sign(peak.size) * (sharp.differences[border] ?? 0));
+  }
+  return most >= SHARP_SHARE * Math.abs(peak.size) - SHARP_SIGMAS * sharp.noise;
 }
 
 /** The standard deviation of the difference of two means of `window` bins. */

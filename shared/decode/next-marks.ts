@@ -1,7 +1,7 @@
 import type { Piece } from './phases.js';
 
 /** A `next` mark counts at the phase edge nearest to it within this time (contract, section 3). */
-const MARK_REACH_S = 1.5;
+export const MARK_REACH_S = 1.5;
 /** So many phases on each side tell whether the code changes at an edge. */
 const LOOK_PHASES = 4;
 
@@ -17,15 +17,17 @@ export function placeMarks(pieces: readonly Piece[], marksS: readonly number[]):
   marksS.forEach((markS, order) => {
     const within = pieces
       .map((_, index) => ({ index, distanceS: index === 0 ? Infinity : distanceToEdge(pieces, index, markS) }))
-      .filter(({ index, distanceS }) => distanceS <= MARK_REACH_S && index > (splits.at(-1) ?? 0))
+      .filter(({ index, distanceS }) => distanceS <= MARK_REACH_S && index >= (splits.at(-1) ?? 0))
       .sort((a, b) => a.distanceS - b.distanceS);
     const nearest = within[0];
-    if (nearest === undefined || endIsNearer(pieces, markS, nearest.distanceS)) return;
+    // Pressed twice at the same edge is pressed once.
+    if (nearest === undefined || nearest.index === splits.at(-1) || endIsNearer(pieces, markS, nearest.distanceS)) return;
     const nextS = marksS[order + 1] ?? Infinity;
     const from = splits.at(-1) ?? 0;
     let chosen = nearest.index;
     let fewest = disagreement(pieces, from, nearest.index, nextS);
     for (const { index } of within.slice(1)) {
+      if (index === splits.at(-1)) continue;
       const here = disagreement(pieces, from, index, nextS);
       if (here < fewest) {
         chosen = index;
@@ -64,4 +66,25 @@ function differing(side: readonly Piece[]): number {
     count += Math.max(0, new Set(patterns).size - 1);
   }
   return count;
+}
+
+/** A piece this much longer than a phase, with a mark in it, is two: the display began anew with the same first digit. */
+const RESTART_SHARE = 1.25;
+const RESTART_REACH_S = 0.6;
+
+/**
+ * Cuts pieces in which the display began anew: longer than a phase, a `next` mark about one phase before their end. What stands before the cut
+ * is a cut symbol's rest, what comes after it a phase.
+ */
+export function splitAtRestarts(pieces: readonly Piece[], marksS: readonly number[], usualPhaseS: number): Piece[] {
+  return pieces.flatMap((piece): Piece[] => {
+    const lengthS = piece.toS - piece.fromS;
+    if (piece.openEnd || lengthS <= RESTART_SHARE * usualPhaseS || lengthS > 2 * usualPhaseS) return [piece];
+    const cutS = piece.toS - usualPhaseS;
+    if (!marksS.some((markS) => Math.abs(markS - cutS) <= RESTART_REACH_S && markS > piece.fromS && markS < piece.toS)) return [piece];
+    return [
+      { ...piece, kind: 'fragment', toS: cutS },
+      { ...piece, kind: 'phase', fromS: cutS, openStart: false, afterHole: false },
+    ];
+  });
 }

@@ -6,7 +6,7 @@ import { codePosterior, digitPatterns, litSum, type LampTrust } from './code-pos
 import type { CodingInput, CodingReader, CodingReading } from './coding-reader.js';
 import { agree, NO_CODE_IN_SERVICE_MODE, NO_CODE_UNPROVED, type ConsensusModel } from './consensus.js';
 import type { LampLight } from './light-model.js';
-import { placeMarks } from './next-marks.js';
+import { MARK_REACH_S, placeMarks, splitAtRestarts } from './next-marks.js';
 import { EvidenceSums, makePieces, measuredBand, type Piece } from './phases.js';
 import { findReadyBlinks, type ReadyStretch } from './ready-blink.js';
 import { stretchesOf, usualLength, type CodeStretch } from './stretches.js';
@@ -132,7 +132,19 @@ function readWeightedPhases(input: CodingInput, coding: WeightedPhases): CodingR
       });
     }
   }
-  return { segments, deadLamps, phases: blocks.flatMap((block) => phaseViews(block, coding)), warnings: [] };
+  return {
+    segments,
+    deadLamps,
+    phases: blocks.flatMap((block) => phaseViews(block, coding)),
+    warnings: markWarnings(input.nextMarksS, blocks, ready),
+  };
+}
+
+function markWarnings(marksS: readonly number[], blocks: readonly Block[], ready: readonly ReadyStretch[]): string[] {
+  const edgesS = [...blocks.flatMap((block) => block.pieces), ...ready].flatMap(({ fromS, toS }) => [fromS, toS]);
+  return marksS
+    .filter((markS) => edgesS.every((edgeS) => Math.abs(edgeS - markS) > MARK_REACH_S))
+    .map((markS) => `the mark at ${markS.toFixed(1)} s is more than ${MARK_REACH_S} s from any change of the lamps: it changes nothing`);
 }
 
 function deadLampsOf(ready: readonly ReadyStretch[], readyLamps: readonly LampLight[]): string[] {
@@ -159,7 +171,8 @@ function findCodes(
   mostPhaseS: number,
   model: ConsensusModel,
 ): Found {
-  const pieces = block.pieces.filter((piece) => piece.kind !== 'blank' && piece.kind !== 'hole');
+  const shown = block.pieces.filter((piece) => piece.kind !== 'blank' && piece.kind !== 'hole');
+  const pieces = splitAtRestarts(shown, input.nextMarksS, usualLength(shown.filter((piece) => piece.kind === 'phase')));
   const digits = new Set(digitPatterns(Object.values(coding.weights), coding.maxDigit).map(({ digit }) => digit)).size;
   const codes: CodeStretch[] = [];
   const nonsense: Piece[][] = [];

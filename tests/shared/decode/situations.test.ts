@@ -61,6 +61,28 @@ describe('where a code ends', () => {
     expect(stated(answer)).toEqual(['G5K3 4', 'G2K9 4']);
   });
 
+  test('When a mark is pressed twice, then that is one mark', () => {
+    const edgeS = CODES_FROM_S + 4 * PHASE_S;
+    expect(stated(decode(withMarks(play(code(4, 4, same(12))), edgeS + 0.1, edgeS + 0.4)))).toEqual(['G4K4 2', 'G4K4 4']);
+  });
+
+  test('When the display begins anew with the same first digit at a mark, then neither code gains nor loses a repeat', () => {
+    const capture = play([...code(7, 1, [...same(6), 0.6]), ...code(7, 2, same(6))]);
+    expect(stated(decode(withMarks(capture, CODES_FROM_S + 6 * PHASE_S + 0.6)))).toEqual(['G7K1 3', 'G7K2 3']);
+  });
+
+  test('When a mark is far from any change, then a warning names it', () => {
+    const answer = decode(withMarks(play([...code(4, 4, same(6)), dark(8)]), CODES_FROM_S + 6 * PHASE_S + 4));
+    expect(stated(answer)).toEqual(['G4K4 3']);
+    expect(answer.warnings.join('\n')).toMatch(/the mark at 16\.5 s is more than 1\.5 s from any change/);
+  });
+
+  test('When one turn of a code stands between others without a mark, then it is not stated', () => {
+    const answer = decode(play([...code(5, 3, same(8)), ...code(2, 9, same(2)), ...code(6, 6, same(8))]));
+    expect(stated(answer)).toEqual(['G5K3 4', 'G6K6 4']);
+    expect(answer.segments.map(({ kind }) => kind)).toContain('unreadable');
+  });
+
   test('When a ready blink stands between, then the same code is a new entry', () => {
     const answer = decode(play([...code(7, 1, same(6)), dark(0.4), ...ready, dark(0.4), ...code(7, 1, same(4))]));
     expect(stated(answer)).toEqual(['G7K1 3', 'G7K1 2']);
@@ -223,6 +245,12 @@ describe('a poor view of the lamps', () => {
     );
     expect(answer.codes).toEqual([]);
     expect(reasons(answer)).toMatch(/'fill'/);
+  });
+
+  test('When ambient light swells and ebbs, then a dark lamp is not taken for a lit one', () => {
+    const capture = play(code(4, 1, same(10)));
+    for (const lane of capture.levels) lane.forEach((level, sample) => (lane[sample] = Math.max(0, level + 50 * Math.sin(sample / 64))));
+    expect(stated(decode(capture))).toEqual(['G4K1 5']);
   });
 
   test('When single samples are wild, then nothing changes', () => {
