@@ -18,7 +18,7 @@ export function codingReader(kind: Coding['kind']): CodingReader {
       .filter(([, value]) => value !== undefined)
       .map(([name]) => name);
     throw new NotYetError(
-      `Refettle cannot decode ${kind} sheets yet; it reads ${known.join(', ')}. Keep the captures: they will decode later.`,
+      `Refettle cannot decode ${kind} sheets yet; it reads ${known.join(', ')}. Keep the captures: they will decode later`,
     );
   }
   return reader;
