@@ -5,10 +5,37 @@ const common = { environment: 'node' as const, pool: 'forks' as const, setupFile
 
 export default defineConfig({
   test: {
+    // Both cores: each file has a database, a port and a browser of its own.
+    maxWorkers: 2,
     projects: [
-      { test: { ...common, name: 'unit', include: ['tests/shared/**/*.test.ts', 'tests/cli/**/*.test.ts', 'tests/web/**/*.test.ts', 'tests/house/**/*.test.ts'], testTimeout: 30_000 } },
-      { test: { ...common, name: 'server', include: ['tests/server/**/*.test.ts'], globalSetup: ['tests/helpers/database-cluster.ts'], testTimeout: 30_000, hookTimeout: 60_000 } },
-      { test: { ...common, name: 'browser', include: ['tests/browser/**/*.test.ts'], globalSetup: ['tests/helpers/database-cluster.ts', 'tests/helpers/build-web.ts'], testTimeout: 180_000, hookTimeout: 180_000, fileParallelism: false } },
+      {
+        test: {
+          ...common,
+          name: 'unit',
+          include: ['tests/shared/**/*.test.ts', 'tests/cli/**/*.test.ts', 'tests/web/**/*.test.ts', 'tests/house/**/*.test.ts'],
+          testTimeout: 30_000,
+        },
+      },
+      {
+        test: {
+          ...common,
+          name: 'server',
+          include: ['tests/server/**/*.test.ts'],
+          globalSetup: ['tests/helpers/database-cluster.ts'],
+          testTimeout: 30_000,
+          hookTimeout: 60_000,
+        },
+      },
+      {
+        test: {
+          ...common,
+          name: 'browser',
+          include: ['tests/browser/**/*.test.ts'],
+          globalSetup: ['tests/helpers/database-cluster.ts', 'tests/helpers/build-web.ts'],
+          testTimeout: 180_000,
+          hookTimeout: 180_000,
+        },
+      },
     ],
   },
 });
