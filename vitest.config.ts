@@ -5,8 +5,8 @@ const common = { environment: 'node' as const, pool: 'forks' as const, setupFile
 
 export default defineConfig({
   test: {
-    // Both cores: each file has a database, a port and a browser of its own.
-    maxWorkers: 2,
+    // One more than two cores: browsers and timers are waited for. Each file has a database, a port and a browser of its own.
+    maxWorkers: 3,
     projects: [
       {
         test: {

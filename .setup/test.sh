@@ -22,13 +22,12 @@ unset HOST PORT DATABASE_URL REFETTLE_DATA REFETTLE_DEMO REFETTLE_PUBLIC_URL REF
 
 prepare postgresql chromium socat poppler-utils
 
-say 'Checking types and rules …'
+# Beside the tests, which wait for browsers and timers half of their time.
+say 'Checking types and rules beside the tests …'
 npm run --silent typecheck >"$results/typecheck" 2>&1 </dev/null &
 typecheck=$!
 npm run --silent lint >"$results/lint" 2>&1 </dev/null &
 lint=$!
-wait "$typecheck" || { failed=$((failed + 1)); say 'The types do not fit:'; cat "$results/typecheck"; }
-wait "$lint" || { failed=$((failed + 1)); say 'A rule of the house is broken:'; cat "$results/lint"; }
 
 code=0
 REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?
@@ -36,3 +35,5 @@ read -r passed tests_failed <"$results/count" || { passed=0; tests_failed=1; }
 # Vitest fails for other reasons than a test, too (a set-up, an error that nobody awaited): none of them may look like a success.
 [ "$code" -eq 0 ] || [ "$tests_failed" -gt 0 ] || tests_failed=1
 failed=$((failed + tests_failed))
+wait "$typecheck" || { failed=$((failed + 1)); say 'The types do not fit:'; cat "$results/typecheck"; }
+wait "$lint" || { failed=$((failed + 1)); say 'A rule of the house is broken:'; cat "$results/lint"; }

@@ -87,7 +87,9 @@ export async function openShop(shop: Partial<Shop> = {}): Promise<BrowserShop> {
 export async function accessibilityFaults(page: Page): Promise<string[]> {
   // CSP refuses a script tag; evaluate() is not subject to it.
   await page.evaluate(axe.source);
-  const { violations } = await page.evaluate(() => (window as unknown as { axe: { run(): Promise<AxeResults> } }).axe.run());
+  const { violations } = await page.evaluate(() =>
+    (window as unknown as { axe: { run(options: object): Promise<AxeResults> } }).axe.run({ resultTypes: ['violations'] }),
+  );
   return violations.map(
     (violation) => `${violation.id} (${String(violation.impact)}): ${violation.nodes.map((node) => node.target.join(' ')).join(', ')}`,
   );
