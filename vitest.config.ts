@@ -3,6 +3,8 @@ import { defineConfig } from 'vitest/config';
 // Forks, never threads: the serial driver aborts Node inside a worker thread.
 const common = { environment: 'node' as const, pool: 'forks' as const, setupFiles: ['tests/helpers/no-stray-console.ts'] };
 
+// Files of these projects share their modules (isolate: false): nothing of ours keeps state outside what a test makes, and loading
+// everything anew for each file took longer than the tests.
 export default defineConfig({
   test: {
     // One more than two cores: browsers and timers are waited for. Each file has a database, a port and a browser of its own.
@@ -12,6 +14,7 @@ export default defineConfig({
         test: {
           ...common,
           name: 'unit',
+          isolate: false,
           include: ['tests/shared/**/*.test.ts', 'tests/cli/**/*.test.ts', 'tests/web/**/*.test.ts', 'tests/house/**/*.test.ts'],
           testTimeout: 30_000,
         },
@@ -20,6 +23,7 @@ export default defineConfig({
         test: {
           ...common,
           name: 'server',
+          isolate: false,
           include: ['tests/server/**/*.test.ts'],
           globalSetup: ['tests/helpers/database-cluster.ts'],
           testTimeout: 30_000,
