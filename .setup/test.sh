@@ -30,7 +30,7 @@ npm run --silent lint >"$results/lint" 2>&1 </dev/null &
 lint=$!
 
 code=0
-REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?
+REFETTLE_TEST_WEB=$PWD/dist/web REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?
 read -r passed tests_failed <"$results/count" || { passed=0; tests_failed=1; }
 # Vitest fails for other reasons than a test, too (a set-up, an error that nobody awaited): none of them may look like a success.
 [ "$code" -eq 0 ] || [ "$tests_failed" -gt 0 ] || tests_failed=1

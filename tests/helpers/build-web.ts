@@ -13,6 +13,12 @@ declare module 'vitest' {
 }
 
 export async function setup(project: TestProject): Promise<() => void> {
+  // npm test has just built it.
+  const built = process.env['REFETTLE_TEST_WEB'];
+  if (built !== undefined) {
+    project.provide('webDir', built);
+    return () => undefined;
+  }
   const folder = mkdtempSync(join(tmpdir(), 'refettle-test-web-'));
   // Vitest calls this a test, for which React would bring its development build: heavier, and not what is served.
   const before = process.env['NODE_ENV'];
