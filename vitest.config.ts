@@ -34,6 +34,7 @@ export default defineConfig({
         test: {
           ...common,
           name: 'browser',
+          isolate: false,
           include: ['tests/browser/**/*.test.ts'],
           globalSetup: ['tests/helpers/database-cluster.ts', 'tests/helpers/build-web.ts'],
           testTimeout: 180_000,

@@ -38,7 +38,11 @@ lock_checkout() {
 unlock_checkout() { exec 8<&-; }
 
 has_postgresql() { [ -x "${PG_BIN:-}/initdb" ] || compgen -G '/usr/lib/postgresql/*/bin/initdb' >/dev/null || command -v initdb >/dev/null; }
-has_chromium() { [ -x "${CHROMIUM:-}" ] || command -v chromium chromium-browser google-chrome >/dev/null; }
+# The shell is Chromium without its windows: half the work. Who may not install it goes on with the whole one.
+has_chromium_headless_shell() {
+  [ -x "${CHROMIUM:-}" ] || command -v chromium-headless-shell >/dev/null ||
+    { [ "$(id -u)" -ne 0 ] && command -v chromium chromium-browser google-chrome >/dev/null; }
+}
 has_socat() { command -v socat >/dev/null; }
 has_poppler_utils() { command -v pdftotext >/dev/null && command -v pdftoppm >/dev/null; }
 

@@ -20,7 +20,7 @@ trap finish EXIT
 # The settings of a shop are not those of its tests.
 unset HOST PORT DATABASE_URL REFETTLE_DATA REFETTLE_DEMO REFETTLE_PUBLIC_URL REFETTLE_SERVER REFETTLE_HOME
 
-prepare postgresql chromium socat poppler-utils
+prepare postgresql chromium-headless-shell socat poppler-utils
 
 # Beside the tests, which wait for browsers and timers half of their time.
 say 'Checking types and rules beside the tests …'
@@ -30,7 +30,7 @@ npm run --silent lint >"$results/lint" 2>&1 </dev/null &
 lint=$!
 
 code=0
-REFETTLE_TEST_WEB=$PWD/dist/web REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?
+REFETTLE_TEST_WEB=$PWD/dist/web REFETTLE_TEST_PROGRAM=$PWD/dist/cli/main.js REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?
 read -r passed tests_failed <"$results/count" || { passed=0; tests_failed=1; }
 # Vitest fails for other reasons than a test, too (a set-up, an error that nobody awaited): none of them may look like a success.
 [ "$code" -eq 0 ] || [ "$tests_failed" -gt 0 ] || tests_failed=1

@@ -1,6 +1,6 @@
 import type { Page } from 'playwright-core';
-import { afterAll, beforeAll, describe, expect, test } from 'vitest';
-import { accessibilityFaults, DESK, expectNoSidewaysScroll, openShop, PHONE, type BrowserShop } from '../helpers/browser.js';
+import { afterAll, beforeAll, expect, test } from 'vitest';
+import { accessibilityFaults, DESK, expectNoSidewaysScroll, openShop, PHONE, settled, type BrowserShop } from '../helpers/browser.js';
 import { addHeron, mendAndProve, newReading, newRepair, newRun, pass, rulesSeen, takeIn } from '../helpers/factories.js';
 
 let shop: BrowserShop;
@@ -89,38 +89,41 @@ afterAll(() => shop.close());
 async function look(page: Page, name: string): Promise<void> {
   await page.goto(at[name] ?? '');
   await page.getByRole('heading', { level: 1 }).waitFor();
-  // These have their heading before what they fetch.
-  if (['units', 'none found', 'tag'].includes(name)) await page.waitForLoadState('networkidle');
+  // Some have their heading before what they fetch.
+  await settled(page);
 }
 
 // Colours differ by theme, layout by width: two looks at each page see all four.
-describe.each([
+const LOOKS = [
   { bench: 'by day at the desk', night: false, viewport: DESK },
   { bench: 'at night on a phone', night: true, viewport: PHONE },
-])('$bench', ({ night, viewport }) => {
-  test.each([
-    { who: 'a lead', pages: SIGNED_IN },
-    { who: 'nobody', pages: PUBLIC },
-  ])(
-    'When $who opens each page, then axe finds nothing, nothing is wider than the window, and the console stays empty',
-    async ({ who, pages }) => {
-      const { page, context, complaints } = await shop.open(who === 'nobody' ? undefined : shop.server.people.lead, { night, viewport });
-      const faults: string[] = [];
-      for (const name of pages) {
-        await look(page, name);
-        expect(await page.evaluate(() => document.documentElement.dataset['theme'])).toBe(night ? 'night' : 'day');
-        await expectNoSidewaysScroll(page);
-        faults.push(...(await accessibilityFaults(page)).map((fault) => `${name}: ${fault}`));
-      }
-      expect(faults).toEqual([]);
-      expect(complaints).toEqual([]);
-      await context.close();
-    },
-  );
-});
+];
+
+test.each([
+  { who: 'a lead', pages: SIGNED_IN },
+  { who: 'nobody', pages: PUBLIC },
+])(
+  'When $who opens each page, at the desk and on a phone, then axe finds nothing, nothing is wider than the window, and the console stays empty',
+  async ({ who, pages }) => {
+    const faults = await Promise.all(
+      LOOKS.map(async ({ bench, night, viewport }) => {
+        const { page, complaints } = await shop.open(who === 'nobody' ? undefined : shop.server.people.lead, { night, viewport });
+        const found: string[] = [];
+        for (const name of pages) {
+          await look(page, name);
+          expect(await page.evaluate(() => document.documentElement.dataset['theme'])).toBe(night ? 'night' : 'day');
+          await expectNoSidewaysScroll(page);
+          found.push(...(await accessibilityFaults(page)).map((fault) => `${name}, ${bench}: ${fault}`));
+        }
+        return [...found, ...complaints];
+      }),
+    );
+    expect(faults.flat()).toEqual([]);
+  },
+);
 
 test('When a target stands alone, then it is at least 44 px high on a phone', async () => {
-  const { page, context } = await shop.open(shop.server.people.lead, { viewport: PHONE });
+  const { page } = await shop.open(shop.server.people.lead, { viewport: PHONE });
   const small: string[] = [];
   for (const name of ['units', 'take in', 'inconclusive', 'tag'] as const) {
     await look(page, name);
@@ -134,5 +137,4 @@ test('When a target stands alone, then it is at least 44 px high on a phone', as
     small.push(...found.map((one) => `${name}: ${one}`));
   }
   expect(small).toEqual([]);
-  await context.close();
 });

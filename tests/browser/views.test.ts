@@ -160,7 +160,7 @@ test('When units are looked for, then the address holds what was looked for and 
 });
 
 test('When somebody picks the night bench, then it stays on this device, whatever the device prefers', async () => {
-  const { page } = await shop.open(shop.server.people.technician);
+  const { page } = await shop.open(shop.server.people.technician, { fresh: true });
   await page.goto('/units');
   const ground = (): Promise<string> => page.evaluate(() => getComputedStyle(document.body).backgroundColor);
   await page.getByRole('button', { name: 'Night bench colours' }).click();

@@ -1,6 +1,6 @@
 import { gzipSync } from 'node:zlib';
 import { afterAll, beforeAll, expect, test } from 'vitest';
-import { openShop, PHONE, type BrowserShop } from '../helpers/browser.js';
+import { openShop, PHONE, settled, type BrowserShop } from '../helpers/browser.js';
 import { addHeron, takeIn } from '../helpers/factories.js';
 
 let shop: BrowserShop;
@@ -17,7 +17,10 @@ test('When a page is the first that is opened, then its scripts are at most 170 
   const { number } = await takeIn(shop.server);
   const heavy: string[] = [];
   for (const path of ['/sign-in', '/units', `/units/${number}`, '/t/0001-1?word=AAAA']) {
-    const { page, context } = await shop.open(path === '/sign-in' ? undefined : shop.server.people.technician, { viewport: PHONE });
+    const { page, context } = await shop.open(path === '/sign-in' ? undefined : shop.server.people.technician, {
+      viewport: PHONE,
+      fresh: true,
+    });
     let bytes = 0;
     page.on('requestfinished', (request) => {
       if (!request.url().endsWith('.js')) return;
@@ -27,7 +30,7 @@ test('When a page is the first that is opened, then its scripts are at most 170 
     });
     await page.goto(path);
     await page.getByRole('heading', { level: 1 }).waitFor();
-    await page.waitForLoadState('networkidle');
+    await settled(page);
     expect(bytes).toBeGreaterThan(0);
     if (bytes > FIRST_SCRIPT_BYTES_AT_MOST) heavy.push(`${path}: ${bytes} bytes`);
     await context.close();

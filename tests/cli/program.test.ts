@@ -3,6 +3,7 @@ import { mkdtempSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, describe, expect, test } from 'vitest';
+import { theProgram } from '../helpers/the-program.js';
 
 const folder = mkdtempSync(join(tmpdir(), 'refettle-program-'));
 afterAll(() => rmSync(folder, { recursive: true, force: true }));
@@ -18,7 +19,7 @@ interface Outcome {
 /** The real program as a process of its own, without a terminal. Nothing listens at the server's port. */
 function refettle(...args: string[]): Promise<Outcome> {
   const env = { PATH: process.env['PATH'], LANG: 'C.UTF-8', REFETTLE_HOME: folder, REFETTLE_SERVER: 'http://127.0.0.1:65534' };
-  const child = spawn(process.execPath, ['--import', 'tsx', 'cli/main.ts', ...args], {
+  const child = spawn(process.execPath, [...theProgram, ...args], {
     cwd: repository,
     env,
     stdio: ['ignore', 'pipe', 'pipe'],

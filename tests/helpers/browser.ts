@@ -4,7 +4,7 @@ import { createServer, type Server } from 'node:http';
 import type { AddressInfo } from 'node:net';
 import axe, { type AxeResults } from 'axe-core';
 import { chromium, type Browser, type BrowserContext, type Page } from 'playwright-core';
-import { expect, inject } from 'vitest';
+import { expect, inject, onTestFinished } from 'vitest';
 import type { Shop } from '../../shared/api/sessions.js';
 import { startTestServer, type SignedInPerson, type TestServer } from './test-server.js';
 
@@ -14,9 +14,16 @@ export const PHONE = { width: 390, height: 844 };
 export interface BrowserShop {
   server: TestServer;
   baseUrl: string;
-  /** A page of its own, signed in as somebody or as nobody. What the page complains about on its console ends up in `complaints`. */
-  open(as: SignedInPerson | undefined, options?: { viewport?: { width: number; height: number }; night?: boolean }): Promise<OpenPage>;
+  /** A page for one test, signed in as somebody or as nobody. What it complains about on its console ends up in `complaints`. */
+  open(as: SignedInPerson | undefined, options?: OpenOptions): Promise<OpenPage>;
   close(): Promise<void>;
+}
+
+export interface OpenOptions {
+  viewport?: { width: number; height: number };
+  night?: boolean;
+  /** A browser that has never been here: nothing is cached, nothing remembered. */
+  fresh?: boolean;
 }
 
 export interface OpenPage {
@@ -26,10 +33,10 @@ export interface OpenPage {
 }
 
 function chromiumPath(): string {
-  const found = [process.env['CHROMIUM'], '/usr/bin/chromium', '/usr/bin/chromium-browser', '/usr/bin/google-chrome'].find(
+  const found = [process.env['CHROMIUM'], '/usr/bin/chromium-headless-shell', '/usr/bin/chromium', '/usr/bin/chromium-browser', '/usr/bin/google-chrome'].find(
     (path) => path && existsSync(path),
   );
-  if (!found) throw new Error('No Chromium on this machine: apt-get install -y chromium, or set CHROMIUM to its path.');
+  if (!found) throw new Error('No Chromium on this machine: apt-get install -y chromium-headless-shell, or set CHROMIUM to its path.');
   return found;
 }
 
@@ -58,13 +65,22 @@ export async function openShop(shop: Partial<Shop> = {}): Promise<BrowserShop> {
   server.time.now = new Date();
   http.on('request', server.app);
   const browser = await launch();
+  const devices = new Map<string, BrowserContext>();
   return {
     server,
     baseUrl,
-    async open(as, { viewport = DESK, night = false } = {}) {
-      const context = await browser.newContext({ baseURL: baseUrl, viewport, colorScheme: night ? 'dark' : 'light' });
-      if (as) await context.addCookies([{ name: 'refettle_session', value: as.token, url: baseUrl, httpOnly: true, sameSite: 'Strict' }]);
+    async open(as, { viewport = DESK, night = false, fresh = false } = {}) {
+      const make = async (): Promise<BrowserContext> => {
+        const context = await browser.newContext({ baseURL: baseUrl, viewport, colorScheme: night ? 'dark' : 'light' });
+        if (as) await context.addCookies([{ name: 'refettle_session', value: as.token, url: baseUrl, httpOnly: true, sameSite: 'Strict' }]);
+        return context;
+      };
+      // Whoever comes back with the same device has the scripts already: a cold start takes a second and a half.
+      const device = JSON.stringify([as?.token, viewport, night]);
+      const context = (fresh ? undefined : devices.get(device)) ?? (await make());
+      if (!fresh && as) devices.set(device, context);
       const page = await context.newPage();
+      onTestFinished(() => page.close());
       const complaints: string[] = [];
       page.on('pageerror', (error) => complaints.push(error.message));
       page.on('console', (message) => {
@@ -82,6 +98,9 @@ export async function openShop(shop: Partial<Shop> = {}): Promise<BrowserShop> {
     },
   };
 }
+
+/** Nothing of the page is still being fetched or drawn. */
+export const settled = (page: Page): Promise<void> => page.locator('[aria-busy]').first().waitFor({ state: 'detached' });
 
 /** What axe finds on the page as it stands: the ids of the rules that are broken, with where. */
 export async function accessibilityFaults(page: Page): Promise<string[]> {

@@ -16,7 +16,7 @@ export function Pending({ what }: { what: string }) {
     return () => clearTimeout(timer);
   }, []);
   return (
-    <p role="status" className="min-h-[60vh] py-6 text-ink2">
+    <p role="status" aria-busy="true" className="min-h-[60vh] py-6 text-ink2">
       {shown ? `Fetching ${what}.` : ''}
     </p>
   );

@@ -12,6 +12,7 @@ import { runProgram } from '../../../cli/program.js';
 import { unitSchema } from '../../../shared/api/units.js';
 import { benchTerminal } from '../../helpers/bench-terminal.js';
 import { addHeron, rulesSeen } from '../../helpers/factories.js';
+import { theProgram } from '../../helpers/the-program.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 const repository = new URL('../../..', import.meta.url);
@@ -64,14 +65,9 @@ async function inProcess(args: string[]): Promise<Outcome> {
 function refettle(args: string[], { input = '' }: { input?: string } = {}): Promise<Outcome> {
   return new Promise((done) => {
     const env = { PATH: process.env['PATH'], LANG: 'C.UTF-8', REFETTLE_HOME: home, REFETTLE_SERVER: address };
-    const child = execFile(
-      process.execPath,
-      ['--import', 'tsx', 'cli/main.ts', ...args],
-      { cwd: repository, env },
-      (error, stdout, stderr) => {
-        done({ code: error === null ? 0 : typeof error.code === 'number' ? error.code : -1, stdout, stderr });
-      },
-    );
+    const child = execFile(process.execPath, [...theProgram, ...args], { cwd: repository, env }, (error, stdout, stderr) => {
+      done({ code: error === null ? 0 : typeof error.code === 'number' ? error.code : -1, stdout, stderr });
+    });
     child.stdin?.end(input);
   });
 }

@@ -35,6 +35,6 @@ export function QrCode({ text, alt }: { text: string; alt: string }) {
     };
   }, [text]);
   if (failed) return <p>The QR code could not be drawn. Load the page again before you print.</p>;
-  if (!drawn) return <div className="h-[27mm] w-[27mm]" role="status" aria-label="Drawing the QR code" />;
+  if (!drawn) return <div className="h-[27mm] w-[27mm]" role="status" aria-busy="true" aria-label="Drawing the QR code" />;
   return <img src={drawn.url} alt={alt} style={{ width: `${drawn.widthMm}mm`, height: `${drawn.widthMm}mm` }} className="tag-qr" />;
 }
