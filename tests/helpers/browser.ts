@@ -33,9 +33,13 @@ export interface OpenPage {
 }
 
 function chromiumPath(): string {
-  const found = [process.env['CHROMIUM'], '/usr/bin/chromium-headless-shell', '/usr/bin/chromium', '/usr/bin/chromium-browser', '/usr/bin/google-chrome'].find(
-    (path) => path && existsSync(path),
-  );
+  const found = [
+    process.env['CHROMIUM'],
+    '/usr/bin/chromium-headless-shell',
+    '/usr/bin/chromium',
+    '/usr/bin/chromium-browser',
+    '/usr/bin/google-chrome',
+  ].find((path) => path && existsSync(path));
   if (!found) throw new Error('No Chromium on this machine: apt-get install -y chromium-headless-shell, or set CHROMIUM to its path.');
   return found;
 }
