@@ -1,12 +1,17 @@
 import type { Context } from '../context.js';
 import { NotSignedInError, ServerUnreachableError } from '../errors.js';
 import { EXIT } from '../exit-codes.js';
+import { printJson } from '../render/json.js';
 import { forgetSession, readSession } from '../session.js';
 
 /** Ends the session at the server and on this bench. The journal stays. */
-export async function runSignOut(_options: object, context: Context): Promise<number> {
+export async function runSignOut({ json }: { json?: boolean | undefined }, context: Context): Promise<number> {
+  const answer = (signedOut: boolean, revoked: boolean, words: string): void => {
+    if (json === true) printJson(context, { signedOut, revoked });
+    else if (words !== '') context.stdout.write(`${words}\n`);
+  };
   if (!readSession(context.home, context.server)) {
-    context.stdout.write('Nobody is signed in here.\n');
+    answer(false, false, 'Nobody is signed in here.');
     return EXIT.good;
   }
   try {
@@ -15,12 +20,13 @@ export async function runSignOut(_options: object, context: Context): Promise<nu
     // The token is gone from this bench either way; one that the server knows no longer needs no revoking.
     if (error instanceof ServerUnreachableError) {
       forgetSession(context.home);
+      answer(true, false, '');
       context.stderr.say('The token is gone from this bench, but the server could not be told: it stays valid there until it runs out.');
       throw error;
     }
     if (!(error instanceof NotSignedInError)) throw error;
   }
   forgetSession(context.home);
-  context.stdout.write('Signed out.\n');
+  answer(true, true, 'Signed out.');
   return EXIT.good;
 }

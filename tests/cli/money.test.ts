@@ -2,7 +2,7 @@ import { expect, test } from 'vitest';
 import { UsageError } from '../../cli/errors.js';
 import { moneyText, parseMoney } from '../../cli/money.js';
 import { parsePartSource } from '../../cli/part-source.js';
-import { unitNumber } from '../../cli/program.js';
+import { unitNumber } from '../../cli/tree/parts.js';
 
 // Decimals of a currency: ISO 4217 (GBP and EUR have 2, JPY none, BHD 3).
 test.each([
