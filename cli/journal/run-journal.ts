@@ -130,7 +130,7 @@ export function logOf(home: Home, { header, results, begun, end }: WrittenRun): 
       steps.push({ kind: 'capture', stepId, title, startedAt: at, endedAt: lastAt, captureId, file, fromFile: false });
   }
   const { id, script, rig, startedAt } = header;
-  return { id, script, rig, startedAt, endedAt: end?.endedAt ?? lastAt, interrupted: end?.interrupted ?? true, steps };
+  return { id, script, rig, startedAt, endedAt: end?.endedAt ?? lastAt, interrupted: end?.interrupted ?? true, people: [], steps };
 }
 
 const wholeLines = (text: string): string => text.slice(0, text.lastIndexOf('\n') + 1);

@@ -45,6 +45,8 @@ function wordOf(result: StepResult): string {
       return result.answer === 'yes' ? `confirmed ${timeText(result.endedAt)}` : `no ${timeText(result.endedAt)}`;
     case 'instruct':
       return `${result.answer} ${timeText(result.endedAt)}`;
+    case 'cut':
+      return `broken off ${timeText(result.endedAt)}; what came is kept`;
     case 'capture':
     case 'clear':
       return `ended ${timeText(result.endedAt)}`;

@@ -99,6 +99,8 @@ export const unitEventSchema = z.discriminatedUnion('kind', [
     prove: z.boolean(),
     verdict: verdictSchema,
     steps: z.number().int(),
+    /** Everybody who had a hand in it, where it was more than one. */
+    people: z.array(personRefSchema).optional(),
   }),
   z.strictObject({ ...eventBase, kind: z.literal('repair'), repair: repairBodySchema }),
   /** A part was taken out for another unit: the machine is opened again as by a repair. */

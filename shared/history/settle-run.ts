@@ -5,7 +5,7 @@ import type { Capture } from '../lamps/capture.js';
 import { readCapture } from '../lamps/read-capture.js';
 import { judgeExpectation } from '../script/judge-expect.js';
 import { judgeWatch, watchSpec } from '../script/judge-watch.js';
-import type { RunLog, StepResult } from '../script/run-log.js';
+import { peopleOf, type RunLog, type StepResult } from '../script/run-log.js';
 import { isJudged, runVerdict } from '../script/run-verdict.js';
 import type { Script } from '../script/schema.js';
 import type { Sheet } from '../sheet/schema.js';
@@ -40,6 +40,7 @@ export interface SettledRun {
  * every expectation and watch looked at again; then the events that the unit's history keeps.
  *
  * Used by the bench (to ask the safety gates as it goes) and by the server (to store), so both come to the same words.
+ * `by` is who began the run; what a step left is by the person of that step, and everybody of the log stands at the run's end.
  * `newId` makes the events' ids. Refuses (BadInputError) a log that contradicts the sheet or holds a broken capture.
  */
 export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonRef, newId: () => string): SettledRun {
@@ -47,16 +48,15 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
   const captures: SettledRun['captures'] = [];
   const events: UnitEvent[] = [];
   const simulated = log.rig.simulated;
-  const base = (at: string, stepId?: string, simulatedSource = false) => ({
-    id: newId(),
-    at,
-    by,
+  const { everybody, doer } = peopleOf(log, by);
+  const base = (at: string, person: PersonRef) => ({ id: newId(), at, by: person, simulated, runId: log.id });
+  const ofStep = (result: StepResult, simulatedSource = false) => ({
+    ...base(result.endedAt, doer(result.by)),
     simulated: simulated || simulatedSource,
-    runId: log.id,
-    ...(stepId === undefined ? {} : { stepId }),
+    stepId: result.stepId,
   });
 
-  events.push({ ...base(log.startedAt), kind: 'run began', script: script.name, prove: script.prove });
+  events.push({ ...base(log.startedAt, by), kind: 'run began', script: script.name, prove: script.prove });
   const keepCapture = (result: { captureId: string; file: string; endedAt: string; stepId: string }, fromFile: boolean): Capture => {
     const capture = readCapture(result.file, result.captureId);
     const body = captureBody(capture, sheet, { captureId: result.captureId, fromFile });
@@ -69,18 +69,26 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
     switch (result.kind) {
       case 'measure': {
         const reading = settleReading(result.reading, sheet);
-        events.push({ ...base(result.endedAt, result.stepId), kind: 'reading', reading });
+        events.push({ ...ofStep(result), kind: 'reading', reading });
         return { ...result, reading };
       }
       case 'inspect': {
         const inspection = settleInspection(result.inspection, sheet);
-        events.push({ ...base(result.endedAt, result.stepId), kind: 'inspection', inspection });
+        events.push({ ...ofStep(result), kind: 'inspection', inspection });
         return { ...result, inspection };
       }
       case 'capture': {
         keepCapture(result, result.fromFile);
         const body = bodies.get(result.captureId) as CaptureBody;
-        events.push({ ...base(result.endedAt, result.stepId, body.source === 'simulated'), kind: 'capture', capture: body });
+        events.push({ ...ofStep(result, body.source === 'simulated'), kind: 'capture', capture: body });
+        return result;
+      }
+      case 'cut': {
+        keepCapture(result, false);
+        const body = bodies.get(result.captureId) as CaptureBody;
+        const watched = script.steps.find((one) => one.id === result.stepId)?.kind === 'watch';
+        if (!watched || body.answer.codes.length > 0)
+          events.push({ ...ofStep(result, body.source === 'simulated'), kind: 'capture', capture: body });
         return result;
       }
       case 'expect': {
@@ -103,20 +111,20 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
           capturedAt,
           ...(headerUnit === undefined ? {} : { headerUnit }),
         };
-        const event = base(result.endedAt, result.stepId, body.source === 'simulated');
+        const event = ofStep(result, body.source === 'simulated');
         if (step.calibration) events.push({ ...event, kind: 'calibration', calibration: watched });
         // Every capture counts for gate 4: a code that blinks while something else is watched for is a code.
         if (body.answer.codes.length > 0) events.push({ ...event, id: newId(), kind: 'capture', capture: body });
         return { ...result, calibration: step.calibration === true, watched };
       }
       case 'repair':
-        events.push({ ...base(result.endedAt, result.stepId), kind: 'repair', repair: result.repair });
+        events.push({ ...ofStep(result), kind: 'repair', repair: result.repair });
         return result;
       case 'clear':
-        events.push({ ...base(result.endedAt, result.stepId), kind: 'codes cleared', procedure: result.procedure });
+        events.push({ ...ofStep(result), kind: 'codes cleared', procedure: result.procedure });
         return result;
       case 'note':
-        events.push({ ...base(result.endedAt, result.stepId), kind: 'note', text: result.text });
+        events.push({ ...ofStep(result), kind: 'note', text: result.text });
         return result;
       case 'skipped': {
         // Whether a skipped step counts is the script's word, never the sender's.
@@ -129,8 +137,16 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
     }
   });
 
-  const missing = script.steps.filter((step) => !log.steps.some((result) => result.stepId === step.id));
+  const missing = script.steps.filter((step) => !log.steps.some((result) => result.stepId === step.id && result.kind !== 'cut'));
   const verdict = runVerdict(steps, log.interrupted || missing.length > 0);
-  events.push({ ...base(log.endedAt), kind: 'run ended', script: script.name, prove: script.prove, verdict, steps: log.steps.length });
+  events.push({
+    ...base(log.endedAt, log.people.at(-1)?.person ?? by),
+    kind: 'run ended',
+    script: script.name,
+    prove: script.prove,
+    verdict,
+    steps: log.steps.length,
+    ...(everybody.length > 1 ? { people: everybody } : {}),
+  });
   return { log: { ...log, steps }, verdict, events, captures };
 }

@@ -107,6 +107,7 @@ export function handsOn(events: readonly UnitEvent[]): PersonRef[] {
       isCheckEvent(event)
     ) {
       people.set(event.by.id, event.by);
+      if (event.kind === 'run ended') for (const person of event.people ?? []) people.set(person.id, person);
     }
   }
   return [...people.values()];

@@ -1,6 +1,7 @@
 import type { SettledRun } from '../history/settle-run.js';
+import { isReturn } from '../script/run-log.js';
 import { deadTestOfStep, energisingOf } from '../script/energised.js';
-import type { Script, Step } from '../script/schema.js';
+import type { Script, Step, StepOf } from '../script/schema.js';
 import type { Sheet } from '../sheet/schema.js';
 import type { UnitFacts } from './facts.js';
 import { energisingGate, type GateState } from './gates.js';
@@ -29,7 +30,9 @@ export interface GateBreach {
  *
  * The log must follow the script: its steps, each once, in its order. Gate 1: dead tests before power, walked through step by step.
  * Gate 2: the caution that stands before an energised step was answered with yes, and an insulation test was followed by its discharge
- * before anything else was done. The bench asks before each step; the server asks here again, for a log may come from anywhere.
+ * before anything else was done. Whoever comes back to a run that was broken off answers its caution again: an answer of before
+ * counts no longer, and the caution stands in the log once more. Lamps that were cut stand before their step's own result.
+ * The bench asks before each step; the server asks here again, for a log may come from anywhere.
  * `facts` are those from before the run, `script` has passed `checkScript`.
  */
 export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, facts: UnitFacts): GateBreach | undefined {
@@ -37,7 +40,8 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
   const confirmed = new Set<string>();
   let place = -1;
   let charged = false;
-  for (const result of run.log.steps) {
+  for (const [position, result] of run.log.steps.entries()) {
+    if (run.log.people.some((person) => isReturn(person) && person.steps === position)) confirmed.clear();
     const breach = (reason: string | string[], remedy?: string): GateBreach => ({
       stepId: result.stepId,
       reasons: [reason].flat(),
@@ -46,10 +50,12 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
     const index = script.steps.findIndex((one) => one.id === result.stepId);
     const step = script.steps[index];
     if (!step) return breach('the script has no such step');
-    if (index <= place) return breach('it stands out of the order of the script, or twice');
-    place = index;
+    const askedAgain = result.kind === 'caution' && cautionBefore(script, place + 1)?.id === step.id && !confirmed.has(step.id);
+    if (index <= place && !askedAgain) return breach('it stands out of the order of the script, or twice');
+    if (result.kind !== 'cut') place = Math.max(place, index);
     if (result.kind === 'skipped') continue;
-    if (result.kind !== step.kind) return breach(`the log calls it ${result.kind}, the script ${step.kind}`);
+    const cutShort = result.kind === 'cut' && (step.kind === 'capture' || step.kind === 'watch');
+    if (result.kind !== step.kind && !cutShort) return breach(`the log calls it ${result.kind}, the script ${step.kind}`);
 
     if (charged) {
       if (!(step.kind === 'instruct' && step.discharge))
@@ -58,7 +64,7 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
     }
     if (result.kind === 'caution' && result.answer === 'yes') confirmed.add(step.id);
     const energising = energisingOf(step, sheet);
-    const caution = script.steps.slice(0, index).findLast((one) => one.kind === 'caution');
+    const caution = cautionBefore(script, index);
     if (energising !== 'dead' && !(caution && confirmed.has(caution.id)))
       return breach('its caution was not answered with yes', 'run it again from its caution');
     const gate = stepGate(step, sheet, { ...facts, events }, run.log.rig.simulated);
@@ -68,3 +74,7 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
   }
   return undefined;
 }
+
+/** The caution that stands before this place of the script. */
+export const cautionBefore = (script: Script, index: number): StepOf<'caution'> | undefined =>
+  script.steps.slice(0, index).findLast((one) => one.kind === 'caution');

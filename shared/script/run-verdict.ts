@@ -23,6 +23,7 @@ export function stepVerdict(result: StepResult): Verdict | undefined {
     case 'instruct':
       return result.answer === 'not done' ? 'not done' : undefined;
     case 'capture':
+    case 'cut':
     case 'repair':
     case 'clear':
     case 'note':

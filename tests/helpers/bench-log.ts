@@ -173,6 +173,7 @@ export function benchLog({
     startedAt,
     endedAt: at(script.steps.length),
     interrupted: false,
+    people: [],
     steps: steps.map(change).filter((result) => result !== undefined),
   };
 }

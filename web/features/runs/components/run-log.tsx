@@ -70,6 +70,8 @@ function lineOf(step: StepResult, page: RunPage): StepLine {
         ),
       };
     }
+    case 'cut':
+      return { ...base, value: <CaptureLink id={step.captureId} />, said: 'broken off; what came is kept' };
     case 'expect':
       return {
         ...base,
