@@ -122,7 +122,16 @@ const isDeadTest = (step: Step, sheet: UnitOnBench['sheet']): boolean =>
 /** The events of the run up to now, as the server will see them. */
 function eventsSoFar({ context, unit, script, journal }: RunParts, results: readonly StepResult[]) {
   const { id, startedAt, rig, script: about } = journal.header;
-  const log = { id, script: about, rig, startedAt, endedAt: context.now().toISOString(), interrupted: true, people: [], steps: [...results] };
+  const log = {
+    id,
+    script: about,
+    rig,
+    startedAt,
+    endedAt: context.now().toISOString(),
+    interrupted: true,
+    people: [],
+    steps: [...results],
+  };
   return settleRun(log, script, unit.sheet, unit.by, () => context.newId()).events.filter((event) => event.kind !== 'run ended');
 }
 

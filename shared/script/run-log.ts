@@ -1,6 +1,13 @@
 import { z } from 'zod';
 import { BadInputError } from '../errors.js';
-import { calibrationBodySchema, inspectionBodySchema, personRefSchema, readingBodySchema, repairBodySchema, type PersonRef } from '../history/events.js';
+import {
+  calibrationBodySchema,
+  inspectionBodySchema,
+  personRefSchema,
+  readingBodySchema,
+  repairBodySchema,
+  type PersonRef,
+} from '../history/events.js';
 import { verdictSchema } from '../verdict.js';
 
 const resultBase = {
