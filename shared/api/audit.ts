@@ -15,12 +15,22 @@ export const AUDIT_WORDS = {
   'person.activated': 'reactivated a person',
   'person.link-made': 'made a one-time link',
   'person.password-reset': 'set a new password by a one-time link',
-  'person.password-changed': 'changed the own password',
+  'person.password-changed': 'changed their own password',
+  'session.ended': 'signed out',
   'session.revoked': 'ended a session',
   'sheet.added': 'added a service sheet',
   'tag.signed': 'signed a unit off',
   'tag.withdrawn': 'withdrew a tag',
+  'bench.made': 'made a shared bench',
+  'bench.token-renewed': 'gave a bench a new token',
+  'bench.revoked': 'ended a bench’s token',
+  'bench.first-sign-on': 'signed on at a bench for the first time',
+  'pin.set': 'set a PIN',
+  'pin.cleared': 'took a PIN away',
   'override.recorded': 'opened a gate with a reason',
+  'key.rotated': 'changed the signing key',
+  'key.compromised': 'called the signing key compromised',
+  'backup.restored': 'restored a backup',
 } as const;
 
 export type AuditWhat = keyof typeof AUDIT_WORDS;
@@ -37,7 +47,7 @@ export const auditSubjectSchema = z.strictObject({
 export type AuditSubject = z.infer<typeof auditSubjectSchema>;
 
 /** The members that changed, in plain values; undefined where there was nothing before, or is nothing after. */
-export const auditValuesSchema = z.record(z.string(), z.json());
+export const auditValuesSchema = z.record(z.string(), z.unknown());
 export type AuditValues = z.infer<typeof auditValuesSchema>;
 
 export const auditRowSchema = z.strictObject({

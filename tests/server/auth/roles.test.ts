@@ -1,14 +1,17 @@
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
-import { ROLES, ROLES_BY_ACTION, type Role } from '../../../shared/api/roles.js';
+import { ACTIONS_OF_A_BENCH, benchMay, ROLES, ROLES_BY_ACTION, type Role } from '../../../shared/api/roles.js';
 import { routes, type RouteName } from '../../../shared/api/routes.js';
 import { addHeron } from '../../helpers/factories.js';
+import { benchAlone, makeBench, standsAt, type TestBench } from '../../helpers/shared-bench.js';
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
 import { validCalls } from '../../helpers/valid-calls.js';
 
 let server: TestServer;
+let bench: TestBench;
 beforeAll(async () => {
   server = await startTestServer();
   await addHeron(server);
+  bench = await makeBench(server);
 });
 afterAll(() => server.close());
 
@@ -40,6 +43,41 @@ describe.each(guarded)('%s', (name) => {
     const as = name === 'signOut' ? await server.addPerson(role, `Leaver ${role}`) : server.people[role];
     await server.ok(name, { ...call, as });
   });
+});
+
+const anything = { params: { number: 1, id: 'x', tag: 'x', family: 'x' } };
+/** Those whose people may sign on at a bench. */
+const AT_THE_BENCH = ['technician', 'lead'] as const;
+
+describe.each(guarded)('%s, by the token of a shared bench', (name) => {
+  const may = benchMay(routes[name].action);
+
+  test('When nobody has signed on there, then only what a bench does alone is done', async () => {
+    if (may === 'alone') {
+      await server.ok(name, { ...(await validCalls[name](server)), as: benchAlone(bench) });
+      return;
+    }
+    const problem = problemIn(await server.send(name, { ...anything, as: benchAlone(bench) }));
+    expect(problem).toMatchObject(may === 'person' ? { status: 401, kind: 'not-signed-in' } : { status: 403, kind: 'role' });
+  });
+
+  test.each(AT_THE_BENCH)('When a %s has signed on there, then it is what both tables allow, and no more', async (role) => {
+    const call = await validCalls[name](server);
+    const as = await standsAt(server, bench, server.people[role]);
+    const allowed = may === 'alone' || (may === 'person' && rolesOf(name).includes(role));
+    if (allowed) await server.ok(name, { ...call, as });
+    else expect(problemIn(await server.send(name, { ...anything, as }))).toMatchObject({ status: 403, kind: 'role' });
+  });
+
+  test('When the bench names somebody who never signed on there, then it is 403, whatever it may do', async () => {
+    const as = { token: bench.token, person: server.people.admin.id };
+    expect(problemIn(await server.send(name, { ...anything, as }))).toMatchObject({ status: 403, kind: 'role' });
+  });
+});
+
+test('When the table of a bench is read, then nothing of it signs off, withdraws, or touches people, sheets and benches', () => {
+  // Design: a bench does what is done at a bench.
+  expect(Object.keys(ACTIONS_OF_A_BENCH).filter((action) => /sign-off|withdraw|person|pin|write|session|audit|key/.test(action))).toEqual([]);
 });
 
 test.each(names.filter((name) => rolesOf(name).includes('public')))(

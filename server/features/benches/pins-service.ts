@@ -1,0 +1,52 @@
+import type { PinState } from '../../../shared/api/benches.js';
+import type { User } from '../../../shared/api/sessions.js';
+import { hashPin, passwordFits } from '../../auth/password.js';
+import { clearPin, findPinState, passwordHashOf, setPin } from '../../auth/pin-store.js';
+import type { Db } from '../../db.js';
+import { InvalidError, NotFoundError } from '../../errors.js';
+import { audit } from '../../history/audit.js';
+import { refOf } from '../../history/unit-history.js';
+
+export async function pinStateOf(db: Db, personId: string): Promise<PinState> {
+  const state = await findPinState(db, personId);
+  if (!state) throw new NotFoundError('Nobody who works here has this id.');
+  return state;
+}
+
+export async function setOwnPin(db: Db, person: User, { password, pin }: { password: string; pin: string }, now: Date): Promise<PinState> {
+  if (!(await passwordFits(password, await passwordHashOf(db, person.id))))
+    throw new InvalidError([{ pointer: '/password', reason: 'is not your password' }]);
+  return putPin(db, person.id, pin, person, now);
+}
+
+/** Whose PIN somebody else sets, that one could act for at a bench: it stands in the audit log, and beside the PIN. */
+export async function putPin(db: Db, personId: string, pin: string, by: User, now: Date): Promise<PinState> {
+  const before = await pinStateOf(db, personId);
+  await setPin(db, personId, await hashPin(pin), refOf(by), now);
+  const { id, name } = before.person;
+  await audit(db, {
+    who: refOf(by),
+    what: 'pin.set',
+    subject: { kind: 'person', id, name },
+    before: { set: before.pinSetAt !== undefined },
+    after: { set: true, own: by.id === id },
+    at: now,
+  });
+  return pinStateOf(db, personId);
+}
+
+export async function takePinAway(db: Db, personId: string, by: User, now: Date): Promise<PinState> {
+  const before = await pinStateOf(db, personId);
+  if (before.pinSetAt === undefined) return before;
+  await clearPin(db, personId);
+  const { id, name } = before.person;
+  await audit(db, {
+    who: refOf(by),
+    what: 'pin.cleared',
+    subject: { kind: 'person', id, name },
+    before: { set: true },
+    after: { set: false },
+    at: now,
+  });
+  return pinStateOf(db, personId);
+}
