@@ -2,7 +2,7 @@ import { z } from 'zod';
 import { roleSchema } from '../../shared/api/roles.js';
 import type { UnitPage } from '../../shared/api/units.js';
 import type { PersonRef } from '../../shared/history/events.js';
-import { runLogSchema, stepResultSchema, type RunLog } from '../../shared/script/run-log.js';
+import { clockJumpSchema, runLogSchema, runPersonSchema, stepResultSchema, type RunLog } from '../../shared/script/run-log.js';
 import { verdictSchema, type Verdict } from '../../shared/verdict.js';
 import type { Db } from '../db.js';
 
@@ -53,6 +53,9 @@ const storedSchema = z
     script: runLogSchema.shape.script,
     rig: runLogSchema.shape.rig,
     interrupted: z.boolean(),
+    people: z.array(runPersonSchema),
+    sheet_edition: z.number().nullable(),
+    clock_jumps: z.array(clockJumpSchema).nullable(),
     steps: z.array(stepResultSchema),
   })
   .transform((row) => ({
@@ -65,6 +68,9 @@ const storedSchema = z
     endedAt: row.ended_at.toISOString(),
     interrupted: row.interrupted,
     verdict: row.verdict,
+    people: row.people,
+    ...(row.sheet_edition === null ? {} : { sheetEdition: row.sheet_edition }),
+    ...(row.clock_jumps === null ? {} : { clockJumps: row.clock_jumps }),
     steps: row.steps,
   }));
 type StoredRun = z.output<typeof storedSchema>;
@@ -101,6 +107,9 @@ export async function insertRun(db: Db, { unitId, by, log, verdict, recordedAt }
       ended_at: log.endedAt,
       interrupted: log.interrupted,
       verdict,
+      people: JSON.stringify(log.people),
+      sheet_edition: log.sheetEdition ?? null,
+      clock_jumps: log.clockJumps ? JSON.stringify(log.clockJumps) : null,
       steps: JSON.stringify(log.steps),
       recorded_at: recordedAt,
     })

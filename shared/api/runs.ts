@@ -2,7 +2,7 @@ import { z } from 'zod';
 import { personRefSchema } from '../history/events.js';
 import { faceSchema } from '../lamps/face.js';
 import { decodeAnswerSchema } from '../decode/answer.js';
-import { runLogSchema, stepResultSchema } from '../script/run-log.js';
+import { clockJumpSchema, runLogSchema, runPersonSchema, stepResultSchema } from '../script/run-log.js';
 import { verdictSchema } from '../verdict.js';
 
 export const newRunSchema = runLogSchema;
@@ -19,6 +19,10 @@ export const runPageSchema = z.strictObject({
   endedAt: z.string(),
   interrupted: z.boolean(),
   verdict: verdictSchema,
+  /** Who began, resumed, took over, parked or abandoned it. Empty for runs of before there were hand-overs. */
+  people: z.array(runPersonSchema),
+  sheetEdition: z.number().int().optional(),
+  clockJumps: z.array(clockJumpSchema).optional(),
   /** Capture files are left out (`file` is empty). */
   steps: z.array(stepResultSchema),
   answers: z.record(z.string(), decodeAnswerSchema),

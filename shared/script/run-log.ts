@@ -58,6 +58,10 @@ export const stepResultSchema = z.discriminatedUnion('kind', [
 ]);
 export type StepResult = z.infer<typeof stepResultSchema>;
 
+/** Whether a step's result carries a capture file. */
+export const holdsFile = (result: StepResult): result is Extract<StepResult, { file: string }> =>
+  result.kind === 'capture' || result.kind === 'watch' || result.kind === 'cut';
+
 /** Somebody came to a run, or left it. Everybody who stands here had a hand in it (four eyes). */
 export const runPersonSchema = z.strictObject({
   person: personRefSchema,

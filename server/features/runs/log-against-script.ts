@@ -27,7 +27,7 @@ function faultOf(log: RunLog, result: StepResult, index: number, step: Step): { 
   }
   if (result.kind === 'clear' && result.procedure !== CLEAR_CODES)
     return { member: 'procedure', reason: `the script clears by ${CLEAR_CODES} here` };
-  if ((result.kind === 'capture' || result.kind === 'watch') && !z.uuid().safeParse(result.captureId).success)
+  if ((result.kind === 'capture' || result.kind === 'watch' || result.kind === 'cut') && !z.uuid().safeParse(result.captureId).success)
     return { member: 'captureId', reason: 'is no UUID' };
   return undefined;
 }
@@ -42,12 +42,17 @@ export function logFaults(log: RunLog, script: Script): Fault[] {
   if (log.script.prove !== script.prove)
     faults.push({ pointer: '/script/prove', reason: `the script says prove: ${String(script.prove)}` });
   if (Date.parse(log.endedAt) < Date.parse(log.startedAt)) faults.push({ pointer: '/endedAt', reason: 'lies before the start' });
+  log.people.forEach(({ steps }, index) => {
+    const before = log.people[index - 1]?.steps ?? 0;
+    if (steps < before || steps > log.steps.length)
+      faults.push({ pointer: `/people/${String(index)}/steps`, reason: 'lies outside what the log holds, or before the one before it' });
+  });
   const captures = new Set<string>();
   log.steps.forEach((result, index) => {
     const step = script.steps.find(({ id }) => id === result.stepId);
     const fault = step && faultOf(log, result, index, step);
     if (fault) faults.push({ pointer: `/steps/${String(index)}/${fault.member}`, reason: fault.reason });
-    if (result.kind === 'capture' || result.kind === 'watch') {
+    if (result.kind === 'capture' || result.kind === 'watch' || result.kind === 'cut') {
       if (captures.has(result.captureId)) faults.push({ pointer: `/steps/${String(index)}/captureId`, reason: 'stands twice in this log' });
       captures.add(result.captureId);
     }

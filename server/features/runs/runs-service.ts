@@ -6,7 +6,7 @@ import type { PersonRef } from '../../../shared/history/events.js';
 import { runGateBreach } from '../../../shared/readiness/run-gates.js';
 import { checkScript } from '../../../shared/script/check-script.js';
 import { readScript } from '../../../shared/script/read-script.js';
-import type { RunLog } from '../../../shared/script/run-log.js';
+import { holdsFile, type RunLog } from '../../../shared/script/run-log.js';
 import type { Script } from '../../../shared/script/schema.js';
 import type { Sheet } from '../../../shared/sheet/schema.js';
 import type { Verdict } from '../../../shared/verdict.js';
@@ -39,6 +39,7 @@ function withTimesInUtc(log: RunLog, now: Date): RunLog {
     ...log,
     startedAt: utc(log.startedAt, '/startedAt'),
     endedAt: utc(log.endedAt, '/endedAt'),
+    people: log.people.map((one, index) => ({ ...one, at: utc(one.at, `/people/${String(index)}/at`) })),
     steps: log.steps.map((step, index) => ({
       ...step,
       startedAt: utc(step.startedAt, `/steps/${String(index)}/startedAt`),
@@ -63,7 +64,7 @@ function settle(log: RunLog, script: Script, sheet: Sheet, by: PersonRef): Settl
     return settleRun(log, script, sheet, by, newId);
   } catch (error) {
     if (!(error instanceof BadInputError)) throw error;
-    const index = log.steps.findIndex((step) => (step.kind === 'capture' || step.kind === 'watch') && step.captureId === error.file);
+    const index = log.steps.findIndex((step) => holdsFile(step) && step.captureId === error.file);
     const reason = error.line === undefined ? error.message : `line ${String(error.line)}: ${error.message}`;
     throw new InvalidError([{ pointer: index < 0 ? '/steps' : `/steps/${String(index)}/file`, reason }]);
   }
@@ -107,7 +108,7 @@ export async function recordRun(
   // What the bench could know when it began: what others wrote down meanwhile is placed around the run's steps, and shuts no gate behind it.
   askGates(history, settled, script, sheet, placeOf(history, new Date(told.startedAt), now).before);
 
-  const steps = settled.log.steps.map((step) => (step.kind === 'capture' || step.kind === 'watch' ? { ...step, file: '' } : step));
+  const steps = settled.log.steps.map((step) => (holdsFile(step) ? { ...step, file: '' } : step));
   const stored = await insertRun(db, { unitId: unit.id, by, log: { ...settled.log, steps }, verdict: settled.verdict, recordedAt: now });
   if (!stored) throw new ConflictError('A run with this id is stored already.', 'Send the run again under the key it was first sent with.');
   await storeCaptures(db, history, settled, by, now);
@@ -127,8 +128,7 @@ export async function recordRun(
 
 async function storeCaptures(db: Db, { unit }: UnitHistory, { log, captures }: SettledRun, by: PersonRef, now: Date): Promise<void> {
   for (const { id, file, body } of captures) {
-    const at =
-      log.steps.find((step) => (step.kind === 'capture' || step.kind === 'watch') && step.captureId === id)?.endedAt ?? log.endedAt;
+    const at = log.steps.find((step) => holdsFile(step) && step.captureId === id)?.endedAt ?? log.endedAt;
     const simulated = log.rig.simulated || body.source === 'simulated';
     const stored = await insertCapture(db, { id, unitId: unit.id, runId: log.id, by, at, simulated, body, file, recordedAt: now });
     if (!stored) throw new ConflictError(`The capture ${id} of this run is stored already.`, 'Give each capture an id of its own.');
