@@ -2,7 +2,7 @@
 import { mkdtempSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { PassThrough } from 'node:stream';
+import { PassThrough, Writable } from 'node:stream';
 import { createContext, type Context } from '../../cli/context.js';
 import { keepSession } from '../../cli/session.js';
 
@@ -51,19 +51,23 @@ export function benchTerminal({
       answer();
     });
   };
+  // A stream like a terminal's, because inquirer draws its prompts on it.
+  const stderr = Object.assign(
+    new Writable({
+      decodeStrings: false,
+      write(text: string | Buffer, _encoding, done) {
+        written.stderr += text.toString();
+        answer();
+        done();
+      },
+    }),
+    { isTTY: terminal, columns: 80, rows: 24 },
+  );
   const context = createContext({
     env: { LANG: 'C.UTF-8', NO_COLOR: '1', REFETTLE_HOME: home, REFETTLE_SERVER: 'http://127.0.0.1:65534', ...env },
     stdin,
     stdout: { isTTY: stdoutTerminal, columns: 80, rows: 24, write: (text: string) => (written.stdout += text) },
-    stderr: {
-      isTTY: terminal,
-      columns: 80,
-      rows: 24,
-      write: (text: string) => {
-        written.stderr += text;
-        answer();
-      },
-    },
+    stderr,
     leaveNow: () => (left += 1),
   });
   const bench: BenchTerminal = {
