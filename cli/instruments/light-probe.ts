@@ -1,4 +1,5 @@
-import { GarbageError, InstrumentTimeoutError, type InstrumentError } from './instrument-error.js';
+import { parseScpiError } from '../../shared/measure/scpi-error.js';
+import { DamagedLinesError, GarbageError, ProbeSilentError, type InstrumentError } from './instrument-error.js';
 import { parseSampleLine } from './sample-line.js';
 import { SampleTimeline, type ProbeEvent } from './sample-timeline.js';
 import { ScpiConversation } from './scpi-conversation.js';
@@ -11,6 +12,8 @@ const STOP = 'INITiate:CONTinuous OFF';
 const MOST_SENSORS = 64;
 /** Without a line for this long the probe is asked once more to send (it may have started again), then given up. */
 const SILENCE_MS = 1500;
+/** Lines that are all damaged for so long are no bad cable any more. */
+const DAMAGED_ONLY_MS = 5000;
 /** Events nobody has fetched yet; beyond it the port is paused. */
 const MOST_WAITING_EVENTS = 20_000;
 
@@ -24,8 +27,11 @@ export interface LightProbeOptions {
 export interface LightProbe {
   readonly identification: string;
   readonly sensorCount: number;
-  /** Samples and gaps from now on, until `signal` aborts. Ends by stopping the probe. One reader at a time. */
-  read(signal: AbortSignal): AsyncGenerator<ProbeEvent, void, undefined>;
+  /**
+   * Samples and gaps from now on, until `signal` aborts. Ends by stopping the probe. One reader at a time. A `timeline` that was begun
+   * before the port went away is gone on with.
+   */
+  read(signal: AbortSignal, timeline?: SampleTimeline): AsyncGenerator<ProbeEvent, void, undefined>;
   /** Stops the probe and closes the port. */
   close(): Promise<void>;
 }
@@ -52,7 +58,8 @@ export async function openLightProbe(transport: Transport, options: LightProbeOp
   return {
     identification,
     sensorCount,
-    read: (signal) => readSamples({ transport, conversation, sensorCount, signal, stop, ...options }),
+    read: (signal, timeline = new SampleTimeline(options.sampleRateHz)) =>
+      readSamples({ transport, conversation, sensorCount, signal, timeline, stop, ...options }),
     close: async () => {
       await stop();
       await transport.close();
@@ -65,22 +72,30 @@ interface Reading extends LightProbeOptions {
   conversation: ScpiConversation;
   sensorCount: number;
   signal: AbortSignal;
+  timeline: SampleTimeline;
   stop: () => Promise<void>;
 }
 
 async function* readSamples(reading: Reading): AsyncGenerator<ProbeEvent, void, undefined> {
-  const { transport, conversation, sensorCount, signal, stop, sampleRateHz, scaleMax, nowUs } = reading;
-  const timeline = new SampleTimeline(sampleRateHz);
+  const { transport, conversation, sensorCount, signal, timeline, stop, scaleMax, nowUs } = reading;
   const waiting: ProbeEvent[] = [];
   let gone: InstrumentError | undefined;
   let lines = 0;
+  /** Lines since the last whole one, and when that was. */
+  let damagedInARow = 0;
+  let lastWholeMs: number;
   let wake = (): void => undefined;
   let paused = false;
 
   const subscriptions = [
     transport.onLine((line) => {
+      // An answer of its error queue is no damaged sample.
+      if (parseScpiError(line) !== undefined) return;
       lines += 1;
-      waiting.push(...timeline.push(parseSampleLine(line, sensorCount, scaleMax), nowUs()));
+      const sample = parseSampleLine(line, sensorCount, scaleMax);
+      damagedInARow = sample === undefined ? damagedInARow + 1 : 0;
+      if (sample !== undefined) lastWholeMs = performance.now();
+      waiting.push(...timeline.push(sample, nowUs()));
       if (waiting.length > MOST_WAITING_EVENTS && !paused) {
         transport.pause();
         paused = true;
@@ -96,6 +111,7 @@ async function* readSamples(reading: Reading): AsyncGenerator<ProbeEvent, void, 
   signal.addEventListener('abort', onAbort);
   try {
     if (signal.aborted) return;
+    lastWholeMs = performance.now();
     await conversation.tell(START);
     let remindersLeft = 1;
     for (;;) {
@@ -116,9 +132,19 @@ async function* readSamples(reading: Reading): AsyncGenerator<ProbeEvent, void, 
           resolve();
         };
       });
+      const damagedOnlyMs = performance.now() - lastWholeMs;
+      if (damagedInARow > 0 && damagedOnlyMs > DAMAGED_ONLY_MS && !signal.aborted && gone === undefined)
+        throw new DamagedLinesError(transport, damagedInARow, Math.round(damagedOnlyMs / 1000));
       if (lines > heard) remindersLeft = 1;
       else if (!signal.aborted && gone === undefined) {
-        if (remindersLeft === 0) throw new InstrumentTimeoutError(transport, START, 2 * SILENCE_MS);
+        if (remindersLeft === 0) {
+          const answers = await conversation.errors().then(
+            () => true,
+            () => false,
+          );
+          if (lines > heard) continue;
+          throw new ProbeSilentError(transport, (2 * SILENCE_MS) / 1000, answers);
+        }
         remindersLeft -= 1;
         await conversation.tell(START);
       }

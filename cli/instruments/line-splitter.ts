@@ -17,6 +17,11 @@ export class LineSplitter {
   #pending = '';
   #skipping = false;
 
+  /** What stands behind the last line end; nothing of a line that was given up. */
+  get unfinished(): string {
+    return this.#pending;
+  }
+
   push(chunk: Uint8Array): string[] {
     const pieces = (this.#pending + Buffer.from(chunk.buffer, chunk.byteOffset, chunk.byteLength).toString('latin1')).split('\n');
     this.#pending = pieces.pop() ?? '';
@@ -37,8 +42,10 @@ export class LineSplitter {
       this.droppedLines += 1;
       return '';
     }
-    const bare = piece.replace(EDGE_NULS, '');
-    this.droppedBytes += piece.length - bare.length;
-    return bare.replace(/\r$/, '').trim() === '' ? '' : bare.replace(/\r$/, '');
+    const line = piece.replace(/\r$/, '');
+    const bare = line.replace(EDGE_NULS, '');
+    this.droppedBytes += line.length - bare.length;
+    const text = bare.replace(/\r$/, '');
+    return text.trim() === '' ? '' : text;
   }
 }

@@ -54,10 +54,10 @@ export async function openMeter(transport: Transport, options: MeterOptions = {}
   };
 }
 
-/** A meter that does not know a command is silent; its error queue then says why. */
+/** A meter that does not know a command is silent; its error queue then says why. A late answer is never waited for: it is passed over. */
 async function askOrExplain(conversation: ScpiConversation, transport: Transport, query: string, timeoutMs: number): Promise<string> {
   try {
-    return await conversation.ask(query, { timeoutMs });
+    return await conversation.askSurely(query, { timeoutMs });
   } catch (error) {
     if (!(error instanceof InstrumentTimeoutError)) throw error;
     const [refusal] = await conversation.errors().catch(() => []);

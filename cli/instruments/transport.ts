@@ -10,6 +10,8 @@ import {
   type Where,
 } from './instrument-error.js';
 import { LineSplitter } from './line-splitter.js';
+import { machinePorts } from './machine-ports.js';
+import { deviceOf, holderOf, holderText, lockFileHolder, takeLockFile, USUAL_LOCK_FOLDER } from './port-holder.js';
 
 /** What drives a port: the real driver, or the mock that simulated instruments hang on. */
 export type Binding = ConstructorParameters<typeof SerialPortStream>[0]['binding'];
@@ -21,6 +23,8 @@ export interface TransportOptions {
   baudRate: number;
   /** The real driver unless given. */
   binding?: Binding | undefined;
+  /** Where programs put lock files for ports; the usual folder unless given. */
+  lockFolder?: string | undefined;
 }
 
 /** A serial port, line by line. */
@@ -35,20 +39,30 @@ export interface Transport extends Where {
   resume(): void;
   /** Bytes that were no part of any line. */
   droppedBytes(): number;
+  /** What stands behind the last line end. */
+  unfinished(): string;
   close(): Promise<void>;
 }
 
-/** Opens a port: 8 data bits, no parity, 1 stop bit, LF at the end of a line (contract, section 6). */
+/**
+ * Opens a port: 8 data bits, no parity, 1 stop bit, LF at the end of a line (contract, section 6). Nobody else may have it: the
+ * driver locks it, and a lock file tells programs that look for one.
+ */
 export async function openTransport(options: TransportOptions): Promise<Transport> {
   const where: Where = { instrument: options.instrument, port: options.path };
+  const lockFolder = options.lockFolder ?? USUAL_LOCK_FOLDER;
+  const device = deviceOf(options.path);
+  if (lockFileHolder(device, lockFolder) !== undefined) throw busy(where, lockFolder);
   const { SerialPortStream } = await import('@serialport/stream');
   const binding = options.binding ?? (await import('./serial-driver.js')).serialDriver;
   const stream = new SerialPortStream({ binding, path: options.path, baudRate: options.baudRate, autoOpen: false });
   await new Promise<void>((resolve, reject) => stream.open((error) => (error ? reject(error) : resolve()))).catch(
     async (error: unknown) => {
-      throw await openingError(error, where);
+      throw await openingError(error, where, { lockFolder, real: options.binding === undefined });
     },
   );
+  const giveBack = takeLockFile(device, lockFolder);
+  stream.on('close', giveBack);
   return new SerialTransport(stream, where);
 }
 
@@ -73,7 +87,11 @@ class SerialTransport implements Transport {
     stream.on('data', (chunk: Buffer) => {
       for (const line of this.#splitter.push(chunk)) for (const listener of [...this.#lineListeners]) listener(line);
     });
-    stream.on('error', (error: Error) => this.#end(new DisconnectedError(where, { cause: error })));
+    stream.on('error', (error: Error) => {
+      this.#end(new DisconnectedError(where, { cause: error }));
+      // A port that failed is given back, or it could not be opened again when the plug returns.
+      if (stream.isOpen) stream.close(() => undefined);
+    });
     stream.on('close', (error: Error | null) =>
       this.#end(error ? new DisconnectedError(where, { cause: error }) : new PortClosedError(where)),
     );
@@ -114,8 +132,12 @@ class SerialTransport implements Transport {
     return this.#splitter.droppedBytes;
   }
 
+  unfinished(): string {
+    return this.#splitter.unfinished;
+  }
+
   async close(): Promise<void> {
-    if (this.#closed || !this.#stream.isOpen) return;
+    if (!this.#stream.isOpen) return;
     await new Promise<void>((resolve) => this.#stream.close(() => resolve()));
   }
 
@@ -128,16 +150,22 @@ class SerialTransport implements Transport {
 }
 
 /** The driver's words for why a port would not open, and the mock's. */
-async function openingError(error: unknown, where: Where): Promise<InstrumentError> {
+async function openingError(error: unknown, where: Where, machine: { lockFolder: string; real: boolean }): Promise<InstrumentError> {
   const words = error instanceof Error ? error.message : String(error);
   if (/permission denied|access denied/i.test(words)) return new PermissionError(where, await groupOf(where.port), { cause: error });
-  if (/cannot lock|is locked|temporarily unavailable|resource busy/i.test(words)) return new PortBusyError(where, { cause: error });
-  if (/no such (file|device)|file not found|does not exist/i.test(words)) return new PortMissingError(where, { cause: error });
+  if (/cannot lock|is locked|temporarily unavailable|resource busy/i.test(words)) return busy(where, machine.lockFolder, error);
+  if (/no such (file|device)|file not found|does not exist/i.test(words))
+    return new PortMissingError(where, machine.real ? (await machinePorts()).map(({ path }) => path) : undefined, { cause: error });
   return new InstrumentError(
     `the port would not open: ${words}`,
     { ...where, toDo: 'Check the port and the baud rate in the rig file.' },
     { cause: error },
   );
+}
+
+function busy(where: Where, lockFolder: string, cause?: unknown): PortBusyError {
+  const holder = holderOf(where.port, lockFolder);
+  return new PortBusyError(where, holder && holderText(holder), { cause });
 }
 
 /** On Debian and its kin serial ports belong to this group; elsewhere the device itself says. */

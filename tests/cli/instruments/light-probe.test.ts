@@ -1,5 +1,5 @@
 import { afterEach, describe, expect, test } from 'vitest';
-import { DisconnectedError, GarbageError, InstrumentTimeoutError } from '../../../cli/instruments/instrument-error.js';
+import { DisconnectedError, GarbageError } from '../../../cli/instruments/instrument-error.js';
 import { openLightProbe, type LightProbeOptions } from '../../../cli/instruments/light-probe.js';
 import { writeSampleLine } from '../../../cli/instruments/sample-line.js';
 import type { ProbeEvent } from '../../../cli/instruments/sample-timeline.js';
@@ -181,8 +181,30 @@ describe('the light probe', () => {
         (signal) => probe.read(signal),
         () => false,
       ),
-    ).rejects.toBeInstanceOf(InstrumentTimeoutError);
+    ).rejects.toMatchObject({
+      name: 'ProbeSilentError',
+      message: expect.stringMatching(/no sample for 3 s, although it answers/) as string,
+    });
     expect(started).toBe(2);
+  });
+
+  test('When every line is damaged for seconds, then it is not called silent: the cable is', async () => {
+    let sending: NodeJS.Timeout | undefined;
+    const instrument = new ScriptedInstrument((line, self) => {
+      if (line === '*IDN?') return 'Millrace,LP-1,0,1.0\n';
+      if (line === 'SYSTem:ERRor?') return '0,"No error"\n';
+      if (line === 'SENSe:LAMP:COUNt?') return '1\n';
+      if (line === 'INITiate:CONTinuous ON') sending = setInterval(() => self.send('$12,x*00\n'), 50);
+      return undefined;
+    });
+    const { transport } = await opened(instrument, 'P-01');
+    open.push(transport);
+    const probe = await openLightProbe(transport, settings);
+    const reading = collect(
+      (signal) => probe.read(signal),
+      () => false,
+    );
+    await expect(reading.finally(() => clearInterval(sending))).rejects.toMatchObject({ name: 'DamagedLinesError' });
   });
 
   test.each(['0', '65', 'six', '1.5'])('When it says that it has %s sensors, then that is garbage', async (count) => {

@@ -118,8 +118,57 @@ describe('SampleTimeline', () => {
       played([
         [8_000_000, 0],
         [0, 0],
+        [10_000, 0],
       ]),
-    ).toEqual([0, { at: 10_000, lost: 1 }, 20_000]);
+    ).toEqual([0, { at: 10_000, lost: 1 }, 20_000, 30_000]);
+  });
+
+  // Found on paper: an XOR of eight bits does not see two equal changes, in a time as little as in a level.
+  test.each([
+    ['falls', 3_000_000],
+    ['jumps ahead', 900_000_000],
+  ])('When the time of one line %s and the next goes on as before, then that line was damaged', (_how, wrong) => {
+    expect(
+      played([
+        [8_000_000, 0],
+        [8_010_000, 10_000],
+        [wrong, 20_000],
+        [8_030_000, 30_000],
+      ]),
+    ).toEqual([0, 10_000, { at: 20_000, lost: 1 }, 30_000]);
+    expect(
+      played([
+        [8_000_000, 0],
+        [wrong, 10_000],
+      ]),
+    ).toEqual([0, { at: 10_000, lost: 1 }]);
+  });
+
+  test('When the bench was asleep and lines come all at once, then the probe tells the time', () => {
+    expect(
+      played([
+        [0, 0],
+        [10_000, 300_000_000],
+        [299_990_000, 300_000_000],
+        [300_000_000, 300_010_000],
+      ]),
+    ).toEqual([0, 10_000, { at: 20_000, lost: 29_997 }, 299_990_000, 300_000_000]);
+  });
+
+  test.each([
+    ['kept its clock', 5_010_000, 5_020_000, 5_010_000, 500],
+    ['began again at a later time than before', 900_000, 910_000, 5_010_000, 500],
+    ['began again at 0', 0, 10_000, 5_010_000, 500],
+  ])('When the port was away for five seconds and the probe %s, then five seconds are missing', (_what, one, next, tUs, lost) => {
+    const timeline = new SampleTimeline(100);
+    const push = (probeUs: number, benchUs: number) => timeline.push({ tUs: probeUs, levels: [1] }, benchUs);
+    push(0, 0);
+    push(10_000, 10_000);
+    timeline.away();
+    const events = [...push(one, 5_010_000), ...push(next, 5_020_000)];
+    // 5 s at 100 Hz, less the sample that came.
+    expect(events[0]).toEqual({ kind: 'gap', atUs: 20_000, lost: lost - 1 });
+    expect(events.slice(1).map((event) => event.kind === 'sample' && event.tUs)).toEqual([tUs, tUs + 10_000]);
   });
 
   test('When anything comes, then time never falls and every loss has a number', () => {
