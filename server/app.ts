@@ -9,8 +9,13 @@ import { rateLimits } from './auth/rate-limits.js';
 import type { Config } from './config.js';
 import type { Db } from './db.js';
 import { NotFoundError } from './errors.js';
+import { registerAuditRoutes } from './features/audit/audit-routes.js';
+import { registerBenchRoutes } from './features/benches/benches-routes.js';
+import { whoSignsOn } from './features/benches/sign-on-service.js';
 import { registerCaptureRoutes } from './features/captures/captures-routes.js';
 import { registerHealthRoutes } from './features/health/health-routes.js';
+import type { LiveHub } from './features/live/live-hub.js';
+import { registerLiveRoutes } from './features/live/live-routes.js';
 import { registerPeopleRoutes } from './features/people/people-routes.js';
 import { registerReadingRoutes } from './features/readings/readings-routes.js';
 import { registerRunRoutes } from './features/runs/runs-routes.js';
@@ -22,13 +27,16 @@ import { registerUnitRoutes } from './features/units/units-routes.js';
 import { loggedError } from './logged-error.js';
 import { OPENAPI_PATH, openApiDocument } from './openapi.js';
 import { sendProblem } from './problem.js';
-import { refuseOtherMethods, routesOn } from './route.js';
+import { refuseOtherMethods, routesOn, streamsOn } from './route.js';
 
 export interface AppDependencies {
   db: Db;
   config: Config;
-  signingKey: SigningKey;
+  /** The key that signs now. Asked each time: it may be rotated while the server runs. */
+  signingKey: () => Promise<SigningKey>;
   clock: () => Date;
+  /** Hears what benches tell, whichever server they tell it to. */
+  live: LiveHub;
   /** The built web; undefined: the API alone. */
   webDir: string | undefined;
   log: Logger;
@@ -54,20 +62,23 @@ export function createApp(deps: AppDependencies): Express {
   app.set('etag', false);
 
   const route = routesOn(app, deps);
-  const limits = rateLimits();
+  const limits = rateLimits((body) => whoSignsOn(deps.db, body));
   const openApi = openApiDocument();
   app.get(OPENAPI_PATH, (_request, response) => {
     response.json(openApi);
   });
   registerHealthRoutes(route);
   registerSessionRoutes(route, deps, limits);
-  registerPeopleRoutes(route);
+  registerPeopleRoutes(route, deps, limits);
+  registerAuditRoutes(route, deps);
+  registerBenchRoutes(route, limits);
   registerSheetRoutes(route);
   registerUnitRoutes(route);
   registerCaptureRoutes(route);
   registerReadingRoutes(route);
   registerRunRoutes(route);
   registerTagRoutes(route, deps, limits);
+  registerLiveRoutes(route, streamsOn(app, deps), deps);
   refuseOtherMethods(app);
   app.use('/api', (request) => {
     throw new NotFoundError(`There is no ${request.method} ${request.baseUrl}${request.path}.`);

@@ -8,7 +8,9 @@ import { createFirstAdminLink } from './auth/first-admin.js';
 import { readConfig, type Config } from './config.js';
 import { holdDataFolder, makeDataFolder } from './data-folder.js';
 import { migrate, openDb, type Db } from './db.js';
-import { loadSigningKey } from './features/tags/signing-key.js';
+import { LiveHub } from './features/live/live-hub.js';
+import { registerSigningKey } from './features/tags/signing-key-store.js';
+import { loadSigningKey, readSigningKey } from './features/tags/signing-key.js';
 import { keepTidy } from './housekeeping.js';
 import { addressOf, closeServer, listen, makeSureThatPortIsFree } from './listen.js';
 import { loggedError } from './logged-error.js';
@@ -33,25 +35,32 @@ async function main(): Promise<void> {
   });
   await makeSureThatPortIsFree(config.host, config.port);
 
-  const db = openDb(config.databaseUrl ?? (await startDatabase(config)));
+  const databaseUrl = config.databaseUrl ?? (await startDatabase(config));
+  const db = openDb(databaseUrl);
   shutdown.add(() => db.destroy());
   await migrateOrSayWhy(db, config);
+  await registerSigningKey(db, await loadSigningKey(config.dataDir), new Date());
 
   const builtWeb = join(packageRoot, 'dist/web');
+  const log = pino(
+    { level: 'warn', serializers: { err: pino.stdSerializers.wrapErrorSerializer(loggedError) } },
+    pino.destination({ dest: 2, sync: true }),
+  );
+  const live = new LiveHub({ db, databaseUrl, log });
   const deps: AppDependencies = {
     db,
     config,
-    signingKey: await loadSigningKey(config.dataDir),
+    signingKey: () => readSigningKey(config.dataDir),
     clock: () => new Date(),
+    live,
     webDir: existsSync(builtWeb) ? builtWeb : undefined,
-    log: pino(
-      { level: 'warn', serializers: { err: pino.stdSerializers.wrapErrorSerializer(loggedError) } },
-      pino.destination({ dest: 2, sync: true }),
-    ),
+    log,
   };
   const accounts = config.demo ? await seedDemoShop(deps) : [];
   const server = await listen(createApp(deps), config.host, config.port);
   shutdown.add(() => closeServer(server));
+  // Before the server: an open page must not hold it up.
+  shutdown.add(() => live.close());
   const address = addressOf(server);
   shutdown.add(keepTidy(deps));
 

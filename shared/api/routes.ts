@@ -1,12 +1,39 @@
 import { z } from 'zod';
+import { auditFilterSchema, auditQuerySchema, auditRowSchema } from './audit.js';
+import {
+  benchRigSchema,
+  benchSchema,
+  benchWithTokenSchema,
+  newBenchSchema,
+  ownBenchSchema,
+  ownPinSchema,
+  pinOfAnotherSchema,
+  pinStateSchema,
+  signedOnSchema,
+  signOnSchema,
+} from './benches.js';
 import { capturePageSchema, captureStoredSchema, newCaptureSchema } from './captures.js';
+import { liveEventSchema, liveQuerySchema, liveTakenSchema, newLiveSchema } from './live.js';
 import { pageOf, pageQuerySchema } from './page.js';
+import {
+  changePasswordSchema,
+  changeRoleSchema,
+  deactivateSchema,
+  inviteSchema,
+  linkPageSchema,
+  lookAtLinkSchema,
+  madeLinkSchema,
+  personRowSchema,
+  sessionRowSchema,
+  sessionsEndedSchema,
+  useLinkSchema,
+} from './people.js';
 import { eventStoredSchema, newInspectionSchema, newReadingSchema, newRepairSchema } from './readings.js';
 import type { Action } from './roles.js';
 import { newRunSchema, runPageSchema, runStoredSchema } from './runs.js';
 import { firstAdminSchema, meSchema, newPersonSchema, personSchema, signedInSchema, signInSchema } from './sessions.js';
 import { newSheetSchema, sheetPageSchema, sheetRowSchema } from './sheets.js';
-import { publicTagQuerySchema, publicTagSchema, signOffSchema, tagPageSchema, withdrawTagSchema } from './tags.js';
+import { publicKeysSchema, publicTagQuerySchema, publicTagSchema, signOffSchema, tagPageSchema, withdrawTagSchema } from './tags.js';
 import { giveFamilySchema, newUnitSchema, overrideSchema, unitPageSchema, unitRowSchema, unitSchema } from './units.js';
 
 /** One route: the server checks requests by it, OpenAPI describes it, terminal and browser call it, the tests walk it. */
@@ -21,8 +48,12 @@ export interface Route {
   body?: z.ZodType;
   status: 200 | 201 | 204;
   response: z.ZodType;
+  /** The answer's media type where it is no JSON: it is sent piece by piece, and `response` describes it whole. */
+  media?: 'text/csv';
   /** A write that a bench sends: carries an Idempotency-Key. */
   idempotent?: true;
+  /** The answer has no end: server-sent events (text/event-stream), and `response` is the data of each. */
+  stream?: true;
 }
 
 /** Digits and nothing else: JavaScript's other ways to write a number (`0x1`, `1e0`, blanks around it) are slips in an address. */
@@ -33,6 +64,8 @@ const unitNumber = z.strictObject({
   ),
 });
 const byId = z.strictObject({ id: z.uuid() });
+const sessionOfPerson = z.strictObject({ id: z.uuid(), session: z.uuid() });
+const ownSession = z.strictObject({ session: z.uuid() });
 const family = z.strictObject({ family: z.string().max(100) });
 const tagNumber = z.strictObject({ tag: z.string().max(40) });
 const nothing = z.strictObject({});
@@ -80,7 +113,7 @@ export const routes = {
     summary: 'The people of the shop',
     query: pageQuerySchema,
     status: 200,
-    response: pageOf(personSchema),
+    response: pageOf(personRowSchema),
   },
   createPerson: {
     method: 'POST',
@@ -90,6 +123,269 @@ export const routes = {
     body: newPersonSchema,
     status: 201,
     response: personSchema,
+  },
+  getPerson: {
+    method: 'GET',
+    path: '/api/people/:id',
+    action: 'person.read',
+    summary: 'A person of the shop',
+    params: byId,
+    status: 200,
+    response: personRowSchema,
+  },
+  invitePerson: {
+    method: 'POST',
+    path: '/api/people/invitations',
+    action: 'person.create',
+    summary: 'Invite a person: the answer holds a one-time link by which they set their password',
+    body: inviteSchema,
+    status: 201,
+    response: madeLinkSchema,
+  },
+  makeLink: {
+    method: 'POST',
+    path: '/api/people/:id/link',
+    action: 'person.change',
+    summary: 'A one-time link for a forgotten password or a new invitation; the link before it no longer opens',
+    params: byId,
+    status: 201,
+    response: madeLinkSchema,
+  },
+  changeRole: {
+    method: 'POST',
+    path: '/api/people/:id/role',
+    action: 'person.change',
+    summary: 'Change a role; nobody changes their own, and the last active admin stays one',
+    params: byId,
+    body: changeRoleSchema,
+    status: 200,
+    response: personRowSchema,
+  },
+  deactivatePerson: {
+    method: 'POST',
+    path: '/api/people/:id/deactivation',
+    action: 'person.change',
+    summary: 'Somebody no longer works here: their sessions end at once, their history stays',
+    params: byId,
+    body: deactivateSchema,
+    status: 200,
+    response: personRowSchema,
+  },
+  activatePerson: {
+    method: 'POST',
+    path: '/api/people/:id/activation',
+    action: 'person.change',
+    summary: 'Somebody works here again',
+    params: byId,
+    status: 200,
+    response: personRowSchema,
+  },
+  listSessions: {
+    method: 'GET',
+    path: '/api/people/:id/sessions',
+    action: 'session.read',
+    summary: 'The sessions of a person, newest first',
+    params: byId,
+    query: pageQuerySchema,
+    status: 200,
+    response: pageOf(sessionRowSchema),
+  },
+  revokeSession: {
+    method: 'DELETE',
+    path: '/api/people/:id/sessions/:session',
+    action: 'session.revoke',
+    summary: 'End a session of a person',
+    params: sessionOfPerson,
+    status: 204,
+    response: nothing,
+  },
+  revokeSessions: {
+    method: 'DELETE',
+    path: '/api/people/:id/sessions',
+    action: 'session.revoke',
+    summary: 'End every session of a person',
+    params: byId,
+    status: 200,
+    response: sessionsEndedSchema,
+  },
+  listOwnSessions: {
+    method: 'GET',
+    path: '/api/me/sessions',
+    action: 'own-session.read',
+    summary: 'Where I am signed in, newest first',
+    query: pageQuerySchema,
+    status: 200,
+    response: pageOf(sessionRowSchema),
+  },
+  revokeOwnSession: {
+    method: 'DELETE',
+    path: '/api/me/sessions/:session',
+    action: 'own-session.revoke',
+    summary: 'End a session of my own',
+    params: ownSession,
+    status: 204,
+    response: nothing,
+  },
+  revokeOtherSessions: {
+    method: 'DELETE',
+    path: '/api/me/sessions',
+    action: 'own-session.revoke',
+    summary: 'End every session of my own but this one',
+    status: 200,
+    response: sessionsEndedSchema,
+  },
+  changePassword: {
+    method: 'POST',
+    path: '/api/me/password',
+    action: 'own-password.change',
+    summary: 'Change my password; every other session of mine ends',
+    body: changePasswordSchema,
+    status: 200,
+    response: sessionsEndedSchema,
+  },
+  lookAtLink: {
+    method: 'POST',
+    path: '/api/person-links/look',
+    action: 'person-link.use',
+    summary: 'Whose one-time link this is, and for what; its token goes into the body, so that it stands in no log',
+    body: lookAtLinkSchema,
+    status: 200,
+    response: linkPageSchema,
+  },
+  useLink: {
+    method: 'POST',
+    path: '/api/person-links/use',
+    action: 'person-link.use',
+    summary: 'Set a password by a one-time link; every session of that person ends',
+    body: useLinkSchema,
+    status: 200,
+    response: personSchema,
+  },
+  listAudit: {
+    method: 'GET',
+    path: '/api/audit',
+    action: 'audit.read',
+    summary: 'Who changed what, when, before and after; newest first',
+    query: auditQuerySchema,
+    status: 200,
+    response: pageOf(auditRowSchema),
+  },
+  exportAudit: {
+    method: 'GET',
+    path: '/api/audit.csv',
+    action: 'audit.read',
+    summary: 'The same as CSV (RFC 4180), whole and oldest first',
+    query: auditFilterSchema,
+    status: 200,
+    response: z.string(),
+    media: 'text/csv',
+  },
+  setOwnPin: {
+    method: 'POST',
+    path: '/api/me/pin',
+    action: 'own-pin.write',
+    summary: 'Set the own PIN for shared benches; asks for the own password',
+    body: ownPinSchema,
+    status: 200,
+    response: pinStateSchema,
+  },
+  getOwnPin: {
+    method: 'GET',
+    path: '/api/me/pin',
+    action: 'own-pin.write',
+    summary: 'Whether the own PIN is set, and since when',
+    status: 200,
+    response: pinStateSchema,
+  },
+  listPins: {
+    method: 'GET',
+    path: '/api/pins',
+    action: 'pin.read',
+    summary: 'Who has a PIN for shared benches',
+    query: pageQuerySchema,
+    status: 200,
+    response: pageOf(pinStateSchema),
+  },
+  setPin: {
+    method: 'POST',
+    path: '/api/people/:id/pin',
+    action: 'pin.write',
+    summary: 'Set another’s PIN',
+    params: byId,
+    body: pinOfAnotherSchema,
+    status: 200,
+    response: pinStateSchema,
+  },
+  clearPin: {
+    method: 'DELETE',
+    path: '/api/people/:id/pin',
+    action: 'pin.write',
+    summary: 'Take a PIN away: its holder signs on nowhere until a new one is set',
+    params: byId,
+    status: 200,
+    response: pinStateSchema,
+  },
+  listBenches: {
+    method: 'GET',
+    path: '/api/benches',
+    action: 'bench.read',
+    summary: 'The shared benches: when they last called, who signs on there, their rigs',
+    query: pageQuerySchema,
+    status: 200,
+    response: pageOf(benchSchema),
+  },
+  createBench: {
+    method: 'POST',
+    path: '/api/benches',
+    action: 'bench.write',
+    summary: 'Make a shared bench; its token is in this answer only',
+    body: newBenchSchema,
+    status: 201,
+    response: benchWithTokenSchema,
+  },
+  renewBenchToken: {
+    method: 'POST',
+    path: '/api/benches/:id/token',
+    action: 'bench.write',
+    summary: 'Give a bench a new token; the old one is no longer good',
+    params: byId,
+    status: 201,
+    response: benchWithTokenSchema,
+  },
+  revokeBench: {
+    method: 'POST',
+    path: '/api/benches/:id/revocation',
+    action: 'bench.write',
+    summary: 'End a bench’s token; what it recorded stays',
+    params: byId,
+    status: 200,
+    response: benchSchema,
+  },
+  ownBench: {
+    method: 'GET',
+    path: '/api/bench',
+    action: 'bench.self',
+    summary: 'A shared bench’s own view: its name, the shop, whom it offers at sign-on',
+    status: 200,
+    response: ownBenchSchema,
+  },
+  reportRig: {
+    method: 'POST',
+    path: '/api/bench/rig',
+    action: 'bench.self',
+    summary: 'A shared bench says what hangs on it',
+    body: benchRigSchema,
+    status: 200,
+    response: ownBenchSchema,
+  },
+  signOnAtBench: {
+    method: 'POST',
+    path: '/api/bench/sign-ons',
+    action: 'bench.sign-on',
+    summary: 'Sign on at a shared bench by name and PIN',
+    body: signOnSchema,
+    status: 201,
+    response: signedOnSchema,
   },
   listSheets: {
     method: 'GET',
@@ -242,6 +538,25 @@ export const routes = {
     status: 200,
     response: runPageSchema,
   },
+  tellLive: {
+    method: 'POST',
+    path: '/api/live',
+    action: 'live.tell',
+    summary: 'Tell what goes on at a bench while it goes on; a part that is sent twice is shown once',
+    body: newLiveSchema,
+    status: 200,
+    response: liveTakenSchema,
+  },
+  hearLive: {
+    method: 'GET',
+    path: '/api/live',
+    action: 'live.hear',
+    summary: 'Hear what goes on at the benches, of one unit or of all: first the work as it stands, then what follows',
+    query: liveQuerySchema,
+    status: 200,
+    response: liveEventSchema,
+    stream: true,
+  },
   signOff: {
     method: 'POST',
     path: '/api/units/:number/sign-off',
@@ -280,6 +595,14 @@ export const routes = {
     query: publicTagQuerySchema,
     status: 200,
     response: publicTagSchema,
+  },
+  getPublicKeys: {
+    method: 'GET',
+    path: '/api/public/keys',
+    action: 'public-tag.read',
+    summary: 'The public keys of the tags, as a JWK Set (RFC 7517)',
+    status: 200,
+    response: publicKeysSchema,
   },
 } as const satisfies Record<string, Route>;
 

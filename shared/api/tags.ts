@@ -71,3 +71,18 @@ export const publicTagSchema = z.discriminatedUnion('standing', [
   }),
 ]);
 export type PublicTag = z.infer<typeof publicTagSchema>;
+
+/** A JWK Set (RFC 7517) of Ed25519 keys (RFC 8037): with it anybody checks a tag's JWS, without asking the shop about the tag. */
+export const publicKeysSchema = z.strictObject({
+  keys: z.array(
+    z.strictObject({
+      kty: z.literal('OKP'),
+      crv: z.literal('Ed25519'),
+      x: z.string(),
+      kid: z.string(),
+      use: z.literal('sig'),
+      alg: z.literal('EdDSA'),
+    }),
+  ),
+});
+export type PublicKeys = z.infer<typeof publicKeysSchema>;

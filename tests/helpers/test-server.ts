@@ -8,6 +8,7 @@ import { pino } from 'pino';
 import request, { type Test } from 'supertest';
 import { expect } from 'vitest';
 import { v7 as newId } from 'uuid';
+import { PERSON_HEADER } from '../../shared/api/benches.js';
 import { problemSchema, type Problem } from '../../shared/api/problem.js';
 import { ROLES, type Role } from '../../shared/api/roles.js';
 import { routes, routeUrl, type Answer, type RouteName } from '../../shared/api/routes.js';
@@ -17,12 +18,20 @@ import { insertPerson } from '../../server/auth/people-store.js';
 import { insertSession } from '../../server/auth/session-store.js';
 import { newToken } from '../../server/auth/token.js';
 import type { Config } from '../../server/config.js';
+import { LiveHub } from '../../server/features/live/live-hub.js';
 import { signingKeyOf } from '../../server/features/tags/signing-key.js';
 import { EMPTY_SHOP, insertShop } from '../../server/history/shop-store.js';
-import { freshDatabase } from './fresh-database.js';
+import { firstEvent } from './first-event.js';
+import { freshDatabase, type FreshDatabase } from './fresh-database.js';
 
 export interface SignedInPerson extends User {
   token: string;
+}
+
+/** The token of a shared bench, and who stands there. */
+export interface AtBench {
+  token: string;
+  person: string | undefined;
 }
 
 type Texts = Record<string, string | number | boolean | undefined>;
@@ -32,7 +41,7 @@ export interface Call {
   query?: Texts;
   body?: unknown;
   /** Undefined: nobody. */
-  as?: SignedInPerson | undefined;
+  as?: SignedInPerson | AtBench | undefined;
   /** Undefined: a new one where the route needs one. */
   key?: string;
 }
@@ -59,24 +68,36 @@ export interface TestServerOptions {
   shop?: Partial<Shop>;
   config?: Partial<Config>;
   webDir?: string;
+  signingKey?: AppDependencies['signingKey'];
+  /** A database that is there already, with its shop and its people; the caller drops it. */
+  existing?: { database: FreshDatabase; people: Record<Role, SignedInPerson> };
 }
 
 const PUBLIC_URL = 'https://tags.millrace.example';
 /** A hash that no password fits and that costs nothing to make: these people sign in by token. */
 const NO_PASSWORD = '$argon2id$v=19$m=19456,t=2,p=1$AAAAAAAAAAAAAAAAAAAAAA$AAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAAA';
 
-export async function startTestServer({ shop = {}, config = {}, webDir }: TestServerOptions = {}): Promise<TestServer> {
-  const fresh = await freshDatabase();
+export async function startTestServer({
+  shop = {},
+  config = {},
+  webDir,
+  signingKey: ownKey,
+  existing,
+}: TestServerOptions = {}): Promise<TestServer> {
+  const fresh = existing?.database ?? (await freshDatabase());
   const dataDir = mkdtempSync(join(tmpdir(), 'refettle-test-data-'));
   const time = { now: new Date('2026-03-05T09:00:00Z') };
   const logged: string[] = [];
+  const log = pino({ level: 'info' }, { write: (line: string) => void logged.push(line) });
+  const signingKey = await signingKeyOf(generateKeyPairSync('ed25519').privateKey);
   const deps: AppDependencies = {
     db: fresh.db,
     config: { host: '127.0.0.1', port: 4780, dataDir, databaseUrl: fresh.url, demo: false, publicUrl: PUBLIC_URL, ...config },
-    signingKey: await signingKeyOf(generateKeyPairSync('ed25519').privateKey),
+    signingKey: ownKey ?? (() => Promise.resolve(signingKey)),
     clock: () => time.now,
+    live: new LiveHub({ db: fresh.db, databaseUrl: fresh.url, log }),
     webDir,
-    log: pino({ level: 'info' }, { write: (line: string) => void logged.push(line) }),
+    log,
   };
   await insertShop(deps.db, { ...EMPTY_SHOP, name: 'Millrace Mend', address: '12 Dyehouse Yard', phone: '01632 960412', ...shop });
   const app = createApp(deps);
@@ -90,14 +111,16 @@ export async function startTestServer({ shop = {}, config = {}, webDir }: TestSe
   };
   const names: Record<Role, string> = { technician: 'Wil Tarrow', lead: 'Maren Holt', sales: 'Odile Finch', admin: 'Joss Penn' };
   const people = {} as Record<Role, SignedInPerson>;
-  for (const role of ROLES) people[role] = await addPerson(role, names[role]);
+  for (const role of ROLES) people[role] = existing?.people[role] ?? (await addPerson(role, names[role]));
 
   const send = (name: RouteName, { params, query, body, as, key }: Call = {}): Test => {
     const route = routes[name];
     const method = route.method.toLowerCase() as 'get' | 'post' | 'delete';
     let sent = request(app)[method](routeUrl(name, { ...(params ? { params } : {}), ...(query ? { query } : {}) }));
     if (as) sent = sent.set('Authorization', `Bearer ${as.token}`);
+    if (as && 'person' in as && as.person !== undefined) sent = sent.set(PERSON_HEADER, as.person);
     if ('idempotent' in route) sent = sent.set('Idempotency-Key', key ?? newId());
+    if ('stream' in route) sent = sent.buffer(true).parse(firstEvent as unknown as Parameters<Test['parse']>[0]);
     return body === undefined ? sent : sent.send(body as object);
   };
 
@@ -105,18 +128,19 @@ export async function startTestServer({ shop = {}, config = {}, webDir }: TestSe
     app,
     deps,
     people,
-    otherLead: await addPerson('lead', 'Ines Marlow'),
+    otherLead: existing?.people.lead ?? (await addPerson('lead', 'Ines Marlow')),
     time,
     logged,
     send,
     async ok(name, call) {
       const response = await send(name, call);
       expect(response.status, JSON.stringify(response.body)).toBe(routes[name].status);
-      return routes[name].response.parse(response.body) as Answer<typeof name>;
+      return routes[name].response.parse('media' in routes[name] ? response.text : response.body) as Answer<typeof name>;
     },
     addPerson,
     async close() {
-      await fresh.drop();
+      await deps.live.close();
+      if (!existing) await fresh.drop();
       rmSync(dataDir, { recursive: true, force: true });
     },
   };

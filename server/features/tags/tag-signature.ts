@@ -1,5 +1,5 @@
 import { createHash, timingSafeEqual } from 'node:crypto';
-import { CompactSign, compactVerify } from 'jose';
+import { CompactSign, compactVerify, decodeProtectedHeader } from 'jose';
 import { tagContentSchema, type TagContent } from '../../../shared/api/tags.js';
 import { canonicalJson } from '../../canonical-json.js';
 import type { SigningKey } from './signing-key.js';
@@ -14,8 +14,17 @@ export function signTag(content: TagContent, key: SigningKey): Promise<string> {
     .sign(key.privateKey);
 }
 
+/** Which key signed it, by its own word. */
+export function kidOf(jws: string): string {
+  try {
+    return decodeProtectedHeader(jws).kid ?? '';
+  } catch {
+    return '';
+  }
+}
+
 /** What the signature covers, or undefined where it does not hold. */
-export async function verifiedContent(jws: string, key: SigningKey): Promise<TagContent | undefined> {
+export async function verifiedContent(jws: string, key: Pick<SigningKey, 'publicKey'>): Promise<TagContent | undefined> {
   try {
     const { payload } = await compactVerify(jws, key.publicKey, { algorithms: [ALGORITHM] });
     return tagContentSchema.parse(JSON.parse(new TextDecoder().decode(payload)));

@@ -1,4 +1,3 @@
-import { isIP } from 'node:net';
 import type { Request, RequestHandler } from 'express';
 import type { TagPage } from '../../../shared/api/tags.js';
 import type { AppDependencies } from '../../app.js';
@@ -6,15 +5,11 @@ import { ownOrigin } from '../../auth/origin.js';
 import { ConflictError } from '../../errors.js';
 import type { StoredTag } from '../../history/tag-store.js';
 import { readUnitHistory } from '../../history/unit-history.js';
+import { isLoopback } from '../../loopback.js';
 import type { RegisterRoute } from '../../route.js';
+import { publicKeys } from './signing-key-store.js';
 import { signaturePart } from './tag-signature.js';
 import { publicTag, signOff, tagOfUnit, withdraw } from './tags-service.js';
-
-export function isLoopback(address: string): boolean {
-  const host = new URL(address).hostname.replace(/^\[|\]$/g, '').toLowerCase();
-  if (host === 'localhost' || host.endsWith('.localhost') || host === '0.0.0.0' || host === '::' || host === '::1') return true;
-  return isIP(host) === 4 && host.startsWith('127.');
-}
 
 function tagPageOf(tag: StoredTag, base: string): TagPage {
   return {
@@ -32,7 +27,7 @@ export function registerTagRoutes(route: RegisterRoute, deps: AppDependencies, l
   const base = (request: Request): string => publicUrl ?? ownOrigin(request, publicUrl);
 
   route('signOff', async ({ params, body, person, trx, now, http }) =>
-    tagPageOf(await signOff(trx, params.number, body.seen, person, now, signingKey), base(http.request)),
+    tagPageOf(await signOff(trx, params.number, body.seen, person, now, await signingKey()), base(http.request)),
   );
 
   route('getUnitTag', async ({ params, trx, http }) => {
@@ -54,10 +49,12 @@ export function registerTagRoutes(route: RegisterRoute, deps: AppDependencies, l
   route(
     'getPublicTag',
     async ({ params, query, trx, now, http }) => {
-      const answer = await publicTag(trx, params.tag, { signature: query.signature, word: query.word }, now, signingKey);
+      const answer = await publicTag(trx, params.tag, { signature: query.signature, word: query.word }, now);
       http.response.locals['ours'] = answer.standing !== 'not ours';
       return answer;
     },
     { limits: limits.publicTag },
   );
+
+  route('getPublicKeys', ({ trx }) => publicKeys(trx));
 }

@@ -8,6 +8,7 @@ import { cautionsOnTag, mendedOnTag, testedOnTag } from '../../../shared/readine
 import { unitNumberText } from '../../../shared/unit-number.js';
 import type { Db } from '../../db.js';
 import { ConflictError, GateError, NotFoundError } from '../../errors.js';
+import { audit } from '../../history/audit.js';
 import { readShop } from '../../history/shop-store.js';
 import { findTag, insertTag, newestTag, unitNumberOfTag, type StoredTag } from '../../history/tag-store.js';
 import {
@@ -22,7 +23,8 @@ import {
 } from '../../history/unit-history.js';
 import { newLookUpWord } from './look-up-word.js';
 import type { SigningKey } from './signing-key.js';
-import { sameText, signaturePart, signTag, verifiedContent } from './tag-signature.js';
+import { findSigningKey, refuseEndedKey } from './signing-key-store.js';
+import { kidOf, sameText, signaturePart, signTag, verifiedContent } from './tag-signature.js';
 
 /** A tag hangs on a machine in a stranger's kitchen: it carries first names only. */
 const firstName = (name: string): string => name.trim().split(/\s+/)[0] ?? name;
@@ -58,6 +60,7 @@ export async function signOff(db: Db, unitNumber: number, seen: Seen, person: Us
     throw new GateError(`Unit ${number} can’t be signed off`, reasons, 'meet each rule named here, then sign');
   }
 
+  await refuseEndedKey(db, key, now);
   const running = (before?.running ?? 0) + 1;
   const content: TagContent = {
     tag: `${number}-${String(running)}`,
@@ -86,6 +89,13 @@ export async function signOff(db: Db, unitNumber: number, seen: Seen, person: Us
     fourEyes: shop.fourEyes,
   };
   await recordEvents(db, history, [{ event, orderedAt: arrivingNow(history, now) }], now);
+  await audit(db, {
+    who: by,
+    what: 'tag.signed',
+    subject: { kind: 'tag', id: content.tag, name: `tag ${content.tag}` },
+    after: { unit: number, fourEyes: shop.fourEyes, rulesMet: judged.met },
+    at: now,
+  });
   return storedTag(db, content.tag);
 }
 
@@ -121,7 +131,6 @@ export async function publicTag(
   number: string,
   proof: { signature: string | undefined; word: string | undefined },
   now: Date,
-  key: SigningKey,
 ): Promise<PublicTag> {
   const checkedAt = now.toISOString();
   const tag = await findTag(db, number.trim());
@@ -129,7 +138,8 @@ export async function publicTag(
   const signatureFits = sameText(signature ?? '', tag ? signaturePart(tag.jws) : 'no tag') && signature !== undefined;
   const wordFits = sameText((word ?? '').trim().toUpperCase(), tag?.lookUpWord ?? 'no tag') && word !== undefined;
   const proved = (signatureFits || wordFits) && (signature === undefined || signatureFits) && (word === undefined || wordFits);
-  const content = tag && proved ? await verifiedContent(tag.jws, key) : undefined;
+  const key = tag && proved ? await findSigningKey(db, kidOf(tag.jws)) : undefined;
+  const content = tag && key ? await verifiedContent(tag.jws, key) : undefined;
   if (!tag || content?.tag !== tag.number) {
     const { name, address, phone } = await readShop(db);
     return {
