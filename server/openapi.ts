@@ -31,6 +31,16 @@ const idempotencyHeader: Json = {
   schema: { type: 'string', minLength: 1, maxLength: 200 },
 };
 
+const lastEventIdHeader: Json = {
+  name: 'Last-Event-ID',
+  in: 'header',
+  required: false,
+  description: 'Go on after this event, without a gap or a repeat; where it is too long ago, the stream starts anew and says so.',
+  schema: { type: 'string', maxLength: 40 },
+};
+
+const headers = (route: Route): Json[] => [...(route.idempotent ? [idempotencyHeader] : []), ...(route.stream ? [lastEventIdHeader] : [])];
+
 const problemResponse = (description: string): Json => ({
   description,
   content: { [PROBLEM_MEDIA_TYPE]: { schema: { $ref: '#/components/schemas/Problem' } } },
@@ -51,7 +61,7 @@ function problemResponses(route: Route, isPublic: boolean): Json {
 function operation(name: string, route: Route): Json {
   const roles: readonly string[] = ROLES_BY_ACTION[route.action];
   const isPublic = roles.includes('public');
-  const all = [...parameters(route.params, 'path'), ...parameters(route.query, 'query'), ...(route.idempotent ? [idempotencyHeader] : [])];
+  const all = [...parameters(route.params, 'path'), ...parameters(route.query, 'query'), ...headers(route)];
   return {
     operationId: name,
     summary: route.summary,
@@ -66,7 +76,12 @@ function operation(name: string, route: Route): Json {
       [String(route.status)]:
         route.status === 204
           ? { description: 'Done' }
-          : { description: 'Done', content: { 'application/json': { schema: jsonSchema(route.response, 'output') } } },
+          : route.stream
+            ? {
+                description: 'Server-sent events (WHATWG HTML, section 9.2) without end; the schema is that of the data of each event',
+                content: { 'text/event-stream': { schema: { type: 'string' }, 'x-event-schema': jsonSchema(route.response, 'output') } },
+              }
+            : { description: 'Done', content: { [route.media ?? 'application/json']: { schema: jsonSchema(route.response, 'output') } } },
       ...problemResponses(route, isPublic),
     },
   };

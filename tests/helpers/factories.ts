@@ -60,6 +60,28 @@ export const newRepair = (
   ...recorded(server),
   repair: { part: 'Drain pump', partSource: { kind: 'new' }, minutes: 36, costMinor: 2450, ...change },
 });
+/** The first part of a sitting: a run began on this unit. */
+export const newLive = (unit: number, change: Partial<RequestBody<'tellLive'>> = {}): RequestBody<'tellLive'> => ({
+  sitting: anyId(),
+  part: 0,
+  work: anyId(),
+  unit,
+  messages: [
+    {
+      kind: 'began',
+      at: '2026-03-05T09:00:00.000Z',
+      what: 'run',
+      title: 'h6-find',
+      machine: 'Brindle BW 714',
+      steps: [
+        { id: 'winding', kind: 'measure', title: 'Drain pump winding' },
+        { id: 'see', kind: 'capture', title: 'Read the codes' },
+      ],
+      rig: { name: 'bench 1', simulated: false },
+    },
+  ],
+  ...change,
+});
 export const newCapture = (
   server: TestServer,
   panel: Parameters<typeof captureFile>[0] = 'ready blink',

@@ -1,0 +1,101 @@
+import { z } from 'zod';
+import { isPassing, liveEventSchema, type LiveEvent, type LiveWorkEvent, type NewLive } from '../../../shared/api/live.js';
+import type { Db } from '../../db.js';
+
+/** Whoever inserts holds it until its commit: then ids are in the order of commits. The migration's triggers take the same one. */
+const LIVE_LOCK = 727_275;
+export const LIVE_CHANNEL = 'refettle_live';
+export const SIGN_OUTS_CHANNEL = 'refettle_sign_outs';
+
+/** A page that comes back within this time goes on where it was; one that comes later starts anew. */
+const RESUMED_WITHIN = "interval '5 minutes'";
+/** Twice the longest bench run that anybody would watch from its beginning. */
+const KEPT = "interval '1 day'";
+/** A bench that was not heard of for so long is no longer shown to who comes. */
+const SHOWN_AFTER_LAST_SIGN = "interval '15 minutes'";
+/** Work that has ended is shown for a while to who comes. */
+const SHOWN_AFTER_END = "interval '10 minutes'";
+/** Who comes sees the lanes of the last minute. */
+const LANES_SHOWN = "interval '60 seconds'";
+
+/** An event with its place in the order. */
+export interface PlacedLive {
+  id: number;
+  event: LiveEvent;
+}
+
+const rowSchema = z.object({ id: z.number(), body: liveEventSchema });
+const placed = (rows: unknown): PlacedLive[] =>
+  z
+    .array(rowSchema)
+    .parse(rows)
+    .map(({ id, body }) => ({ id, event: body }));
+
+/** Keeps a part that a bench told, and wakes every server. False: it was told before. */
+export async function insertLive(trx: Db, { sitting, part }: Pick<NewLive, 'sitting' | 'part'>, event: LiveWorkEvent): Promise<boolean> {
+  const { unit, work, messages } = event;
+  await trx.raw('select pg_advisory_xact_lock(?)', [LIVE_LOCK]);
+  const inserted: unknown[] = await trx('live_events')
+    .insert({
+      key: `${sitting} ${String(part)}`,
+      unit_number: unit,
+      work,
+      begins: messages.some(({ kind }) => kind === 'began'),
+      // By the last word: a run that was parked and goes on within one part is going on.
+      ends: messages.findLast(({ kind }) => kind === 'began' || kind === 'ended')?.kind === 'ended',
+      passing: messages.every(isPassing),
+      body: JSON.stringify(event),
+    })
+    .onConflict('key')
+    .ignore()
+    .returning('id');
+  if (inserted.length === 0) return false;
+  await trx.raw("select pg_notify(?, '')", [LIVE_CHANNEL]);
+  return true;
+}
+
+/** The id of the newest event; 0 where there is none. */
+export async function newestLiveId(db: Db): Promise<number> {
+  const row: unknown = await db('live_events').max('id as id').first();
+  return z.object({ id: z.number().nullable() }).parse(row).id ?? 0;
+}
+
+/** Whether everything after this event is still there. */
+export async function canResumeAfter(db: Db, id: number): Promise<boolean> {
+  const row: unknown = await db('live_events').where({ id }).whereRaw(`recorded_at > clock_timestamp() - ${RESUMED_WITHIN}`).first('id');
+  return row !== undefined;
+}
+
+/** What came after one event, in order, up to another. */
+export async function liveAfter(db: Db, after: number, { upTo, limit }: { upTo?: number; limit: number }): Promise<PlacedLive[]> {
+  const query = db('live_events').where('id', '>', after).orderBy('id').limit(limit).select('id', 'body');
+  if (upTo !== undefined) query.where('id', '<=', upTo);
+  return placed(await query);
+}
+
+/** The work that goes on or has just ended, each from where it last began; of its lanes only the end. */
+export async function liveWork(db: Db, upTo: number, unit: number | undefined): Promise<PlacedLive[]> {
+  const { rows } = await db.raw<{ rows: unknown }>(
+    `with heard as (
+       select work, max(id) filter (where begins) as first_id, max(id) filter (where ends) as end_id, max(recorded_at) as at
+       from live_events
+       where work is not null and id <= :upTo ${unit === undefined ? '' : 'and unit_number = :unit'}
+       group by work
+     )
+     select id, body from live_events join heard using (work)
+     where id >= first_id and id <= :upTo
+       and heard.at > clock_timestamp() - case when end_id >= first_id then ${SHOWN_AFTER_END} else ${SHOWN_AFTER_LAST_SIGN} end
+       and (not passing or recorded_at > clock_timestamp() - ${LANES_SHOWN})
+     order by id`,
+    { upTo, ...(unit === undefined ? {} : { unit }) },
+  );
+  return placed(rows);
+}
+
+/** Lanes have passed after minutes, the rest after a day. */
+export async function deleteOldLive(db: Db): Promise<void> {
+  await db('live_events')
+    .whereRaw(`recorded_at < clock_timestamp() - ${RESUMED_WITHIN} and passing`)
+    .orWhereRaw(`recorded_at < clock_timestamp() - ${KEPT}`)
+    .delete();
+}

@@ -1,0 +1,317 @@
+import { once } from 'node:events';
+import { createServer, type Server } from 'node:http';
+import { connect, type AddressInfo } from 'node:net';
+import { setTimeout as pause } from 'node:timers/promises';
+import { v4 as anyId } from 'uuid';
+import { afterAll, beforeAll, expect, onTestFinished, test } from 'vitest';
+import type { LiveMessage } from '../../../shared/api/live.js';
+import { createApp } from '../../../server/app.js';
+import { openDb } from '../../../server/db.js';
+import { LiveHub } from '../../../server/features/live/live-hub.js';
+import { seededRandom } from '../../../shared/lamps/seeded-random.js';
+import { addHeron, newLive, newReading, takeIn } from '../../helpers/factories.js';
+import { liveClient, type LiveClient } from '../../helpers/live-client.js';
+import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
+
+/** Two servers behind one database, each with a hub and a pool of its own. */
+let server: TestServer;
+let addresses: string[];
+let secondHub: LiveHub;
+const https: Server[] = [];
+let unit: number;
+
+beforeAll(async () => {
+  server = await startTestServer();
+  await addHeron(server);
+  unit = (await takeIn(server)).number;
+  const url = server.deps.config.databaseUrl ?? '';
+  const db = openDb(url);
+  secondHub = new LiveHub({ db, databaseUrl: url, log: server.deps.log });
+  for (const app of [server.app, createApp({ ...server.deps, db, live: secondHub })]) https.push(createServer(app));
+  await Promise.all(https.map((http) => new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening))));
+  addresses = https.map((http) => `http://127.0.0.1:${String((http.address() as AddressInfo).port)}`);
+  return async () => {
+    await secondHub.close();
+    https.forEach((http) => http.closeAllConnections());
+    await Promise.all(https.map((http) => new Promise((closed) => http.close(closed))));
+    await db.destroy();
+  };
+});
+afterAll(() => server.close());
+
+function listen(at: 0 | 1, query = '', token = server.people.sales.token): LiveClient {
+  const client = liveClient(addresses[at] ?? '', token, query);
+  onTestFinished(() => client.cut());
+  return client;
+}
+
+/** A bench that tells parts of one work, to either server in turn. */
+function bench(at: () => 0 | 1 = () => 0) {
+  const [sitting, work] = [anyId(), anyId()];
+  let part = 0;
+  return {
+    work,
+    tell: async (...messages: LiveMessage[]): Promise<Response> => {
+      const body = { sitting, part: (part += 1), work, unit, messages };
+      return fetch(`${addresses[at()]}/api/live`, {
+        method: 'POST',
+        headers: { 'content-type': 'application/json', authorization: `Bearer ${server.people.technician.token}` },
+        body: JSON.stringify(body),
+      });
+    },
+  };
+}
+
+const began = (): LiveMessage => newLive(unit).messages[0] as LiveMessage;
+const mark = (atMs: number): LiveMessage => ({ kind: 'mark', atMs });
+/** The marks of one work that were heard, in the order in which they were heard: each stands for one message. */
+const marksOf = (client: LiveClient, work: string): number[] =>
+  client.heard.flatMap(({ event }) =>
+    event.kind === 'work' && event.work === work ? event.messages.flatMap((one) => (one.kind === 'mark' ? [one.atMs] : [])) : [],
+  );
+const isLive = (client: LiveClient) => client.until(({ event }) => event.kind === 'now');
+
+test('When a bench tells one server, then a page at the other hears it, with who, where and when', async () => {
+  const client = listen(1);
+  await isLive(client);
+  const { tell, work } = bench();
+  const response = await tell(began());
+  expect(await response.json()).toEqual({ taken: 'now' });
+  const { event, id } = await client.until((one) => one.event.kind === 'work' && one.event.work === work);
+  const { id: personId, name, role } = server.people.technician;
+  expect(event).toMatchObject({ kind: 'work', unit, by: { id: personId, name, role }, at: server.time.now.toISOString() });
+  expect(id).toMatch(/^\d+$/);
+});
+
+test('When a part is sent twice, then it is heard once', async () => {
+  const client = listen(0);
+  await isLive(client);
+  const body = newLive(unit);
+  const send = () => server.ok('tellLive', { as: server.people.technician, body });
+  expect(await Promise.all([send(), send()])).toEqual(expect.arrayContaining([{ taken: 'now' }, { taken: 'before' }]));
+  expect(await send()).toEqual({ taken: 'before' });
+  const last = bench();
+  await last.tell(began());
+  await client.until(({ event }) => event.kind === 'work' && event.work === last.work);
+  expect(client.heard.filter(({ event }) => event.kind === 'work' && event.work === body.work)).toHaveLength(1);
+});
+
+test('When somebody comes in the middle of a run, then the run is told from its beginning, of its lanes only the end, and then on', async () => {
+  const { tell, work } = bench();
+  await tell(began());
+  await tell({ kind: 'step ended', at: '2026-03-05T09:00:10.000Z', index: 0, verdict: 'pass', told: '96.8 Ω' });
+  await tell({ kind: 'lamps', rows: [[0, 40, 3]] });
+  await server.deps.db.raw(`update live_events set recorded_at = recorded_at - interval '61 seconds' where passing`);
+  await tell({ kind: 'lamps', rows: [[50, 41, 3]] });
+  const client = listen(1);
+  await isLive(client);
+  await tell(mark(7));
+  await client.until(({ event }) => event.kind === 'work' && event.messages.some(({ kind }) => kind === 'mark'));
+  const kinds = client.heard.flatMap(({ event }) =>
+    (event.kind === 'work' && event.work === work ? event.messages : [event]).map(({ kind }) => kind),
+  );
+  const mine = kinds.filter((kind) => !['work', 'unit changed'].includes(kind));
+  expect(mine).toEqual(['start', 'began', 'step ended', 'lamps', 'now', 'mark']);
+});
+
+test('When a run ended long ago, or its bench fell silent, then who comes hears nothing of it', async () => {
+  const [over, silent, going] = [bench(), bench(), bench()];
+  await over.tell(began(), { kind: 'ended', at: '2026-03-05T09:10:00.000Z', how: 'ended', verdict: 'pass' });
+  await silent.tell(began());
+  await going.tell(began());
+  await server.deps.db.raw(`update live_events set recorded_at = recorded_at - interval '16 minutes' where work in (?, ?)`, [
+    over.work,
+    silent.work,
+  ]);
+  const client = listen(0);
+  await isLive(client);
+  const works = client.heard.flatMap(({ event }) => (event.kind === 'work' ? [event.work] : []));
+  expect(works).toContain(going.work);
+  expect(works).not.toContain(over.work);
+  expect(works).not.toContain(silent.work);
+});
+
+const CUTS = Number(process.env['REFETTLE_FAULTS'] ?? 25);
+const SEED = Number(process.env['REFETTLE_SEED'] ?? 20_261_201);
+
+test(`When the connection is cut ${CUTS} times under load, now at this server and now at that, then nothing is missing and nothing comes twice (seed ${SEED})`, async () => {
+  const random = seededRandom(SEED);
+  const BENCHES = 5;
+  const benches = Array.from({ length: BENCHES }, () => bench(() => (random() < 0.5 ? 0 : 1)));
+  await Promise.all(benches.map((one) => one.tell(began())));
+  const clients = [listen(0), listen(1)];
+  await Promise.all(clients.map(isLive));
+  let cutting = true;
+  const told = benches.map(() => 0);
+  const telling = benches.map(async ({ tell }, index) => {
+    while (cutting) {
+      await tell(mark((told[index] = (told[index] ?? 0) + 1)));
+      await pause(random() * 8);
+    }
+  });
+  for (let cut = 0; cut < CUTS; cut += 1) {
+    await pause(20 + random() * 60);
+    const client = clients[cut % 2] as LiveClient;
+    client.cut();
+    await client.ended();
+    if (random() < 0.5) await pause(random() * 80);
+    client.connect();
+  }
+  cutting = false;
+  await Promise.all(telling);
+  await Promise.all(
+    clients.map(async (client) => {
+      for (const [index, { work }] of benches.entries()) {
+        await client.until(() => marksOf(client, work).includes(told[index] ?? 0));
+        expect(marksOf(client, work)).toEqual(Array.from({ length: told[index] ?? 0 }, (_, at) => at + 1));
+      }
+      // It began once: a stream that starts anew would have said so.
+      expect(client.heard.filter(({ event }) => event.kind === 'start')).toHaveLength(1);
+    }),
+  );
+}, 120_000);
+
+test('When the last event heard is too long ago, or none that ever was, then the stream starts anew and says so', async () => {
+  const { tell, work } = bench();
+  await tell(began());
+  const client = listen(0);
+  await isLive(client);
+  client.cut();
+  await client.ended();
+  await server.deps.db.raw(`update live_events set recorded_at = recorded_at - interval '6 minutes' where id = ?`, [client.lastId ?? '']);
+  await tell(mark(1));
+  client.connect();
+  await client.until(() => client.heard.filter(({ event }) => event.kind === 'now').length === 2);
+  expect(client.heard.filter(({ event }) => event.kind === 'start')).toHaveLength(2);
+  expect(marksOf(client, work)).toEqual([1]);
+  const invented = listen(0, '?after=999999999999');
+  await isLive(invented);
+  expect(invented.heard[0]?.event.kind).toBe('start');
+});
+
+test('When a page says by ?after= where it was, then it goes on there; the header counts before it', async () => {
+  const { tell, work } = bench();
+  await tell(began());
+  const first = listen(0);
+  const { id } = await isLive(first);
+  await tell(mark(1));
+  await first.until(() => marksOf(first, work).length === 1);
+  const second = listen(1, `?after=${id}`);
+  await isLive(second);
+  expect(second.heard[0]?.event.kind).not.toBe('start');
+  expect(marksOf(second, work)).toEqual([1]);
+});
+
+test('When only one unit is asked for, then others are not told', async () => {
+  const other = (await takeIn(server)).number;
+  const client = listen(0, `?unit=${other}`);
+  await isLive(client);
+  const elsewhere = bench();
+  await elsewhere.tell(began());
+  await server.ok('recordReading', { params: { number: unit }, as: server.people.technician, body: newReading(server, 'heater') });
+  await server.ok('recordReading', { params: { number: other }, as: server.people.technician, body: newReading(server, 'heater') });
+  await client.until(({ event }) => event.kind === 'unit changed');
+  expect(client.heard.map(({ event }) => event)).toEqual([{ kind: 'start' }, { kind: 'now' }, { kind: 'unit changed', unit: other }]);
+});
+
+test('When something is written on a unit’s books at one server, then pages at both hear it once a transaction', async () => {
+  const clients = [listen(0, `?unit=${unit}`), listen(1, `?unit=${unit}`)];
+  await Promise.all(clients.map(isLive));
+  const before = clients.map(({ heard }) => heard.length);
+  await server.ok('recordReading', { params: { number: unit }, as: server.people.technician, body: newReading(server, 'heater') });
+  const end = bench();
+  await end.tell(began());
+  await Promise.all(
+    clients.map(async (client, index) => {
+      await client.until(({ event }) => event.kind === 'work' && event.work === end.work);
+      expect(client.heard.slice(before[index]).map(({ event }) => event.kind)).toEqual(['unit changed', 'work']);
+    }),
+  );
+});
+
+test('When a listener signs out, then its stream ends at once, and the others go on', async () => {
+  const person = await server.addPerson('sales', 'Bram Quill');
+  const [leaving, staying] = [listen(1, '', person.token), listen(1)];
+  await Promise.all([isLive(leaving), isLive(staying)]);
+  await server.ok('signOut', { as: person });
+  await leaving.ended();
+  leaving.connect();
+  const { tell, work } = bench();
+  await tell(began());
+  await staying.until(({ event }) => event.kind === 'work' && event.work === work);
+  expect(leaving.open).toBe(false);
+  expect(leaving.refused).toBe(401);
+});
+
+test('When PostgreSQL drops the connections that listen, then they come back by themselves and nothing is missing', async () => {
+  const clients = [listen(0), listen(1)];
+  await Promise.all(clients.map(isLive));
+  const { tell, work } = bench();
+  await tell(began());
+  const LOSSES = 5;
+  for (let loss = 1; loss <= LOSSES; loss += 1) {
+    await server.deps.db.raw(
+      `select pg_terminate_backend(pid) from pg_stat_activity where application_name = 'refettle live' and datname = current_database()`,
+    );
+    await tell(mark(loss));
+  }
+  for (const client of clients) {
+    await client.until(() => marksOf(client, work).length === LOSSES);
+    expect(marksOf(client, work)).toEqual([1, 2, 3, 4, 5]);
+    expect(client.heard.filter(({ event }) => event.kind === 'start')).toHaveLength(1);
+  }
+});
+
+test('When a page does not read, then it is cut off before it fills the server, and the others go on', async () => {
+  const deaf = connect(Number(new URL(addresses[0] ?? '').port), '127.0.0.1');
+  deaf.write(`GET /api/live HTTP/1.1\r\nHost: here\r\nAuthorization: Bearer ${server.people.sales.token}\r\n\r\n`);
+  await once(deaf, 'readable');
+  const attentive = listen(0);
+  await isLive(attentive);
+  const { tell, work } = bench();
+  // As large as a part may be: far more in all than the buffers of a connection hold (some megabytes on this machine).
+  const row = Array.from({ length: 33 }, () => 1_999_999_999);
+  const large = Array.from({ length: 49 }, (): LiveMessage => ({ kind: 'lamps', rows: Array.from({ length: 40 }, () => row) }));
+  const PARTS = 24;
+  for (let part = 1; part <= PARTS; part += 1) expect((await tell(...large, mark(part))).status).toBe(200);
+  await attentive.until(() => marksOf(attentive, work).length === PARTS);
+  let bytes = 0;
+  deaf.on('data', (piece) => (bytes += piece.length)).on('error', () => undefined);
+  if (!deaf.closed) await once(deaf, 'close');
+  expect(bytes).toBeLessThan(JSON.stringify(large).length * PARTS);
+});
+
+test('When the server stops while pages are open, then their streams end at once', async () => {
+  const db = openDb(server.deps.config.databaseUrl ?? '');
+  const hub = new LiveHub({ db, databaseUrl: server.deps.config.databaseUrl ?? '', log: server.deps.log });
+  const http = createServer(createApp({ ...server.deps, db, live: hub }));
+  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
+  const client = liveClient(`http://127.0.0.1:${String((http.address() as AddressInfo).port)}`, server.people.lead.token);
+  await isLive(client);
+  const startedMs = performance.now();
+  await hub.close();
+  await new Promise((closed) => http.close(closed));
+  expect(performance.now() - startedMs).toBeLessThan(1_000);
+  await client.ended();
+  await db.destroy();
+});
+
+test('When a bench tells of a unit that is not there, or rows that are askew, then it is refused', async () => {
+  const { technician } = server.people;
+  expect(problemIn(await server.send('tellLive', { as: technician, body: newLive(99_999) })).status).toBe(404);
+  const askew = newLive(unit, {
+    messages: [
+      {
+        kind: 'lamps',
+        rows: [
+          [0, 1],
+          [50, 1, 2],
+        ],
+      },
+    ],
+  });
+  expect(problemIn(await server.send('tellLive', { as: technician, body: askew }))).toMatchObject({
+    status: 422,
+    errors: [{ pointer: '/messages/0/rows' }],
+  });
+});
