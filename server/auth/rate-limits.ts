@@ -55,7 +55,10 @@ const emailOf = (request: Request): string => {
 const benchOf = (request: Request): string => request.bench?.id ?? address(request);
 const below400 = (status: number): boolean => status < 400;
 
-export type RateLimits = Record<'signIn' | 'firstAdmin' | 'publicTag' | 'signOn' | 'ownPin' | 'ownPassword' | 'personLink', RequestHandler[]>;
+export type RateLimits = Record<
+  'signIn' | 'firstAdmin' | 'publicTag' | 'signOn' | 'ownPin' | 'ownPassword' | 'personLink',
+  RequestHandler[]
+>;
 
 /**
  * One set a server: counts live in its memory. `signsOn` finds whom a sign-on is about, so that a name, an e-mail address and an id

@@ -9,6 +9,7 @@ import type { Sheet } from '../../shared/sheet/schema.js';
 import { unitNumberText } from '../../shared/unit-number.js';
 import type { Db } from '../db.js';
 import { NotFoundError } from '../errors.js';
+import { audit } from './audit.js';
 import { historyOf, insertEvents, type PlacedEvent } from './event-store.js';
 import { newestSheet } from './sheet-store.js';
 import { readShop } from './shop-store.js';
@@ -142,6 +143,14 @@ export async function withdrawTag(
     reason: why.reason,
   };
   await markWithdrawn(db, tag.number, why.now, why.reason);
+  await audit(db, {
+    who: why.by,
+    what: 'tag.withdrawn',
+    subject: { kind: 'tag', id: tag.number, name: `tag ${tag.number}` },
+    before: { standing: 'stands' },
+    after: { standing: 'withdrawn', reason: why.reason },
+    at: why.now,
+  });
   await insertEvents(db, unit.id, [{ event, orderedAt: arrivingNow(history, why.now) }], why.now);
   await setStage(db, unit.id, stageOf(countingEvents(factsOf(history, [...eventsOf(history), event]))));
 }

@@ -86,6 +86,6 @@ async function seedPeople(db: Db, accounts: readonly DemoAccount[], kept: readon
 async function seedFloor(db: Db, people: ReadonlyMap<Role, User>, now: Date): Promise<void> {
   const [lead, technician] = [people.get('lead'), people.get('technician')];
   if (!lead || !technician) throw new Error('The demo shop has no lead or no technician.');
-  await addSheet(db, readFileSync(join(packageRoot, 'server/seed/shop/heron-h6.yaml'), 'utf8'), lead.id, now);
+  await addSheet(db, readFileSync(join(packageRoot, 'server/seed/shop/heron-h6.yaml'), 'utf8'), lead, now);
   for (const unit of DEMO_UNITS) await takeIn(db, unit, technician, now);
 }

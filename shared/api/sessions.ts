@@ -26,17 +26,17 @@ export const shopSchema = z.strictObject({
 export type Shop = z.infer<typeof shopSchema>;
 export const meSchema = z.strictObject({ user: userSchema, shop: shopSchema });
 
-const newPassword = z.string().min(12, 'at least 12 characters').max(1024);
+export const newPasswordSchema = z.string().min(12, 'at least 12 characters').max(1024);
 export const newPersonSchema = z.strictObject({
   email: z.email('type an e-mail address').max(320),
   name: z.string().min(1, 'type a name').max(100),
   role: roleSchema,
-  password: newPassword,
+  password: newPasswordSchema,
 });
 export const firstAdminSchema = z.strictObject({
   token: z.string().min(1),
   email: z.email('type an e-mail address').max(320),
   name: z.string().min(1, 'type a name').max(100),
-  password: newPassword,
+  password: newPasswordSchema,
 });
 export const personSchema = userSchema;

@@ -1,20 +1,83 @@
-import { v7 as newId } from 'uuid';
-import { hashPassword } from '../../auth/password.js';
-import { insertPerson, listPeople } from '../../auth/people-store.js';
-import { ConflictError } from '../../errors.js';
+import type { Request, RequestHandler } from 'express';
+import type { MadeLink } from '../../../shared/api/people.js';
+import type { AppDependencies } from '../../app.js';
+import { credentialOf } from '../../auth/authenticate.js';
+import { ownOrigin } from '../../auth/origin.js';
+import { listPeople, lockPeople } from '../../auth/people-store.js';
+import { readShop } from '../../history/shop-store.js';
+import { isLoopback } from '../../loopback.js';
 import { cursorOf, pageOf, uuidCursor } from '../../paging.js';
 import type { RegisterRoute } from '../../route.js';
+import {
+  activate,
+  changePassword,
+  changeRole,
+  createPerson,
+  deactivate,
+  invite,
+  linkFor,
+  lookAtLink,
+  rowOf,
+  setPasswordByLink,
+} from './people-service.js';
 
-export function registerPeopleRoutes(route: RegisterRoute): void {
-  route('listPeople', async ({ query, trx }) => {
-    const people = await listPeople(trx, uuidCursor(query.cursor), query.limit + 1);
+export function registerPeopleRoutes(
+  route: RegisterRoute,
+  deps: Pick<AppDependencies, 'config'>,
+  limits: Record<'ownPassword' | 'personLink', RequestHandler[]>,
+): void {
+  const { publicUrl } = deps.config;
+
+  /**
+   * The address by which the admin has just reached us, for buyers' address may show nothing but tags; only where that is this machine's
+   * own, the public one. The token stands behind `#`: what stands there, no browser sends and no proxy logs.
+   */
+  const linkOf = ({ token, person, kind, expiresAt }: Awaited<ReturnType<typeof linkFor>>, request: Request): MadeLink => {
+    const own = ownOrigin(request, publicUrl);
+    const base = isLoopback(own) && publicUrl !== undefined ? publicUrl.replace(/\/+$/, '') : own;
+    return { person, link: { url: `${base}/link#${token}`, kind, expiresAt: expiresAt.toISOString(), onlyHere: isLoopback(base) } };
+  };
+
+  route('listPeople', async ({ query, trx, now }) => {
+    const people = await listPeople(trx, uuidCursor(query.cursor), query.limit + 1, now);
     return pageOf(people, query.limit, (person) => cursorOf(person.id));
   });
 
-  route('createPerson', async ({ body, trx, now }) => {
-    const person = { id: newId(), email: body.email, name: body.name, role: body.role };
-    const added = await insertPerson(trx, { ...person, passwordHash: await hashPassword(body.password), createdAt: now });
-    if (!added) throw new ConflictError('Somebody has this e-mail address already.', 'Use another address, or that account.');
-    return person;
+  route('getPerson', ({ params, trx, now }) => rowOf(trx, params.id, now));
+
+  route('createPerson', ({ body, person: who, trx, now }) => createPerson(trx, body, { who, now }));
+
+  route('invitePerson', async ({ body, person: who, trx, now, http }) => linkOf(await invite(trx, body, { who, now }), http.request));
+
+  route('makeLink', async ({ params, person: who, trx, now, http }) => linkOf(await linkFor(trx, params.id, { who, now }), http.request));
+
+  route('changeRole', ({ params, body, person: who, trx, now }) => changeRole(trx, params.id, body.role, { who, now }), {
+    first: lockPeople,
   });
+
+  route('deactivatePerson', ({ params, body, person: who, trx, now }) => deactivate(trx, params.id, body.reason, { who, now }), {
+    first: lockPeople,
+  });
+
+  route('activatePerson', ({ params, person: who, trx, now }) => activate(trx, params.id, { who, now }));
+
+  route(
+    'changePassword',
+    async ({ body, person: who, trx, now, http }) => ({
+      ended: await changePassword(trx, body, { who, now, token: credentialOf(http.request)?.token }),
+    }),
+    { limits: limits.ownPassword },
+  );
+
+  route(
+    'lookAtLink',
+    async ({ body, trx, now }) => {
+      const { link, person } = await lookAtLink(trx, body.token, now);
+      const shop = await readShop(trx);
+      return { name: person.name, email: person.email, kind: link.kind, shop: shop.name, expiresAt: link.expiresAt.toISOString() };
+    },
+    { limits: limits.personLink },
+  );
+
+  route('useLink', ({ body, trx, now }) => setPasswordByLink(trx, body.token, body.password, now), { limits: limits.personLink });
 }

@@ -7,6 +7,7 @@ import { settleInspection, settleReading } from '../../../shared/history/settle-
 import { energisingGate, type EnergisingQuestion } from '../../../shared/readiness/gates.js';
 import { unitNumberText } from '../../../shared/unit-number.js';
 import type { Db } from '../../db.js';
+import { audit } from '../../history/audit.js';
 import { refuseWhereShut } from '../../history/ask-gate.js';
 import { atPointer } from '../../history/at-pointer.js';
 import { donorsOf, takePartFrom } from '../../history/donor.js';
@@ -113,5 +114,13 @@ export async function recordOverride(db: Db, unitNumber: number, reason: string,
     reason,
   };
   await recordEvents(db, history, [{ event, orderedAt: arrivingNow(history, now) }], now);
+  const number = unitNumberText(unitNumber);
+  await audit(db, {
+    who: refOf(person),
+    what: 'override.recorded',
+    subject: { kind: 'unit', id: number, name: `unit ${number}` },
+    after: { gate: 'dead tests', reason },
+    at: now,
+  });
   return event;
 }

@@ -1,17 +1,22 @@
-import type { RequestHandler } from 'express';
+import type { Request, RequestHandler } from 'express';
 import { v7 as newId } from 'uuid';
 import type { AppDependencies } from '../../app.js';
 import { credentialOf } from '../../auth/authenticate.js';
 import { useFirstAdminLink } from '../../auth/first-admin.js';
 import { refuseOtherOrigin } from '../../auth/origin.js';
 import { hashPassword } from '../../auth/password.js';
-import { insertPerson } from '../../auth/people-store.js';
+import { insertPerson, personRow } from '../../auth/people-store.js';
 import { clearSessionCookie, setSessionCookie } from '../../auth/session-cookie.js';
-import { revokeSession } from '../../auth/session-store.js';
-import { NotSignedInError } from '../../errors.js';
+import { listSessions, revokeSessionOfToken } from '../../auth/session-store.js';
+import { usedFrom } from '../../auth/used-from.js';
+import type { Db } from '../../db.js';
+import { NotFoundError, NotSignedInError } from '../../errors.js';
+import { audit } from '../../history/audit.js';
 import { readShop } from '../../history/shop-store.js';
+import { refOf } from '../../history/unit-history.js';
+import { cursorOf, pageOf, uuidCursor } from '../../paging.js';
 import type { RegisterRoute } from '../../route.js';
-import { signIn } from './sessions-service.js';
+import { endSession, endSessions, signIn } from './sessions-service.js';
 
 export function registerSessionRoutes(
   route: RegisterRoute,
@@ -22,11 +27,11 @@ export function registerSessionRoutes(
 
   route(
     'signIn',
-    async ({ body, trx, now, http: { request, response } }) => {
+    async ({ body, trx, now, ifRefused, http: { request, response } }) => {
       // Else another site could sign a browser in as somebody else.
       if (body.keep === 'cookie' && (request.get('origin') ?? request.get('sec-fetch-site')) !== undefined)
         refuseOtherOrigin(request, publicUrl);
-      const { token, user, expiresAt } = await signIn(trx, body, now);
+      const { token, user, expiresAt } = await signIn(trx, { request: body, from: usedFrom(request), now, ifRefused });
       request.log.info({ person: user.id, keep: body.keep ?? 'bearer' }, 'signed in');
       if (body.keep !== 'cookie') return { token, user };
       setSessionCookie(request, response, publicUrl, token, expiresAt);
@@ -35,9 +40,11 @@ export function registerSessionRoutes(
     { limits: limits.signIn },
   );
 
-  route('signOut', async ({ trx, now, http: { request, response } }) => {
+  route('signOut', async ({ person, trx, now, http: { request, response } }) => {
     const credential = credentialOf(request);
-    if (credential) await revokeSession(trx, credential.token, now);
+    if (credential) await revokeSessionOfToken(trx, credential.token, now);
+    const subject = { kind: 'person' as const, id: person.id, name: person.name };
+    await audit(trx, { who: refOf(person), what: 'session.ended', subject, after: { from: usedFrom(request) }, at: now });
     clearSessionCookie(request, response, publicUrl);
     return {};
   });
@@ -49,10 +56,44 @@ export function registerSessionRoutes(
         throw new NotSignedInError('This link is used up, too old, or none of ours. The terminal prints a new one at the next start.');
       const person = { id: newId(), email: body.email, name: body.name, role: 'admin' as const };
       await insertPerson(trx, { ...person, passwordHash: await hashPassword(body.password), createdAt: now });
+      const subject = { kind: 'person' as const, id: person.id, name: person.name };
+      const after = { email: person.email, role: person.role };
+      await audit(trx, { who: undefined, what: 'first-admin.created', subject, after, at: now });
       return person;
     },
     { limits: limits.firstAdmin },
   );
+
+  const sessionsOf = async (
+    personId: string,
+    { query, trx, now, http }: { query: { cursor?: string | undefined; limit: number }; trx: Db; now: Date; http: { request: Request } },
+  ) => {
+    const asks = { token: credentialOf(http.request)?.token, after: uuidCursor(query.cursor), limit: query.limit + 1, now };
+    return pageOf(await listSessions(trx, personId, asks), query.limit, (session) => cursorOf(session.id));
+  };
+  const ownerOf = async (trx: Db, id: string, now: Date) => {
+    const row = await personRow(trx, id, now);
+    if (!row) throw new NotFoundError('There is no such person.');
+    return row;
+  };
+
+  route('listOwnSessions', (context) => sessionsOf(context.person.id, context));
+  route('listSessions', async (context) => sessionsOf((await ownerOf(context.trx, context.params.id, context.now)).id, context));
+
+  route('revokeOwnSession', async ({ params, person: who, trx, now }) => {
+    await endSession(trx, { id: params.session, owner: who }, { who, now });
+    return {};
+  });
+  route('revokeSession', async ({ params, person: who, trx, now }) => {
+    await endSession(trx, { id: params.session, owner: await ownerOf(trx, params.id, now) }, { who, now });
+    return {};
+  });
+  route('revokeOtherSessions', async ({ person: who, trx, now, http }) => ({
+    ended: await endSessions(trx, who, { who, now, but: credentialOf(http.request)?.token }),
+  }));
+  route('revokeSessions', async ({ params, person: who, trx, now }) => ({
+    ended: await endSessions(trx, await ownerOf(trx, params.id, now), { who, now }),
+  }));
 
   route('me', async ({ person, trx }) => ({ user: person, shop: await readShop(trx) }));
 }

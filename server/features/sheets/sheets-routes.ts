@@ -34,5 +34,5 @@ export function registerSheetRoutes(route: RegisterRoute): void {
     return { ...stored, editions };
   });
 
-  route('addSheet', async ({ body, person, trx, now }) => rowOf(await addSheet(trx, body.text, person.id, now)));
+  route('addSheet', async ({ body, person, trx, now }) => rowOf(await addSheet(trx, body.text, person, now)));
 }

@@ -1,13 +1,16 @@
 import { v7 as newId } from 'uuid';
+import type { User } from '../../../shared/api/sessions.js';
 import { readSheet } from '../../../shared/sheet/read-sheet.js';
 import type { Db } from '../../db.js';
 import { ConflictError } from '../../errors.js';
+import { audit } from '../../history/audit.js';
 import { atPointer } from '../../history/at-pointer.js';
+import { refOf } from '../../history/unit-history.js';
 import { editionsOf, insertSheet, lockFamily, type StoredSheet } from '../../history/sheet-store.js';
 import { refuseWhatIsNoText } from '../../request-faults.js';
 
 /** Editions are never changed: a correction is the next one. */
-export async function addSheet(db: Db, text: string, personId: string, now: Date): Promise<StoredSheet> {
+export async function addSheet(db: Db, text: string, person: User, now: Date): Promise<StoredSheet> {
   const sheet = atPointer('/text', () => readSheet(text));
   refuseWhatIsNoText(sheet, '/text');
   await lockFamily(db, sheet.family);
@@ -20,6 +23,14 @@ export async function addSheet(db: Db, text: string, personId: string, now: Date
       `Write edition: ${String(next)} into the sheet and send it again.`,
     );
   }
-  await insertSheet(db, { id: newId(), sheet, text, addedBy: personId, addedAt: now });
+  await insertSheet(db, { id: newId(), sheet, text, addedBy: person.id, addedAt: now });
+  await audit(db, {
+    who: refOf(person),
+    what: 'sheet.added',
+    subject: { kind: 'sheet', id: sheet.family, name: sheet.title ?? sheet.family },
+    ...(next === 1 ? {} : { before: { edition: next - 1 } }),
+    after: { edition: sheet.edition },
+    at: now,
+  });
   return { sheet, text, at: now.toISOString() };
 }

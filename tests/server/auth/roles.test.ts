@@ -19,7 +19,7 @@ const names = Object.keys(routes) as RouteName[];
 const rolesOf = (name: RouteName): readonly (Role | 'public')[] => ROLES_BY_ACTION[routes[name].action];
 const guarded = names.filter((name) => !rolesOf(name).includes('public'));
 /** Public, and refused here for another reason than who asks: no such password, no such link. */
-const refusedAllTheSame: Partial<Record<RouteName, number>> = { signIn: 401, createFirstAdmin: 401 };
+const refusedAllTheSame: Partial<Record<RouteName, number>> = { signIn: 401, createFirstAdmin: 401, lookAtLink: 401, useLink: 401 };
 
 describe.each(guarded)('%s', (name) => {
   test('When nobody is signed in, then it is 401 and says how', async () => {
@@ -39,7 +39,7 @@ describe.each(guarded)('%s', (name) => {
   );
 
   test.each(ROLES.filter((role) => rolesOf(name).includes(role)))('When %s asks, then it is done', async (role) => {
-    const call = await validCalls[name](server);
+    const call = await validCalls[name](server, server.people[role]);
     const as = name === 'signOut' ? await server.addPerson(role, `Leaver ${role}`) : server.people[role];
     await server.ok(name, { ...call, as });
   });
@@ -77,7 +77,9 @@ describe.each(guarded)('%s, by the token of a shared bench', (name) => {
 
 test('When the table of a bench is read, then nothing of it signs off, withdraws, or touches people, sheets and benches', () => {
   // Design: a bench does what is done at a bench.
-  expect(Object.keys(ACTIONS_OF_A_BENCH).filter((action) => /sign-off|withdraw|person|pin|write|session|audit|key/.test(action))).toEqual([]);
+  expect(Object.keys(ACTIONS_OF_A_BENCH).filter((action) => /sign-off|withdraw|person|pin|write|session|audit|key/.test(action))).toEqual(
+    [],
+  );
 });
 
 test.each(names.filter((name) => rolesOf(name).includes('public')))(

@@ -2,7 +2,7 @@ import request from 'supertest';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import type { PublicTag } from '../../../shared/api/tags.js';
 import { createApp } from '../../../server/app.js';
-import { isLoopback } from '../../../server/features/tags/tags-routes.js';
+import { isLoopback } from '../../../server/loopback.js';
 import { addHeron, mendAndProve, newReading, pass, rulesSeen, signedOffUnit, takeIn } from '../../helpers/factories.js';
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
 

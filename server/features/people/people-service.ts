@@ -1,0 +1,181 @@
+import { v7 as newId } from 'uuid';
+import type { z } from 'zod';
+import type { inviteSchema, LinkKind, PersonRow } from '../../../shared/api/people.js';
+import type { Role } from '../../../shared/api/roles.js';
+import type { newPersonSchema, User } from '../../../shared/api/sessions.js';
+import { hashPassword, passwordFits } from '../../auth/password.js';
+import {
+  holdPerson,
+  insertPerson,
+  isThereAnotherAdmin,
+  personRow,
+  setActive,
+  setPassword,
+  setRole,
+  type PersonWithPassword,
+} from '../../auth/people-store.js';
+import { deleteLinks, findLink, makeLink, useLink, type PersonLink } from '../../auth/person-links.js';
+import { revokeSessions } from '../../auth/session-store.js';
+import { tokenHash } from '../../auth/token.js';
+import type { Db } from '../../db.js';
+import { ConflictError, InvalidError, NotFoundError, NotSignedInError, RoleError } from '../../errors.js';
+import { audit } from '../../history/audit.js';
+import { refOf } from '../../history/unit-history.js';
+
+/** Who does it, and when. */
+interface Doing {
+  who: User;
+  now: Date;
+}
+
+const subjectOf = ({ id, name }: Pick<User, 'id' | 'name'>) => ({ kind: 'person' as const, id, name });
+const noSuchPerson = (): NotFoundError => new NotFoundError('There is no such person.');
+const emailTaken = (): ConflictError =>
+  new ConflictError('Somebody has this e-mail address already.', 'Use another address, or that account: it may be deactivated.');
+
+async function held(trx: Db, id: string, why: 'out' | 'for change'): Promise<PersonWithPassword> {
+  const person = await holdPerson(trx, id, why);
+  if (!person) throw noSuchPerson();
+  return person;
+}
+
+export async function rowOf(trx: Db, id: string, now: Date): Promise<PersonRow> {
+  const row = await personRow(trx, id, now);
+  if (!row) throw noSuchPerson();
+  return row;
+}
+
+export async function createPerson(trx: Db, { password, ...told }: z.output<typeof newPersonSchema>, { who, now }: Doing): Promise<User> {
+  const person = { id: newId(), ...told };
+  const added = await insertPerson(trx, { ...person, passwordHash: await hashPassword(password), createdAt: now });
+  if (!added) throw emailTaken();
+  const after = { email: person.email, role: person.role };
+  await audit(trx, { who: refOf(who), what: 'person.created', subject: subjectOf(person), after, at: now });
+  return person;
+}
+
+interface NewLink {
+  person: PersonRow;
+  token: string;
+  kind: LinkKind;
+  expiresAt: Date;
+}
+
+/** Somebody new: on the books at once, with no password until they set one at the link. */
+export async function invite(trx: Db, told: z.output<typeof inviteSchema>, { who, now }: Doing): Promise<NewLink> {
+  const person = { id: newId(), ...told };
+  const added = await insertPerson(trx, { ...person, passwordHash: undefined, createdAt: now });
+  if (!added) throw emailTaken();
+  const link = await makeLink(trx, { personId: person.id, kind: 'invitation', madeBy: who.id, now });
+  const after = { email: person.email, role: person.role, linkExpiresAt: link.expiresAt.toISOString() };
+  await audit(trx, { who: refOf(who), what: 'person.invited', subject: subjectOf(person), after, at: now });
+  return { person: await rowOf(trx, person.id, now), kind: 'invitation', ...link };
+}
+
+/** For a forgotten password, or an invitation that ran out. What was before stays good until the link is used. */
+export async function linkFor(trx: Db, id: string, { who, now }: Doing): Promise<NewLink> {
+  if (id === who.id)
+    throw new RoleError('Nobody makes a link for themselves: change your password on your account page, or ask another admin.');
+  const { user, active, passwordHash } = await held(trx, id, 'for change');
+  if (!active) throw new ConflictError(`${user.name} is deactivated.`, 'Reactivate the person first.');
+  const kind: LinkKind = passwordHash === undefined ? 'invitation' : 'reset';
+  const link = await makeLink(trx, { personId: id, kind, madeBy: who.id, now });
+  const after = { kind, linkExpiresAt: link.expiresAt.toISOString() };
+  await audit(trx, { who: refOf(who), what: 'person.link-made', subject: subjectOf(user), after, at: now });
+  return { person: await rowOf(trx, id, now), kind, ...link };
+}
+
+const usedUp = (): NotSignedInError =>
+  new NotSignedInError('This link is used up, too old, or none of ours. An admin of the shop makes a new one.');
+
+/** Whose link this is; nothing is used up by looking. */
+export async function lookAtLink(db: Db, token: string, now: Date): Promise<{ link: PersonLink; person: PersonRow }> {
+  const link = await findLink(db, token, now);
+  const person = link && (await personRow(db, link.personId, now));
+  if (!person || person.state === 'deactivated') throw usedUp();
+  return { link, person };
+}
+
+/** The person sets a password by the link. Two who use it at the same moment get one yes between them. */
+export async function setPasswordByLink(trx: Db, token: string, password: string, now: Date): Promise<User> {
+  const link = await findLink(trx, token, now);
+  const person = link && (await holdPerson(trx, link.personId, 'for change'));
+  if (!person?.active || !(await useLink(trx, token, now))) throw usedUp();
+  const ended = await setPassword(trx, person.user.id, await hashPassword(password), now);
+  await audit(trx, {
+    who: refOf(person.user),
+    what: person.passwordHash === undefined ? 'person.joined' : 'person.password-reset',
+    subject: subjectOf(person.user),
+    after: { sessionsEnded: ended },
+    at: now,
+  });
+  return person.user;
+}
+
+async function keepAnAdmin(trx: Db, { user, active }: PersonWithPassword): Promise<void> {
+  if (user.role === 'admin' && active && !(await isThereAnotherAdmin(trx, user.id)))
+    throw new ConflictError(
+      `${user.name} is the last active admin: without one nobody could let anybody in.`,
+      'Make somebody else an admin first.',
+    );
+}
+
+/** People must be locked: two admins who demote each other come one after the other, and the second is none any more. */
+export async function changeRole(trx: Db, id: string, role: Role, { who, now }: Doing): Promise<PersonRow> {
+  if (id === who.id) throw new RoleError('Nobody changes their own role: another admin does it.');
+  const person = await held(trx, id, 'out');
+  const before = person.user.role;
+  if (before !== role) {
+    if (role !== 'admin') await keepAnAdmin(trx, person);
+    await setRole(trx, id, role);
+    const change = { before: { role: before }, after: { role } };
+    await audit(trx, { who: refOf(who), what: 'person.role-changed', subject: subjectOf(person.user), ...change, at: now });
+  }
+  return rowOf(trx, id, now);
+}
+
+/** Somebody no longer works here: no session, no link, no sign-in. What they did stays theirs. People must be locked. */
+export async function deactivate(trx: Db, id: string, reason: string, { who, now }: Doing): Promise<PersonRow> {
+  const person = await held(trx, id, 'out');
+  if (!person.active) throw new ConflictError(`${person.user.name} is deactivated already.`);
+  await keepAnAdmin(trx, person);
+  await setActive(trx, id, false);
+  const sessionsEnded = await revokeSessions(trx, id, now);
+  await deleteLinks(trx, id);
+  await audit(trx, {
+    who: refOf(who),
+    what: 'person.deactivated',
+    subject: subjectOf(person.user),
+    before: { active: true },
+    after: { active: false, reason, sessionsEnded },
+    at: now,
+  });
+  return rowOf(trx, id, now);
+}
+
+/** With the password of before; the sessions of before stay ended. */
+export async function activate(trx: Db, id: string, { who, now }: Doing): Promise<PersonRow> {
+  const person = await held(trx, id, 'for change');
+  if (person.active) throw new ConflictError(`${person.user.name} is active already.`);
+  await setActive(trx, id, true);
+  const change = { before: { active: false }, after: { active: true } };
+  await audit(trx, { who: refOf(who), what: 'person.activated', subject: subjectOf(person.user), ...change, at: now });
+  return rowOf(trx, id, now);
+}
+
+/** The old one is asked for, so that an open browser is not enough. Every other session ends; answers how many. */
+export async function changePassword(
+  trx: Db,
+  passwords: { oldPassword: string; newPassword: string },
+  { who, now, token }: Doing & { token: string | undefined },
+): Promise<number> {
+  const person = await held(trx, who.id, 'for change');
+  if (!(await passwordFits(passwords.oldPassword, person.passwordHash)))
+    throw new InvalidError([{ pointer: '/oldPassword', reason: 'is not your password' }]);
+  if (passwords.oldPassword === passwords.newPassword) throw new InvalidError([{ pointer: '/newPassword', reason: 'is the old one' }]);
+  const hash = await hashPassword(passwords.newPassword);
+  const sessionsEnded = await setPassword(trx, who.id, hash, now, token === undefined ? undefined : tokenHash(token));
+  await deleteLinks(trx, who.id);
+  await audit(trx, { who: refOf(who), what: 'person.password-changed', subject: subjectOf(who), after: { sessionsEnded }, at: now });
+  return sessionsEnded;
+}
