@@ -1,6 +1,8 @@
+import type { PersonRef } from '../shared/history/events.js';
 import type { Api } from './api/api-client.js';
 import { homeOf, type Environment, type Home } from './home.js';
 import type { OpenRig } from './instruments/rig.js';
+import { joinedServer } from './joined-server.js';
 import { Interruption } from './interruption.js';
 import { newId } from './new-id.js';
 import { outputOn, type Output, type RawOutput } from './output.js';
@@ -27,8 +29,8 @@ export interface Context {
   /** Waits in real time. */
   sleep(milliseconds: number): Promise<void>;
   openRig(choice: string | undefined): Promise<OpenRig>;
-  /** The server's API, with the token of who is signed in. */
-  api(): Promise<Api>;
+  /** The server's API, with the token of who is signed in; on a shared bench with the bench's, for who stands there or for `as`. */
+  api(as?: Pick<PersonRef, 'id'>): Promise<Api>;
 }
 
 export interface ContextParts {
@@ -42,14 +44,14 @@ export interface ContextParts {
 
 export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextParts): Context {
   const home = homeOf(env);
-  const server = (env['REFETTLE_SERVER'] || USUAL_SERVER).replace(/\/+$/, '');
+  const server = (env['REFETTLE_SERVER'] || joinedServer(home) || USUAL_SERVER).replace(/\/+$/, '');
   const interruption = new Interruption(leaveNow);
   const errors = outputOn(stderr, env);
   const interactive = stdin.isTTY === true;
   const now = (): Date => new Date();
   const prompt = async (): Promise<Prompt> =>
     (await import('./prompt.js')).promptOn({ stdin, output: errors, rawOutput: stderr, interactive, interruption, now });
-  return {
+  const context: Context = {
     env,
     home,
     server,
@@ -68,11 +70,23 @@ export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextP
     newId,
     sleep: (milliseconds) => new Promise((resolve) => setTimeout(resolve, milliseconds)),
     openRig: async (choice) => (await import('./instruments/rig.js')).openRig(choice, home.folder),
-    api: async () => {
-      const [{ createApi }, { readSession }] = await Promise.all([import('./api/api-client.js'), import('./session.js')]);
+    api: async (as) => {
+      const [{ createApi }, { readSession }, { joinedBench }, { standingHere }] = await Promise.all([
+        import('./api/api-client.js'),
+        import('./session.js'),
+        import('./bench/joined-bench.js'),
+        import('./bench/kept-sign-on.js'),
+      ]);
       // After Ctrl-C what was recorded is still sent; the second Ctrl-C leaves at once.
       const signal = interruption.interrupted ? undefined : interruption.signal;
-      return createApi({ server, token: () => readSession(home, server)?.token, signal });
+      const joined = joinedBench(home, server);
+      if (!joined) return createApi({ server, token: () => readSession(home, server)?.token, signal });
+      const bench = {
+        person: () => (as ?? standingHere(context, joined.bench.id))?.id,
+        remedy: 'A lead or an admin gives the bench a new token, then: refettle bench join',
+      };
+      return createApi({ server, token: () => joined.token, bench, signal });
     },
   };
+  return context;
 }

@@ -66,7 +66,18 @@ export class ApiProblemError extends ServerError {
 
 export class NotSignedInError extends ServerError {
   override readonly name = 'NotSignedInError';
-  constructor(server: string, why = 'nobody is signed in') {
-    super(`The server at ${server} refuses: ${why.replace(/\.$/, '')}.`, 'Sign in: refettle sign-in');
+  constructor(server: string, why = 'nobody is signed in', remedy = 'Sign in: refettle sign-in') {
+    super(`The server at ${server} refuses: ${why.replace(/\.$/, '')}.`, remedy);
+  }
+}
+
+/** A name and a PIN that don't fit, at the server or at this bench. */
+export class SignOnRefusedError extends ServerError {
+  override readonly name = 'SignOnRefusedError';
+  /** Another name or PIN may be right. */
+  readonly tryAgain: boolean;
+  constructor(what: string, { remedy, tryAgain }: { remedy: string; tryAgain: boolean }) {
+    super(what, remedy);
+    this.tryAgain = tryAgain;
   }
 }

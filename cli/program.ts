@@ -1,6 +1,8 @@
 import { Command, CommanderError } from 'commander';
 import type { Context } from './context.js';
 import { EXIT } from './exit-codes.js';
+import { benchCommands } from './tree/bench.js';
+import { completionCommands } from './tree/completion.js';
 import { paperCommands } from './tree/paper.js';
 import type { Does } from './tree/parts.js';
 import { runCommands } from './tree/runs.js';
@@ -14,6 +16,7 @@ import { workCommands } from './tree/work.js';
 /** One file a noun in `tree/`, in the order of the help text: each adds its commands to the program. */
 const GROUPS = [
   signingInCommands,
+  benchCommands,
   unitCommands,
   workCommands,
   runCommands,
@@ -21,6 +24,7 @@ const GROUPS = [
   paperCommands,
   sheetCommands,
   commandsWithoutServer,
+  completionCommands,
 ] as const;
 
 /** Reads the command line and does what it says. Gives the exit code; every error has been said by then. */

@@ -1,6 +1,6 @@
 import { rmSync } from 'node:fs';
 import { z } from 'zod';
-import { meSchema, userSchema } from '../shared/api/sessions.js';
+import { meSchema, userSchema, type Shop } from '../shared/api/sessions.js';
 import type { PersonRef } from '../shared/history/events.js';
 import type { Context } from './context.js';
 import { NotSignedInError, ServerUnreachableError } from './errors.js';
@@ -28,13 +28,34 @@ export function forgetSession(home: Home): void {
   rmSync(home.path(...ME_FILE), { force: true });
 }
 
-export type Me = z.infer<typeof meSchema>;
+/** Who works here, the shop, and the shared bench where this is one. An e-mail address only on a bench of one's own. */
+export interface Me {
+  user: PersonRef & { email?: string | undefined };
+  shop: Shop;
+  bench?: { id: string; name: string } | undefined;
+}
 
 /**
- * Who is signed in, and the shop. From the server; where the network is away, as it was last time.
- * Refuses (NotSignedInError) where nobody is signed in.
+ * Who is here, and the shop: who is signed in, or on a shared bench who stands at it, asked for where nobody has signed on.
+ * Refuses as whoIsSignedIn and signOn do.
  */
 export async function whoIsHere(context: Context): Promise<Me & { offline: boolean }> {
+  const { joinedBench } = await import('./bench/joined-bench.js');
+  const joined = joinedBench(context.home, context.server);
+  return joined ? (await import('./bench/sign-on.js')).whoStandsHere(context, joined) : whoIsSignedIn(context);
+}
+
+/** The shop: on a shared bench whoever stands there, else as for who is signed in. */
+export async function shopHere(context: Context): Promise<Shop> {
+  const { benchView, joinedBench } = await import('./bench/joined-bench.js');
+  return joinedBench(context.home, context.server) ? (await benchView(context)).shop : (await whoIsSignedIn(context)).shop;
+}
+
+/**
+ * Who is signed in with an account of their own, and the shop. From the server; where the network is away, as it was last time.
+ * Refuses (NotSignedInError) where nobody is signed in.
+ */
+export async function whoIsSignedIn(context: Context): Promise<z.infer<typeof meSchema> & { offline: boolean }> {
   const session = readSession(context.home, context.server);
   if (!session) throw new NotSignedInError(context.server);
   const file = context.home.path(...ME_FILE);

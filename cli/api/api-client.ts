@@ -1,4 +1,6 @@
+import { PERSON_HEADER } from '../../shared/api/benches.js';
 import { problemSchema, PROBLEM_TYPE_PREFIX } from '../../shared/api/problem.js';
+import { benchMay } from '../../shared/api/roles.js';
 import {
   routes,
   routeUrl,
@@ -31,13 +33,15 @@ export interface Api {
 export interface ApiParts {
   server: string;
   token: () => string | undefined;
+  /** On a shared bench: for whom it writes, and what to do where the server no longer knows the bench. */
+  bench?: { person: () => string | undefined; remedy: string } | undefined;
   /** Ends a call that is under way. */
   signal: AbortSignal | undefined;
   fetch?: typeof fetch;
 }
 
 /** Calls the server by the table of routes; what it answers is checked by the same table. */
-export function createApi({ server, token, signal, fetch: send = fetch }: ApiParts): Api {
+export function createApi({ server, token, bench, signal, fetch: send = fetch }: ApiParts): Api {
   if (!/^https?:\/\/[^/]+/.test(server))
     throw new UsageError(`REFETTLE_SERVER is no address: '${server}'. Write it like http://127.0.0.1:4780`);
   return {
@@ -45,12 +49,14 @@ export function createApi({ server, token, signal, fetch: send = fetch }: ApiPar
     async call(name, request = {}) {
       const route: Route = routes[name];
       const bearer = token();
+      const person = benchMay(route.action) === 'person' ? bench?.person() : undefined;
       const response = await ask(send, server, `${server}${routeUrl(name, request as Parameters<typeof routeUrl>[1])}`, {
         method: route.method,
         headers: {
           accept: 'application/json',
           ...(request.body === undefined ? {} : { 'content-type': 'application/json' }),
           ...(bearer === undefined ? {} : { authorization: `Bearer ${bearer}` }),
+          ...(person === undefined ? {} : { [PERSON_HEADER]: person }),
           ...(request.idempotencyKey === undefined ? {} : { 'idempotency-key': request.idempotencyKey }),
         },
         ...(request.body === undefined ? {} : { body: JSON.stringify(request.body) }),
@@ -59,7 +65,7 @@ export function createApi({ server, token, signal, fetch: send = fetch }: ApiPar
           AbortSignal.timeout(route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS),
         ]),
       });
-      if (response.status >= 400) throw problemOf(response, server);
+      if (response.status >= 400) throw problemOf(response, server, bench?.remedy);
       const parsed = route.response.safeParse(response.status === 204 ? {} : response.json());
       if (!parsed.success) throw notOurs(server);
       return parsed.data as Answer<typeof name>;
@@ -129,11 +135,11 @@ function usualRemedy(status: number): string {
   return 'Correct what it names.';
 }
 
-function problemOf(response: Response, server: string): ServerError {
+function problemOf(response: Response, server: string, signInRemedy: string | undefined): ServerError {
   if (response.status === 401) {
     const detail = problemSchema.safeParse(response.json()).data;
     // A refused sign-in is a 401 too, and says so in its own words.
-    return detail?.detail === undefined ? new NotSignedInError(server) : new NotSignedInError(server, detail.detail);
+    return new NotSignedInError(server, detail?.detail, signInRemedy);
   }
   const parsed = problemSchema.safeParse(response.json());
   if (!parsed.success) return notOurs(server);

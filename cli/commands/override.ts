@@ -1,3 +1,4 @@
+import { signOnIfShared } from '../bench/sign-on.js';
 import type { Context } from '../context.js';
 import { EXIT } from '../exit-codes.js';
 import { printJson } from '../render/json.js';
@@ -8,6 +9,7 @@ export async function runOverride(
   { number, reason, json }: { number: number; reason?: string; json?: boolean },
   context: Context,
 ): Promise<number> {
+  await signOnIfShared(context);
   const why =
     reason ??
     (await context.prompt.text({

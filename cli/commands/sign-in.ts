@@ -1,6 +1,8 @@
+import { joinedBench } from '../bench/joined-bench.js';
 import type { Context } from '../context.js';
-import { NobodyToAskError, UsageError } from '../errors.js';
+import { UsageError } from '../errors.js';
 import { EXIT } from '../exit-codes.js';
+import { firstLineOfInput } from '../first-line.js';
 import { keepSession } from '../session.js';
 import { printJson } from '../render/json.js';
 
@@ -12,10 +14,15 @@ export interface SignInOptions {
 
 /** Signs in and keeps the token on this bench, for its owner's eyes only. */
 export async function runSignIn(options: SignInOptions, context: Context): Promise<number> {
+  const joined = joinedBench(context.home, context.server);
+  if (joined)
+    throw new UsageError(
+      `This computer is the shared bench ${joined.bench.name}: nobody signs in on it by an account of their own. Sign on by name and PIN: refettle bench sign-on`,
+    );
   const email = options.email ?? (await context.prompt.text({ message: 'E-mail address', instead: 'give it with --email' }));
   const password =
     options.passwordStdin === true
-      ? await firstLine(context)
+      ? await firstLineOfInput(context, { option: '--password-stdin', what: 'password' })
       : await context.prompt.secret({ message: 'Password', instead: 'give it on standard input with --password-stdin' });
   const { token, user } = await (await context.api()).call('signIn', { body: { email, password } });
   if (token === undefined) throw new UsageError('The server gave no token');
@@ -23,16 +30,4 @@ export async function runSignIn(options: SignInOptions, context: Context): Promi
   if (options.json === true) printJson(context, { server: context.server, user });
   else context.stdout.write(`Signed in at ${context.server} as ${user.name}, ${user.role}.\n`);
   return EXIT.good;
-}
-
-async function firstLine({ stdin, interactive }: Context): Promise<string> {
-  if (interactive) throw new NobodyToAskError('--password-stdin reads a pipe.', 'leave it out to be asked for the password');
-  let text = '';
-  for await (const chunk of stdin as AsyncIterable<Buffer | string>) {
-    text += chunk.toString();
-    if (text.includes('\n')) break;
-  }
-  const line = text.split(/\r?\n/, 1)[0] ?? '';
-  if (line === '') throw new UsageError('Standard input holds no password.');
-  return line;
 }

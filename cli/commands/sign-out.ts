@@ -1,3 +1,5 @@
+import { joinedBench } from '../bench/joined-bench.js';
+import { forgetSignOn, keptSignOn } from '../bench/kept-sign-on.js';
 import type { Context } from '../context.js';
 import { NotSignedInError, ServerUnreachableError } from '../errors.js';
 import { EXIT } from '../exit-codes.js';
@@ -10,6 +12,14 @@ export async function runSignOut({ json }: { json?: boolean | undefined }, conte
     if (json === true) printJson(context, { signedOut, revoked });
     else if (words !== '') context.stdout.write(`${words}\n`);
   };
+  const joined = joinedBench(context.home, context.server);
+  if (joined) {
+    const standing = keptSignOn(context, joined.bench.id);
+    forgetSignOn(context.home);
+    const nobody = `Nobody was signed on at ${joined.bench.name}.`;
+    answer(standing !== undefined, false, standing ? `${standing.person.name} is signed on no longer.` : nobody);
+    return EXIT.good;
+  }
   if (!readSession(context.home, context.server)) {
     answer(false, false, 'Nobody is signed in here.');
     return EXIT.good;

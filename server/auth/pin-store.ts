@@ -90,5 +90,5 @@ export async function clearPin(db: Db, personId: string): Promise<void> {
 
 export async function passwordHashOf(db: Db, personId: string): Promise<string | undefined> {
   const row: unknown = await db('people').where({ id: personId, active: true }).first('password_hash');
-  return row === undefined ? undefined : z.object({ password_hash: z.string().nullable() }).parse(row).password_hash ?? undefined;
+  return row === undefined ? undefined : (z.object({ password_hash: z.string().nullable() }).parse(row).password_hash ?? undefined);
 }

@@ -1,3 +1,4 @@
+import { signOnIfShared } from '../../bench/sign-on.js';
 import type { Context } from '../../context.js';
 import { EXIT } from '../../exit-codes.js';
 import { printJson } from '../../render/json.js';
@@ -8,6 +9,7 @@ export async function runUnitFamily(
   { number, family, json }: { number: number; family: string; json?: boolean },
   context: Context,
 ): Promise<number> {
+  await signOnIfShared(context);
   const api = await context.api();
   const unit = await api.call('giveFamily', { params: { number }, body: { family }, idempotencyKey: context.newId() });
   if (json === true) printJson(context, unit);

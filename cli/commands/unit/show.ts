@@ -8,7 +8,7 @@ import { eventLine } from '../../render/event-line.js';
 import { printJson } from '../../render/json.js';
 import { blankTagLines } from '../../render/tag-box.js';
 import { dayText, unitLabel } from '../../render/words.js';
-import { whoIsHere } from '../../session.js';
+import { shopHere } from '../../session.js';
 
 /** Everything about a unit, newest first. */
 export async function runUnitShow({ number, json }: { number: number; json?: boolean }, context: Context): Promise<number> {
@@ -18,7 +18,7 @@ export async function runUnitShow({ number, json }: { number: number; json?: boo
     printJson(context, page);
     return EXIT.good;
   }
-  const { shop } = await whoIsHere(context);
+  const shop = await shopHere(context);
   context.stdout.write(`${unitLines(page, shop.currency, await context.stdout.style()).join('\n')}\n`);
   return EXIT.good;
 }

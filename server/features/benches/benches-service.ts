@@ -1,15 +1,7 @@
 import { v7 as newId } from 'uuid';
 import type { Bench, OwnBench } from '../../../shared/api/benches.js';
 import type { User } from '../../../shared/api/sessions.js';
-import {
-  findBench,
-  insertBench,
-  newBenchToken,
-  peopleToOffer,
-  revokeBench,
-  setBenchToken,
-  type BenchRef,
-} from '../../auth/bench-store.js';
+import { findBench, insertBench, newBenchToken, peopleToOffer, revokeBench, setBenchToken, type BenchRef } from '../../auth/bench-store.js';
 import type { Db } from '../../db.js';
 import { ConflictError, NotFoundError } from '../../errors.js';
 import { audit } from '../../history/audit.js';

@@ -250,7 +250,8 @@ describe('PINs', () => {
     const person = await server.addPerson('technician', 'Changing Chestnut');
     const bench = await makeBench(server);
     await standsAt(server, bench, person);
-    const pinSetAt = async () => (await server.ok('ownBench', { as: benchAlone(bench) })).people.find(({ id }) => id === person.id)?.pinSetAt;
+    const pinSetAt = async () =>
+      (await server.ok('ownBench', { as: benchAlone(bench) })).people.find(({ id }) => id === person.id)?.pinSetAt;
     const before = await pinSetAt();
     server.time.now = new Date(server.time.now.getTime() + 1);
     await server.ok('setPin', { as: server.people.lead, params: { id: person.id }, body: { pin: '40719' } });
