@@ -9,7 +9,7 @@ import { canReach, ownerOfCluster, ownerOfNewCluster } from './owner.js';
  * folder (a checkout below /root, which is closed to others): then the database lies in `elsewhere`, and a note in the data folder says so.
  */
 export async function startOwnCluster(dataDir: string, elsewhere = '/var/lib/refettle'): Promise<Cluster> {
-  const note = join(dataDir, 'postgres-folder.txt');
+  const note = noteIn(dataDir);
   const folder = findFolder(dataDir, note) ?? chooseFolder(dataDir, elsewhere);
   const cluster = await startCluster(
     { folder, passwordFile: join(dataDir, 'postgres-password'), logFile: join(dataDir, 'postgres.log') },
@@ -19,6 +19,10 @@ export async function startOwnCluster(dataDir: string, elsewhere = '/var/lib/ref
   return cluster;
 }
 
+/** Where the data folder's database is, or undefined before the first start. */
+export const folderOfOwnCluster = (dataDir: string): string | undefined => findFolder(dataDir, noteIn(dataDir));
+
+const noteIn = (dataDir: string): string => join(dataDir, 'postgres-folder.txt');
 const inside = (dataDir: string): string => join(dataDir, 'postgres');
 
 function findFolder(dataDir: string, note: string): string | undefined {
