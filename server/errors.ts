@@ -16,6 +16,11 @@ export class RoleError extends Error {
   override readonly name = 'RoleError';
 }
 
+/** A shared bench names somebody who has not signed on at it yet. */
+export class SignOnError extends Error {
+  override readonly name = 'SignOnError';
+}
+
 /** A write that came by cookie from another site. */
 export class OriginError extends Error {
   override readonly name = 'OriginError';

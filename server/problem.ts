@@ -11,12 +11,14 @@ import {
   OriginError,
   RoleError,
   SameSerialError,
+  SignOnError,
   TooManyError,
 } from './errors.js';
 
 const TITLES: Record<ProblemKind, string> = {
   'not-signed-in': 'Sign in first',
   role: 'Not yours to do',
+  'sign-on': 'Sign on at the bench first',
   origin: 'The request came from another site',
   gate: 'A gate is shut',
   'not-found': 'Not there',
@@ -43,6 +45,11 @@ export function problemOf(error: unknown): Problem | undefined {
   if (error instanceof NotSignedInError)
     return problem(401, 'not-signed-in', { detail: error.message, remedy: 'Sign in, and send the token in the Authorization header.' });
   if (error instanceof RoleError) return problem(403, 'role', { detail: error.message });
+  if (error instanceof SignOnError)
+    return problem(403, 'sign-on', {
+      detail: error.message,
+      remedy: 'That person signs on at this bench once, by name and PIN: refettle bench sign-on',
+    });
   if (error instanceof OriginError) return problem(403, 'origin', { detail: error.message });
   if (error instanceof GateError) {
     const errors = error.reasons.map((reason) => ({ pointer: '', reason }));

@@ -1,3 +1,4 @@
+import { joinedBench } from '../bench/joined-bench.js';
 import type { Context } from '../context.js';
 import { ApiProblemError, NotSignedInError, ServerError } from '../errors.js';
 import { wordsOf } from '../report-error.js';
@@ -8,7 +9,7 @@ export type Delivery =
   /** The server has it; `answer` is what it said. */
   | { state: 'sent'; entry: OutboxEntry; answer: unknown }
   /** It waits on this bench for something that passes: the network, a sign-in. */
-  | { state: 'waits'; entry: OutboxEntry; why: string }
+  | { state: 'waits'; entry: OutboxEntry; why: string; onlyThis?: true }
   /** The server refuses it; `error` says why and who must act. */
   | { state: 'refused'; entry: OutboxEntry; why: string; error?: ApiProblemError };
 
@@ -25,7 +26,7 @@ export async function sendWaiting(context: Context, { again = false } = {}): Pro
   for (const entry of waitingEntries(context.home).entries) {
     const delivery = standstill === undefined ? await send(context, entry, again) : ({ state: 'waits', entry, why: standstill } as const);
     deliveries.push(delivery);
-    if (delivery.state === 'waits' && delivery.why !== whyNotNow(context, entry)) standstill = delivery.why;
+    if (delivery.state === 'waits' && delivery.onlyThis !== true && delivery.why !== whyNotNow(context, entry)) standstill = delivery.why;
   }
   return deliveries;
 }
@@ -42,6 +43,8 @@ export async function keepAndSend(context: Context, entry: OutboxEntry): Promise
 /** What keeps this one from being sent now, though another one may go. */
 function whyNotNow({ home, server }: Context, entry: OutboxEntry): string | undefined {
   if (entry.server !== server) return `it is for the server at ${entry.server}: set REFETTLE_SERVER to it`;
+  // A shared bench sends for whoever has signed on at it: nobody needs to be there.
+  if (joinedBench(home, server)) return undefined;
   const user = readSession(home, server)?.user;
   // The server takes down who signed in as who did it: nobody sends another's work as their own.
   if (user && user.id !== entry.by.id)
@@ -54,7 +57,7 @@ async function send(context: Context, entry: OutboxEntry, again: boolean): Promi
   const why = whyNotNow(context, entry);
   if (why !== undefined) return { state: 'waits', entry, why };
   try {
-    const api = await context.api();
+    const api = await context.api(entry.by);
     const { route, body, id } = entry;
     const answer: unknown = await api.call(route, {
       ...('params' in entry ? { params: entry.params } : {}),
@@ -65,6 +68,13 @@ async function send(context: Context, entry: OutboxEntry, again: boolean): Promi
     return { state: 'sent', entry, answer };
   } catch (error) {
     if (!(error instanceof ServerError)) throw error;
+    if (error instanceof ApiProblemError && error.kind === 'sign-on')
+      return {
+        state: 'waits',
+        entry,
+        why: `${entry.by.name} recorded it and has never signed on at this bench. ${error.remedy}, then: refettle sync`,
+        onlyThis: true,
+      };
     if (error instanceof ApiProblemError && error.status < 500 && !PASSING_STATUS.has(error.status)) {
       const refused = { at: context.now().toISOString(), status: error.status, reason: error.message, remedy: error.remedy };
       keepEntry(context.home, { ...entry, refused });

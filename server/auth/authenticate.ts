@@ -5,7 +5,7 @@ import type { Action, Role } from '../../shared/api/roles.js';
 import { benchMay, mayDo, ROLES_BY_ACTION } from '../../shared/api/roles.js';
 import { PERSON_HEADER } from '../../shared/api/benches.js';
 import type { AppDependencies } from '../app.js';
-import { NotSignedInError, RoleError } from '../errors.js';
+import { NotSignedInError, RoleError, SignOnError } from '../errors.js';
 import { benchOfToken, isBenchToken, personAtBench, type BenchRef } from './bench-store.js';
 import { refuseOtherOrigin } from './origin.js';
 import { sessionCookie } from './session-cookie.js';
@@ -99,7 +99,7 @@ async function benchAndPerson(deps: AppDependencies, request: Request, token: st
   const personId = request.get(PERSON_HEADER);
   if (personId === undefined) return BENCH_ALONE;
   const person = await personAtBench(deps.db, bench.id, personId.trim());
-  if (!person) throw new RoleError(`Nobody with this id has signed on at ${bench.name}: sign on there once by name and PIN.`);
+  if (!person) throw new SignOnError(`Whoever recorded it has never signed on at ${bench.name}.`);
   if (!person.active) throw new RoleError(`${person.user.name} no longer works here, so nothing more is taken down in that name.`);
   return person.user;
 }

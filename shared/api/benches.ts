@@ -10,7 +10,10 @@ export const PERSON_HEADER = 'Refettle-Person';
 export const PIN_DIGITS = { least: 4, most: 8 };
 export const pinSchema = z
   .string()
-  .regex(new RegExp(`^\\d{${PIN_DIGITS.least},${PIN_DIGITS.most}}$`), `${PIN_DIGITS.least} to ${PIN_DIGITS.most} digits`)
+  .regex(new RegExp(`^\\d{${PIN_DIGITS.least},${PIN_DIGITS.most}}$`), {
+    error: `${PIN_DIGITS.least} to ${PIN_DIGITS.most} digits`,
+    abort: true,
+  })
   .refine((pin) => !isEasyPin(pin), 'too easy to guess: not all the same digit, and not counted up or down');
 
 /**

@@ -15,4 +15,15 @@ export type Problem = z.infer<typeof problemSchema>;
 /** Kinds of problem; `type` is `urn:refettle:problem:<kind>`. */
 export const PROBLEM_TYPE_PREFIX = 'urn:refettle:problem:';
 export type ProblemKind =
-  'not-signed-in' | 'role' | 'origin' | 'gate' | 'not-found' | 'conflict' | 'same-serial' | 'malformed' | 'invalid' | 'too-many' | 'fault';
+  | 'not-signed-in'
+  | 'role'
+  | 'sign-on'
+  | 'origin'
+  | 'gate'
+  | 'not-found'
+  | 'conflict'
+  | 'same-serial'
+  | 'malformed'
+  | 'invalid'
+  | 'too-many'
+  | 'fault';

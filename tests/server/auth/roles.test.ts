@@ -6,12 +6,16 @@ import { benchAlone, makeBench, standsAt, type TestBench } from '../../helpers/s
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
 import { validCalls } from '../../helpers/valid-calls.js';
 
+/** Those whose people may sign on at a bench. */
+const AT_THE_BENCH = ['technician', 'lead'] as const;
+
 let server: TestServer;
 let bench: TestBench;
 beforeAll(async () => {
   server = await startTestServer();
   await addHeron(server);
   bench = await makeBench(server);
+  for (const role of AT_THE_BENCH) await standsAt(server, bench, server.people[role]);
 });
 afterAll(() => server.close());
 
@@ -46,8 +50,6 @@ describe.each(guarded)('%s', (name) => {
 });
 
 const anything = { params: { number: 1, id: 'x', tag: 'x', family: 'x' } };
-/** Those whose people may sign on at a bench. */
-const AT_THE_BENCH = ['technician', 'lead'] as const;
 
 describe.each(guarded)('%s, by the token of a shared bench', (name) => {
   const may = benchMay(routes[name].action);
@@ -62,16 +64,15 @@ describe.each(guarded)('%s, by the token of a shared bench', (name) => {
   });
 
   test.each(AT_THE_BENCH)('When a %s has signed on there, then it is what both tables allow, and no more', async (role) => {
-    const call = await validCalls[name](server);
-    const as = await standsAt(server, bench, server.people[role]);
+    const as = { token: bench.token, person: server.people[role].id };
     const allowed = may === 'alone' || (may === 'person' && rolesOf(name).includes(role));
-    if (allowed) await server.ok(name, { ...call, as });
+    if (allowed) await server.ok(name, { ...(await validCalls[name](server)), as });
     else expect(problemIn(await server.send(name, { ...anything, as }))).toMatchObject({ status: 403, kind: 'role' });
   });
 
   test('When the bench names somebody who never signed on there, then it is 403, whatever it may do', async () => {
     const as = { token: bench.token, person: server.people.admin.id };
-    expect(problemIn(await server.send(name, { ...anything, as }))).toMatchObject({ status: 403, kind: 'role' });
+    expect(problemIn(await server.send(name, { ...anything, as }))).toMatchObject({ status: 403, kind: 'sign-on' });
   });
 });
 

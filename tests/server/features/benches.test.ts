@@ -13,7 +13,7 @@ afterAll(() => server.close());
 
 const MINUTE_MS = 60_000;
 const audited = async (what: string): Promise<{ subject_name: string; who_name: string; text: string }[]> => {
-  const rows = (await server.deps.db('audit_log').where({ what }).orderBy('id')) as Record<string, unknown>[];
+  const rows = (await server.deps.db('audit_log').where({ what }).orderBy('position')) as Record<string, unknown>[];
   return rows.map((row) => ({ subject_name: String(row['subject_name']), who_name: String(row['who_name']), text: JSON.stringify(row) }));
 };
 const signOn = (bench: TestBench, body: object) => server.send('signOnAtBench', { as: benchAlone(bench), body });
@@ -170,8 +170,8 @@ describe('Who acts', () => {
     const person = await server.addPerson('technician', 'Elsewhere Elm');
     await standsAt(server, there, person);
     const refused = problemIn(await server.send('takeInUnit', { as: { token: here.token, person: person.id }, body: newUnit() }));
-    expect(refused).toMatchObject({ status: 403, kind: 'role' });
-    expect(refused.detail).toContain('sign on there once');
+    expect(refused).toMatchObject({ status: 403, kind: 'sign-on' });
+    expect(refused.detail).toContain('has never signed on');
   });
 
   test('When the person was deactivated, then nothing more is taken down in that name, with words', async () => {
@@ -196,7 +196,7 @@ describe('Who acts', () => {
     const bench = await makeBench(server);
     const as = await standsAt(server, bench, server.people.technician);
     const { number } = await takeIn(server);
-    const call = { params: { number }, key: 'by two ways', body: newRepair(server) };
+    const call = { params: { number }, key: 'by-two-ways', body: newRepair(server) };
     const first = await server.send('recordRepair', { ...call, as });
     const again = await server.send('recordRepair', { ...call, as: server.people.technician });
     expect([first.status, again.status, again.headers['idempotency-replayed']]).toEqual([201, 201, 'true']);
