@@ -1,4 +1,4 @@
-import { InvalidArgumentError } from 'commander';
+import { InvalidArgumentError, Option } from 'commander';
 import type { Context } from '../context.js';
 
 /** An action of a command: `load` imports the file that does it, only when it runs. */
@@ -7,6 +7,15 @@ export type Does = <O>(load: () => Promise<(options: O, context: Context) => Pro
 /** Every command that answers has it: `.option(...JSON_OPTION)`. */
 export const JSON_OPTION = ['--json', 'answer in JSON, for programs'] as const;
 export const RIG_OPTION = ['--rig <rig>', 'rig file, or sim:NAME for simulated instruments (else rig.yaml in REFETTLE_HOME)'] as const;
+
+/** An option with a few values, of which any case will do; the help text and completion list them. */
+export function oneOf(flags: string, description: string, choices: readonly string[]): Option {
+  return new Option(flags, description).choices(choices).argParser((text: string) => {
+    const known = choices.find((choice) => choice.toLowerCase() === text.toLowerCase());
+    if (known === undefined) throw new InvalidArgumentError(`It is none of ${choices.join(', ')}.`);
+    return known;
+  });
+}
 
 /** `412`, `0412` and `No. 0412` are the same unit. */
 export function unitNumber(text: string): number {

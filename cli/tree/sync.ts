@@ -8,7 +8,7 @@ export function syncCommands(program: Command, does: Does): void {
     .command('sync')
     .description('send what waits on this bench')
     .option('--status', 'only say what waits, and who must act')
-    .option('--drop <id>', 'give up on one that the server refuses; it stays on the disk')
+    .option('--drop <entry>', 'give up on one that the server refuses; it stays on the disk')
     .option(...JSON_OPTION)
     .action(does(async () => (await import('../commands/sync.js')).runSync));
 }

@@ -1,5 +1,9 @@
 import type { Command } from 'commander';
-import { JSON_OPTION, plainNumber, unitNumber, type Does } from './parts.js';
+import { JSON_OPTION, oneOf, plainNumber, unitNumber, type Does } from './parts.js';
+
+// Written out, because the schemas they come from would be loaded for every help text; a test holds them together.
+const APPLIANCES = ['washing machine', 'dryer', 'dishwasher', 'oven', 'gas hob', 'fridge', 'microwave oven', 'other'];
+const STAGES = ['intake', 'testing', 'repair', 'proving', 'signed off', 'sold', 'returned'];
 
 /** Units. */
 export function unitCommands(program: Command, does: Does): void {
@@ -8,12 +12,12 @@ export function unitCommands(program: Command, does: Does): void {
   unit
     .command('new')
     .description('take in a unit; asks for what is missing')
-    .option('--appliance <kind>', 'washing machine, dryer, dishwasher, oven, gas hob, fridge, microwave oven, other')
+    .addOption(oneOf('--appliance <kind>', 'what it is', APPLIANCES))
     .option('--maker <maker>', 'as the rating plate has it')
     .option('--model <model>', 'as the rating plate has it')
     .option('--serial <serial>', 'as the rating plate has it')
     .option('--plate-unreadable', 'the plate has no serial that can be read')
-    .option('--class <class>', 'protection class: I, II or III')
+    .addOption(oneOf('--class <class>', 'protection class', ['I', 'II', 'III']))
     .option('--volts <volts>', 'rated volts', plainNumber)
     .option('--hertz <hertz>', 'rated hertz', plainNumber)
     .option('--watts <watts>', 'rated watts', plainNumber)
@@ -23,7 +27,9 @@ export function unitCommands(program: Command, does: Does): void {
     .option('--complaint <text>', 'what the machine is said to do')
     .option('--source <text>', 'where it came from')
     .option('--cost <money>', 'what was paid for it, like 12.50')
-    .option('--same-serial <reason>', 'take it in although the serial is on the books: bought back, plate unreadable, other')
+    .addOption(
+      oneOf('--same-serial <reason>', 'take it in although the serial is on the books', ['bought back', 'plate unreadable', 'other']),
+    )
     .option(...JSON_OPTION)
     .action(does(async () => (await import('../commands/unit/new.js')).runUnitNew));
   unit
@@ -47,7 +53,7 @@ export function unitCommands(program: Command, does: Does): void {
     .command('list')
     .description('the units, newest first')
     .option('--find <text>', 'a number, a maker, a model, a serial')
-    .option('--stage <stage>', 'intake, testing, repair, proving, signed off, sold, returned')
+    .addOption(oneOf('--stage <stage>', 'only units that are there', STAGES))
     .option('--limit <count>', 'how many at most', plainNumber)
     .option(...JSON_OPTION)
     .action(does(async () => (await import('../commands/unit/list.js')).runUnitList));

@@ -1,5 +1,5 @@
 import type { Command } from 'commander';
-import { JSON_OPTION, plainNumber, RIG_OPTION, unitNumber, type Does } from './parts.js';
+import { JSON_OPTION, oneOf, plainNumber, RIG_OPTION, unitNumber, type Does } from './parts.js';
 
 /** What is done to the unit on the bench. */
 export function workCommands(program: Command, does: Does): void {
@@ -27,7 +27,7 @@ export function workCommands(program: Command, does: Does): void {
     .option('--accuracy <accuracy>', "that meter's, like 0.8%+3")
     .option('--resolution <value>', "the value of that meter's last digit")
     .option('--meter <id>', 'which meter it was')
-    .option('--verdict <verdict>', 'for a check that is looked at: pass, fail or inconclusive')
+    .addOption(oneOf('--verdict <verdict>', 'for a check that is looked at', ['pass', 'fail', 'inconclusive']))
     .option('--note <text>', 'what was seen, for a check that is looked at')
     .option(...RIG_OPTION)
     .option(...JSON_OPTION)

@@ -1,5 +1,6 @@
 import type { UnitRow } from '../../../shared/api/units.js';
 import { stageSchema } from '../../../shared/readiness/stage.js';
+import { keepUnits } from '../../bench/kept-units.js';
 import type { Context } from '../../context.js';
 import { UsageError } from '../../errors.js';
 import { EXIT } from '../../exit-codes.js';
@@ -32,6 +33,7 @@ export async function runUnitList({ find, stage, limit = USUAL_LIMIT, json }: Un
     next = page.next;
   } while (next !== undefined && rows.length < limit);
 
+  if (find === undefined && stage === undefined && rows.length > 0) keepUnits(context.home, rows, context.now());
   if (json === true) {
     printJson(context, { items: rows, more: next !== undefined });
     return EXIT.good;
