@@ -24,6 +24,8 @@ export interface Context {
   readonly interactive: boolean;
   readonly prompt: Prompt;
   readonly interruption: Interruption;
+  /** The same bench and terminal for a command that the menu runs, with a Ctrl-C of its own. */
+  forCommand(): Context;
   now(): Date;
   newId(): string;
   /** Waits in real time. */
@@ -40,12 +42,15 @@ export interface ContextParts {
   stderr: RawOutput;
   /** The second Ctrl-C, or one while nothing is being recorded. */
   leaveNow: () => void;
+  /** A command that the menu runs: the first Ctrl-C only ends it. */
+  inMenu?: boolean;
 }
 
-export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextParts): Context {
+export function createContext(parts: ContextParts): Context {
+  const { env, stdin, stdout, stderr, leaveNow, inMenu = false } = parts;
   const home = homeOf(env);
   const server = (env['REFETTLE_SERVER'] || joinedServer(home) || USUAL_SERVER).replace(/\/+$/, '');
-  const interruption = new Interruption(leaveNow);
+  const interruption = new Interruption(leaveNow, { firstOnlyEnds: inMenu });
   const errors = outputOn(stderr, env);
   const interactive = stdin.isTTY === true;
   const now = (): Date => new Date();
@@ -64,12 +69,15 @@ export function createContext({ env, stdin, stdout, stderr, leaveNow }: ContextP
       text: async (question) => (await prompt()).text(question),
       secret: async (question) => (await prompt()).secret(question),
       choice: async (question) => (await prompt()).choice(question),
+      pick: async (question) => (await prompt()).pick(question),
     },
     interruption,
+    forCommand: () => createContext({ ...parts, inMenu: true }),
     now,
     newId,
     sleep: (milliseconds) => new Promise((resolve) => setTimeout(resolve, milliseconds)),
-    openRig: async (choice) => (await import('./instruments/rig.js')).openRig(choice, home.folder),
+    openRig: async (choice) =>
+      (await import('./instruments/rig.js')).openRig(choice, home.folder, { say: errors.say, signal: interruption.signal }),
     api: async (as) => {
       const [{ createApi }, { readSession }, { joinedBench }, { standingHere }] = await Promise.all([
         import('./api/api-client.js'),

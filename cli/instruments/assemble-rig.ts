@@ -1,16 +1,23 @@
 import { BadInputError } from '../../shared/errors.js';
 import { convertUnit } from '../../shared/measure/convert-unit.js';
 import { parseAccuracy } from '../../shared/measure/parse-accuracy.js';
+import { DisconnectedError, TestBrokenOffError } from './instrument-error.js';
 import { openLightProbe, type LightProbe } from './light-probe.js';
-import { MEASURE_COMMANDS, openMeter, type ScpiMeter } from './meter.js';
-import { meterFor, probeOf, rangeAt, type Rig } from './rig-file.js';
-import type { OpenRig } from './rig.js';
+import { MEASURE_COMMANDS, openMeter, PUTS_VOLTAGE_ON } from './meter.js';
+import { OpenInstruments } from './open-instruments.js';
+import { USUAL_TRY_EVERY_MS, waitForReturn, type Patience } from './patience.js';
+import { meterFor, probeOf, rangeAt, type Rig, type RigInstrument } from './rig-file.js';
+import type { OpenRig, ProbeEvent } from './rig.js';
+import { SampleTimeline } from './sample-timeline.js';
 import type { Hands } from './simulated/hands.js';
-import { openTransport, type Binding, type Transport } from './transport.js';
+import { openTransport, type Binding } from './transport.js';
 
 /** Contract, section 6: the meter has 9600 baud unless the rig says otherwise, the probe 115200. */
-const METER_BAUD_RATE = 9600;
-const PROBE_BAUD_RATE = 115_200;
+export const METER_BAUD_RATE = 9600;
+export const PROBE_BAUD_RATE = 115_200;
+/** A plug that loses its contact again and again is no interruption any more. */
+const MOST_RETURNS_A_MEASUREMENT = 3;
+const MOST_RETURNS_A_CAPTURE = 20;
 
 /** What a simulated rig replaces. */
 export interface RigParts {
@@ -18,15 +25,36 @@ export interface RigParts {
   nowUs?: () => number;
   hands?: Hands;
   measureTimeoutMs?: number;
+  /** How often an unplugged instrument is looked for. */
+  tryEveryMs?: number;
   /** Called after the ports are closed. */
   dispose?: () => void;
 }
 
-/** Puts a rig together from its file. Opens nothing yet. */
-export function assembleRig(rig: Rig, parts: RigParts = {}): OpenRig {
-  const meters = new OpenInstruments<ScpiMeter>();
-  const probes = new OpenInstruments<LightProbe>();
+/** Puts a rig together from its file. Opens nothing yet. With `patience` an instrument that is unplugged at work is waited for. */
+export function assembleRig(rig: Rig, parts: RigParts = {}, patience?: Patience): OpenRig {
   const nowUs = parts.nowUs ?? ((): number => performance.now() * 1000);
+  const open = new OpenInstruments({
+    instruments: rig.instruments,
+    openPort: (instrument, path) =>
+      openTransport({
+        instrument: instrument.id,
+        path,
+        baudRate: instrument.baudRate ?? usualBaudRate(instrument),
+        binding: parts.binding,
+      }),
+    say: (line) => patience?.say(line),
+  });
+  const waitWith = (then: string, notice?: (line: string) => void) =>
+    patience === undefined || rig.reconnectSeconds === 0
+      ? undefined
+      : {
+          say: notice ?? ((line: string): void => patience.say(line)),
+          signal: patience.signal,
+          seconds: rig.reconnectSeconds,
+          tryEveryMs: parts.tryEveryMs ?? USUAL_TRY_EVERY_MS,
+          then,
+        };
 
   return {
     name: rig.name,
@@ -45,19 +73,11 @@ export function assembleRig(rig: Rig, parts: RigParts = {}): OpenRig {
         throw new BadInputError(`the rig ${rig.name} has no light probe: add it to the rig file, or tap the lamps with keys`);
       const order = sensorOrder(lampIds, instrument.sensors);
       const { id } = instrument;
-      const probe = await probes.open(
-        id,
-        () =>
-          openTransport({
-            instrument: id,
-            path: instrument.port,
-            baudRate: instrument.baudRate ?? PROBE_BAUD_RATE,
-            binding: parts.binding,
-          }),
-        (transport) => openLightProbe(transport, { sampleRateHz: rig.sampleRateHz, scaleMax: rig.scaleMax, nowUs }),
-      );
+      const openProbe = (): Promise<LightProbe> =>
+        open.open(instrument, (transport) => openLightProbe(transport, { sampleRateHz: rig.sampleRateHz, scaleMax: rig.scaleMax, nowUs }));
+      const probe = await openProbe();
       if (Math.max(...order) >= probe.sensorCount || (instrument.sensors === undefined && probe.sensorCount !== lampIds.length)) {
-        await probes.close(id);
+        await open.close(id);
         throw new BadInputError(
           `the probe ${id} has ${probe.sensorCount} sensors, and the panel ${lampIds.length} lamps: say in the rig file which sensor looks at which lamp`,
         );
@@ -68,12 +88,29 @@ export function assembleRig(rig: Rig, parts: RigParts = {}): OpenRig {
         sensorCount: probe.sensorCount,
         sampleRateHz: rig.sampleRateHz,
         scaleMax: rig.scaleMax,
-        async *read(signal) {
-          for await (const event of probe.read(signal)) {
-            yield event.kind === 'gap' ? event : { ...event, levels: order.map((sensor) => event.levels[sensor] ?? 0) };
+        async *read(signal, notice) {
+          const timeline = new SampleTimeline(rig.sampleRateHz);
+          const inOrder = (event: ProbeEvent): ProbeEvent =>
+            event.kind === 'gap' ? event : { ...event, levels: order.map((sensor) => event.levels[sensor] ?? 0) };
+          let reading = probe;
+          for (let returns = 0; ; returns += 1) {
+            try {
+              for await (const event of reading.read(signal, timeline)) yield inOrder(event);
+              return;
+            } catch (error) {
+              const wait = waitWith('the recording goes on, with a gap', notice);
+              if (!(error instanceof DisconnectedError) || wait === undefined || returns === MOST_RETURNS_A_CAPTURE) throw error;
+              const back = await waitForReturn(error, openProbe, wait, signal);
+              if (back === undefined) {
+                yield* timeline.finish();
+                return;
+              }
+              timeline.away();
+              reading = back;
+            }
           }
         },
-        close: () => probes.close(id),
+        close: () => open.close(id),
       };
     },
 
@@ -90,24 +127,31 @@ export function assembleRig(rig: Rig, parts: RigParts = {}): OpenRig {
       let range = rangeAt(specification, 0);
       // Refuses a unit of another kind before a port is opened.
       convertUnit(range.resolution, specification.unit, shown);
-      const meter = await meters.open(
-        id,
-        () =>
-          openTransport({
-            instrument: id,
-            path: instrument.port,
-            baudRate: instrument.baudRate ?? METER_BAUD_RATE,
-            binding: parts.binding,
-          }),
-        (transport) =>
+      const openIt = () =>
+        open.open(instrument, (transport) =>
           openMeter(transport, {
             measureTimeoutMs: instrument.measureTimeoutMs ?? parts.measureTimeoutMs,
             overloadFrom: (asked) => instrument.accuracy[asked]?.overloadFrom,
           }),
-      );
+        );
+      const { identification } = await openIt();
+      /** A measurement that lost its instrument is asked again when it is back; one that puts voltage on the machine is not. */
+      const measured = async (): Promise<number> => {
+        const again = !PUTS_VOLTAGE_ON.has(quantity);
+        for (let returns = 0; ; returns += 1) {
+          try {
+            return (await (await openIt()).measure(quantity)).value;
+          } catch (error) {
+            const wait = waitWith(again ? 'the measurement is asked for again' : 'the step is to be repeated');
+            if (!(error instanceof DisconnectedError) || wait === undefined || returns === MOST_RETURNS_A_MEASUREMENT) throw error;
+            await waitForReturn(error, openIt, wait);
+            if (!again) throw new TestBrokenOffError(error, { cause: error });
+          }
+        }
+      };
       return {
         id,
-        identification: meter.identification,
+        identification,
         unit: shown,
         get accuracy() {
           return parseAccuracy(range.accuracy);
@@ -119,20 +163,23 @@ export function assembleRig(rig: Rig, parts: RigParts = {}): OpenRig {
           return convertUnit(range.resolution, specification.unit, shown);
         },
         async measure() {
-          const { value } = await meter.measure(quantity);
+          const value = await measured();
           range = rangeAt(specification, convertUnit(value, answered, specification.unit));
           return convertUnit(value, answered, shown);
         },
-        close: () => meters.close(id),
+        close: () => open.close(id),
       };
     },
 
     async close() {
-      await Promise.all([meters.closeAll(), probes.closeAll()]);
+      await open.closeAll();
       parts.dispose?.();
     },
   };
 }
+
+export const usualBaudRate = ({ kind }: Pick<RigInstrument, 'kind'>): number =>
+  kind === 'light-probe' ? PROBE_BAUD_RATE : METER_BAUD_RATE;
 
 /** The sensor for each lamp. Without a list in the rig file the sensors are taken to sit in panel order. */
 function sensorOrder(lampIds: readonly string[], sensors: readonly string[] | undefined): number[] {
@@ -142,40 +189,4 @@ function sensorOrder(lampIds: readonly string[], sensors: readonly string[] | un
     if (sensor < 0) throw new BadInputError(`no sensor of the light probe looks at the lamp '${lamp}': say in the rig file which one does`);
     return sensor;
   });
-}
-
-/** Instruments that are open, by id. One that failed to open or lost its port is forgotten, so that the next try opens it afresh. */
-class OpenInstruments<T extends { close(): Promise<void> }> {
-  readonly #open = new Map<string, Promise<T>>();
-
-  async open(id: string, openPort: () => Promise<Transport>, greet: (transport: Transport) => Promise<T>): Promise<T> {
-    const known = this.#open.get(id);
-    if (known) return known;
-    const opening = this.#opening(id, openPort, greet);
-    this.#open.set(id, opening);
-    opening.catch(() => this.#open.delete(id));
-    return opening;
-  }
-
-  async #opening(id: string, openPort: () => Promise<Transport>, greet: (transport: Transport) => Promise<T>): Promise<T> {
-    const transport = await openPort();
-    try {
-      const instrument = await greet(transport);
-      transport.onClose(() => this.#open.delete(id));
-      return instrument;
-    } catch (error) {
-      await transport.close();
-      throw error;
-    }
-  }
-
-  async close(id: string): Promise<void> {
-    const opening = this.#open.get(id);
-    this.#open.delete(id);
-    await opening?.then((instrument) => instrument.close()).catch(() => undefined);
-  }
-
-  async closeAll(): Promise<void> {
-    await Promise.all([...this.#open.keys()].map((id) => this.close(id)));
-  }
 }

@@ -91,6 +91,18 @@ export class DisconnectedError extends InstrumentError {
   }
 }
 
+/** A test that puts voltage on the machine lost its instrument: it is not begun again behind a technician's back. */
+export class TestBrokenOffError extends InstrumentError {
+  override readonly name = 'TestBrokenOffError';
+  constructor(where: Where, options?: ErrorOptions) {
+    super(
+      'it was unplugged in the middle of a test that puts voltage on the machine; it is back, and the test is not repeated by itself',
+      { ...where, toDo: 'Discharge the machine through the tester, see that the probes sit, then repeat the step.' },
+      options,
+    );
+  }
+}
+
 export class PortClosedError extends InstrumentError {
   override readonly name = 'PortClosedError';
   constructor(where: Where) {

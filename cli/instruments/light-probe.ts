@@ -1,6 +1,6 @@
 import { parseScpiError } from '../../shared/measure/scpi-error.js';
 import { DamagedLinesError, GarbageError, ProbeSilentError, type InstrumentError } from './instrument-error.js';
-import { parseSampleLine } from './sample-line.js';
+import { isSampleLine, parseSampleLine } from './sample-line.js';
 import { SampleTimeline, type ProbeEvent } from './sample-timeline.js';
 import { ScpiConversation } from './scpi-conversation.js';
 import type { Transport } from './transport.js';
@@ -22,6 +22,8 @@ export interface LightProbeOptions {
   scaleMax: number;
   /** The bench's clock in microseconds; a simulated one runs faster. */
   nowUs: () => number;
+  /** Without a line for so long the probe is reminded, and after as long again given up; the usual time unless given. */
+  silenceMs?: number | undefined;
 }
 
 export interface LightProbe {
@@ -35,8 +37,6 @@ export interface LightProbe {
   /** Stops the probe and closes the port. */
   close(): Promise<void>;
 }
-
-const isSampleLine = (line: string): boolean => line.startsWith('$');
 
 /** Stops a probe that may still be sending, falls into step with it, and asks how many sensors it has. */
 export async function openLightProbe(transport: Transport, options: LightProbeOptions): Promise<LightProbe> {
@@ -77,7 +77,7 @@ interface Reading extends LightProbeOptions {
 }
 
 async function* readSamples(reading: Reading): AsyncGenerator<ProbeEvent, void, undefined> {
-  const { transport, conversation, sensorCount, signal, timeline, stop, scaleMax, nowUs } = reading;
+  const { transport, conversation, sensorCount, signal, timeline, stop, scaleMax, nowUs, silenceMs = SILENCE_MS } = reading;
   const waiting: ProbeEvent[] = [];
   let gone: InstrumentError | undefined;
   let lines = 0;
@@ -126,7 +126,7 @@ async function* readSamples(reading: Reading): AsyncGenerator<ProbeEvent, void, 
       if (gone) throw gone;
       const heard = lines;
       await new Promise<void>((resolve) => {
-        const timer = setTimeout(resolve, SILENCE_MS);
+        const timer = setTimeout(resolve, silenceMs);
         wake = () => {
           clearTimeout(timer);
           resolve();
@@ -143,7 +143,7 @@ async function* readSamples(reading: Reading): AsyncGenerator<ProbeEvent, void, 
             () => false,
           );
           if (lines > heard) continue;
-          throw new ProbeSilentError(transport, (2 * SILENCE_MS) / 1000, answers);
+          throw new ProbeSilentError(transport, (2 * silenceMs) / 1000, answers);
         }
         remindersLeft -= 1;
         await conversation.tell(START);

@@ -1,6 +1,7 @@
 import type { MeasuredCheck } from '../../shared/sheet/schema.js';
 import { parseScpiNumber } from '../../shared/measure/scpi-value.js';
 import { GarbageError, InstrumentRefusalError, InstrumentTimeoutError, NotANumberError, OverloadError } from './instrument-error.js';
+import { isSampleLine } from './sample-line.js';
 import { ScpiConversation } from './scpi-conversation.js';
 import type { Transport } from './transport.js';
 
@@ -16,6 +17,9 @@ export const MEASURE_COMMANDS: Readonly<Record<Quantity, { query: string; unit: 
   capacitance: { query: 'MEASure:CAPacitance?', unit: 'F' },
   temperature: { query: 'MEASure:TEMPerature?', unit: 'degC' },
 };
+
+/** What puts a voltage of its own on the machine, some hundred volts of it. */
+export const PUTS_VOLTAGE_ON: ReadonlySet<Quantity> = new Set<Quantity>(['insulation resistance']);
 
 /** A measurement takes its time: autoranging, and the charging of an insulation under test. */
 export const MEASURE_TIMEOUT_MS = 8000;
@@ -36,7 +40,8 @@ export interface ScpiMeter {
 
 /** Falls into step with a meter and asks who it is. */
 export async function openMeter(transport: Transport, options: MeterOptions = {}): Promise<ScpiMeter> {
-  const conversation = new ScpiConversation(transport);
+  // A light probe that hangs here by mistake may be sending: its samples are no answers.
+  const conversation = new ScpiConversation(transport, { passOver: isSampleLine });
   const { text: identification } = await conversation.identify();
   return {
     identification,

@@ -51,7 +51,13 @@ const specificationSchema = z
     return { unit, ranges: written, ...(overloadFrom === undefined ? {} : { overloadFrom }) };
   });
 
-const instrumentBase = { id: z.string().min(1), port: z.string().min(1), baudRate: z.number().int().positive().optional() };
+const instrumentBase = {
+  id: z.string().min(1),
+  port: z.string().min(1),
+  baudRate: z.number().int().positive().optional(),
+  /** What it answers to `*IDN?`. Written down, it is held against what answers, so that swapped plugs are found out. */
+  identification: z.string().min(1).optional(),
+};
 const meterSchema = z.strictObject({
   ...instrumentBase,
   kind: z.enum(['meter', 'insulation-tester', 'leakage-meter']),
@@ -68,6 +74,9 @@ const probeSchema = z.strictObject({
 export type RigMeter = z.infer<typeof meterSchema>;
 export type RigProbe = z.infer<typeof probeSchema>;
 
+/** Long enough to find a plug under the bench (common practice, no published source). */
+const USUAL_RECONNECT_SECONDS = 60;
+
 /** A rig file: the instruments on one bench and the ports they hang on. */
 export const rigSchema = z
   .strictObject({
@@ -77,6 +86,8 @@ export const rigSchema = z
     /** The probe's full scale in counts, and how many samples a second it sends. */
     scaleMax: z.number().int().positive().default(1023),
     sampleRateHz: z.number().positive().default(100),
+    /** How long a run waits for an instrument that was unplugged; 0: not at all. */
+    reconnectSeconds: z.number().nonnegative().default(USUAL_RECONNECT_SECONDS),
     instruments: z.array(z.discriminatedUnion('kind', [meterSchema, probeSchema])),
   })
   .superRefine((rig, context) => {
@@ -97,6 +108,7 @@ export const rigSchema = z
       }
     });
   });
+export type RigInstrument = RigMeter | RigProbe;
 export type Rig = z.infer<typeof rigSchema>;
 
 /** Where a bench keeps its rig file, in REFETTLE_HOME. */

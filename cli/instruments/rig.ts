@@ -1,12 +1,14 @@
 import type { Accuracy } from '../../shared/measure/parse-accuracy.js';
 import { assembleRig } from './assemble-rig.js';
 import type { Quantity } from './meter.js';
+import type { Patience } from './patience.js';
 import { loadRig } from './rig-file.js';
 import type { ProbeEvent } from './sample-timeline.js';
 import type { Hands } from './simulated/hands.js';
 
 export type { ProbeEvent } from './sample-timeline.js';
 export type { Quantity } from './meter.js';
+export type { Patience } from './patience.js';
 export type { Hands } from './simulated/hands.js';
 
 /** The light probe, its columns in the order of the lamps that were asked for. */
@@ -16,8 +18,11 @@ export interface Probe {
   readonly sensorCount: number;
   readonly sampleRateHz: number;
   readonly scaleMax: number;
-  /** Samples and gaps until `signal` aborts, times from the start of this reading. The probe is stopped at the end, whatever ended it. */
-  read(signal: AbortSignal): AsyncGenerator<ProbeEvent, void, undefined>;
+  /**
+   * Samples and gaps until `signal` aborts, times from the start of this reading. The probe is stopped at the end, whatever ended it.
+   * A probe that is unplugged is waited for, if the rig has patience: then there is a gap. `notice` takes what is said meanwhile.
+   */
+  read(signal: AbortSignal, notice?: (line: string) => void): AsyncGenerator<ProbeEvent, void, undefined>;
   close(): Promise<void>;
 }
 
@@ -57,12 +62,12 @@ export const SIMULATED_PREFIX = 'sim:';
 
 /**
  * The rig of this bench: `rig.yaml` in `home`, or the rig file that `choice` names, or for `sim:NAME` a simulated one.
- * No port is opened before openProbe or openMeterFor is called.
+ * No port is opened before openProbe or openMeterFor is called. With `patience` an instrument that is unplugged is waited for.
  */
-export async function openRig(choice: string | undefined, home: string): Promise<OpenRig> {
+export async function openRig(choice: string | undefined, home: string, patience?: Patience): Promise<OpenRig> {
   if (choice?.startsWith(SIMULATED_PREFIX) === true) {
     const { simulateRig } = await import('./simulated/simulated-rig.js');
-    return simulateRig(choice.slice(SIMULATED_PREFIX.length));
+    return simulateRig(choice.slice(SIMULATED_PREFIX.length), patience);
   }
-  return assembleRig(await loadRig(home, choice));
+  return assembleRig(await loadRig(home, choice), {}, patience);
 }

@@ -10,6 +10,9 @@ const SAMPLE_LINE = /^\$(?<body>\d{1,10}(?:,\d{1,7})+)\*(?<check>[0-9a-fA-F]{2})
 /** The probe's clock has 32 bits. */
 export const PROBE_CLOCK_SPAN_US = 2 ** 32;
 
+/** Whether a line is meant to be a sample, damaged or not. */
+export const isSampleLine = (line: string): boolean => line.startsWith('$');
+
 /** Reads a sample line; undefined for one that is damaged: a wrong checksum, a wrong number of levels, a level off the scale. */
 export function parseSampleLine(line: string, sensorCount: number, scaleMax: number): ProbeSample | undefined {
   const parts = SAMPLE_LINE.exec(line)?.groups;

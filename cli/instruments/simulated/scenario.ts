@@ -32,9 +32,34 @@ const panelSchema = z.strictObject({
 });
 export type Panel = z.infer<typeof panelSchema>;
 
-const measuredSchema = z.union([z.number(), z.enum(['overload', 'nan', 'timeout', 'garbage', 'unplugged'])]);
+const measuredSchema = z.union([
+  z.number(),
+  z.enum(['overload', 'nan', 'timeout', 'garbage', 'unplugged']),
+  /** The value comes, and something is wrong with how: after its time-out, twice, behind an older one, half of it, between NULs. */
+  z.strictObject({ late: z.number() }),
+  z.strictObject({ twice: z.number() }),
+  z.strictObject({ stale: z.number() }),
+  z.strictObject({ half: z.number() }),
+  z.strictObject({ nuls: z.number() }),
+  /** The plug is out for so many seconds. */
+  z.strictObject({ unplugged: seconds }),
+]);
+export type Measured = z.infer<typeof measuredSchema>;
 /** In the order they are measured; the last one stays. */
 const measuresSchema = z.array(measuredSchema).min(1);
+
+/** What goes wrong with the light probe while it is read: `at` seconds into a capture, once each, in the first capture that lasts so long. */
+const probeFaultSchema = z.discriminatedUnion('fault', [
+  /** The plug is out for so long; its clock begins again at 0. */
+  z.strictObject({ fault: z.literal('unplug'), at: seconds, seconds }),
+  /** It sends nothing for so long. */
+  z.strictObject({ fault: z.literal('silence'), at: seconds, seconds }),
+  /** Its clock begins again at 0. */
+  z.strictObject({ fault: z.literal('restart'), at: seconds }),
+]);
+export type ProbeFault = z.infer<typeof probeFaultSchema>;
+
+const instrumentName = z.enum(['probe', 'meter', 'insulation', 'leakage']);
 
 /** What is on the bench, and what the technician in front of it does. A shop can write its own for trials: `--rig sim:FILE.yaml`. */
 export const scenarioSchema = z.strictObject({
@@ -61,6 +86,11 @@ export const scenarioSchema = z.strictObject({
   repairs: z.record(z.string(), repairBodySchema).default({}),
   /** The share of probe lines that come damaged, and that never come. */
   probeTrouble: z.strictObject({ damaged: z.number().min(0).max(1), missing: z.number().min(0).max(1) }).optional(),
+  probeFaults: z.array(probeFaultSchema).default([]),
+  /** Two instruments whose plugs are swapped. */
+  swapped: z.tuple([instrumentName, instrumentName]).optional(),
+  /** How long a run waits for an unplugged instrument, in real seconds; as any rig unless told. */
+  reconnectSeconds: z.number().nonnegative().optional(),
 });
 export type Scenario = z.infer<typeof scenarioSchema>;
 

@@ -16,15 +16,22 @@ export interface SimulatedPlug {
   instrument: SimulatedInstrument;
 }
 
-/** Makes mock ports exist with instruments behind them. `unplug` pulls a cable: reads on that port fail as a real driver's do. */
-export async function plugIn(plugs: readonly SimulatedPlug[]): Promise<{ binding: Binding; unplug: (path: string) => void }> {
+/**
+ * Makes mock ports exist with instruments behind them. `unplug` pulls a cable: reads on that port fail as a real driver's do, and it
+ * can't be opened again until the plug is back.
+ */
+export async function plugIn(
+  plugs: readonly SimulatedPlug[],
+): Promise<{ binding: Binding; unplug: (path: string, backAfterMs?: number) => void }> {
   const mock = await simulatedBinding();
   const pulled = new Map<string, () => void>();
+  const away = new Set<string>();
   for (const { path } of plugs) mock.createPort(path, { echo: false, record: false, manufacturer: 'Simulated' });
 
   const binding = {
     ...mock,
     async open(options: Parameters<typeof mock.open>[0]) {
+      if (away.has(options.path)) throw new Error(`Error: No such file or directory, cannot open ${options.path}`);
       const port = await mock.open(options);
       const instrument = plugs.find(({ path }) => path === options.path)?.instrument;
       if (instrument === undefined) return port;
@@ -55,5 +62,12 @@ export async function plugIn(plugs: readonly SimulatedPlug[]): Promise<{ binding
       return port;
     },
   };
-  return { binding: binding as unknown as Binding, unplug: (path) => pulled.get(path)?.() };
+  const unplug = (path: string, backAfterMs = 0): void => {
+    if (backAfterMs > 0) {
+      away.add(path);
+      setTimeout(() => away.delete(path), backAfterMs).unref();
+    }
+    pulled.get(path)?.();
+  };
+  return { binding: binding as unknown as Binding, unplug };
 }

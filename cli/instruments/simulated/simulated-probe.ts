@@ -1,4 +1,5 @@
 import { PROBE_CLOCK_SPAN_US, writeSampleLine } from '../sample-line.js';
+import type { ProbeFault } from './scenario.js';
 import { SimulatedScpi } from './simulated-scpi.js';
 
 /** What the lamps do from the moment the probe is started: times in microseconds from 0, a level a sensor. */
@@ -21,6 +22,9 @@ export interface SimulatedProbeOptions {
   /** The probe's own clock when it is switched on; near 2^32 it wraps soon. */
   clockStartUs?: number;
   trouble?: LineTrouble | undefined;
+  faults?: readonly ProbeFault[] | undefined;
+  /** Pulls the plug for so many seconds of the scenario. */
+  unplug?: ((seconds: number) => void) | undefined;
 }
 
 /** How often what is due is sent. */
@@ -31,6 +35,10 @@ export class SimulatedProbe extends SimulatedScpi {
   readonly #options: SimulatedProbeOptions;
   #clockUs: number;
   #timer: NodeJS.Timeout | undefined;
+  readonly #faults: ProbeFault[];
+  /** The lamps that were being looked at when the plug came out: the machine goes on without its probe. */
+  #going: { samples: Iterator<{ tUs: number; levels: readonly number[] }>; startedMs: number } | undefined;
+  #silentUntilUs = 0;
 
   constructor(options: SimulatedProbeOptions) {
     super(options.identification, [
@@ -47,6 +55,7 @@ export class SimulatedProbe extends SimulatedScpi {
       },
     ]);
     this.#options = options;
+    this.#faults = [...(options.faults ?? [])];
     this.#clockUs = options.clockStartUs ?? 0;
   }
 
@@ -58,21 +67,43 @@ export class SimulatedProbe extends SimulatedScpi {
   #start(): void {
     if (this.#timer) return;
     const { speed, source } = this.#options;
-    const samples = source()[Symbol.iterator]();
-    const startedMs = performance.now();
-    const clockAtStartUs = this.#clockUs;
+    const samples = this.#going?.samples ?? source()[Symbol.iterator]();
+    const startedMs = this.#going?.startedMs ?? performance.now();
+    const dueUs = (): number => (performance.now() - startedMs) * 1000 * speed;
+    // What the lamps did while the plug was out has been seen by nobody.
     let next = samples.next();
+    if (this.#going) while (next.done !== true && next.value.tUs < dueUs()) next = samples.next();
+    this.#going = undefined;
+    let clockAtStartUs = this.#clockUs - (next.done === true ? 0 : next.value.tUs);
+    this.#silentUntilUs = 0;
     this.#timer = setInterval(() => {
-      const dueUs = (performance.now() - startedMs) * 1000 * speed;
+      const untilUs = dueUs();
       let text = '';
-      for (; next.done !== true && next.value.tUs <= dueUs; next = samples.next()) {
-        this.#clockUs = (clockAtStartUs + next.value.tUs) % PROBE_CLOCK_SPAN_US;
-        text += this.#line(next.value.levels);
+      for (; next.done !== true && next.value.tUs <= untilUs; next = samples.next()) {
+        const { tUs, levels } = next.value;
+        const fault = this.#faultAt(tUs);
+        if (fault?.fault === 'silence') this.#silentUntilUs = tUs + fault.seconds * 1_000_000;
+        if (fault?.fault === 'restart') clockAtStartUs = -tUs;
+        if (fault?.fault === 'unplug') {
+          this.#clockUs = 0;
+          this.transmit(text);
+          this.#options.unplug?.(fault.seconds);
+          this.#going = { samples, startedMs };
+          return;
+        }
+        this.#clockUs = (clockAtStartUs + tUs + PROBE_CLOCK_SPAN_US) % PROBE_CLOCK_SPAN_US;
+        if (tUs >= this.#silentUntilUs) text += this.#line(levels);
       }
       if (text !== '') this.transmit(text);
       // The lamps' plan is over: a machine that shows nothing more is one that was switched off.
       if (next.done === true) this.#stop();
     }, TICK_MS);
+  }
+
+  /** The fault that is due now; each happens once. */
+  #faultAt(tUs: number): ProbeFault | undefined {
+    const index = this.#faults.findIndex(({ at }) => tUs >= at * 1_000_000);
+    return index < 0 ? undefined : this.#faults.splice(index, 1)[0];
   }
 
   #stop(): void {

@@ -3,7 +3,8 @@ import { BadInputError } from '../../../shared/errors.js';
 import { seededRandom } from '../../../shared/lamps/seeded-random.js';
 import { baseUnitOf, convertUnit } from '../../../shared/measure/convert-unit.js';
 import { assembleRig } from '../assemble-rig.js';
-import { parseRig } from '../rig-file.js';
+import { USUAL_TRY_EVERY_MS, type Patience } from '../patience.js';
+import { parseRig, type Rig } from '../rig-file.js';
 import type { OpenRig } from '../rig.js';
 import type { Hands } from './hands.js';
 import { lampSamples, marksIn } from './lamp-source.js';
@@ -21,10 +22,11 @@ name: ${JSON.stringify(bench)}
 scaleMax: 1023
 sampleRateHz: 100
 instruments:
-  - {id: P-01, kind: light-probe, port: PORTS/probe, sensors: [${lamps.join(', ')}]}
+  - {id: P-01, kind: light-probe, port: PORTS/probe, identification: 'Millrace,LP-6,SIM0001,1.0', sensors: [${lamps.join(', ')}]}
   - id: M-03
     kind: meter
     port: PORTS/meter
+    identification: 'Millrace,BM-4,SIM0003,1.0'
     accuracy:
       resistance:
         unit: ohm
@@ -40,26 +42,42 @@ instruments:
   - id: M-05
     kind: insulation-tester
     port: PORTS/insulation
+    identification: 'Millrace,IT-1,SIM0005,1.0'
     accuracy:
       insulation resistance: {unit: Mohm, accuracy: 3%+5, resolution: 0.01}
   - id: M-07
     kind: leakage-meter
     port: PORTS/leakage
+    identification: 'Millrace,LC-2,SIM0007,1.0'
     accuracy:
       current ac: {unit: mA, accuracy: 2%+5, resolution: 0.01}
 `;
 
 /** Nobody wants to wait for a simulated meter that does not answer. */
 const SIMULATED_MEASURE_TIMEOUT_MS = 300;
+/** As long after its question comes a late answer. */
+const SIMULATED_LATE_MS = 450;
+const LEAST_TRY_EVERY_MS = 20;
 /** The probe has been on for more than an hour: its clock wraps 20 s into the first capture, as it would in life. */
 const PROBE_CLOCK_START_US = 2 ** 32 - 20_000_000;
 
 let rigs = 0;
 
 /** The rig of a scenario: a built-in one by name, or a file that ends in `.yaml` or `.yml`. Opens nothing yet. */
-export async function simulateRig(name: string): Promise<OpenRig> {
-  return simulateScenario(await scenarioNamed(name));
+export async function simulateRig(name: string, patience?: Patience): Promise<OpenRig> {
+  return simulateScenario(await scenarioNamed(name), patience);
 }
+
+/** The rig file of a scenario, for who wants to see it. */
+export async function simulatedRigFile(name: string): Promise<Rig> {
+  const scenario = await scenarioNamed(name);
+  return rigOf(scenario, `/sim/${scenario.name}`);
+}
+
+const rigOf = (scenario: Scenario, ports: string): Rig => ({
+  ...parseRig(rigText(`sim:${scenario.name}`, scenario.panel.lamps).replaceAll('PORTS', ports), scenario.name),
+  ...(scenario.reconnectSeconds === undefined ? {} : { reconnectSeconds: scenario.reconnectSeconds }),
+});
 
 async function scenarioNamed(name: string): Promise<Scenario> {
   const builtIn = Object.hasOwn(BUILT_IN_SCENARIOS, name) ? BUILT_IN_SCENARIOS[name] : undefined;
@@ -75,32 +93,41 @@ async function scenarioNamed(name: string): Promise<Scenario> {
 }
 
 /** Plugs the scenario's instruments into mock ports of their own and puts a rig together on them. */
-export async function simulateScenario(scenario: Scenario): Promise<OpenRig> {
+export async function simulateScenario(scenario: Scenario, patience?: Patience): Promise<OpenRig> {
   rigs += 1;
   const ports = `/sim/${scenario.name}-${rigs}`;
-  const rig = parseRig(rigText(`sim:${scenario.name}`, scenario.panel.lamps).replaceAll('PORTS', ports), scenario.name);
+  const rig = rigOf(scenario, ports);
   const machine = new SimulatedMachine(scenario);
-  const pulled: { unplug: (path: string) => void } = { unplug: () => undefined };
+  const { speed } = scenario;
 
-  const meterAt = (path: string, identification: string) => ({
-    path: `${ports}/${path}`,
-    instrument: new SimulatedMeter(
-      identification,
-      (unit) => machine.measured(unit),
-      () => pulled.unplug(`${ports}/${path}`),
-    ),
+  /** Where an instrument hangs: on its own port, unless two plugs are swapped. */
+  const portOf = (name: string): string => {
+    const [one, other] = scenario.swapped ?? [];
+    return `${ports}/${name === one ? other : name === other ? one : name}`;
+  };
+  const unplugFrom = (name: string) => (seconds?: number) =>
+    pulled.unplug(portOf(name), seconds === undefined ? 0 : (seconds * 1000) / speed);
+  const pulled: { unplug: (path: string, backAfterMs: number) => void } = { unplug: () => undefined };
+  const meterAt = (name: string, identification: string) => ({
+    path: portOf(name),
+    instrument: new SimulatedMeter(identification, (unit) => machine.measured(unit), {
+      unplug: unplugFrom(name),
+      lateMs: SIMULATED_LATE_MS,
+    }),
   });
   const { binding, unplug } = await plugIn([
     {
-      path: `${ports}/probe`,
+      path: portOf('probe'),
       instrument: new SimulatedProbe({
         identification: 'Millrace,LP-6,SIM0001,1.0',
         sensorCount: scenario.panel.lamps.length,
         source: () =>
           lampSamples(machine.plan(), scenario.panel, { sampleRateHz: rig.sampleRateHz, scaleMax: rig.scaleMax, seed: scenario.seed }),
-        speed: scenario.speed,
+        speed,
         clockStartUs: PROBE_CLOCK_START_US,
         trouble: scenario.probeTrouble && { ...scenario.probeTrouble, random: seededRandom(scenario.seed) },
+        faults: scenario.probeFaults,
+        unplug: unplugFrom('probe'),
       }),
     },
     meterAt('meter', 'Millrace,BM-4,SIM0003,1.0'),
@@ -108,12 +135,17 @@ export async function simulateScenario(scenario: Scenario): Promise<OpenRig> {
     meterAt('leakage', 'Millrace,LC-2,SIM0007,1.0'),
   ]);
   pulled.unplug = unplug;
-  return assembleRig(rig, {
-    binding,
-    hands: machine,
-    nowUs: () => performance.now() * 1000 * scenario.speed,
-    measureTimeoutMs: SIMULATED_MEASURE_TIMEOUT_MS,
-  });
+  return assembleRig(
+    rig,
+    {
+      binding,
+      hands: machine,
+      nowUs: () => performance.now() * 1000 * speed,
+      measureTimeoutMs: SIMULATED_MEASURE_TIMEOUT_MS,
+      tryEveryMs: Math.max(LEAST_TRY_EVERY_MS, USUAL_TRY_EVERY_MS / speed),
+    },
+    patience,
+  );
 }
 
 /** The machine on the bench and the technician before it: what the instruments see, and what is answered. */

@@ -20,6 +20,9 @@ export class SimulatedScpi implements SimulatedInstrument {
   readonly #identification: string;
   readonly #commands: readonly ScpiCommand[];
   #errors: string[] = [];
+  /** Lines that came while it was busy with an answer; undefined while it is not. */
+  #waitingLines: string[] | undefined;
+  #busy: NodeJS.Timeout | undefined;
   #send: ((text: string) => void) | undefined;
 
   constructor(identification: string, commands: readonly ScpiCommand[]) {
@@ -37,10 +40,27 @@ export class SimulatedScpi implements SimulatedInstrument {
   }
 
   disconnect(): void {
+    clearTimeout(this.#busy);
+    this.#waitingLines = undefined;
     this.#send = undefined;
   }
 
+  /** The answer comes as it is, after so long; an instrument answers in order, so what is asked meanwhile waits. */
+  protected answerLater(text: string, milliseconds: number): undefined {
+    this.#waitingLines ??= [];
+    this.#busy = setTimeout(() => {
+      const lines = this.#waitingLines ?? [];
+      this.#waitingLines = undefined;
+      this.transmit(text);
+      for (const line of lines) this.receive(line);
+    }, milliseconds);
+  }
+
   receive(line: string): void {
+    if (this.#waitingLines !== undefined) {
+      this.#waitingLines.push(line);
+      return;
+    }
     const answers = line
       .split(';')
       .map((message) => message.trim())

@@ -23,11 +23,7 @@ afterEach(async () => {
 async function meterThat(measures: Measured[]) {
   let pull = (): void => undefined;
   const { transport, unplug } = await opened(
-    new SimulatedMeter(
-      'Millrace,BM-4,0,1.0',
-      () => measures.shift() ?? 'overload',
-      () => pull(),
-    ),
+    new SimulatedMeter('Millrace,BM-4,0,1.0', () => measures.shift() ?? 'overload', { unplug: () => pull() }),
   );
   pull = unplug;
   open.push(transport);

@@ -63,13 +63,7 @@ async function hang(instrument: SimulatedInstrument): Promise<void> {
 
 test('When a meter hangs on a true port, then it is asked and read through the true driver', async () => {
   const measures: Measured[] = Array.from({ length: 50 }, (_unused, index) => index / 10);
-  await hang(
-    new SimulatedMeter(
-      'Millrace,BM-4,0,1.0',
-      () => measures.shift() ?? 'overload',
-      () => undefined,
-    ),
-  );
+  await hang(new SimulatedMeter('Millrace,BM-4,0,1.0', () => measures.shift() ?? 'overload', { unplug: () => undefined }));
   const meter = await openMeter(await port(host, 'M-03'));
   expect(meter.identification).toBe('Millrace,BM-4,0,1.0');
   for (let index = 0; index < 50; index += 1) expect((await meter.measure('resistance')).value).toBe(index / 10);
@@ -96,13 +90,7 @@ test('When a probe hangs on a true port, then no sample is lost at twenty times 
 });
 
 test('When the port vanishes while an answer is awaited, then it is noticed at once', async () => {
-  await hang(
-    new SimulatedMeter(
-      'Millrace,BM-4,0,1.0',
-      () => 'timeout',
-      () => undefined,
-    ),
-  );
+  await hang(new SimulatedMeter('Millrace,BM-4,0,1.0', () => 'timeout', { unplug: () => undefined }));
   const meter = await openMeter(await port(host, 'M-03'), { measureTimeoutMs: 20_000 });
   const measuring = meter.measure('resistance');
   const outcome = expect(measuring).rejects.toBeInstanceOf(DisconnectedError);
