@@ -8,7 +8,7 @@ import type { RegisterRoute } from '../../route.js';
 import { recordRun } from './runs-service.js';
 
 export function registerRunRoutes(route: RegisterRoute): void {
-  route('recordRun', ({ params, body, person, trx, now }) => recordRun(trx, params.number, body, person, now));
+  route('recordRun', ({ params, body, person, bench, trx, now }) => recordRun(trx, params.number, body, { person, bench, now }));
 
   route('getRun', async ({ params, trx }) => {
     const run = await findRun(trx, params.id);

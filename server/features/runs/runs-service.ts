@@ -6,11 +6,12 @@ import type { PersonRef } from '../../../shared/history/events.js';
 import { runGateBreach } from '../../../shared/readiness/run-gates.js';
 import { checkScript } from '../../../shared/script/check-script.js';
 import { readScript } from '../../../shared/script/read-script.js';
-import { holdsFile, type RunLog } from '../../../shared/script/run-log.js';
+import { holdsFile, peopleOf, type RunLog } from '../../../shared/script/run-log.js';
 import type { Script } from '../../../shared/script/schema.js';
 import type { Sheet } from '../../../shared/sheet/schema.js';
 import type { Verdict } from '../../../shared/verdict.js';
 import { unitNumberText } from '../../../shared/unit-number.js';
+import type { BenchRef } from '../../auth/bench-store.js';
 import type { Db } from '../../db.js';
 import { ConflictError, GateError, InvalidError } from '../../errors.js';
 import { atPointer } from '../../history/at-pointer.js';
@@ -30,6 +31,7 @@ import {
   type UnitHistory,
 } from '../../history/unit-history.js';
 import { refuseWhatIsNoText } from '../../request-faults.js';
+import { withPeopleOfTheShop } from './people-of-log.js';
 import { logFaults } from './log-against-script.js';
 
 /** Every time in the log, with a Z at its end; one that no clock can say is refused where it stands. */
@@ -89,10 +91,9 @@ export async function recordRun(
   db: Db,
   unitNumber: number,
   request: RunLog,
-  person: User,
-  now: Date,
+  { person, bench, now }: { person: User; bench: BenchRef | undefined; now: Date },
 ): Promise<{ id: string; verdict: Verdict }> {
-  const told = withTimesInUtc(request, now);
+  const told = await withPeopleOfTheShop(db, withTimesInUtc(request, now), person, bench);
   const repairs = told.steps.flatMap((step) => (step.kind === 'repair' ? [step.repair] : []));
   const history = await openUnitHistory(db, unitNumber, donorsOf(repairs));
   const { unit } = history;
@@ -111,12 +112,13 @@ export async function recordRun(
   const steps = settled.log.steps.map((step) => (holdsFile(step) ? { ...step, file: '' } : step));
   const stored = await insertRun(db, { unitId: unit.id, by, log: { ...settled.log, steps }, verdict: settled.verdict, recordedAt: now });
   if (!stored) throw new ConflictError('A run with this id is stored already.', 'Send the run again under the key it was first sent with.');
-  await storeCaptures(db, history, settled, by, now);
+  const { doer } = peopleOf(settled.log, by);
+  await storeCaptures(db, history, settled, doer, now);
   for (const [index, step] of settled.log.steps.entries()) {
     if (step.kind !== 'repair') continue;
     await takePartFrom(db, history, step.repair, {
       at: step.endedAt,
-      by,
+      by: doer(step.by),
       simulated: settled.log.rig.simulated,
       now,
       pointer: `/steps/${String(index)}/repair/partSource/fromUnit`,
@@ -126,9 +128,17 @@ export async function recordRun(
   return { id: told.id, verdict: settled.verdict };
 }
 
-async function storeCaptures(db: Db, { unit }: UnitHistory, { log, captures }: SettledRun, by: PersonRef, now: Date): Promise<void> {
+async function storeCaptures(
+  db: Db,
+  { unit }: UnitHistory,
+  { log, captures }: SettledRun,
+  doer: (by: string | undefined) => PersonRef,
+  now: Date,
+): Promise<void> {
   for (const { id, file, body } of captures) {
-    const at = log.steps.find((step) => holdsFile(step) && step.captureId === id)?.endedAt ?? log.endedAt;
+    const step = log.steps.find((one) => holdsFile(one) && one.captureId === id);
+    const at = step?.endedAt ?? log.endedAt;
+    const by = doer(step?.by);
     const simulated = log.rig.simulated || body.source === 'simulated';
     const stored = await insertCapture(db, { id, unitId: unit.id, runId: log.id, by, at, simulated, body, file, recordedAt: now });
     if (!stored) throw new ConflictError(`The capture ${id} of this run is stored already.`, 'Give each capture an id of its own.');
