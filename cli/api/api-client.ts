@@ -23,6 +23,8 @@ export interface ApiRequest<N extends RouteName> {
   body?: RequestBody<N>;
   /** Sent twice with the same key, it is stored once. */
   idempotencyKey?: string;
+  /** How long this call may take, where it is less than usual. */
+  timeoutMs?: number;
 }
 
 export interface Api {
@@ -62,7 +64,7 @@ export function createApi({ server, token, bench, signal, fetch: send = fetch }:
         ...(request.body === undefined ? {} : { body: JSON.stringify(request.body) }),
         signal: AbortSignal.any([
           ...(signal ? [signal] : []),
-          AbortSignal.timeout(route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS),
+          AbortSignal.timeout(request.timeoutMs ?? (route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS)),
         ]),
       });
       if (response.status >= 400) throw problemOf(response, server, bench?.remedy);

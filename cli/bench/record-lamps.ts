@@ -2,6 +2,7 @@ import type { CaptureHeader } from '../../shared/lamps/capture.js';
 import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Context } from '../context.js';
 import { CaptureFile } from '../journal/capture-file.js';
+import { liveOf } from '../live/live-of.js';
 import type { LampSource } from './lamp-source.js';
 import { LampWindow } from './lamp-window.js';
 
@@ -66,6 +67,7 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
     ...source.header,
   };
   const file = new CaptureFile(context.home, parts.captureId, header);
+  const live = liveOf(context).captureBegins({ captureId: parts.captureId, header, sheet, seconds });
   const window = new LampWindow(header, parts.windowSeconds);
   const stop = new AbortController();
   const limitUs = seconds === undefined ? Infinity : Math.round(seconds * 1_000_000);
@@ -87,6 +89,7 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
       const atUs = timeUs();
       file.mark(atUs, 'next');
       window.mark(atUs, 'next');
+      live.marked(atUs);
       watcher.marked(window);
     },
     stop: end,
@@ -108,17 +111,21 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
         const atUs = marks.shift() ?? 0;
         file.mark(atUs, 'next');
         window.mark(atUs, 'next');
+        live.marked(atUs);
         watcher.marked(window);
       }
       if (event.kind === 'gap') file.gap(event.lost, event.atUs);
       else file.sample(event.tUs, event.levels);
       window.push(event);
+      live.seen(event);
       if (watcher.seen(window)) end('done');
     }
     file.end(full ? limitUs : Math.min(limitUs, Math.max(timeUs(), window.lastUs)));
+    live.ended(ended);
     return { file, ended };
   } catch (error) {
     file.keep();
+    live.ended('failed');
     throw error;
   } finally {
     clearInterval(clock);

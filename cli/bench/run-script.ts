@@ -1,7 +1,8 @@
 import { settleRun } from '../../shared/history/settle-run.js';
 import type { GateState } from '../../shared/readiness/gates.js';
-import { stepGate } from '../../shared/readiness/run-gates.js';
+import { cautionBefore, stepGate } from '../../shared/readiness/run-gates.js';
 import { energisingOf } from '../../shared/script/energised.js';
+import type { PersonRef } from '../../shared/history/events.js';
 import type { StepResult } from '../../shared/script/run-log.js';
 import type { Script, Step } from '../../shared/script/schema.js';
 import type { Context } from '../context.js';
@@ -9,7 +10,9 @@ import { StoppedError } from '../errors.js';
 import { EXIT } from '../exit-codes.js';
 import { InstrumentError } from '../instruments/instrument-error.js';
 import type { OpenRig } from '../instruments/rig.js';
-import type { RunJournal } from '../journal/run-journal.js';
+import { doneIn } from '../journal/open-runs.js';
+import type { RunJournal, RunStop } from '../journal/run-journal.js';
+import { liveOf } from '../live/live-of.js';
 import { wordsOf } from '../report-error.js';
 import { stepLines } from '../render/step-lines.js';
 import { skipped, type Bench } from './bench.js';
@@ -17,8 +20,13 @@ import { checkSensors } from './sensor-check.js';
 import { runStep } from './steps/step-runners.js';
 import type { Technician } from './technician.js';
 import type { UnitOnBench } from './unit-on-bench.js';
+import { withRun } from './with-run.js';
 
 export interface RunParts {
+  /** What the run recorded before it was broken off, capture files included. */
+  before?: readonly StepResult[];
+  /** Who does the steps now; undefined: who began it. */
+  person?: PersonRef;
   context: Context;
   unit: UnitOnBench;
   script: Script;
@@ -32,18 +40,41 @@ export interface RunEnd {
   results: StepResult[];
   /** Stopped before its last step. */
   interrupted: boolean;
+  /** How it was left, where it was stopped. */
+  left?: RunStop['how'];
   /** What beside the verdict decides the exit code: an instrument that failed, Ctrl-C. */
   exitCode: number;
 }
 
+const STOPPED = { interrupted: true, left: 'stopped', exitCode: EXIT.stopped } as const;
+const PARKED = { interrupted: true, left: 'parked', exitCode: EXIT.good } as const;
+const INSTRUMENT_FAILED = { interrupted: true, left: 'instrument failed', exitCode: EXIT.instrument } as const;
+
 /**
- * Goes through the steps of a script. Each step's result is in the journal before the next begins; before a step that energises the
- * machine the safety gates are asked. Ends by itself, by a `no`, by `q`, by Ctrl-C, or by an instrument that fails; the caller closes the journal.
+ * Goes through the steps of a script, from the first that is not done. Each step's result is in the journal before the next begins; before a step that energises the
+ * machine the safety gates are asked, and after an interruption its caution once more. Ends by itself, by a `no`, by `q`, by Ctrl-C, or by an instrument that fails; the caller closes the journal.
  */
 export async function runScript(parts: RunParts): Promise<RunEnd> {
+  const { unit, script, rig, journal, before = [], person } = parts;
+  const live = liveOf(parts.context);
+  live.runBegins({ id: journal.header.id, unit, script, rig, before, person });
+  try {
+    const end = await goThrough(parts);
+    await live.runEnds(end.results, end);
+    return end;
+  } catch (error) {
+    await live.ends('failed');
+    throw error;
+  }
+}
+
+async function goThrough(parts: RunParts): Promise<RunEnd> {
   const { context, unit, script, rig, technician, journal } = parts;
   const { stderr } = context;
-  const results: StepResult[] = [];
+  const results: StepResult[] = [...(parts.before ?? [])];
+  const done = doneIn({ results });
+  /** Cautions that were answered with yes since somebody last came to this run. */
+  const confirmed = new Set<string>();
   const style = await stderr.style();
   let sensorsChecked = rig.simulated;
   const bench: Bench = {
@@ -61,20 +92,25 @@ export async function runScript(parts: RunParts): Promise<RunEnd> {
       sensorsChecked = true;
     },
   };
-  const record = (result: StepResult): void => {
+  const record = (told: StepResult): void => {
+    const by = parts.person?.id;
+    const result = by === undefined || by === journal.header.by.id ? told : { ...told, by };
     journal.record(result);
     results.push(result);
+    liveOf(context).stepEnded(result);
+    if (result.kind === 'caution' && result.answer === 'yes') confirmed.add(result.stepId);
     // What a person has just answered stands on the screen already, with its time.
     const onScreen = technician.attended && (result.kind === 'caution' || result.kind === 'instruct');
     if (!onScreen) bench.say(...stepLines(results.length, result, style));
   };
   const gate = (step: Step): GateState =>
-    stepGate(step, unit.sheet, { ...unit.facts, events: [...unit.facts.events, ...eventsSoFar(parts, results)] }, rig.simulated);
+    stepGate(step, unit.sheet, { ...unit.facts, events: withRun(unit.facts.events, eventsSoFar(parts, results)) }, rig.simulated);
 
-  let skipRest: string | undefined;
+  let skipRest = whySkipped(script, results);
   let shut: GateState | undefined;
   for (const [index, step] of script.steps.entries()) {
-    if (context.interruption.interrupted) return { results, interrupted: true, exitCode: EXIT.stopped };
+    if (context.interruption.interrupted) return { results, ...STOPPED };
+    if (done.has(step.id)) continue;
     if (skipRest !== undefined) {
       record(skipped(step, bench, skipRest));
       continue;
@@ -92,20 +128,32 @@ export async function runScript(parts: RunParts): Promise<RunEnd> {
       continue;
     }
 
-    const outcome = await tryStep(step, index, bench, parts);
-    if (outcome === 'stopped') return { results, interrupted: true, exitCode: EXIT.stopped };
-    if (outcome === 'left') return { results, interrupted: true, exitCode: EXIT.good };
-    if (outcome === 'instrument') return { results, interrupted: true, exitCode: EXIT.instrument };
-    record(outcome.result);
-    if (outcome.rest === 'stop')
-      return {
-        results,
-        interrupted: index < script.steps.length - 1,
-        exitCode: context.interruption.interrupted ? EXIT.stopped : EXIT.good,
-      };
-    if (outcome.rest === 'skip') skipRest = outcome.why ?? 'the run ended before it';
+    const caution = energisingOf(step, unit.sheet) === 'dead' ? undefined : cautionBefore(script, index);
+    const askedAgain = caution && done.has(caution.id) && !confirmed.has(caution.id) ? [caution] : [];
+    for (const one of [...askedAgain, step]) {
+      const outcome = await tryStep(one, script.steps.indexOf(one), bench, parts);
+      if (outcome === 'stopped') return { results, ...STOPPED };
+      if (outcome === 'left') return { results, ...PARKED };
+      if (outcome === 'instrument') return { results, ...INSTRUMENT_FAILED };
+      record(outcome.result);
+      if (outcome.rest === 'stop') return { results, ...(context.interruption.interrupted ? STOPPED : PARKED) };
+      if (outcome.rest !== 'skip') continue;
+      skipRest = outcome.why ?? 'the run ended before it';
+      if (one !== step) record(skipped(step, bench, skipRest));
+      break;
+    }
   }
   return { results, interrupted: false, exitCode: EXIT.good };
+}
+
+/** Why nothing more is done in a run that had come to its safe state when it was broken off. */
+function whySkipped(script: Script, results: readonly StepResult[]): string | undefined {
+  const last = results.findLast((result) => result.kind !== 'skipped' && result.kind !== 'cut');
+  const step = last && script.steps.find(({ id }) => id === last.stepId);
+  if (last?.kind === 'caution' && last.answer === 'no') return `the caution '${last.title}' was answered with no`;
+  if (last?.kind === 'instruct' && last.answer === 'not done' && step?.kind === 'instruct' && step.discharge)
+    return 'the machine was not discharged';
+  return undefined;
 }
 
 /** The energised steps that a step stands for: itself, or for a caution those up to the next caution. */
@@ -121,7 +169,7 @@ const isDeadTest = (step: Step, sheet: UnitOnBench['sheet']): boolean =>
 
 /** The events of the run up to now, as the server will see them. */
 function eventsSoFar({ context, unit, script, journal }: RunParts, results: readonly StepResult[]) {
-  const { id, startedAt, rig, script: about } = journal.header;
+  const { id, startedAt, rig, script: about, by } = journal.header;
   const log = {
     id,
     script: about,
@@ -129,10 +177,11 @@ function eventsSoFar({ context, unit, script, journal }: RunParts, results: read
     startedAt,
     endedAt: context.now().toISOString(),
     interrupted: true,
+    // Who did which step decides no gate.
     people: [],
-    steps: [...results],
+    steps: results.map(({ by: _by, ...result }) => result as StepResult),
   };
-  return settleRun(log, script, unit.sheet, unit.by, () => context.newId()).events.filter((event) => event.kind !== 'run ended');
+  return settleRun(log, script, unit.sheet, by, () => context.newId()).events.filter((event) => event.kind !== 'run ended');
 }
 
 /** Runs one step; after an instrument's failure a person may try it again. */
@@ -144,6 +193,7 @@ async function tryStep(
 ): Promise<Awaited<ReturnType<typeof runStep>> | 'stopped' | 'left' | 'instrument'> {
   for (;;) {
     const start = { startedAt: context.now().toISOString(), captureId: context.newId() };
+    liveOf(context).stepBegins(step.id);
     const records = step.kind === 'capture' || step.kind === 'watch';
     journal.begin({
       stepId: step.id,

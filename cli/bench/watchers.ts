@@ -2,6 +2,7 @@ import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Context } from '../context.js';
 import { readKeys } from '../keyboard.js';
 import { ScreenBlock } from '../render/screen-block.js';
+import { liveOf } from '../live/live-of.js';
 import type { LampWindow } from './lamp-window.js';
 import { liveLines, NOTHING_YET, progressLine, understand, type Understanding } from './live-view.js';
 import type { Controls, Watcher } from './record-lamps.js';
@@ -46,6 +47,7 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
     const startedMs = performance.now();
     if (startedMs >= understandAgainMs) {
       understood = understand(window, sheet);
+      liveOf(context).understood(understood, sheet, window.header.scale.max);
       const tookMs = performance.now() - startedMs;
       understandAgainMs = performance.now() + Math.max(UNDERSTAND_EVERY_MS, REST_FACTOR * tookMs);
     }
@@ -105,6 +107,7 @@ function onKeyOf(controls: Controls, waits: boolean): (key: string) => void {
 
 function quietWatcher(parts: WatchingParts, controls: Controls): Watcher {
   const { context, sheet } = parts;
+  const live = liveOf(context);
   const over = lookNowAndThen(parts.over);
   const everyS = parts.over ? WAITING_EVERY_S : PROGRESS_EVERY_S;
   let nextS = everyS;
@@ -112,6 +115,7 @@ function quietWatcher(parts: WatchingParts, controls: Controls): Watcher {
   return {
     seen(window) {
       const elapsedS = window.lastUs / 1_000_000;
+      if (!parts.over) live.understandNowAndThen(() => understand(window, sheet), sheet, window.header.scale.max);
       if (elapsedS >= nextS) {
         nextS += everyS;
         context.stderr.write(`${progressLine(window, parts.over ? undefined : understand(window, sheet), elapsedS, controls.seconds)}\n`);

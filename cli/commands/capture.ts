@@ -17,6 +17,7 @@ import { notWritable } from '../home.js';
 import type { OpenRig } from '../instruments/rig.js';
 import { captureFileOf, captureText } from '../journal/capture-file.js';
 import { keepAndSend } from '../journal/deliver.js';
+import { liveOf } from '../live/live-of.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { answerLines } from '../render/answer-lines.js';
 import { printJson } from '../render/json.js';
@@ -81,7 +82,10 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
     const technician = await mayBegin({ context, unit, rig, step, caution: CAUTION });
     if (!technician) return undefined;
     const id = context.newId();
+    const live = liveOf(context);
     return await context.interruption.hold(async () => {
+      live.begins({ id, what: 'capture', unit, title: step.title, steps: [step], rig });
+      live.stepBegins(step.id);
       const source = await sourceOf(rig, context, unit, options);
       const { ended } = await recordLamps({
         context,
@@ -97,9 +101,12 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
         );
         throw error;
       });
+      await live.ends(ended === 'interrupted' ? 'stopped' : 'ended');
       return { id, file: captureText(context.home, id), fromFile: false, interrupted: ended === 'interrupted' };
     });
   } finally {
+    // Where it has not ended by itself.
+    await liveOf(context).ends('failed');
     await rig?.close();
   }
 }

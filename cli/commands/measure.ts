@@ -17,6 +17,8 @@ import { EXIT, firstExitCode } from '../exit-codes.js';
 import { InstrumentError } from '../instruments/instrument-error.js';
 import type { OpenRig } from '../instruments/rig.js';
 import { keepAndSend, type Delivery } from '../journal/deliver.js';
+import { liveOf } from '../live/live-of.js';
+import { readingTold } from '../live/live-words.js';
 import { wordsOf } from '../report-error.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
@@ -66,11 +68,18 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
     const technician = await mayBegin({ context, unit, rig, step, caution: check.cautions.join(' ') || check.title, alreadyDone: byHand });
     if (!technician) return EXIT.notGood;
     const { value = '', accuracy = '', resolution = '', meter } = options;
+    const live = liveOf(context);
+    if (rig) {
+      live.begins({ id: context.newId(), what: 'measure', unit, title: check.title, steps: [step], rig });
+      live.stepBegins(step.id);
+    }
     const reading = rig
       ? await readingOff(rig, technician, check, unit, context)
       : typedReading(check, unit.sheet, { value, accuracy, resolution, meter });
     if (reading === undefined) return EXIT.notGood;
     await rig?.close();
+    live.told(step.id, readingTold(reading), reading.judgement.verdict);
+    await live.ends('ended', reading.judgement.verdict);
     const id = context.newId();
     const at = context.now().toISOString();
     const delivery = await keepAndSend(context, {
@@ -84,6 +93,8 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
     }
     return await say(options, context, { check, verdict: reading.judgement.verdict, delivery, reading });
   } finally {
+    // Where it has not ended by itself.
+    await liveOf(context).ends('failed');
     await rig?.close();
   }
 }

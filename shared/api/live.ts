@@ -30,7 +30,7 @@ export type LiveLamp = z.infer<typeof liveLampSchema>;
 
 /** One message. Times `at` are the bench's own clock; milliseconds count from the beginning of the capture. */
 export const liveMessageSchema = z.discriminatedUnion('kind', [
-  /** Work began, or goes on after an interruption; `done`: how many of its steps were done before. */
+  /** Work began, or goes on after an interruption: then the steps that were done before are told again. */
   z.strictObject({
     kind: z.literal('began'),
     at,
@@ -50,8 +50,8 @@ export const liveMessageSchema = z.discriminatedUnion('kind', [
     lamps: z.array(liveLampSchema).max(LAMPS_AT_MOST),
     /** How long it is to be; absent: until it is stopped. */
     seconds: z.number().positive().max(100_000).optional(),
-    /** A watch waits for something and asks for no codes. */
-    waitsFor: text.optional(),
+    /** Tapped in: a level holds until the next, and no decoder knows better. */
+    byKeys: z.boolean(),
   }),
   /** Levels in percent of full scale, thinned to a row each twentieth of a second: `[ms, level, level, …]`, one level a lamp. */
   z.strictObject({
