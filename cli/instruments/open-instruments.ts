@@ -4,7 +4,6 @@ import {
   InstrumentError,
   InstrumentTimeoutError,
   NoLinesError,
-  PortMissingError,
   WrongInstrumentError,
 } from './instrument-error.js';
 import { isSameInstrument } from './identity.js';
@@ -29,6 +28,8 @@ export class OpenInstruments {
   readonly #open = new Map<string, Promise<Instrument>>();
   /** On which port each instrument hangs: as the rig file says, until it is found elsewhere. */
   readonly #ports: Map<string, string>;
+  /** What has answered on its port before is only looked for elsewhere when another answers there. */
+  readonly #met = new Set<string>();
 
   constructor(parts: OpenInstrumentsParts) {
     this.#parts = parts;
@@ -68,6 +69,7 @@ export class OpenInstruments {
     }
     // Only what says who it is can be recognised elsewhere.
     if (instrument.identification === undefined) throw failure;
+    if (this.#met.has(instrument.id) && !(failure instanceof WrongInstrumentError)) throw failure;
     for (const other of this.#parts.instruments) {
       const otherPort = this.#portOf(other);
       if (other.id === instrument.id || this.#open.has(other.id) || otherPort === port) continue;
@@ -93,6 +95,7 @@ export class OpenInstruments {
     try {
       const opened = await greet(transport);
       this.#check(instrument, opened.identification, transport);
+      this.#met.add(instrument.id);
       transport.onClose(() => this.#open.delete(instrument.id));
       return opened;
     } catch (error) {
@@ -114,7 +117,5 @@ export class OpenInstruments {
 
 /** What an instrument looks like that hangs on another one's port: at another speed it is silent, or makes no sense. */
 function isMaybeSomebodyElse(error: unknown): error is InstrumentError {
-  return [WrongInstrumentError, InstrumentTimeoutError, GarbageError, HalfAnswerError, NoLinesError, PortMissingError].some(
-    (kind) => error instanceof kind,
-  );
+  return [WrongInstrumentError, InstrumentTimeoutError, GarbageError, HalfAnswerError, NoLinesError].some((kind) => error instanceof kind);
 }

@@ -1,3 +1,4 @@
+import { HERON_CABLES } from './heron-cables.js';
 import { HERON_FLAKY } from './heron-flaky.js';
 import { HERON_GOOD } from './heron-good.js';
 import { HERON_MEND } from './heron-mend.js';
@@ -7,4 +8,5 @@ export const BUILT_IN_SCENARIOS: Readonly<Record<string, string>> = {
   'heron-mend': HERON_MEND,
   'heron-good': HERON_GOOD,
   'heron-flaky': HERON_FLAKY,
+  'heron-cables': HERON_CABLES,
 };
