@@ -5,10 +5,14 @@
 export class Interruption {
   readonly #controller = new AbortController();
   readonly #leaveNow: () => void;
+  /** Of a command that the menu runs: even with nothing to hold on to, the first Ctrl-C only ends the command. */
+  readonly #firstOnlyEnds: boolean;
   #holders = 0;
+  #lentTo: Interruption | undefined;
 
-  constructor(leaveNow: () => void) {
+  constructor(leaveNow: () => void, { firstOnlyEnds = false }: { firstOnlyEnds?: boolean } = {}) {
     this.#leaveNow = leaveNow;
+    this.#firstOnlyEnds = firstOnlyEnds;
   }
 
   /** Aborts at the first Ctrl-C. */
@@ -22,9 +26,29 @@ export class Interruption {
 
   /** Ctrl-C was pressed, or the terminal went away. */
   interrupt(): void {
+    if (this.#lentTo) {
+      this.#lentTo.interrupt();
+      return;
+    }
     const first = !this.signal.aborted;
     this.#controller.abort();
-    if (!first || this.#holders === 0) this.#leaveNow();
+    if (!first || (this.#holders === 0 && !this.#firstOnlyEnds)) this.#leaveNow();
+  }
+
+  /** The terminal went away, or somebody ends the process: whatever runs comes to its safe end, and nothing begins after it. */
+  end(): void {
+    this.interrupt();
+    this.#controller.abort();
+  }
+
+  /** While `work` runs, Ctrl-C is that of the command it is. */
+  async lend<T>(to: Interruption, work: () => Promise<T>): Promise<T> {
+    this.#lentTo = to;
+    try {
+      return await work();
+    } finally {
+      this.#lentTo = undefined;
+    }
   }
 
   /** While `work` runs, the first Ctrl-C is the work's own to deal with. */

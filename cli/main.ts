@@ -10,8 +10,8 @@ const context = createContext({ env, stdin, stdout, stderr, leaveNow });
 
 process.on('SIGINT', () => context.interruption.interrupt());
 // The terminal was closed, or somebody ends the process: the same safe end.
-process.on('SIGTERM', () => context.interruption.interrupt());
-process.on('SIGHUP', () => context.interruption.interrupt());
+process.on('SIGTERM', () => context.interruption.end());
+process.on('SIGHUP', () => context.interruption.end());
 // Whoever read our output has enough: `refettle unit list | head`.
 for (const stream of [stdout, stderr]) {
   stream.on('error', (error: NodeJS.ErrnoException) => {

@@ -28,6 +28,12 @@ export interface ChoiceQuestion extends Question {
   choices: readonly { value: string; name: string }[];
 }
 
+export interface PickQuestion extends Question {
+  choices: readonly { value: string; name: string }[];
+  /** Typing narrows the list down, and what is typed may be an answer of its own; otherwise each choice has a number. */
+  search?: ((typed: string) => { value: string; name: string } | undefined) | undefined;
+}
+
 /** Questions, drawn on standard error. Each refuses with a NobodyToAskError where standard input is no terminal. */
 export interface Prompt {
   /** One key of several, with no default: Enter alone asks again. */
@@ -35,6 +41,8 @@ export interface Prompt {
   text(question: TextQuestion): Promise<string>;
   secret(question: Question): Promise<string>;
   choice(question: ChoiceQuestion): Promise<string>;
+  /** One of a list; undefined: Escape, back to where one came from. */
+  pick(question: PickQuestion): Promise<string | undefined>;
 }
 
 export interface PromptParts {
@@ -46,22 +54,72 @@ export interface PromptParts {
   now: () => Date;
 }
 
+/** Rows of a page of choices: what is left of the screen beside the question, its help and the lines above. */
+const ROUND_THE_LIST = 8;
+const MIN_PAGE = 5;
+
 export function promptOn({ stdin, output, rawOutput, interactive, interruption, now }: PromptParts): Prompt {
   const needSomebody = ({ message, instead }: Question): void => {
     if (!interactive) throw new NobodyToAskError(message, instead);
   };
-  const ask = async (question: Question, drawn: Record<string, unknown> & { type: 'input' | 'password' | 'select' }): Promise<string> => {
+  const ask = async (
+    question: Question,
+    drawn: Record<string, unknown> & { type: 'input' | 'password' | 'select' | 'search' },
+    signal?: AbortSignal,
+  ): Promise<string> => {
     needSomebody(question);
     if (interruption.interrupted) throw new StoppedError();
     const { default: inquirer } = await import('inquirer');
     try {
-      const prompt = inquirer.createPromptModule({ input: stdin, output: rawOutput as unknown as NodeJS.WritableStream });
+      const streams = { input: stdin, output: rawOutput as unknown as NodeJS.WritableStream };
+      const prompt = inquirer.createPromptModule({ ...streams, ...(signal ? { signal } : {}) });
       const { answer } = (await prompt([{ ...drawn, name: 'answer', message: question.message }] as never)) as { answer: string };
       return answer;
     } catch (error) {
       if (!(error instanceof Error) || error.name !== 'ExitPromptError') throw error;
       interruption.interrupt();
       throw new StoppedError();
+    }
+  };
+  const pickFrom = async (question: PickQuestion): Promise<string | undefined> => {
+    const { choices, search } = question;
+    const { ink } = await output.style();
+    const escape = new AbortController();
+    const onKeypress = (_text: string | undefined, key: { name?: string } | undefined): void => {
+      if (key?.name === 'escape') escape.abort();
+    };
+    const theme = {
+      prefix: '',
+      indexMode: 'number',
+      style: {
+        message: (text: string) => ink.bold(text),
+        highlight: (text: string) => ink.bold(text),
+        answer: (text: string) => text.trim(),
+        keysHelpTip: () =>
+          ink.dim(search ? 'type to find, up and down, enter, esc goes back' : 'number or up and down, enter, esc goes back'),
+      },
+    };
+    const list = { pageSize: Math.max(MIN_PAGE, output.rows - ROUND_THE_LIST), loop: false, theme };
+    const found = (typed: string | undefined): PickQuestion['choices'] => {
+      const text = (typed ?? '').trim();
+      const fitting = choices.filter(({ name }) => name.toLowerCase().includes(text.toLowerCase()));
+      const own = fitting.length === 0 && text !== '' ? search?.(text) : undefined;
+      return own ? [own] : fitting;
+    };
+    stdin.on('keypress', onKeypress);
+    try {
+      return await ask(
+        question,
+        search
+          ? { ...list, type: 'search', source: found }
+          : { ...list, type: 'select', choices: choices.map((choice) => ({ ...choice })) },
+        escape.signal,
+      );
+    } catch (error) {
+      if (escape.signal.aborted && error instanceof Error && error.name === 'AbortPromptError') return undefined;
+      throw error;
+    } finally {
+      stdin.off('keypress', onKeypress);
     }
   };
   return {
@@ -103,6 +161,7 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
       return (await ask(question, { type: 'input', validate, ...initial })).trim();
     },
     secret: (question) => ask(question, { type: 'password' }),
+    pick: (question) => pickFrom(question),
     choice: (question) => ask(question, { type: 'select', choices: question.choices.map((choice) => ({ ...choice })) }),
   };
 }

@@ -50,15 +50,16 @@ const KINDS: Readonly<Record<string, (home: Home, place: Place) => PossibleValue
 /** The values that this bench knows of, from its own disk: completion never waits for the network. */
 export function valuesOn(home: Home): Values {
   return (of, place) => {
-    const kind = of.parseArg === (unitNumber as unknown) ? 'unit' : nameOf(of);
-    return KINDS[kind]?.(home, place) ?? plain([]);
+    return KINDS[nameOf(of)]?.(home, place) ?? plain([]);
   };
 }
 
-/** `<script>`, `[run]`, `--rig <rig>`: the word between the brackets. `unit` is only one with a unit's number. */
+/** `<script>`, `[run]`, `--rig <rig>`: the word between the brackets. */
 function nameOf(of: Argument | Option): string {
-  const name = 'flags' in of ? (/[<[]([\w-]+)/.exec(of.flags)?.[1] ?? '') : of.name();
-  return name === 'unit' ? '' : name;
+  if (!('flags' in of)) return of.name();
+  const name = /[<[]([\w-]+)/.exec(of.flags)?.[1] ?? '';
+  // The unit of a measured value.
+  return name === 'unit' && of.parseArg !== (unitNumber as unknown) ? '' : name;
 }
 
 /** The ids that files of the journal are named by, the newest first: they begin with their time. */
