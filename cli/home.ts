@@ -36,7 +36,7 @@ export function writeWhole(file: string, text: string): void {
   try {
     const descriptor = openSync(beside, 'w', 0o600);
     try {
-      writeSync(descriptor, text);
+      writeAll(descriptor, text);
       fsyncSync(descriptor);
     } finally {
       closeSync(descriptor);
@@ -47,6 +47,12 @@ export function writeWhole(file: string, text: string): void {
     rmSync(beside, { force: true });
     throw notWritable(file, error);
   }
+}
+
+/** Writes all of it. A disk that is almost full takes a part of a text and says so only when asked for the rest. */
+export function writeAll(descriptor: number, text: string): void {
+  const bytes = Buffer.from(text);
+  for (let at = 0; at < bytes.length;) at += writeSync(descriptor, bytes, at);
 }
 
 /** Forces a folder's list of names to the disk, so that a new or renamed file is still there after a power cut. */
@@ -83,9 +89,10 @@ export function filesIn(folder: string): string[] {
 
 /** Nothing is said to be done that could not be written down: the work stops here. */
 export function notWritable(file: string, error: unknown): BadInputError {
-  const why = error instanceof Error ? error.message : String(error);
+  const full = (error as NodeJS.ErrnoException | null)?.code === 'ENOSPC';
+  const why = full ? 'the disk is full' : error instanceof Error ? error.message : String(error);
   return new BadInputError(
-    `nothing can be written down there, so the work stops here (${why}). Make room, or choose a folder you may write to (REFETTLE_HOME for what the bench keeps)`,
+    `nothing can be written down there, so the work stops here (${why}). What was said to be recorded before is safe. Make room, or choose a folder you may write to (REFETTLE_HOME for what the bench keeps)`,
     { file },
   );
 }

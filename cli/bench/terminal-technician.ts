@@ -3,7 +3,8 @@ import { parseAccuracy } from '../../shared/measure/parse-accuracy.js';
 import { parseQuantity } from '../../shared/measure/parse-quantity.js';
 import type { Verdict } from '../../shared/verdict.js';
 import type { Context } from '../context.js';
-import { UsageError } from '../errors.js';
+import type { KeyQuestion } from '../prompt.js';
+import { StoppedError, UsageError } from '../errors.js';
 import { readIfThere, writeWhole } from '../home.js';
 import { parseMoney } from '../money.js';
 import { parsePartSource } from '../part-source.js';
@@ -30,19 +31,26 @@ export function refusalOf(parse: () => unknown): string | undefined {
   }
 }
 
-/** A person at the terminal. Questions name what to do where nobody is there. */
-export function terminalTechnician(context: Context, currency: string): Technician {
+/** Parks the run at any question that is answered by a key. */
+const PARK = { key: 'k', word: 'park' } as const;
+
+/** A person at the terminal. Questions name what to do where nobody is there. `parks`: what is done can be left and gone on with later. */
+export function terminalTechnician(context: Context, currency: string, { parks = false } = {}): Technician {
   const { prompt, stderr } = context;
   const instead = 'run it at a terminal';
-  const yes = async (message: string): Promise<boolean> => (await prompt.key({ message, keys: YES_NO, instead })) === 'y';
+  const pressed = async (question: Omit<KeyQuestion, 'instead'>): Promise<string> => {
+    const key = await prompt.key({ ...question, keys: parks ? [...question.keys, PARK] : question.keys, instead });
+    if (parks && key === PARK.key) throw new StoppedError('Parked. What was recorded is kept.');
+    return key;
+  };
+  const yes = async (message: string): Promise<boolean> => (await pressed({ message, keys: YES_NO })) === 'y';
   return {
     attended: true,
     async confirms(_stepId, text) {
       stderr.write(`\n${cautionLines(text, await stderr.style()).join('\n')}\n`);
-      return (await prompt.key({
+      return (await pressed({
         message: `${INDENT}Done?`,
         keys: YES_NO,
-        instead,
         again: `${INDENT}A caution has no default: press y or n.`,
       })) === 'y'
         ? 'yes'
@@ -56,7 +64,7 @@ export function terminalTechnician(context: Context, currency: string): Technici
         { key: 'f', word: 'fail' },
         { key: 'i', word: 'inconclusive' },
       ];
-      const key = await prompt.key({ message: `${INDENT}Verdict?`, keys, instead });
+      const key = await pressed({ message: `${INDENT}Verdict?`, keys });
       const verdict = (keys.find((one) => one.key === key)?.word ?? 'inconclusive') as Verdict;
       if (verdict === 'pass') return { verdict };
       const note = await prompt.text({ message: 'What was seen', instead });

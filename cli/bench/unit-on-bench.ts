@@ -11,6 +11,7 @@ import { readIfThere, writeWhole } from '../home.js';
 import { parseJson, personOf, whoIsHere, type Me } from '../session.js';
 import { unitLabel, unitNumberText } from '../render/words.js';
 import { eventsOfWaiting } from './waiting-events.js';
+import { withRun } from './with-run.js';
 
 /** Everything a bench needs to know of a unit to work on it, network or not. */
 export interface UnitOnBench {
@@ -51,8 +52,8 @@ async function sheetOf(context: Context, family: string): Promise<{ value: Sheet
   return { value: value.sheet, offline };
 }
 
-/** The unit with its sheet and its history. Refuses (BadInputError) a unit without a control family, unless a sheet is handed in. */
-export async function unitOnBench(context: Context, number: number, sheetGiven?: Sheet): Promise<UnitOnBench> {
+/** The unit with its sheet and its history. Refuses (BadInputError) a unit without a control family, unless a sheet is handed in. `besidesRun`: an open run whose steps are not counted in, for it is gone on with. */
+export async function unitOnBench(context: Context, number: number, sheetGiven?: Sheet, besidesRun?: string): Promise<UnitOnBench> {
   const me = await whoIsHere(context);
   const page = await unitPage(context, number);
   const { unit } = page.value;
@@ -64,7 +65,7 @@ export async function unitOnBench(context: Context, number: number, sheetGiven?:
   const offline = me.offline || page.offline || sheet.offline;
   if (offline) context.stderr.say(`The server at ${context.server} can't be reached: working with what this bench knows from last time.`);
   const by = personOf(me.user);
-  const waiting = eventsOfWaiting(context, number, sheet.value);
+  const waiting = eventsOfWaiting(context, number, sheet.value, besidesRun);
   return { page: page.value, sheet: sheet.value, me, by, offline, facts: factsOf(page.value, sheet.value, me, waiting) };
 }
 
@@ -73,7 +74,7 @@ export function factsOf(page: UnitPage, sheet: Sheet, me: Me, waiting: readonly 
   return {
     unit: { number, protectionClass: plate.protectionClass, licensedOnly },
     sheet,
-    events: [...page.events, ...waiting],
+    events: withRun(page.events, waiting),
     shop: { demo: me.shop.demo, fourEyes: me.shop.fourEyes },
   };
 }

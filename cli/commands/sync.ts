@@ -3,7 +3,7 @@ import { UsageError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
 import { sendWaiting } from '../journal/deliver.js';
 import { putAway, waitingEntries, type OutboxEntry } from '../journal/outbox.js';
-import { recoverRuns } from '../journal/recover-runs.js';
+import { closeEnded } from '../journal/open-runs.js';
 import { printJson } from '../render/json.js';
 import { dayText, plural, timeText } from '../render/words.js';
 
@@ -15,7 +15,7 @@ export interface SyncOptions {
 
 /** Sends what waits on this bench, in order, or says what waits and who must act. */
 export async function runSync({ status, drop, json }: SyncOptions, context: Context): Promise<number> {
-  recoverRuns(context);
+  closeEnded(context);
   if (drop !== undefined) return giveUp(drop, context);
   const { entries, unreadable } = waitingEntries(context.home);
   for (const file of unreadable)

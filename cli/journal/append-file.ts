@@ -1,6 +1,6 @@
-import { closeSync, fsyncSync, openSync, writeSync } from 'node:fs';
+import { closeSync, fsyncSync, openSync } from 'node:fs';
 import { dirname } from 'node:path';
-import { makeFolder, notWritable, syncFolder } from '../home.js';
+import { makeFolder, notWritable, syncFolder, writeAll } from '../home.js';
 
 /** A file that only grows. What `sync` has returned from is on the disk, also after a power cut. */
 export class AppendFile {
@@ -8,12 +8,12 @@ export class AppendFile {
   readonly #descriptor: number;
   #open = true;
 
-  constructor(file: string) {
+  /** `goesOn`: the file is there already, and only this program adds to it. Otherwise one of that name is refused: an id is never used twice. */
+  constructor(file: string, { goesOn = false } = {}) {
     this.file = file;
     makeFolder(dirname(file));
     try {
-      // 'ax' would refuse a second run with the same id; an id is never used twice.
-      this.#descriptor = openSync(file, 'ax', 0o600);
+      this.#descriptor = openSync(file, goesOn ? 'a' : 'ax', 0o600);
       syncFolder(dirname(file));
     } catch (error) {
       throw notWritable(file, error);
@@ -22,7 +22,7 @@ export class AppendFile {
 
   append(text: string): void {
     try {
-      writeSync(this.#descriptor, text);
+      writeAll(this.#descriptor, text);
     } catch (error) {
       throw notWritable(this.file, error);
     }

@@ -9,24 +9,31 @@ import { unitPage, type UnitOnBench } from '../bench/unit-on-bench.js';
 import type { Context } from '../context.js';
 import { ServerError } from '../errors.js';
 import type { Delivery } from '../journal/deliver.js';
+import type { RunStop } from '../journal/run-journal.js';
 import { spread } from './columns.js';
 import { stepLines } from './step-lines.js';
 import { blankTagLines } from './tag-box.js';
 import { verdictText } from './verdict.js';
-import { durationText, unitLabel } from './words.js';
+import { durationText, plural, unitLabel } from './words.js';
 
 interface RunEnded {
   unit: UnitOnBench;
   script: Script;
   results: readonly StepResult[];
   verdict: Verdict;
-  delivery: Delivery;
+  /** Undefined: it was left before its end and stays on this bench. */
+  delivery?: Delivery;
+  left?: RunStop['how'];
+  runId: string;
   code: number;
   tookMs: number;
 }
 
 /** The last words of a run: the steps where they were not on this screen already, the tag after a proof run, the verdict, what became of it. */
-export async function printRunEnd(context: Context, { unit, script, results, verdict, delivery, code, tookMs }: RunEnded): Promise<void> {
+export async function printRunEnd(
+  context: Context,
+  { unit, script, results, verdict, delivery, left, runId, code, tookMs }: RunEnded,
+): Promise<void> {
   const { stdout, stderr } = context;
   const style = await stdout.style();
   const lines: string[] = [];
@@ -36,12 +43,28 @@ export async function printRunEnd(context: Context, { unit, script, results, ver
     );
     lines.push(...results.flatMap((result, index) => stepLines(index + 1, result, style)));
   }
-  if (script.prove) lines.push('', ...blankTagLines(await standingNow(context, unit, delivery), style));
+  if (script.prove && delivery) lines.push('', ...blankTagLines(await standingNow(context, unit, delivery), style));
   const nothing =
     verdict === 'inconclusive' && !results.some(({ kind }) => ['measure', 'inspect', 'expect', 'watch'].includes(kind))
       ? ' (nothing was judged)'
       : '';
-  const sent = delivery.state === 'sent' ? 'Written down here, and sent.' : 'Written down here; not sent yet.';
+  const sent = delivery?.state === 'sent' ? 'Written down here, and sent.' : 'Written down here; not sent yet.';
+  if (!delivery) {
+    const done = new Set(results.filter(({ kind }) => kind !== 'cut').map(({ stepId }) => stepId)).size;
+    const how = left === 'parked' ? 'Parked' : left === 'instrument failed' ? 'Stopped for an instrument' : 'Stopped';
+    lines.push(
+      '',
+      spread(
+        ` ${how} after ${done} of ${plural(script.steps.length, 'step')}. What was recorded is kept on this bench.`,
+        `exit ${code}`,
+        style.columns - 1,
+      ),
+      ` Go on: refettle resume ${runId}`,
+      ` Close: refettle abandon ${runId} --reason TEXT`,
+    );
+    stdout.write(`${lines.join('\n')}\n`);
+    return;
+  }
   lines.push(
     '',
     spread(` Ended ${verdictText(verdict, style)}${nothing}, ${durationText(tookMs)}. ${sent}`, `exit ${code}`, style.columns - 1),

@@ -23,7 +23,10 @@ export const runCapture: StepRunner<'capture'> = async (step, bench, start) => {
     watcher: watching({ context, sheet, attended: technician.attended }),
   });
   const file = captureText(context.home, start.captureId);
+  // Broken off by a key or Ctrl-C: what came is kept, and the step is asked again when somebody goes on.
+  if (ended === 'left' || ended === 'interrupted')
+    return { result: { ...resultBase(step, bench, start), kind: 'cut', captureId: start.captureId, file }, rest: 'stop' };
   bench.say(...answerLines(decodeCapture(readCapture(file), sheet), sheet, bench.style));
   const result = { ...resultBase(step, bench, start), kind: 'capture', captureId: start.captureId, file, fromFile: false } as const;
-  return ended === 'left' || ended === 'interrupted' ? { result, rest: 'stop' } : { result };
+  return { result };
 };

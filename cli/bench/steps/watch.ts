@@ -41,6 +41,9 @@ export const runWatch: StepRunner<'watch'> = async (step, bench, start) => {
     }),
   });
   const file = captureText(context.home, start.captureId);
+  // Broken off by a key or Ctrl-C: what came is kept, and the step is asked again when somebody goes on.
+  if (ended === 'left' || ended === 'interrupted')
+    return { result: { ...resultBase(step, bench, start), kind: 'cut', captureId: start.captureId, file }, rest: 'stop' };
   const capture = readCapture(file);
   const durationS = (capture.endUs ?? capture.timesUs.at(-1) ?? 0) / 1_000_000;
   const judged = judgeWatch(viewCapture(capture, sheet), spec, durationS);
@@ -53,5 +56,5 @@ export const runWatch: StepRunner<'watch'> = async (step, bench, start) => {
     calibration: step.calibration === true,
     watched,
   } as const;
-  return ended === 'left' || ended === 'interrupted' ? { result, rest: 'stop' } : { result };
+  return { result };
 };

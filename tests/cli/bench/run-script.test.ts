@@ -33,7 +33,7 @@ async function run(
       : rig.hands && { ...simulatedTechnician(context, rig.hands), ...parts.technician };
   if (!technician) throw new Error('nobody is at the bench');
   const { name, title, prove } = script;
-  const journal = new RunJournal(context.home, {
+  const journal = RunJournal.create(context.home, {
     id: context.newId(),
     server: context.server,
     unit: 412,
@@ -149,7 +149,7 @@ describe('A bench run on a simulated rig', () => {
     expect(bench.stderr()).toContain('Nothing was recorded for this step.');
   });
 
-  test('When Ctrl-C is pressed while lamps are recorded, then what came is a whole capture of the run, and the run is closed as interrupted', async () => {
+  test('When Ctrl-C is pressed while lamps are recorded, then what came is kept as a cut, and its step is still to be done', async () => {
     bench = benchTerminal();
     const { context } = bench;
     const ready = [intake(), inspection()];
@@ -171,8 +171,9 @@ describe('A bench run on a simulated rig', () => {
     const { end, verdict } = await running.finally(() => clearInterval(stopWhenGoing));
     expect([end.exitCode, end.interrupted, verdict]).toEqual([130, true, 'not done']);
     const last = end.results.at(-1);
-    expect(last).toMatchObject({ kind: 'capture', stepId: 'lamps' });
-    expect(last?.kind === 'capture' && last.file).toMatch(/\{"end":\d+\}\n$/);
+    expect(last).toMatchObject({ kind: 'cut', stepId: 'lamps' });
+    expect(end.left).toBe('stopped');
+    expect(last?.kind === 'cut' && last.file).toMatch(/\{"end":\d+\}\n$/);
     expect(bench.left()).toBe(0);
   });
 });

@@ -6,8 +6,10 @@ import { afterEach, beforeEach, describe, expect, test } from 'vitest';
 import { homeOf, type Home } from '../../../cli/home.js';
 import { CaptureFile } from '../../../cli/journal/capture-file.js';
 import { waitingEntries } from '../../../cli/journal/outbox.js';
-import { recoverRuns } from '../../../cli/journal/recover-runs.js';
-import { journalFileOf, logOf, readRunJournal, RunJournal, type RunHeader } from '../../../cli/journal/run-journal.js';
+import { closeEnded, openRuns, runLock } from '../../../cli/journal/open-runs.js';
+import { takeLock } from '../../../cli/journal/lock.js';
+import { checkedLine, checksumOf, readCheckedLines } from '../../../cli/journal/checked-lines.js';
+import { cutOf, journalFileOf, logOf, readRunJournal, RunJournal, type RunHeader } from '../../../cli/journal/run-journal.js';
 import { runVerdict } from '../../../shared/script/run-verdict.js';
 import type { StepResult } from '../../../shared/script/run-log.js';
 import { benchTerminal } from '../../helpers/bench-terminal.js';
@@ -62,7 +64,7 @@ const startCapture = () => {
 
 describe('The journal of a run', () => {
   test('When a step has its result, then the result is in the file before the next step begins', () => {
-    const journal = new RunJournal(home, header());
+    const journal = RunJournal.create(home, header());
     journal.begin({ stepId: 'isolate', kind: 'caution', title: 'Isolate', at: at(1) });
     journal.record(caution);
     expect(read()).toMatchObject({ results: [caution], begun: undefined, end: undefined });
@@ -72,36 +74,38 @@ describe('The journal of a run', () => {
   });
 
   test('When the last line was torn by a power cut, then everything before it is read', () => {
-    const journal = new RunJournal(home, header());
+    const journal = RunJournal.create(home, header());
     journal.record(caution);
     journal.record(looked);
     journal.close();
     const text = readFileSync(journalFileOf(home, RUN), 'utf8');
+    // Shorter than the last line by anything from one character on.
     for (let cut = 1; cut < JSON.stringify({ step: looked }).length; cut += 7) {
       expect(readRunJournal(text.slice(0, -1 - cut))?.results).toEqual([caution]);
     }
     expect(readRunJournal(text.slice(0, -1))?.results).toEqual([caution, looked]);
   });
 
-  test('When a run was broken off while it recorded lamps, then those lamps are kept as a cut capture and the run is closed as interrupted', () => {
-    const journal = new RunJournal(home, header());
+  test('When a run was broken off while it recorded lamps, then those lamps are a cut that can be kept, and nothing else is said to be done', () => {
+    const journal = RunJournal.create(home, header());
     journal.record(caution);
     journal.begin({ stepId: 'lamps', kind: 'capture', title: 'The lamps', at: at(5), captureId: CAPTURE });
     const capture = startCapture();
     appendFileSync(capture.path, '[20000,1,2');
     const written = read();
     if (!written) throw new Error('the journal was not read');
+    const kept = cutOf(home, written);
+    expect(kept).toMatchObject({ kind: 'cut', stepId: 'lamps', captureId: CAPTURE, startedAt: at(5) });
+    expect(kept?.kind === 'cut' && kept.file.trimEnd().split('\n')).toHaveLength(3);
     const log = logOf(home, written);
-    expect(log).toMatchObject({ interrupted: true, endedAt: at(5), steps: [caution, { kind: 'capture', captureId: CAPTURE }] });
-    const kept = log.steps[1];
-    expect(kept?.kind === 'capture' && kept.file.trimEnd().split('\n')).toHaveLength(3);
+    expect(log).toMatchObject({ interrupted: true, endedAt: at(5), steps: [caution] });
     expect(runVerdict(log.steps, log.interrupted)).toBe('not done');
     journal.close();
     capture.keep();
   });
 
   test('When a captured step was recorded, then its file stands in the log, whole, and not in the journal', () => {
-    const journal = new RunJournal(home, header());
+    const journal = RunJournal.create(home, header());
     const capture = startCapture();
     capture.end(20_000);
     const file = readFileSync(capture.path, 'utf8');
@@ -123,24 +127,130 @@ describe('The journal of a run', () => {
   });
 });
 
+describe('A line of the journal', () => {
+  test('When its checksum is taken, then it is the published one', () => {
+    // CRC-32/ISO-HDLC: the check value for the nine digits is cbf43926 (catalogue of parametrised CRC algorithms; ITU-T V.42, zlib).
+    expect(checksumOf('123456789')).toBe('cbf43926');
+  });
+
+  test('When any one character of it is another, then the line does not hold together', () => {
+    const line = checkedLine(1, { step: caution });
+    for (let place = 0; place < line.length - 1; place += 1) {
+      const other = line[place] === 'x' ? 'y' : 'x';
+      expect(readCheckedLines(`${line.slice(0, place)}${other}${line.slice(place + 1)}`)).toMatchObject([
+        { wrong: expect.any(String) as string },
+      ]);
+    }
+  });
+
+  test('When a line is missing, stands twice or in another place, then that is seen', () => {
+    const lines = [1, 2, 3].map((number) => checkedLine(number, { number }));
+    const wrong = (order: number[]): number | undefined =>
+      readCheckedLines(order.map((index) => lines[index]).join('')).find((line) => 'wrong' in line)?.number;
+    expect([wrong([0, 1, 2]), wrong([0, 2]), wrong([0, 1, 1, 2]), wrong([1, 0, 2])]).toEqual([undefined, 2, 3, 1]);
+  });
+
+  test('When a journal is from before there were checksums, then it is read as it was', () => {
+    const text = [{ run: header() }, { step: caution }].map((line) => `${JSON.stringify(line)}\n`).join('');
+    expect(readRunJournal(text)).toMatchObject({ results: [caution], damage: undefined, torn: false });
+  });
+});
+
+describe('A journal that is damaged', () => {
+  const threeSteps = (): string[] => {
+    const journal = RunJournal.create(home, header());
+    journal.record(caution);
+    journal.record(looked);
+    journal.close();
+    return readFileSync(journalFileOf(home, RUN), 'utf8').split('\n');
+  };
+
+  test('When a line in the middle is damaged, then it is named, and nothing behind it is taken for done', () => {
+    const lines = threeSteps();
+    writeFileSync(journalFileOf(home, RUN), [lines[0], lines[1]?.replace('yes', 'no'), ...lines.slice(2)].join('\n'));
+    expect(read()).toMatchObject({ results: [], damage: { line: 2, reason: 'its checksum is wrong', behind: 1 } });
+  });
+
+  test('When somebody goes on with it, then the damage is noted, what was damaged stays, and what comes now counts', () => {
+    const lines = threeSteps();
+    const damaged = [lines[0], lines[1]?.replace('yes', 'no'), ...lines.slice(2)].join('\n');
+    writeFileSync(journalFileOf(home, RUN), damaged);
+    const before = read();
+    if (!before) throw new Error('the journal was not read');
+    const journal = RunJournal.goOn(home, before);
+    journal.record(caution);
+    journal.close();
+    expect(readFileSync(journalFileOf(home, RUN), 'utf8').startsWith(damaged)).toBe(true);
+    expect(read()).toMatchObject({ results: [caution], damage: undefined });
+  });
+
+  test('When its last line was torn and somebody goes on, then the torn line stays where it is and what comes now counts', () => {
+    const text = threeSteps().join('\n');
+    for (let cut = 1; cut < 200; cut += 9) {
+      writeFileSync(journalFileOf(home, RUN), text.slice(0, -1 - cut));
+      const before = read();
+      expect(before).toMatchObject({ results: [caution], torn: true });
+      if (!before) throw new Error('the journal was not read');
+      const journal = RunJournal.goOn(home, before);
+      journal.record(looked);
+      journal.close();
+      expect(read()).toMatchObject({ results: [caution, looked], torn: false, damage: undefined });
+    }
+  });
+
+  test('When the power went and left zeros behind the last line, then they are passed over', () => {
+    const text = threeSteps().join('\n');
+    expect(readRunJournal(`${text}${'\0'.repeat(300)}`)).toMatchObject({ results: [caution, looked], torn: true, damage: undefined });
+  });
+
+  test('When its first line is damaged, then it can’t be said which run it was, and the file is named and left', () => {
+    const lines = threeSteps();
+    writeFileSync(journalFileOf(home, RUN), ['x', ...lines.slice(1)].join('\n'));
+    const bench = benchTerminal({ home: home.folder });
+    expect(openRuns(bench.context)).toEqual({ runs: [], unreadable: [journalFileOf(home, RUN)] });
+  });
+});
+
 describe('Runs that were broken off', () => {
-  test('When the program that ran it is gone, then the run is closed and waits to be sent, with the run as its key', () => {
-    const journal = new RunJournal(home, header(GONE));
+  test('When the program that ran it is gone, then the run stays open and says how far it came', () => {
+    const journal = RunJournal.create(home, header(GONE));
     journal.record(caution);
     journal.close();
     const bench = benchTerminal({ home: home.folder });
-    expect(recoverRuns(bench.context).map(({ id }) => id)).toEqual([RUN]);
-    expect(waitingEntries(home).entries).toMatchObject([
-      { id: RUN, route: 'recordRun', params: { number: 412 }, body: { interrupted: true, steps: [caution] } },
-    ]);
-    expect(bench.stderr()).toContain('broken off');
-    expect(existsSync(journalFileOf(home, RUN))).toBe(false);
-    expect(recoverRuns(bench.context)).toEqual([]);
+    expect(openRuns(bench.context).runs).toMatchObject([{ state: 'broken off', done: 1, owner: undefined }]);
+    expect(closeEnded(bench.context)).toEqual([]);
+    expect(existsSync(journalFileOf(home, RUN))).toBe(true);
   });
 
-  test('When the program that runs it is alive, then it is left alone', () => {
-    new RunJournal(home, header()).close();
-    expect(recoverRuns(benchTerminal({ home: home.folder }).context)).toEqual([]);
+  test('When it was killed after its end and before it was a message, then it is made into one, once, with the run as its key', () => {
+    const journal = RunJournal.create(home, header(GONE));
+    journal.record(caution);
+    journal.end(at(3), false);
+    journal.close();
+    const bench = benchTerminal({ home: home.folder });
+    expect(closeEnded(bench.context).map(({ id }) => id)).toEqual([RUN]);
+    expect(waitingEntries(home).entries).toMatchObject([
+      {
+        id: RUN,
+        route: 'recordRun',
+        params: { number: 412 },
+        body: { interrupted: false, steps: [caution], people: [{ person: wil, how: 'began' }] },
+      },
+    ]);
+    expect(existsSync(journalFileOf(home, RUN))).toBe(false);
+    expect(closeEnded(bench.context)).toEqual([]);
+  });
+
+  test('When the program that runs it is alive, then it is going, and left alone', async () => {
+    const journal = RunJournal.create(home, header());
+    journal.end(at(3), false);
+    journal.close();
+    const bench = benchTerminal({ home: home.folder });
+    const lock = await takeLock(bench.context, runLock(RUN), { what: 'bench run', run: RUN });
+    expect(openRuns(bench.context).runs).toMatchObject([{ state: 'going', owner: { pid: process.pid } }]);
+    expect(closeEnded(bench.context)).toEqual([]);
+    if ('release' in lock) lock.release();
+    expect(closeEnded(bench.context)).toHaveLength(1);
   });
 
   test('When the program is killed in the middle, then every step that was said to be done is in the file', async () => {
@@ -150,7 +260,7 @@ describe('Runs that were broken off', () => {
       program,
       `import { homeOf } from ${from('cli/home.ts')};
 import { RunJournal } from ${from('cli/journal/run-journal.ts')};
-const journal = new RunJournal(homeOf({ REFETTLE_HOME: ${JSON.stringify(home.folder)} }), { ...${JSON.stringify(header())}, pid: process.pid });
+const journal = RunJournal.create(homeOf({ REFETTLE_HOME: ${JSON.stringify(home.folder)} }), { ...${JSON.stringify(header())}, pid: process.pid });
 for (let step = 0; ; step += 1) {
   journal.record({ kind: 'note', stepId: 'step-' + step, title: 'A remark', startedAt: '${at(1)}', endedAt: '${at(2)}', text: 'x'.repeat(step) });
   process.stdout.write(step + '\\n');
