@@ -5,6 +5,7 @@ import { benchCommands } from './tree/bench.js';
 import { completionCommands } from './tree/completion.js';
 import { paperCommands } from './tree/paper.js';
 import type { Does } from './tree/parts.js';
+import { peopleCommands } from './tree/people.js';
 import { runCommands } from './tree/runs.js';
 import { sheetCommands } from './tree/sheet.js';
 import { signingInCommands } from './tree/signing-in.js';
@@ -23,6 +24,7 @@ const GROUPS = [
   syncCommands,
   paperCommands,
   sheetCommands,
+  peopleCommands,
   commandsWithoutServer,
   completionCommands,
 ] as const;
@@ -32,6 +34,8 @@ export async function runProgram(args: readonly string[], context: Context): Pro
   const outcome = { code: EXIT.good as number };
   const program = createProgram(context, (code) => (outcome.code = code));
   try {
+    if (args.length === 0 && context.interactive && context.stderr.isTerminal)
+      return await (await import('./menu/menu.js')).runMenu(context);
     await program.parseAsync([...args], { from: 'user' });
     return outcome.code;
   } catch (error) {

@@ -53,10 +53,11 @@ function isKept(value: unknown): value is KeptUnit {
 }
 
 /** The checks of a family's sheet, as it was kept. */
-export function keptChecks(home: Home, family: string): { id: string; title: string }[] {
+export function keptChecks(home: Home, family: string): { id: string; title: string; kind: string }[] {
   const page = jsonIn(home.path('cache', 'sheets', `${encodeURIComponent(family)}.json`)) as { sheet?: { checks?: unknown } } | undefined;
-  const checks = Array.isArray(page?.sheet?.checks) ? (page.sheet.checks as { id?: unknown; title?: unknown }[]) : [];
-  return checks.flatMap(({ id, title }) => (typeof id === 'string' ? [{ id, title: typeof title === 'string' ? title : '' }] : []));
+  const checks = Array.isArray(page?.sheet?.checks) ? (page.sheet.checks as Record<string, unknown>[]) : [];
+  const text = (value: unknown): string => (typeof value === 'string' ? value : '');
+  return checks.flatMap(({ id, title, kind }) => (text(id) === '' ? [] : [{ id: text(id), title: text(title), kind: text(kind) }]));
 }
 
 /** The control families whose sheets this bench has kept, or that its units have. */

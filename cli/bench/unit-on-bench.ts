@@ -44,7 +44,8 @@ export async function unitPage(context: Context, number: number): Promise<{ valu
   return fetchOrKept(file, unitPageSchema, async () => (await context.api()).call('getUnit', { params: { number } }));
 }
 
-async function sheetOf(context: Context, family: string): Promise<{ value: Sheet; offline: boolean }> {
+/** The newest edition of a family's sheet. */
+export async function sheetOf(context: Context, family: string): Promise<{ value: Sheet; offline: boolean }> {
   const file = context.home.path('cache', 'sheets', `${encodeURIComponent(family)}.json`);
   const { value, offline } = await fetchOrKept(file, sheetPageSchema, async () =>
     (await context.api()).call('getSheet', { params: { family } }),

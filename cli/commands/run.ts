@@ -1,5 +1,6 @@
 import { goThrough, takeRunLocks, technicianFor } from '../bench/go-through.js';
 import { readScript, refuseFindings, textOf } from '../bench/read-script.js';
+import { scriptFileOf } from '../bench/script-files.js';
 import { signOn } from '../bench/sign-on.js';
 import { unitOnBench } from '../bench/unit-on-bench.js';
 import type { Context } from '../context.js';
@@ -23,8 +24,9 @@ export interface RunOptions {
 
 /** Runs a bench script on a unit. What it recorded is on this bench's disk, whatever happens, and goes to the server at its end. */
 export async function runScriptCommand(options: RunOptions, context: Context): Promise<number> {
-  const scriptText = textOf(options.script, 'bench script');
-  const script = readScript(scriptText, options.script);
+  const file = scriptFileOf(context.home, options.script);
+  const scriptText = textOf(file, 'bench script');
+  const script = readScript(scriptText, file);
   closeEnded(context);
   const open = openRuns(context).runs.find(({ written }) => written.header.unit === options.number);
   if (open) {
@@ -33,7 +35,7 @@ export async function runScriptCommand(options: RunOptions, context: Context): P
   }
   const person = await signOn(context, 'start');
   const unit = { ...(await unitOnBench(context, options.number)), by: person };
-  refuseFindings(script, unit.sheet, options.script);
+  refuseFindings(script, unit.sheet, file);
   if (unit.page.unit.licensedOnly) {
     context.stderr.say(
       `${unitLabel(options.number)} is for a licensed person only (gas, sealed refrigerant or a microwave oven): no script runs on it.`,
