@@ -47,8 +47,8 @@ const ONE_YEAR_MS = 31_536_000_000;
 export function createApp(deps: AppDependencies): Express {
   const app = express();
   const { publicUrl } = deps.config;
-  // A proxy on this machine may end TLS and say for whom; nobody else is believed.
-  app.set('trust proxy', 'loopback');
+  // A proxy may end TLS and say for whom; nobody else is believed.
+  app.set('trust proxy', deps.config.trustedProxies);
   app.set('query parser', 'simple');
   app.use(requestLog(deps.log));
   const [overHttps, overHttp] = [helmet(securityHeaders(true)), helmet(securityHeaders(false))];
@@ -95,6 +95,9 @@ export function createApp(deps: AppDependencies): Express {
 const securityHeaders = (https: boolean) => ({
   contentSecurityPolicy: { directives: { upgradeInsecureRequests: https ? [] : null, imgSrc: ["'self'", 'data:', 'blob:'] } },
   strictTransportSecurity: https,
+  // Browsers heed these two over https alone, and complain about them elsewhere.
+  crossOriginOpenerPolicy: https,
+  originAgentCluster: https,
   referrerPolicy: { policy: 'no-referrer' as const },
 });
 

@@ -1,5 +1,7 @@
 // Starts everything in order, says where it is, and stops in the other order.
 import { existsSync } from 'node:fs';
+import type { RequestListener, Server } from 'node:http';
+import { Server as TlsServer } from 'node:https';
 import { join } from 'node:path';
 import { pino } from 'pino';
 import { announcement } from './announce.js';
@@ -12,18 +14,24 @@ import { LiveHub } from './features/live/live-hub.js';
 import { registerSigningKey } from './features/tags/signing-key-store.js';
 import { loadSigningKey, readSigningKey } from './features/tags/signing-key.js';
 import { keepTidy } from './housekeeping.js';
-import { addressOf, closeServer, listen, makeSureThatPortIsFree } from './listen.js';
+import { addressOf, closeServer, listen, makeSureThatPortIsFree, networkAddressesOf } from './listen.js';
 import { loggedError } from './logged-error.js';
 import { packageRoot } from './package-root.js';
+import { publicOnly } from './public-listener.js';
 import { startOwnCluster } from './postgres/own-cluster.js';
 import { runDemoBench } from './seed/run-demo-bench.js';
+import { seedDemoBench } from './seed/seed-demo-bench.js';
 import { seedDemoShop } from './seed/seed-demo-shop.js';
 import { SetUpError } from './set-up-error.js';
 import { Shutdown } from './shutdown.js';
+import { daysLeft, keepTlsFresh, readTlsPair, type TlsPair } from './tls.js';
 
 const write = (text: string): void => void process.stdout.write(text);
 const writeError = (text: string): void => void process.stderr.write(text);
 const shutdown = new Shutdown(write);
+const PUBLIC_SETTINGS = { host: 'PUBLIC_HOST', port: 'PUBLIC_PORT' };
+/** Time enough to renew it. */
+const WARNED_BEFORE_DAYS = 14;
 
 async function main(): Promise<void> {
   shutdown.listenToSignals();
@@ -33,7 +41,9 @@ async function main(): Promise<void> {
   shutdown.add(() => {
     hold.release();
   });
+  const tls = config.tls && readTlsPair(config.tls);
   await makeSureThatPortIsFree(config.host, config.port);
+  if (config.publicListener) await makeSureThatPortIsFree(config.publicListener.host, config.publicListener.port, PUBLIC_SETTINGS);
 
   const databaseUrl = config.databaseUrl ?? (await startDatabase(config));
   const db = openDb(databaseUrl);
@@ -57,16 +67,35 @@ async function main(): Promise<void> {
     log,
   };
   const accounts = config.demo ? await seedDemoShop(deps) : [];
-  const server = await listen(createApp(deps), config.host, config.port);
+  const demoBench = config.demo ? await seedDemoBench(deps) : undefined;
+  const app = createApp(deps);
+  const server = await listen(app, config.host, config.port, { tls });
   shutdown.add(() => closeServer(server));
+  if (config.tls && tls && server instanceof TlsServer) {
+    shutdown.add(keepTlsFresh(server, config.tls, log));
+    warnOfEnd(daysLeft(tls, new Date()));
+  }
+  const publicServer = config.publicListener && (await listenToBuyers(app, config.publicListener, tls));
   // Before the server: an open page must not hold it up.
   shutdown.add(() => live.close());
-  const address = addressOf(server);
   shutdown.add(keepTidy(deps));
 
-  if (config.demo) await showDemoBench(config, address, accounts);
-  const firstAdminLink = config.demo ? undefined : await createFirstAdminLink(deps);
-  if (!shutdown.isUnderWay) write(announcement(config, address, accounts, firstAdminLink));
+  const address = addressOf(server);
+  if (config.demo) await showDemoBench(app, config, server, accounts);
+  const firstAdminLink = config.demo ? undefined : await createFirstAdminLink(deps, address);
+  const places = { address, network: networkAddressesOf(server), publicAddress: publicServer && addressOf(publicServer) };
+  if (!shutdown.isUnderWay) write(announcement(config, places, accounts, firstAdminLink, demoBench));
+}
+
+async function listenToBuyers(app: RequestListener, { host, port }: { host: string; port: number }, tls: TlsPair | undefined) {
+  const server = await listen(publicOnly(app), host, port, { tls, settings: PUBLIC_SETTINGS });
+  shutdown.add(() => closeServer(server));
+  return server;
+}
+
+function warnOfEnd(days: number): void {
+  if (days < 0) writeError('The certificate of TLS_CERT has ended: browsers refuse it. Renew it; it is taken without a restart.\n');
+  else if (days < WARNED_BEFORE_DAYS) writeError(`The certificate of TLS_CERT ends in ${days.toString()} days.\n`);
 }
 
 async function startDatabase(config: Config): Promise<string> {
@@ -94,8 +123,16 @@ async function migrateOrSayWhy(db: Db, config: Config): Promise<void> {
 }
 
 /** The shop serves also where its demonstration went wrong. */
-async function showDemoBench(config: Config, address: string, accounts: Awaited<ReturnType<typeof seedDemoShop>>): Promise<void> {
+async function showDemoBench(
+  app: RequestListener,
+  config: Config,
+  server: Server,
+  accounts: Awaited<ReturnType<typeof seedDemoShop>>,
+): Promise<void> {
   const stop = new AbortController();
+  // The certificate need not be one for 127.0.0.1: then for this run alone there is a door that needs none.
+  const plain = server instanceof TlsServer ? await listen(app, '127.0.0.1', 0) : undefined;
+  const address = addressOf(plain ?? server);
   shutdown.add(() => {
     stop.abort();
   });
@@ -103,6 +140,8 @@ async function showDemoBench(config: Config, address: string, accounts: Awaited<
     await runDemoBench({ address, dataDir: config.dataDir, accounts, write, signal: stop.signal });
   } catch (error) {
     if (!shutdown.isUnderWay) writeError(`The first bench run went wrong: ${String(error)} It is tried again at the next start.\n`);
+  } finally {
+    if (plain) await closeServer(plain);
   }
 }
 

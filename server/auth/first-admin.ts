@@ -6,17 +6,16 @@ import { anybodyThere } from './people-store.js';
 import { newToken, tokenHash } from './token.js';
 
 const LINK_LASTS_MS = 24 * 3_600_000;
-const EVERY_ADDRESS = new Set(['0.0.0.0', '::']);
 
-/** Where a browser on this machine finds us. */
-function ownAddress({ publicUrl, host, port }: AppDependencies['config']): string {
-  if (publicUrl !== undefined) return publicUrl;
-  const name = EVERY_ADDRESS.has(host) ? '127.0.0.1' : host;
-  return `http://${name.includes(':') ? `[${name}]` : name}:${String(port)}`;
-}
+/** Where the admin's browser finds us. What faces the street shows no sign-in, so a public address is of use only where it shows all. */
+const baseOf = ({ publicUrl, publicListener }: AppDependencies['config'], ownAddress: string): string =>
+  publicListener === undefined ? (publicUrl ?? ownAddress) : ownAddress;
 
 /** For a shop where nobody is yet: a link that makes its first admin, once. Each start makes a new one, and the old ones end. */
-export async function createFirstAdminLink(deps: Pick<AppDependencies, 'db' | 'config' | 'clock'>): Promise<string | undefined> {
+export async function createFirstAdminLink(
+  deps: Pick<AppDependencies, 'db' | 'config' | 'clock'>,
+  ownAddress: string,
+): Promise<string | undefined> {
   const now = deps.clock();
   const token = newToken();
   const isNeeded = await deps.db.transaction(async (trx) => {
@@ -30,7 +29,7 @@ export async function createFirstAdminLink(deps: Pick<AppDependencies, 'db' | 'c
     });
     return true;
   });
-  return isNeeded ? `${ownAddress(deps.config)}/first-admin?token=${token}` : undefined;
+  return isNeeded ? `${baseOf(deps.config, ownAddress)}/first-admin?token=${token}` : undefined;
 }
 
 /** True once a link: two who send it at the same moment get one yes between them. */

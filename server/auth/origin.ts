@@ -6,7 +6,8 @@ import { OriginError } from '../errors.js';
  * a shop may also reach the same server by its plain address in the house.
  */
 export function ownOrigin(request: Request, publicUrl: string | undefined): string {
-  const host = request.get('host') ?? '';
+  // As a trusted proxy has it (X-Forwarded-Host), else the Host header; express types it as if it were always there.
+  const host = (request.host as string | undefined) ?? '';
   if (publicUrl !== undefined && new URL(publicUrl).host === host.toLowerCase()) return new URL(publicUrl).origin;
   return `${request.protocol}://${host.toLowerCase()}`;
 }

@@ -21,7 +21,7 @@ export async function runTool<Options extends NonNullable<ParseArgsConfig['optio
     let read: { values: Record<string, string | boolean | undefined>; positionals: string[] };
     try {
       const { values, positionals } = parseArgs({ options: { ...options, help: { type: 'boolean' } }, allowPositionals: true });
-      read = { values: values as Record<string, string | boolean | undefined>, positionals };
+      read = { values: values, positionals };
     } catch (error) {
       process.stderr.write(`${(error as Error).message}\n${help}`);
       process.exitCode = EXIT_USAGE;

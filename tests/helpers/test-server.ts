@@ -92,7 +92,18 @@ export async function startTestServer({
   const signingKey = await signingKeyOf(generateKeyPairSync('ed25519').privateKey);
   const deps: AppDependencies = {
     db: fresh.db,
-    config: { host: '127.0.0.1', port: 4780, dataDir, databaseUrl: fresh.url, demo: false, publicUrl: PUBLIC_URL, ...config },
+    config: {
+      host: '127.0.0.1',
+      port: 4780,
+      dataDir,
+      databaseUrl: fresh.url,
+      demo: false,
+      publicUrl: PUBLIC_URL,
+      tls: undefined,
+      trustedProxies: ['loopback'],
+      publicListener: undefined,
+      ...config,
+    },
     signingKey: ownKey ?? (() => Promise.resolve(signingKey)),
     clock: () => time.now,
     live: new LiveHub({ db: fresh.db, databaseUrl: fresh.url, log }),

@@ -18,12 +18,12 @@ const admin = (token: string, email = 'joss@millrace.example') => ({
 });
 
 test('When people are there, then there is no link', async () => {
-  expect(await createFirstAdminLink(server.deps)).toBeUndefined();
+  expect(await createFirstAdminLink(server.deps, 'http://127.0.0.1:4780')).toBeUndefined();
 });
 
 test('When nobody is there, then the link makes one admin, once, and its token is stored nowhere', async () => {
   await emptyShop();
-  const link = await createFirstAdminLink(server.deps);
+  const link = await createFirstAdminLink(server.deps, 'http://127.0.0.1:4780');
   expect(link).toMatch(/^http:\/\/127\.0\.0\.1:4780\/first-admin\?token=[\w-]{43}$/);
   const token = tokenOf(link);
   expect(JSON.stringify(await server.deps.db('first_admin_links').select('*'))).not.toContain(token);
@@ -32,13 +32,13 @@ test('When nobody is there, then the link makes one admin, once, and its token i
   expect(tries.map(({ status }) => status).sort()).toEqual([201, 401, 401]);
   expect(tries.find(({ status }) => status === 201)?.body).toMatchObject({ name: 'Joss Penn', role: 'admin' });
   expect(problemIn(await server.send('createFirstAdmin', admin(token))).status).toBe(401);
-  expect(await createFirstAdminLink(server.deps)).toBeUndefined();
+  expect(await createFirstAdminLink(server.deps, 'http://127.0.0.1:4780')).toBeUndefined();
 });
 
 test('When the link is a day old, or a newer one was printed, then it is no longer good', async () => {
   await emptyShop();
-  const first = tokenOf(await createFirstAdminLink(server.deps));
-  const second = tokenOf(await createFirstAdminLink(server.deps));
+  const first = tokenOf(await createFirstAdminLink(server.deps, 'http://127.0.0.1:4780'));
+  const second = tokenOf(await createFirstAdminLink(server.deps, 'http://127.0.0.1:4780'));
   expect((await server.send('createFirstAdmin', admin(first))).status).toBe(401);
 
   server.time.now = new Date(server.time.now.getTime() + 25 * 3_600_000);
