@@ -9,6 +9,8 @@ export const paths = {
     return query.size > 0 ? `/units?${query.toString()}` : '/units';
   },
   takeIn: () => '/units/new',
+  board: () => '/board',
+  benches: () => '/benches',
   unit: (number: number) => `/units/${unitNumber(number)}`,
   signOff: (number: number) => `${paths.unit(number)}/sign-off`,
   unitTag: (number: number) => `${paths.unit(number)}/tag`,

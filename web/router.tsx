@@ -40,6 +40,8 @@ export const router = createBrowserRouter([
               { path: 'units/:number', lazy: async () => ({ Component: (await import('./pages/unit-page.js')).UnitPage }) },
               { path: 'units/:number/sign-off', lazy: async () => ({ Component: (await import('./pages/sign-off-page.js')).SignOffPage }) },
               { path: 'units/:number/tag', lazy: async () => ({ Component: (await import('./pages/unit-tag-page.js')).UnitTagPage }) },
+              { path: 'board', lazy: async () => ({ Component: (await import('./pages/board-page.js')).BoardPage }) },
+              { path: 'benches', lazy: async () => ({ Component: (await import('./pages/benches-page.js')).BenchesPage }) },
               { path: 'captures/:id', lazy: async () => ({ Component: (await import('./pages/capture-page.js')).CapturePage }) },
               { path: 'runs/:id', lazy: async () => ({ Component: (await import('./pages/run-page.js')).RunPage }) },
               { path: '*', Component: NotFoundPage },

@@ -7,7 +7,7 @@ export function benchCommands(program: Command, does: Does): void {
   const bench = program.command('bench').description('a shared bench: several people, each by name and PIN');
   bench
     .command('join')
-    .description('make this computer a shared bench, by the token that a lead has from the page Benches')
+    .description('make this computer a shared bench, by the token that a lead has from the page Shared benches')
     .option('--token-stdin', 'read the token from standard input')
     .option(...JSON_OPTION)
     .action(does(async () => (await import('../commands/bench/join.js')).runBenchJoin));

@@ -84,6 +84,8 @@ export function ShopFrame({
         {user && mayDo(user.role, 'unit.read') && (
           <nav aria-label="Main" className="word-tabs items-stretch!">
             <NavLink to={paths.units()}>Units</NavLink>
+            <NavLink to={paths.board()}>Benches</NavLink>
+            {mayDo(user.role, 'bench.read') && <NavLink to={paths.benches()}>Shared benches</NavLink>}
             <NavLink to={paths.lookUpTag()}>Look up a tag</NavLink>
           </nav>
         )}

@@ -18,6 +18,6 @@ export async function runBenchLeave({ json }: { json?: boolean }, context: Conte
     context.stderr.say(
       `${plural(entries.length, 'thing waits', 'things wait')} here still, recorded by ${names.join(', ')}: nothing is lost. Each signs in and sends it (refettle sign-in, refettle sync), or this computer joins the bench again.`,
     );
-  context.stderr.say('Where this computer goes away, a lead also revokes the bench’s token, on the page Benches.');
+  context.stderr.say('Where this computer goes away, a lead also revokes the bench’s token, on the page Shared benches.');
   return Promise.resolve(EXIT.good);
 }
