@@ -163,4 +163,5 @@ async function printTakenIn({ stdout, stderr }: Context, unit: Unit): Promise<vo
     stderr.say(
       `It has no control family yet, and without a service sheet its lamps can’t be decoded. When it is known: refettle unit family ${unitNumberText(unit.number)} FAMILY`,
     );
+  stderr.say(`Its stock label: refettle label ${unitNumberText(unit.number)} --print`);
 }

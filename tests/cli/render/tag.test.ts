@@ -1,10 +1,7 @@
 import { Chalk } from 'chalk';
-import jsqr from 'jsqr';
 import { describe, expect, test } from 'vitest';
 import type { Style } from '../../../cli/output.js';
 import { blankTagLines, shortUrl, tagLines } from '../../../cli/render/tag-box.js';
-import { tagPdf } from '../../../cli/render/tag-pdf.js';
-import { qrDots, qrModules } from '../../../cli/render/tag-qr.js';
 import { dayText, timeText } from '../../../cli/render/words.js';
 import { tagPage } from '../../helpers/tag-page.js';
 import { unitOnTheBench } from '../../helpers/unit-on-bench.js';
@@ -66,70 +63,3 @@ describe('The tag at the terminal', () => {
     expect(shortUrl('http://127.0.0.1:4780/t/0412-2/abc')).toBe('127.0.0.1:4780/t/0412-2');
   });
 });
-
-describe('The tag on paper', () => {
-  const pagesOf = (pdf: Buffer): number => pdf.toString('latin1').match(/\/Type \/Page\b/g)?.length ?? 0;
-
-  test('When the QR code is read, then it is the address of the tag, whole', () => {
-    const { url } = tagPage();
-    const modules = qrModules(url);
-    // Four pixels a module and the quiet zone of four modules (ISO/IEC 18004).
-    const scale = 4;
-    const size = (modules.length + 8) * scale;
-    const pixels = new Uint8ClampedArray(size * size * 4).fill(255);
-    modules.forEach((row, y) =>
-      row.forEach((dark, x) => {
-        if (!dark) return;
-        for (let dy = 0; dy < scale; dy += 1)
-          for (let dx = 0; dx < scale; dx += 1)
-            pixels.fill(
-              0,
-              (((y + 4) * scale + dy) * size + (x + 4) * scale + dx) * 4,
-              (((y + 4) * scale + dy) * size + (x + 4) * scale + dx) * 4 + 3,
-            );
-      }),
-    );
-    const read = jsqr as unknown as (data: Uint8ClampedArray, width: number, height: number) => { data: string } | null;
-    expect(read(pixels, size, size)?.data).toBe(url);
-  });
-
-  test('When a module is printed at 203 dpi, then it is a whole number of dots and at least half a millimetre', () => {
-    for (const count of [25, 33, 45, 49, 53]) {
-      const dots = qrDots(count);
-      expect(Number.isInteger(dots)).toBe(true);
-      expect((dots * 25.4) / 203).toBeGreaterThanOrEqual(0.5);
-    }
-  });
-
-  test('When the tag is written, then it is one A6 page, 105 by 148 mm, with its own faces in it', async () => {
-    const pdf = await tagPdf(tagPage());
-    const text = pdf.toString('latin1');
-    const [, width, height] = /\/MediaBox \[0 0 ([\d.]+) ([\d.]+)\]/.exec(text) ?? [];
-    // A point is 1/72 inch.
-    expect([(Number(width) / 72) * 25.4, (Number(height) / 72) * 25.4].map((side) => Math.round(side * 10) / 10)).toEqual([105, 148]);
-    expect(pagesOf(pdf)).toBe(1);
-    for (const face of ['AtkinsonHyperlegibleNext-Regular', 'AtkinsonHyperlegibleNext-Bold', 'JetBrainsMono-Regular'])
-      expect(text).toContain(face);
-  });
-
-  test('When more was tested than fits, then it goes on overleaf', async () => {
-    const [one] = tagPage().content.tested;
-    const tested = Array.from({ length: 14 }, (_, index) => ({ ...one, title: `Check ${index + 1}` })) as TagRows;
-    expect(pagesOf(await tagPdf(tagPage({ tested })))).toBe(2);
-  });
-
-  test('When nothing was mended and the plate has no serial, then it is written all the same', async () => {
-    const { plate } = tagPage().content;
-    const pdf = await tagPdf(
-      tagPage({
-        mended: [],
-        plate: { maker: plate.maker, model: plate.model, plateUnreadable: true, protectionClass: 'II' },
-        sample: true,
-        fourEyes: false,
-      }),
-    );
-    expect(pagesOf(pdf)).toBe(1);
-  });
-});
-
-type TagRows = ReturnType<typeof tagPage>['content']['tested'];
