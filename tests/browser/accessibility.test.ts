@@ -2,6 +2,7 @@ import type { Page } from 'playwright-core';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { accessibilityFaults, DESK, expectNoSidewaysScroll, openShop, PHONE, settled, type BrowserShop } from '../helpers/browser.js';
 import { addHeron, mendAndProve, newReading, newRepair, newRun, pass, rulesSeen, takeIn } from '../helpers/factories.js';
+import { makeBench, standsAt } from '../helpers/shared-bench.js';
 
 let shop: BrowserShop;
 const at: Record<string, string> = {};
@@ -21,6 +22,7 @@ const SIGNED_IN = [
   'withdrawn tag',
   'capture',
   'bench log',
+  'shared benches',
   'not found',
   'no such unit',
 ] as const;
@@ -60,6 +62,9 @@ beforeAll(async () => {
   });
   const capture = find.steps.find((step) => step.kind === 'capture');
 
+  await standsAt(server, await makeBench(server), technician);
+  await makeBench(server);
+
   Object.assign(at, {
     units: '/units',
     'none found': '/units?find=nothing-like-this',
@@ -74,6 +79,7 @@ beforeAll(async () => {
     'withdrawn tag': `/units/${broken.number}/tag`,
     capture: `/captures/${capture?.captureId ?? ''}`,
     'bench log': `/runs/${find.id}`,
+    'shared benches': '/benches',
     'not found': '/no/such/page',
     'no such unit': '/units/99999',
     'sign in': '/sign-in',

@@ -82,7 +82,7 @@ export function ShopFrame({
           <Wordmark />
         </Link>
         {user && mayDo(user.role, 'unit.read') && (
-          <nav aria-label="Main" className="word-tabs items-stretch!">
+          <nav aria-label="Main" className="word-tabs flex-wrap items-stretch!">
             <NavLink to={paths.units()}>Units</NavLink>
             <NavLink to={paths.board()}>Benches</NavLink>
             {mayDo(user.role, 'bench.read') && <NavLink to={paths.benches()}>Shared benches</NavLink>}

@@ -74,7 +74,7 @@ function Pins() {
       <h2 id="pins" className="section-heading">
         PINs
       </h2>
-      <p className="mb-2 max-w-[720px]">
+      <p className="my-3 max-w-[720px]">
         Each sets their own, under their account. Set one for somebody who forgot it; whoever knows another’s PIN can work in that name.
       </p>
       {pins.isPending && <Pending what="the PINs’ states" />}

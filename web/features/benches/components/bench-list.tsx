@@ -31,7 +31,7 @@ function BenchEntry({ bench, onToken }: { bench: Bench; onToken: OnToken }) {
           made {formatDate(bench.madeAt)} by {bench.madeBy.name}
         </p>
       </div>
-      <dl className="grid grid-cols-[70px_1fr] gap-x-3 gap-y-1">
+      <dl className="grid content-start grid-cols-[70px_1fr] gap-x-3 gap-y-1">
         <dt className="lab">people</dt>
         <dd>
           {bench.people.length === 0
