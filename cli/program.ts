@@ -6,6 +6,7 @@ import { completionCommands } from './tree/completion.js';
 import { paperCommands } from './tree/paper.js';
 import type { Does } from './tree/parts.js';
 import { peopleCommands } from './tree/people.js';
+import { rigCommands } from './tree/rig.js';
 import { runCommands } from './tree/runs.js';
 import { sheetCommands } from './tree/sheet.js';
 import { signingInCommands } from './tree/signing-in.js';
@@ -22,6 +23,7 @@ const GROUPS = [
   workCommands,
   runCommands,
   syncCommands,
+  rigCommands,
   paperCommands,
   sheetCommands,
   peopleCommands,

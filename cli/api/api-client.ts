@@ -1,3 +1,4 @@
+import { hostname } from 'node:os';
 import { PERSON_HEADER } from '../../shared/api/benches.js';
 import { problemSchema, PROBLEM_TYPE_PREFIX } from '../../shared/api/problem.js';
 import { benchMay } from '../../shared/api/roles.js';
@@ -17,6 +18,13 @@ import { ApiProblemError, NotSignedInError, ServerError, ServerUnreachableError,
 const QUESTION_TIMEOUT_MS = 15_000;
 const WRITE_TIMEOUT_MS = 120_000;
 
+/** By which the server's list of sessions says where this one is (server/auth/used-from.ts). */
+const AGENT = `refettle-terminal (${
+  hostname()
+    .replace(/[^\w.-]/g, '-')
+    .slice(0, 63) || 'unnamed'
+})`;
+
 export interface ApiRequest<N extends RouteName> {
   params?: RequestParams<N>;
   query?: RequestQuery<N>;
@@ -30,6 +38,8 @@ export interface ApiRequest<N extends RouteName> {
 export interface Api {
   readonly server: string;
   call<N extends RouteName>(name: N, request?: ApiRequest<N>): Promise<Answer<N>>;
+  /** The answer of a route that has a media type of its own, piece by piece: it may be long. */
+  pieces<N extends RouteName>(name: N, request?: ApiRequest<N>): AsyncIterable<Uint8Array>;
 }
 
 export interface ApiParts {
@@ -46,27 +56,45 @@ export interface ApiParts {
 export function createApi({ server, token, bench, signal, fetch: send = fetch }: ApiParts): Api {
   if (!/^https?:\/\/[^/]+/.test(server))
     throw new UsageError(`REFETTLE_SERVER is no address: '${server}'. Write it like http://127.0.0.1:4780`);
+  const asked = <N extends RouteName>(name: N, request: ApiRequest<N>) => {
+    const route: Route = routes[name];
+    const bearer = token();
+    const person = benchMay(route.action) === 'person' ? bench?.person() : undefined;
+    const quick = route.method === 'GET' && route.media === undefined;
+    const init = {
+      method: route.method,
+      headers: {
+        accept: route.media ?? 'application/json',
+        // The sessions of a person are told apart by it.
+        'user-agent': AGENT,
+        ...(request.body === undefined ? {} : { 'content-type': 'application/json' }),
+        ...(bearer === undefined ? {} : { authorization: `Bearer ${bearer}` }),
+        ...(person === undefined ? {} : { [PERSON_HEADER]: person }),
+        ...(request.idempotencyKey === undefined ? {} : { 'idempotency-key': request.idempotencyKey }),
+      },
+      ...(request.body === undefined ? {} : { body: JSON.stringify(request.body) }),
+      signal: AbortSignal.any([
+        ...(signal ? [signal] : []),
+        AbortSignal.timeout(request.timeoutMs ?? (quick ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS)),
+      ]),
+    };
+    return { route, url: `${server}${routeUrl(name, request as Parameters<typeof routeUrl>[1])}`, init };
+  };
   return {
     server,
+    async *pieces(name, request = {}) {
+      const { url, init } = asked(name, request);
+      try {
+        const response = await send(url, init);
+        if (response.status >= 400) throw problemOf(await readWhole(response, server), server, bench?.remedy);
+        yield* response.body as unknown as AsyncIterable<Uint8Array>;
+      } catch (error) {
+        throw notAnswered(error, server, init.signal);
+      }
+    },
     async call(name, request = {}) {
-      const route: Route = routes[name];
-      const bearer = token();
-      const person = benchMay(route.action) === 'person' ? bench?.person() : undefined;
-      const response = await ask(send, server, `${server}${routeUrl(name, request as Parameters<typeof routeUrl>[1])}`, {
-        method: route.method,
-        headers: {
-          accept: 'application/json',
-          ...(request.body === undefined ? {} : { 'content-type': 'application/json' }),
-          ...(bearer === undefined ? {} : { authorization: `Bearer ${bearer}` }),
-          ...(person === undefined ? {} : { [PERSON_HEADER]: person }),
-          ...(request.idempotencyKey === undefined ? {} : { 'idempotency-key': request.idempotencyKey }),
-        },
-        ...(request.body === undefined ? {} : { body: JSON.stringify(request.body) }),
-        signal: AbortSignal.any([
-          ...(signal ? [signal] : []),
-          AbortSignal.timeout(request.timeoutMs ?? (route.method === 'GET' ? QUESTION_TIMEOUT_MS : WRITE_TIMEOUT_MS)),
-        ]),
-      });
+      const { route, url, init } = asked(name, request);
+      const response = await ask(send, server, url, init);
       if (response.status >= 400) throw problemOf(response, server, bench?.remedy);
       const parsed = route.response.safeParse(response.status === 204 ? {} : response.json());
       if (!parsed.success) throw notOurs(server);
@@ -83,22 +111,30 @@ interface Response {
 
 async function ask(send: typeof fetch, server: string, url: string, init: RequestInit & { signal: AbortSignal }): Promise<Response> {
   try {
-    const response = await send(url, init);
-    const text = await response.text();
-    return {
-      status: response.status,
-      json: () => {
-        try {
-          return JSON.parse(text) as unknown;
-        } catch {
-          throw notOurs(server);
-        }
-      },
-    };
+    return await readWhole(await send(url, init), server);
   } catch (error) {
-    if (init.signal.aborted && !isTimeout(init.signal.reason)) throw new StoppedError();
-    throw new ServerUnreachableError(server, whyUnreachable(error), { cause: error });
+    throw notAnswered(error, server, init.signal);
   }
+}
+
+async function readWhole(response: globalThis.Response, server: string): Promise<Response> {
+  const text = await response.text();
+  return {
+    status: response.status,
+    json: () => {
+      try {
+        return JSON.parse(text) as unknown;
+      } catch {
+        throw notOurs(server);
+      }
+    },
+  };
+}
+
+function notAnswered(error: unknown, server: string, signal: AbortSignal): Error {
+  if (error instanceof ServerError) return error;
+  if (signal.aborted && !isTimeout(signal.reason)) return new StoppedError();
+  return new ServerUnreachableError(server, whyUnreachable(error), { cause: error });
 }
 
 const isTimeout = (reason: unknown): boolean => reason instanceof Error && reason.name === 'TimeoutError';

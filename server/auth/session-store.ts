@@ -30,24 +30,22 @@ export async function insertSession(db: Db, session: NewSession): Promise<string
   return id;
 }
 
-const usedSchema = z.object({ used: z.date().nullable(), user: userSchema });
+const usedSchema = userSchema.extend({ used: z.date().nullable() });
 
 /** Who holds this token: neither revoked nor expired, and somebody who still works here. Remembers that it was used. */
 export async function personOfToken(db: Db, token: string, now: Date): Promise<User | undefined> {
   const hash = tokenHash(token);
-  const row = (await db('sessions')
+  const row: unknown = await db('sessions')
     .join('people', 'people.id', 'sessions.person_id')
     .where({ token_hash: hash, active: true })
     .whereNull('revoked_at')
     .where('expires_at', '>', now)
-    .first('people.id', 'people.name', 'people.email', 'people.role', 'sessions.last_used_at as used')) as
-    Record<string, unknown> | undefined;
+    .first('people.id', 'people.name', 'people.email', 'people.role', 'sessions.last_used_at as used');
   if (row === undefined) return undefined;
-  const { used, ...rest } = row;
-  const session = usedSchema.parse({ used, user: rest });
-  if (session.used === null || now.getTime() - session.used.getTime() >= LAST_USED_TO_MS)
+  const { used, ...user } = usedSchema.parse(row);
+  if (used === null || now.getTime() - used.getTime() >= LAST_USED_TO_MS)
     await db('sessions').where({ token_hash: hash }).update({ last_used_at: now });
-  return session.user;
+  return user;
 }
 
 const rowSchema = z

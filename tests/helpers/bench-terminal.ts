@@ -63,6 +63,8 @@ export function benchTerminal({
     }),
     { isTTY: terminal, columns: 80, rows: 24 },
   );
+  // Nor can a terminal's be ended: inquirer ends what it has drawn on, after each prompt.
+  stderr.end = () => stderr;
   const context = createContext({
     env: { LANG: 'C.UTF-8', NO_COLOR: '1', REFETTLE_HOME: home, REFETTLE_SERVER: 'http://127.0.0.1:65534', ...env },
     stdin,

@@ -14,6 +14,7 @@ import { verdictSchema } from '../../shared/verdict.js';
 import type { BenchTerminal } from './bench-terminal.js';
 import { newUnit, shopFileText, takeIn } from './factories.js';
 import { examplePath } from './fixtures.js';
+import { PEOPLE_FORMS } from './people-forms.js';
 import type { TestServer } from './test-server.js';
 
 export type Form = 'pipe' | 'JSON' | 'terminal' | 'terminal without colour';
@@ -68,6 +69,7 @@ steps:
 `;
 
 export const COMMAND_FORMS: Record<string, CommandForm> = {
+  ...PEOPLE_FORMS,
   'sign-in': {
     as: null,
     call: ({ server, form }) => [server.people.sales.email, ...(form.startsWith('terminal') ? [] : ['--password-stdin'])],

@@ -38,17 +38,19 @@ function filtered(db: Db, { who, what, subject, from, to }: AuditFilter) {
     if (isUuid(who)) void query.where({ who_id: who });
     else {
       const email = who.trim().toLowerCase();
-      void query.where((either) =>
-        either.whereILike('who_name', containing(who.trim())).orWhereIn('who_id', db('people').select('id').where({ email_key: email })),
-      );
+      void query.where((either) => {
+        void either
+          .whereILike('who_name', containing(who.trim()))
+          .orWhereIn('who_id', db('people').select('id').where({ email_key: email }));
+      });
     }
   }
   if (what !== undefined) void query.where({ what });
   if (subject !== undefined) {
     const text = subject.trim();
-    void query.where((either) =>
-      either.where({ subject_kind: text }).orWhere({ subject_id: text }).orWhereILike('subject_name', containing(text)),
-    );
+    void query.where((either) => {
+      void either.where({ subject_kind: text }).orWhere({ subject_id: text }).orWhereILike('subject_name', containing(text));
+    });
   }
   if (from !== undefined) void query.where('at', '>=', new Date(from));
   if (to !== undefined) void query.where('at', '<', new Date(to));

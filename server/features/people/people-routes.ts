@@ -26,15 +26,15 @@ export function registerPeopleRoutes(
   deps: Pick<AppDependencies, 'config'>,
   limits: Record<'ownPassword' | 'personLink', RequestHandler[]>,
 ): void {
-  const { publicUrl } = deps.config;
+  const { publicUrl, publicListener } = deps.config;
 
   /**
-   * The address by which the admin has just reached us, for buyers' address may show nothing but tags; only where that is this machine's
-   * own, the public one. The token stands behind `#`: what stands there, no browser sends and no proxy logs.
+   * The address by which the admin has just reached us; only where that is this machine's own, the public one, unless that shows nothing
+   * but tags. The token stands behind `#`: what stands there, no browser sends and no proxy logs.
    */
   const linkOf = ({ token, person, kind, expiresAt }: Awaited<ReturnType<typeof linkFor>>, request: Request): MadeLink => {
     const own = ownOrigin(request, publicUrl);
-    const base = isLoopback(own) && publicUrl !== undefined ? publicUrl.replace(/\/+$/, '') : own;
+    const base = isLoopback(own) && publicUrl !== undefined && publicListener === undefined ? publicUrl.replace(/\/+$/, '') : own;
     return { person, link: { url: `${base}/link#${token}`, kind, expiresAt: expiresAt.toISOString(), onlyHere: isLoopback(base) } };
   };
 
