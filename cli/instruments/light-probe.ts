@@ -5,9 +5,9 @@ import { SampleTimeline, type ProbeEvent } from './sample-timeline.js';
 import { ScpiConversation } from './scpi-conversation.js';
 import type { Transport } from './transport.js';
 
-const COUNT_QUERY = 'SENSe:LAMP:COUNt?';
+export const COUNT_QUERY = 'SENSe:LAMP:COUNt?';
 const START = 'INITiate:CONTinuous ON';
-const STOP = 'INITiate:CONTinuous OFF';
+export const STOP = 'INITiate:CONTinuous OFF';
 /** No probe has more sensors than a panel has lamps, with room to spare. */
 const MOST_SENSORS = 64;
 /** Without a line for this long the probe is asked once more to send (it may have started again), then given up. */
@@ -38,15 +38,20 @@ export interface LightProbe {
   close(): Promise<void>;
 }
 
+/** How many sensors an answer to COUNT_QUERY says; undefined where it says nothing of the kind. */
+export function sensorCountOf(answer: string): number | undefined {
+  const count = Number(answer);
+  return Number.isInteger(count) && count >= 1 && count <= MOST_SENSORS ? count : undefined;
+}
+
 /** Stops a probe that may still be sending, falls into step with it, and asks how many sensors it has. */
 export async function openLightProbe(transport: Transport, options: LightProbeOptions): Promise<LightProbe> {
   const conversation = new ScpiConversation(transport, { passOver: isSampleLine });
   await conversation.tell(STOP);
   const { text: identification } = await conversation.identify();
   const answer = await conversation.ask(COUNT_QUERY);
-  const sensorCount = Number(answer);
-  if (!Number.isInteger(sensorCount) || sensorCount < 1 || sensorCount > MOST_SENSORS)
-    throw new GarbageError(transport, COUNT_QUERY, answer);
+  const sensorCount = sensorCountOf(answer);
+  if (sensorCount === undefined) throw new GarbageError(transport, COUNT_QUERY, answer);
 
   const stop = async (): Promise<void> => {
     // Asking for errors afterwards lets the samples that are still on their way run out. A probe that is gone needs no stopping.

@@ -121,7 +121,7 @@ export async function loadRig(home: string, file: string = join(home, RIG_FILE))
     text = await readFile(file, 'utf8');
   } catch {
     throw new BadInputError(
-      'there is no such rig file: write one with the instruments of this bench and their ports, or use --rig sim:heron-good',
+      'there is no such rig file: refettle rig check asks the ports of this machine and writes one; or use --rig sim:heron-good',
       { file },
     );
   }
