@@ -11,9 +11,17 @@ export const paths = {
   takeIn: () => '/units/new',
   board: () => '/board',
   benches: () => '/benches',
+  people: () => '/people',
+  person: (id: string) => `/people/${encodeURIComponent(id)}`,
+  account: () => '/account',
+  audit: (filter: { who?: string } = {}) => (filter.who === undefined ? '/audit' : `/audit?${new URLSearchParams(filter).toString()}`),
   unit: (number: number) => `/units/${unitNumber(number)}`,
   signOff: (number: number) => `${paths.unit(number)}/sign-off`,
-  unitTag: (number: number) => `${paths.unit(number)}/tag`,
+  unitTag: (number: number, print?: { format: string; with?: string | undefined }) => {
+    const query = new URLSearchParams(Object.entries(print ?? {}).flatMap(([key, value]) => (value ? [[key, value]] : [])));
+    return `${paths.unit(number)}/tag${query.size > 0 ? `?${query.toString()}` : ''}`;
+  },
+  unitLabels: (number: number, kind: 'stock' | 'price' = 'stock') => `${paths.unit(number)}/labels?kind=${kind}`,
   capture: (id: string) => `/captures/${encodeURIComponent(id)}`,
   run: (id: string) => `/runs/${encodeURIComponent(id)}`,
   lookUpTag: (tag?: string) => (tag === undefined ? '/t' : `/t?${new URLSearchParams({ tag }).toString()}`),

@@ -17,6 +17,7 @@ export const router = createBrowserRouter([
         Component: PublicLayout,
         children: [
           { path: 'sign-in', lazy: async () => ({ Component: (await import('./pages/sign-in-page.js')).SignInPage }) },
+          { path: 'link', lazy: async () => ({ Component: (await import('./pages/link-page.js')).LinkPage }) },
           { path: 'first-admin', lazy: async () => ({ Component: (await import('./pages/first-admin-page.js')).FirstAdminPage }) },
         ],
       },
@@ -42,6 +43,14 @@ export const router = createBrowserRouter([
               { path: 'units/:number/tag', lazy: async () => ({ Component: (await import('./pages/unit-tag-page.js')).UnitTagPage }) },
               { path: 'board', lazy: async () => ({ Component: (await import('./pages/board-page.js')).BoardPage }) },
               { path: 'benches', lazy: async () => ({ Component: (await import('./pages/benches-page.js')).BenchesPage }) },
+              {
+                path: 'units/:number/labels',
+                lazy: async () => ({ Component: (await import('./pages/unit-labels-page.js')).UnitLabelsPage }),
+              },
+              { path: 'people', lazy: async () => ({ Component: (await import('./pages/people-page.js')).PeoplePage }) },
+              { path: 'people/:id', lazy: async () => ({ Component: (await import('./pages/person-page.js')).PersonPage }) },
+              { path: 'account', lazy: async () => ({ Component: (await import('./pages/account-page.js')).AccountPage }) },
+              { path: 'audit', lazy: async () => ({ Component: (await import('./pages/audit-page.js')).AuditPage }) },
               { path: 'captures/:id', lazy: async () => ({ Component: (await import('./pages/capture-page.js')).CapturePage }) },
               { path: 'runs/:id', lazy: async () => ({ Component: (await import('./pages/run-page.js')).RunPage }) },
               { path: '*', Component: NotFoundPage },

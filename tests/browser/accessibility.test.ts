@@ -1,7 +1,7 @@
 import type { Page } from 'playwright-core';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { accessibilityFaults, DESK, expectNoSidewaysScroll, openShop, PHONE, settled, type BrowserShop } from '../helpers/browser.js';
-import { addHeron, mendAndProve, newReading, newRepair, newRun, pass, rulesSeen, takeIn } from '../helpers/factories.js';
+import { addHeron, mendAndProve, newLive, newReading, newRepair, newRun, pass, rulesSeen, takeIn } from '../helpers/factories.js';
 import { makeBench, standsAt } from '../helpers/shared-bench.js';
 
 let shop: BrowserShop;
@@ -10,6 +10,7 @@ const at: Record<string, string> = {};
 /** Every page there is, with something on it: a page that is blank has no faults. */
 const SIGNED_IN = [
   'units',
+  'board',
   'none found',
   'take in',
   'just taken in',
@@ -65,8 +66,11 @@ beforeAll(async () => {
   await standsAt(server, await makeBench(server), technician);
   await makeBench(server);
 
+  await server.ok('tellLive', { as: technician, body: newLive(intake.number) });
+
   Object.assign(at, {
     units: '/units',
+    board: '/board',
     'none found': '/units?find=nothing-like-this',
     'take in': '/units/new',
     'just taken in': `/units/${intake.number}`,

@@ -86,13 +86,17 @@ export function ShopFrame({
             <NavLink to={paths.units()}>Units</NavLink>
             <NavLink to={paths.board()}>Benches</NavLink>
             {mayDo(user.role, 'bench.read') && <NavLink to={paths.benches()}>Shared benches</NavLink>}
+            {mayDo(user.role, 'person.read') && <NavLink to={paths.people()}>People</NavLink>}
+            {mayDo(user.role, 'audit.read') && <NavLink to={paths.audit()}>Audit log</NavLink>}
             <NavLink to={paths.lookUpTag()}>Look up a tag</NavLink>
           </nav>
         )}
         {find && <FindBox />}
         {user && (
           <p className="top-who flex-col items-start! justify-center leading-tight">
-            {user.name}
+            <Link to={paths.account()} className="inline-flex min-h-6 items-center">
+              {user.name} <span className="sr-only">, your account</span>
+            </Link>
             <span className="lab">{user.role}</span>
           </p>
         )}

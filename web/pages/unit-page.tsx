@@ -1,5 +1,5 @@
-import { lazy, Suspense } from 'react';
-import { useQuery } from '@tanstack/react-query';
+import { lazy, Suspense, useCallback } from 'react';
+import { useQuery, useQueryClient } from '@tanstack/react-query';
 import { Link, useSearchParams } from 'react-router-dom';
 import { mayDo } from '../../shared/api/roles.js';
 import type { UnitPage as UnitPageData } from '../../shared/api/units.js';
@@ -8,8 +8,11 @@ import type { RuleResult } from '../../shared/readiness/readiness.js';
 import { PageHeading } from '../components/page-heading.js';
 import { ErrorNote, Fetched, Pending } from '../components/page-states.js';
 import { RatingPlate } from '../components/rating-plate.js';
+import { useLive } from '../features/live/api/hear-live.js';
+import { LivePanel } from '../features/live/components/live-panel.js';
+import type { LiveView } from '../features/live/live-source.js';
 import { sheetQuery } from '../features/sheets/api/get-sheet.js';
-import { unitQuery } from '../features/units/api/get-unit.js';
+import { LOOK_AGAIN_MS, unitQuery } from '../features/units/api/get-unit.js';
 import { BeforeAfter } from '../features/units/components/before-after.js';
 import { GateBanner } from '../features/units/components/gate-banner.js';
 import { HangingTag } from '../features/units/components/hanging-tag.js';
@@ -30,13 +33,16 @@ export function UnitPage() {
 
 function Unit({ number }: { number: number }) {
   const signedIn = useSignedIn();
-  const unit = useQuery(unitQuery(number));
+  const client = useQueryClient();
+  const changed = useCallback(() => void client.invalidateQueries({ queryKey: unitQuery(number).queryKey }), [client, number]);
+  const live = useLive(number, changed);
+  const unit = useQuery({ ...unitQuery(number), refetchInterval: live.up ? false : LOOK_AGAIN_MS });
   return (
     <Fetched query={unit} what={`unit ${unitNumber(number)}`}>
       {(page) => (
         <>
           {unit.isError && <ErrorNote error={unit.error} retry={() => void unit.refetch()} />}
-          <UnitInFull page={page} signedIn={signedIn} />
+          <UnitInFull page={page} signedIn={signedIn} live={live} />
         </>
       )}
     </Fetched>
@@ -74,7 +80,7 @@ function Complaint({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn 
   );
 }
 
-function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn }) {
+function UnitInFull({ page, signedIn, live }: { page: UnitPageData; signedIn: SignedIn; live: LiveView }) {
   const { unit, readiness, tag, energising } = page;
   const { user, shop } = signedIn;
   const [query, setQuery] = useSearchParams();
@@ -115,13 +121,20 @@ function UnitInFull({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn
           />
         </aside>
       </div>
+      <LivePanel live={live} />
       <GateBanner gate={energising} number={unit.number} mayOverride={mayDo(user.role, 'override.record')} />
       <div className="mt-5 flex flex-wrap gap-3">
         {tag && (
           <Link className={stands ? 'button' : 'button button-plain'} to={paths.unitTag(unit.number)}>
-            {stands ? 'Open the tag' : 'Open the withdrawn tag'}
+            {stands ? 'Print the tag' : 'Open the withdrawn tag'}
           </Link>
         )}
+        <Link className="button button-plain" to={paths.unitLabels(unit.number, 'stock')}>
+          Stock label
+        </Link>
+        <Link className="button button-plain" to={paths.unitLabels(unit.number, 'price')}>
+          Price label
+        </Link>
         {mayRepair && !repairing && (
           <button type="button" className="button button-plain" onClick={() => setRepairing(true)}>
             Record a repair
