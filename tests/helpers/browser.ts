@@ -32,7 +32,7 @@ export interface OpenPage {
   complaints: string[];
 }
 
-function chromiumPath(): string {
+export function chromiumPath(): string {
   const found = [
     process.env['CHROMIUM'],
     '/usr/bin/chromium-headless-shell',
