@@ -4,6 +4,7 @@ import { viewCapture } from '../decode/view-capture.js';
 import type { Capture } from '../lamps/capture.js';
 import { readCapture } from '../lamps/read-capture.js';
 import { judgeExpectation } from '../script/judge-expect.js';
+import { holesOf } from '../lamps/holes.js';
 import { judgeWatch, watchSpec } from '../script/judge-watch.js';
 import { peopleOf, type RunLog, type StepResult } from '../script/run-log.js';
 import { isJudged, runVerdict } from '../script/run-verdict.js';
@@ -101,7 +102,7 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
         if (step?.kind !== 'watch') throw new BadInputError(`the script has no watch step '${result.stepId}'`);
         const capture = keepCapture(result, false);
         const body = bodies.get(result.captureId) as CaptureBody;
-        const { seconds, verdict, reason } = judgeWatch(viewCapture(capture, sheet), watchSpec(step, sheet), body.answer.durationS);
+        const { seconds, verdict, reason } = judgeWatch(viewCapture(capture, sheet), watchSpec(step, sheet), body.answer.durationS, holesOf(capture));
         const { capturedAt, headerUnit } = body;
         const watched = {
           seconds,

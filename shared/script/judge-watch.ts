@@ -1,4 +1,5 @@
 import type { DecodeView } from '../decode/answer.js';
+import type { CaptureHole } from '../lamps/holes.js';
 import type { CalibrationBody } from '../history/events.js';
 import type { Sheet } from '../sheet/schema.js';
 import type { StepOf } from './schema.js';
@@ -25,15 +26,19 @@ export function watchSpec(step: StepOf<'watch'>, sheet: Sheet): WatchSpec {
   return { begins: step.begins ?? {}, ends: step.ends ?? {}, withinS: step.withinS ?? [0, 0] };
 }
 
+/** An edge is told within this (contract, section 3). */
+const EDGE_SECONDS = 0.5;
+
 type Lit = readonly { fromS: number; toS: number }[];
 const litAt = (lit: Lit, atS: number): boolean => lit.some((stretch) => stretch.fromS <= atS && atS < stretch.toS);
 
 /**
  * Whether and when a lamp pattern came and went within its time.
  *
- * Takes the lit stretches of each lamp (`viewCapture`), the spec, and how long the capture is in seconds.
+ * Takes the lit stretches of each lamp (`viewCapture`), the spec, how long the capture is in seconds, and its holes (`holesOf`).
  * Pass: begun, and ended no sooner than the least and no later than the most. Fail: ended outside that, or still going past the most.
- * Inconclusive: never begun, or the capture stopped before it could end. `over` says that nothing later can change the verdict.
+ * Inconclusive: never begun, the capture stopped before it could end, or nothing was seen when it mattered: while an end could have
+ * come and gone, or around an edge on which the verdict depends. `over` says that nothing later can change the verdict.
  *
  * @example judgeWatch(view, spec, 170).verdict // 'pass', with seconds 150
  */
@@ -41,6 +46,7 @@ export function judgeWatch(
   view: DecodeView,
   spec: WatchSpec,
   durationS: number,
+  holes: readonly CaptureHole[] = [],
 ): Pick<CalibrationBody, 'seconds' | 'verdict' | 'reason'> & { over: boolean; begun: boolean } {
   const lampOf = (id: string): Lit => view.lamps.find((lamp) => lamp.id === id)?.lit ?? [];
   const holds = (pattern: WatchSpec['begins'], atS: number): boolean =>
@@ -55,10 +61,13 @@ export function judgeWatch(
   // The end holds to the last sample: a dropout on the way is no end.
   const lastBroken = edges.findLastIndex((atS) => !holds(spec.ends, atS));
   const heldFromS = edges[lastBroken + 1];
-  const endedS = heldFromS !== undefined && heldFromS > beganS && durationS - heldFromS >= ENDED_HOLD_SECONDS ? heldFromS : undefined;
+  const endedS =
+    heldFromS !== undefined && heldFromS > beganS && seenAfter(heldFromS, durationS, holes) >= ENDED_HOLD_SECONDS ? heldFromS : undefined;
+  const blind = holes.find(({ fromS, toS }) => toS - fromS >= ENDED_HOLD_SECONDS && fromS > beganS && toS < (endedS ?? durationS));
   if (endedS === undefined) {
     const seconds = durationS - beganS;
     const late = seconds > mostS + ENDED_HOLD_SECONDS;
+    if (late && blind) return { seconds, verdict: 'inconclusive', reason: blindReason(blind), over: true, begun: true };
     return {
       seconds,
       verdict: late ? 'fail' : 'inconclusive',
@@ -68,9 +77,34 @@ export function judgeWatch(
     };
   }
   const seconds = endedS - beganS;
-  const verdict = seconds >= leastS && seconds <= mostS ? 'pass' : 'fail';
+  if (blind) return { seconds, verdict: 'inconclusive', reason: blindReason(blind), over: true, begun: true };
+  // What changed while nothing was seen shows at the end of the hole; it may have changed at its beginning.
+  const inHole = (edgeS: number): number => {
+    const hole = holes.find(({ toS }) => Math.abs(toS - edgeS) <= EDGE_SECONDS);
+    return hole === undefined ? 0 : edgeS - hole.fromS;
+  };
+  const isInside = (length: number): boolean => length >= leastS && length <= mostS;
+  const verdict = isInside(seconds) ? 'pass' : 'fail';
+  const [shortest, longest] = [seconds - inHole(endedS), seconds + inHole(beganS)];
+  if (isInside(shortest) !== isInside(seconds) || isInside(longest) !== isInside(seconds))
+    return {
+      seconds,
+      verdict: 'inconclusive',
+      reason: `between ${clock(shortest)} and ${clock(longest)}: nothing was seen when it ${inHole(endedS) > 0 ? 'ended' : 'began'}`,
+      over: true,
+      begun: true,
+    };
   return { seconds, verdict, reason: `${clock(seconds)}, the sheet allows ${clock(leastS)} to ${clock(mostS)}`, over: true, begun: true };
 }
+
+/** How much was seen from a time on. */
+function seenAfter(fromS: number, durationS: number, holes: readonly CaptureHole[]): number {
+  const unseen = holes.reduce((sum, hole) => sum + Math.max(0, hole.toS - Math.max(hole.fromS, fromS)), 0);
+  return durationS - fromS - unseen;
+}
+
+const blindReason = ({ fromS, toS }: CaptureHole): string =>
+  `nothing was seen from ${clock(fromS)} to ${clock(toS)}: an end may have come and gone`;
 
 /** Minutes and seconds as they are read off a clock: 150 is 2:30. */
 export const clock = (seconds: number): string =>

@@ -1,4 +1,5 @@
 import { viewCapture } from '../../../shared/decode/view-capture.js';
+import { holesOf } from '../../../shared/lamps/holes.js';
 import { readCapture } from '../../../shared/lamps/read-capture.js';
 import { clock, judgeWatch, watchSpec } from '../../../shared/script/judge-watch.js';
 import { captureText } from '../../journal/capture-file.js';
@@ -22,8 +23,10 @@ export const runWatch: StepRunner<'watch'> = async (step, bench, start) => {
   const seconds = BEGINS_WITHIN_S + mostS + SETTLES_S;
   await bench.checkSensors();
   rig.hands?.lampsShow(step.id, 'watch');
-  const over = (window: LampWindow): boolean =>
-    judgeWatch(viewCapture(window.capture().capture, sheet), spec, window.lastUs / 1_000_000).over;
+  const over = (window: LampWindow): boolean => {
+    const { capture } = window.capture();
+    return judgeWatch(viewCapture(capture, sheet), spec, window.lastUs / 1_000_000, holesOf(capture)).over;
+  };
   const { ended } = await recordLamps({
     context,
     captureId: start.captureId,
@@ -46,7 +49,7 @@ export const runWatch: StepRunner<'watch'> = async (step, bench, start) => {
     return { result: { ...resultBase(step, bench, start), kind: 'cut', captureId: start.captureId, file }, rest: 'stop' };
   const capture = readCapture(file);
   const durationS = (capture.endUs ?? capture.timesUs.at(-1) ?? 0) / 1_000_000;
-  const judged = judgeWatch(viewCapture(capture, sheet), spec, durationS);
+  const judged = judgeWatch(viewCapture(capture, sheet), spec, durationS, holesOf(capture));
   const watched = { seconds: judged.seconds, verdict: judged.verdict, reason: judged.reason, captureId: start.captureId };
   const result = {
     ...resultBase(step, bench, start),

@@ -51,6 +51,41 @@ describe('Watching a calibration run', () => {
       begun: true,
     });
   });
+  // Computed by hand from the rule: what changed in a hole shows at its end and may have changed at its beginning; 2:00 to 3:00 is allowed.
+  test.each([
+    [
+      'the end falls into one and may have come too soon',
+      { fromS: 3, toS: 153 },
+      [{ fromS: 119, toS: 153 }],
+      'inconclusive',
+      /between 1:56 and 2:30/,
+    ],
+    [
+      'the beginning falls into one and may have been too long ago',
+      { fromS: 20, toS: 190 },
+      [{ fromS: 2, toS: 20 }],
+      'inconclusive',
+      /between 2:50 and 3:08/,
+    ],
+    ['the end falls into one that changes nothing', { fromS: 3, toS: 153 }, [{ fromS: 151, toS: 153 }], 'pass', /2:30/],
+    ['a long one lies between', { fromS: 3, toS: 153 }, [{ fromS: 40, toS: 46 }], 'inconclusive', /nothing was seen from 0:40 to 0:46/],
+    ['a short one lies between', { fromS: 3, toS: 153 }, [{ fromS: 40, toS: 44 }], 'pass', /2:30/],
+    ['one lies before', { fromS: 30, toS: 180 }, [{ fromS: 2, toS: 22 }], 'pass', /2:30/],
+  ] as const)('When nothing was seen for a while and %s, then it is judged so', (_where, lock, holes, verdict, reason) => {
+    const judged = judgeWatch(viewOf({ lock: [lock] }), calibration, lock.toS + 10, holes);
+    expect(judged).toMatchObject({ verdict, over: true });
+    expect(judged.reason).toMatch(reason);
+  });
+  test('When the probe was away until the end, then darkness that nobody saw is no end', () => {
+    expect(judgeWatch(viewOf({ lock: [{ fromS: 3, toS: 153 }] }), calibration, 170, [{ fromS: 155, toS: 170 }])).toMatchObject({
+      verdict: 'inconclusive',
+      over: false,
+    });
+  });
+  test('When it is still going after the most and a long hole lies in it, then it may have ended unseen', () => {
+    expect(judgeWatch(viewOf({ lock: [{ fromS: 3, toS: 200 }] }), calibration, 200, [{ fromS: 60, toS: 80 }]).verdict).toBe('inconclusive');
+  });
+
   test('When the lock lamp blinks dark for a second in between, then that is no end', () => {
     const view = viewOf({
       lock: [
