@@ -1,12 +1,16 @@
 import { useQuery } from '@tanstack/react-query';
-import { Link } from 'react-router-dom';
+import { Link, useSearchParams } from 'react-router-dom';
 import { mayDo } from '../../shared/api/roles.js';
 import type { TagPage } from '../../shared/api/tags.js';
+import { TAG_FORMATS } from '../../shared/paper/sizes.js';
 import { Caution } from '../components/caution.js';
 import { PageHeading } from '../components/page-heading.js';
 import { Fetched } from '../components/page-states.js';
+import { printPaper } from '../components/paper.js';
 import { unitTagQuery } from '../features/tags/api/get-unit-tag.js';
-import { TagSheet } from '../features/tags/components/tag-sheet.js';
+import { PrintedTags } from '../features/tags/components/printed-tags.js';
+import { TagFormatTabs } from '../features/tags/components/tag-format-tabs.js';
+import { useTagsBeside } from '../features/tags/components/tags-beside.js';
 import { TagStanding } from '../features/tags/components/tag-standing.js';
 import { mendedInWords } from '../features/tags/components/tag-words.js';
 import { TestedList } from '../features/tags/components/tested-list.js';
@@ -35,9 +39,12 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
   const { user } = useSignedIn();
   const { content } = tag;
   const stands = tag.state.standing === 'stands';
+  const [query] = useSearchParams();
+  const format = TAG_FORMATS.find((one) => one === query.get('format')) ?? 'a6';
+  const beside = useTagsBeside(unit, query.get('with') ?? '');
   return (
-    <div className="grid items-start gap-x-11 gap-y-6 min-[1100px]:grid-cols-[auto_minmax(0,1fr)]">
-      <div className="beside-tag max-w-[620px] min-w-0 min-[1100px]:order-last">
+    <div className="paper-beside grid items-start gap-x-11 gap-y-6 min-[1100px]:grid-cols-[minmax(0,auto)_minmax(0,1fr)]">
+      <div className="beside-paper max-w-[620px] min-w-0 min-[1100px]:order-last">
         <TagStanding
           stands={stands}
           sample={content.sample}
@@ -59,10 +66,16 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
             </p>
           )}
         </TagStanding>
+        {stands && (
+          <>
+            <TagFormatTabs format={format} linkTo={(one) => paths.unitTag(unit, { format: one, with: query.get('with') ?? undefined })} />
+            {beside.form}
+          </>
+        )}
         <div className="mt-4 flex flex-wrap gap-3">
           {stands && (
-            <button type="button" className="button" onClick={() => window.print()}>
-              Print it, A6
+            <button type="button" className="button" onClick={() => void printPaper()}>
+              Print it
             </button>
           )}
           <Link className="button button-plain" to={paths.unit(unit)}>
@@ -84,8 +97,8 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
         {stands && mayDo(user.role, 'tag.withdraw') && <WithdrawForm unit={unit} tag={content.tag} />}
       </div>
       {stands && (
-        <div>
-          <TagSheet tag={tag} />
+        <div className="min-w-0">
+          <PrintedTags tags={[tag, ...beside.tags]} format={format} />
         </div>
       )}
     </div>

@@ -1,0 +1,45 @@
+import type { Shop } from '../../../../shared/api/sessions.js';
+import type { UnitPage } from '../../../../shared/api/units.js';
+import { labelPaper, type PriceLabel, type StockLabel } from '../../../../shared/paper/label-paper.js';
+import type { LabelSize } from '../../../../shared/paper/sizes.js';
+import { unitAddress } from '../../../../shared/paper/unit-address.js';
+import { PaperPages, WithPrintedCodes } from '../../../components/paper.js';
+import { formatDate, formatMoney, unitNumber } from '../../../lib/format.js';
+import type { PrintedCodes } from '../../../lib/printed-codes.js';
+
+/** Which label, and what of it does not stand in the books. */
+export type LabelWish = { kind: 'stock'; code: 'qr' | 'bars' } | { kind: 'price'; priceMinor: number; grade: string };
+
+/** A label of a unit as it is printed. */
+export function UnitLabel({ page, shop, wish, size }: { page: UnitPage; shop: Shop; wish: LabelWish; size: LabelSize }) {
+  return (
+    <WithPrintedCodes>
+      {(codes) => (
+        <PaperPages
+          paper={labelPaper(wish.kind === 'stock' ? stockLabel(page, wish.code, codes) : priceLabel(page, shop, wish), size)}
+          label={`${wish.kind === 'stock' ? 'Stock' : 'Price'} label of No. ${unitNumber(page.unit.number)} as printed`}
+        />
+      )}
+    </WithPrintedCodes>
+  );
+}
+
+function stockLabel({ unit }: UnitPage, code: 'qr' | 'bars', codes: PrintedCodes): StockLabel {
+  const number = unitNumber(unit.number);
+  const { maker, model, serial } = unit.plate;
+  return {
+    ...{ kind: 'stock', number, maker, model, appliance: unit.appliance, serial, takenIn: formatDate(unit.takenInAt) },
+    ...{ licensedOnly: unit.licensedOnly, qr: codes.qr(unitAddress(window.location.origin, number)), bars: codes.bars(number), code },
+  };
+}
+
+function priceLabel({ unit, tag }: UnitPage, shop: Shop, { priceMinor, grade }: LabelWish & { kind: 'price' }): PriceLabel {
+  const { maker, model } = unit.plate;
+  return {
+    ...{ kind: 'price', number: unitNumber(unit.number), maker, model, appliance: unit.appliance },
+    price: formatMoney(priceMinor, shop.currency),
+    grade: grade.trim() || undefined,
+    tag: tag?.standing === 'stands' ? tag.number : undefined,
+    shop: { name: shop.name, phone: shop.phone },
+  };
+}
