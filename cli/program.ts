@@ -14,6 +14,7 @@ import { syncCommands } from './tree/sync.js';
 import { unitCommands } from './tree/unit.js';
 import { commandsWithoutServer } from './tree/without-server.js';
 import { workCommands } from './tree/work.js';
+import { ownVersion } from './version.js';
 
 /** One file a noun in `tree/`, in the order of the help text: each adds its commands to the program. */
 const GROUPS = [
@@ -51,6 +52,7 @@ export async function runProgram(args: readonly string[], context: Context): Pro
 export function createProgram(context: Context, done: (code: number) => void): Command {
   const program = new Command('refettle')
     .description('The bench companion of people who mend used household appliances.')
+    .version(ownVersion(), '--version', 'print the version')
     .exitOverride()
     .showHelpAfterError('(refettle --help lists what there is)')
     .configureOutput({
