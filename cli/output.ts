@@ -34,6 +34,7 @@ export interface Style {
   readonly columns: number;
 }
 
+/** Where the terminal doesn't say, or says 0, as one does that nobody has given a size. */
 const USUAL_COLUMNS = 80;
 const USUAL_ROWS = 24;
 
@@ -56,14 +57,14 @@ export function outputOn(stream: RawOutput, env: Environment): Output {
   const write = (text: string): void => void stream.write(unicode ? text : toAscii(text));
   return {
     write,
-    say: (text) => write(`${isTerminal ? wrapLines(text, (stream.columns ?? USUAL_COLUMNS) - 1) : text}\n`),
+    say: (text) => write(`${isTerminal ? wrapLines(text, (stream.columns || USUAL_COLUMNS) - 1) : text}\n`),
     writeExactly: (text) => void stream.write(text),
     isTerminal,
     get columns() {
-      return stream.columns ?? USUAL_COLUMNS;
+      return stream.columns || USUAL_COLUMNS;
     },
     get rows() {
-      return stream.rows ?? USUAL_ROWS;
+      return stream.rows || USUAL_ROWS;
     },
     colourLevel,
     unicode,
@@ -75,7 +76,7 @@ export function outputOn(stream: RawOutput, env: Environment): Output {
         unicode,
         // Asked for at each drawing: a terminal may be resized.
         get columns() {
-          return stream.columns ?? USUAL_COLUMNS;
+          return stream.columns || USUAL_COLUMNS;
         },
       };
     },

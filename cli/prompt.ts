@@ -82,7 +82,9 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
     }
   };
   const pickFrom = async (question: PickQuestion): Promise<string | undefined> => {
-    const { choices, search } = question;
+    const { search } = question;
+    // What stays on the screen of an answer is its first column.
+    const choices = question.choices.map((choice) => ({ ...choice, short: choice.name.split(/ {2,}/, 1)[0] ?? choice.name }));
     const { ink } = await output.style();
     const escape = new AbortController();
     const onKeypress = (_text: string | undefined, key: { name?: string } | undefined): void => {
@@ -108,13 +110,7 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
     };
     stdin.on('keypress', onKeypress);
     try {
-      return await ask(
-        question,
-        search
-          ? { ...list, type: 'search', source: found }
-          : { ...list, type: 'select', choices: choices.map((choice) => ({ ...choice })) },
-        escape.signal,
-      );
+      return await ask(question, search ? { ...list, type: 'search', source: found } : { ...list, type: 'select', choices }, escape.signal);
     } catch (error) {
       if (escape.signal.aborted && error instanceof Error && error.name === 'AbortPromptError') return undefined;
       throw error;
