@@ -5,8 +5,8 @@ import type { OpenRig, ProbeEvent } from '../instruments/rig.js';
 /** Where lamp levels come from: a light probe, or a technician's fingers. */
 export interface LampSource {
   header: Pick<CaptureHeader, 'source' | 'scale' | 'sampleRateHz' | 'clock'>;
-  /** Levels and gaps until `signal` aborts; the probe is stopped then, whatever ended it. */
-  read(signal: AbortSignal): AsyncGenerator<ProbeEvent, void, undefined>;
+  /** Levels and gaps until `signal` aborts; the probe is stopped then, whatever ended it. `notice` takes what is said while it is waited for. */
+  read(signal: AbortSignal, notice?: (line: string) => void): AsyncGenerator<ProbeEvent, void, undefined>;
   /** When the technician of a simulated rig presses `next`, in microseconds. */
   simulatedMarks: readonly number[];
   /** Takes a key and says whether it meant something here. */
@@ -25,7 +25,7 @@ export async function probeSource(rig: OpenRig, sheet: Sheet): Promise<LampSourc
       sampleRateHz: probe.sampleRateHz,
       clock: 'probe',
     },
-    read: (signal) => probe.read(signal),
+    read: (signal, notice) => probe.read(signal, notice),
     simulatedMarks: rig.hands?.marks() ?? [],
     takeKey: () => false,
     elapsedUs: () => undefined,

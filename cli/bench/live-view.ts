@@ -60,6 +60,8 @@ export interface ViewParts {
   attended: boolean;
   /** A watch waits for something: no codes are asked for. */
   waitsFor?: string | undefined;
+  /** Goes before everything else that is to be done. */
+  notice?: string | undefined;
 }
 
 /** The live view as lines: lanes, phases, code, lamp face, what to do, keys. What there is no room for is left out from the face up. */
@@ -94,7 +96,7 @@ export function liveLines(parts: ViewParts, style: Style, rows: number): string[
   );
   const foot = [
     ...(parts.byKeys ? [keyRow(window, sheet, style)] : []),
-    ...wrap(whatNow(parts), columns - 3).map((line) => ` ${ink.bold(line)}`),
+    ...wrap(parts.notice ?? whatNow(parts), columns - 3).map((line) => ` ${ink.bold(line)}`),
     ...(parts.attended ? [keyLine(parts, style)] : []),
   ];
   const room = rows - 2 - strip.length - foot.length - 1;

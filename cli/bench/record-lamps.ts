@@ -21,6 +21,8 @@ export interface Watcher {
   /** After each sample or gap. True: it is over. */
   seen(window: LampWindow): boolean;
   marked(window: LampWindow): void;
+  /** Something that the technician must know while it goes on: an unplugged probe is waited for. */
+  notice?(line: string): void;
   /** Gives the screen back. */
   close(): void;
 }
@@ -102,7 +104,7 @@ export async function recordLamps(parts: RecordingParts): Promise<{ file: Captur
   }, TICK_MS);
   const marks = [...source.simulatedMarks];
   try {
-    for await (const event of source.read(stop.signal)) {
+    for await (const event of source.read(stop.signal, (line) => (watcher.notice ? watcher.notice(line) : context.stderr.say(line)))) {
       if (event.kind === 'sample' && event.tUs > limitUs) {
         full = true;
         break;

@@ -12,6 +12,8 @@ const DRAW_EVERY_MS = 250;
 /** The decoder looks again every second, and never takes more than a tenth of the time. */
 const UNDERSTAND_EVERY_MS = 1000;
 const REST_FACTOR = 10;
+/** A notice stands until the next one, which comes every ten seconds while something is waited for. */
+const NOTICE_STANDS_MS = 12_000;
 /** Where nobody watches: one line in so many seconds of the capture, fewer where something is only waited for. */
 const PROGRESS_EVERY_S = 10;
 const WAITING_EVERY_S = 30;
@@ -41,6 +43,7 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
   let understood: Understanding = NOTHING_YET;
   let understandAgainMs = 0;
   let closed = false;
+  let notice: { line: string; untilMs: number } | undefined;
 
   const draw = (): void => {
     if (!window || closed) return;
@@ -61,6 +64,7 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
           seconds: controls.seconds,
           byKeys,
           waitsFor,
+          notice: notice !== undefined && startedMs < notice.untilMs ? notice.line : undefined,
           attended: parts.attended && context.interactive,
         },
         style,
@@ -83,6 +87,12 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
       window = markedWindow;
       // The next code was brought up: what has shown so far is no longer the one to judge.
       understandAgainMs = 0;
+    },
+    notice(line) {
+      notice = { line, untilMs: performance.now() + NOTICE_STANDS_MS };
+      // Before the first sample nothing is drawn yet.
+      if (!window) stderr.say(line);
+      draw();
     },
     close() {
       clearInterval(timer);
@@ -123,6 +133,7 @@ function quietWatcher(parts: WatchingParts, controls: Controls): Watcher {
       return over(window);
     },
     marked: () => context.stderr.say('  next code'),
+    notice: (line) => context.stderr.say(`  ${line}`),
     close: () => undefined,
   };
 }
