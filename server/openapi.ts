@@ -1,6 +1,7 @@
 import { z } from 'zod';
 import { problemSchema } from '../shared/api/problem.js';
-import { ROLES_BY_ACTION } from '../shared/api/roles.js';
+import { PERSON_HEADER } from '../shared/api/benches.js';
+import { benchMay, ROLES_BY_ACTION } from '../shared/api/roles.js';
 import { routes, type Route } from '../shared/api/routes.js';
 import { SESSION_COOKIE } from './auth/session-cookie.js';
 import { IDEMPOTENCY_HEADER } from './idempotency.js';
@@ -39,7 +40,19 @@ const lastEventIdHeader: Json = {
   schema: { type: 'string', maxLength: 40 },
 };
 
-const headers = (route: Route): Json[] => [...(route.idempotent ? [idempotencyHeader] : []), ...(route.stream ? [lastEventIdHeader] : [])];
+const personHeader: Json = {
+  name: PERSON_HEADER,
+  in: 'header',
+  required: false,
+  description: 'By a shared bench’s token only, and then needed: the id of who does it, somebody who has signed on at that bench.',
+  schema: { type: 'string', format: 'uuid' },
+};
+
+const headers = (route: Route): Json[] => [
+  ...(route.idempotent ? [idempotencyHeader] : []),
+  ...(route.stream ? [lastEventIdHeader] : []),
+  ...(benchMay(route.action) === 'person' ? [personHeader] : []),
+];
 
 const problemResponse = (description: string): Json => ({
   description,
@@ -61,13 +74,15 @@ function problemResponses(route: Route, isPublic: boolean): Json {
 function operation(name: string, route: Route): Json {
   const roles: readonly string[] = ROLES_BY_ACTION[route.action];
   const isPublic = roles.includes('public');
+  const bench = benchMay(route.action);
   const all = [...parameters(route.params, 'path'), ...parameters(route.query, 'query'), ...headers(route)];
   return {
     operationId: name,
     summary: route.summary,
     'x-roles': roles,
-    // Either of them.
-    security: isPublic ? [] : [{ bearer: [] }, { cookie: [] }],
+    ...(bench === undefined ? {} : { 'x-bench': bench }),
+    // Either of them; a bench has no cookie.
+    security: isPublic ? [] : roles.length === 0 ? [{ bearer: [] }] : [{ bearer: [] }, { cookie: [] }],
     ...(all.length > 0 ? { parameters: all } : {}),
     ...(route.body
       ? { requestBody: { required: true, content: { 'application/json': { schema: jsonSchema(route.body, 'input') } } } }
@@ -116,7 +131,12 @@ export function openApiDocument(): Json {
     paths,
     components: {
       securitySchemes: {
-        bearer: { type: 'http', scheme: 'bearer', description: 'RFC 6750, in the Authorization header only.' },
+        bearer: {
+          type: 'http',
+          scheme: 'bearer',
+          description:
+            'RFC 6750, in the Authorization header only: a person’s, or a shared bench’s, which does what x-bench says: alone by itself, person for who signed on.',
+        },
         cookie: {
           type: 'apiKey',
           in: 'cookie',

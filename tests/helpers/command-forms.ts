@@ -11,6 +11,7 @@ import { decodeAnswerSchema } from '../../shared/decode/answer.js';
 import { repairBodySchema, unitEventSchema } from '../../shared/history/events.js';
 import { judgementSchema } from '../../shared/measure/judge.js';
 import { verdictSchema } from '../../shared/verdict.js';
+import { BENCH_FORMS } from './bench-forms.js';
 import type { BenchTerminal } from './bench-terminal.js';
 import { newUnit, shopFileText, takeIn } from './factories.js';
 import { examplePath } from './fixtures.js';
@@ -69,6 +70,7 @@ steps:
 `;
 
 export const COMMAND_FORMS: Record<string, CommandForm> = {
+  ...BENCH_FORMS,
   ...PEOPLE_FORMS,
   'sign-in': {
     as: null,

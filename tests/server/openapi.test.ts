@@ -1,12 +1,13 @@
 import request from 'supertest';
 import { afterAll, beforeAll, expect, test } from 'vitest';
-import { ROLES_BY_ACTION } from '../../shared/api/roles.js';
+import { benchMay, ROLES_BY_ACTION } from '../../shared/api/roles.js';
 import { routes, type Route } from '../../shared/api/routes.js';
 import { startTestServer, type TestServer } from '../helpers/test-server.js';
 
 interface Operation {
   operationId: string;
   'x-roles': string[];
+  'x-bench'?: string;
   security: unknown[];
   parameters?: { name: string; in: string; required: boolean; schema: { type?: string; maximum?: number } }[];
   requestBody?: { content: Record<string, { schema: Record<string, unknown> }> };
@@ -42,7 +43,12 @@ test('When the document is read, then it is OpenAPI 3.1 and describes every rout
 test.each(table)('When %s is described, then its roles are those that the server asks', (_name, route) => {
   const operation = operationOf(route);
   expect(operation?.['x-roles']).toEqual(ROLES_BY_ACTION[route.action]);
-  expect(operation?.security).toEqual(operation?.['x-roles'].includes('public') ? [] : [{ bearer: [] }, { cookie: [] }]);
+  const byOneself = [{ bearer: [] }, { cookie: [] }];
+  const forABench = [{ bearer: [] }];
+  const roles = operation?.['x-roles'] ?? [];
+  expect(operation?.security).toEqual(roles.includes('public') ? [] : roles.length === 0 ? forABench : byOneself);
+  expect(operation?.['x-bench']).toBe(benchMay(route.action));
+  expect(operation?.parameters?.some(({ name }) => name === 'Refettle-Person') ?? false).toBe(benchMay(route.action) === 'person');
 });
 
 test.each(table)('When %s is described, then its parts are the ones that it checks', (_name, route) => {

@@ -1,9 +1,11 @@
 // Whatever comes in: refused or stored, never a fault of ours, and never an answer that breaks its own schema.
 import fc from 'fast-check';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import { ROLES_BY_ACTION } from '../../shared/api/roles.js';
 import { routes, type Route, type RouteName } from '../../shared/api/routes.js';
 import { addHeron, takeIn } from '../helpers/factories.js';
-import { problemIn, startTestServer, type SignedInPerson, type TestServer } from '../helpers/test-server.js';
+import { problemIn, startTestServer, type AtBench, type SignedInPerson, type TestServer } from '../helpers/test-server.js';
+import { benchAlone, makeBench, type TestBench } from '../helpers/shared-bench.js';
 import { validCalls } from '../helpers/valid-calls.js';
 
 const SEED = 20_260_305;
@@ -11,10 +13,12 @@ const RUNS = 60;
 
 let server: TestServer;
 let number: number;
+let bench: TestBench;
 beforeAll(async () => {
   server = await startTestServer();
   await addHeron(server);
   ({ number } = await takeIn(server));
+  bench = await makeBench(server);
 });
 afterAll(() => server.close());
 
@@ -70,7 +74,11 @@ function changed(value: unknown, path: Path, to: unknown): unknown {
 const wellFormed = (text: string): string => text.replace(/\p{Surrogate}/gu, '\ufffd');
 
 const posts = (Object.entries(routes) as [RouteName, Route][]).filter(([, route]) => route.body !== undefined).map(([name]) => name);
-const asFor = (name: RouteName): SignedInPerson => (name === 'createPerson' ? server.people.admin : server.people.lead);
+function asFor(name: RouteName): SignedInPerson | AtBench {
+  const roles: readonly string[] = ROLES_BY_ACTION[routes[name].action];
+  if (roles.length === 0) return benchAlone(bench);
+  return roles.includes('lead') ? server.people.lead : server.people.admin;
+}
 
 async function refusedOrStored(name: RouteName, body: unknown): Promise<void> {
   const text = JSON.stringify(body);
