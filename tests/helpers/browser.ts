@@ -59,12 +59,13 @@ const launch = (): Promise<Browser> =>
     ],
   });
 
-export async function openShop(shop: Partial<Shop> = {}): Promise<BrowserShop> {
+/** `publicUrl`: where tags point to, if not to this machine. */
+export async function openShop(shop: Partial<Shop> = {}, { publicUrl }: { publicUrl?: string } = {}): Promise<BrowserShop> {
   // The address is known before the app is made: tags carry it.
   const http: Server = createServer();
   await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
   const baseUrl = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
-  const server = await startTestServer({ shop, config: { publicUrl: baseUrl }, webDir: inject('webDir') });
+  const server = await startTestServer({ shop, config: { publicUrl: publicUrl ?? baseUrl }, webDir: inject('webDir') });
   // Browsers drop cookies by their own clock.
   server.time.now = new Date();
   http.on('request', server.app);
