@@ -21,13 +21,16 @@ const SIGNED_IN = [
   'sign-off',
   'tag',
   'withdrawn tag',
+  'stock label',
+  'price label',
   'capture',
   'bench log',
   'shared benches',
   'not found',
   'no such unit',
 ] as const;
-const PUBLIC = ['sign in', 'first admin', 'look up', 'stands', 'withdrawn', 'not ours'] as const;
+const ADMIN = ['people', 'link made', 'somebody', 'shut out', 'own page', 'account', 'audit log', 'nothing in the log'] as const;
+const PUBLIC = ['sign in', 'first admin', 'one-time link', 'used link', 'look up', 'stands', 'withdrawn', 'not ours'] as const;
 
 beforeAll(async () => {
   shop = await openShop();
@@ -68,6 +71,16 @@ beforeAll(async () => {
 
   await server.ok('tellLive', { as: technician, body: newLive(intake.number) });
 
+  const invited = await server.ok('invitePerson', {
+    as: server.people.admin,
+    body: { email: 'tamsin@millrace.example', name: 'Tamsin Oake', role: 'lead' },
+  });
+  await server.ok('deactivatePerson', {
+    as: server.people.admin,
+    params: { id: server.people.sales.id },
+    body: { reason: 'works elsewhere now' },
+  });
+
   Object.assign(at, {
     units: '/units',
     board: '/board',
@@ -81,9 +94,21 @@ beforeAll(async () => {
     'sign-off': `/units/${ready.number}/sign-off`,
     tag: `/units/${signed.number}/tag`,
     'withdrawn tag': `/units/${broken.number}/tag`,
+    'stock label': `/units/${signed.number}/labels?kind=stock`,
+    'price label': `/units/${intake.number}/labels?kind=price`,
     capture: `/captures/${capture?.captureId ?? ''}`,
     'bench log': `/runs/${find.id}`,
     'shared benches': '/benches',
+    people: '/people',
+    'link made': `/people/${invited.person.id}`,
+    somebody: `/people/${technician.id}`,
+    'shut out': `/people/${server.people.sales.id}`,
+    'own page': `/people/${server.people.admin.id}`,
+    account: '/account',
+    'audit log': '/audit?subject=tag',
+    'nothing in the log': '/audit?who=nobody+at+all',
+    'one-time link': new URL(invited.link.url).pathname + new URL(invited.link.url).hash,
+    'used link': '/link#used',
     'not found': '/no/such/page',
     'no such unit': '/units/99999',
     'sign in': '/sign-in',
@@ -111,13 +136,16 @@ const LOOKS = [
 
 test.each([
   { who: 'a lead', pages: SIGNED_IN },
+  { who: 'an admin', pages: ADMIN },
   { who: 'nobody', pages: PUBLIC },
 ])(
   'When $who opens each page, at the desk and on a phone, then axe finds nothing, nothing is wider than the window, and the console stays empty',
   async ({ who, pages }) => {
     const faults = await Promise.all(
       LOOKS.map(async ({ bench, night, viewport }) => {
-        const { page, complaints } = await shop.open(who === 'nobody' ? undefined : shop.server.people.lead, { night, viewport });
+        const { lead, admin } = shop.server.people;
+        const as = who === 'nobody' ? undefined : who === 'an admin' ? admin : lead;
+        const { page, complaints } = await shop.open(as, { night, viewport });
         const found: string[] = [];
         for (const name of pages) {
           await look(page, name);
