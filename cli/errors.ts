@@ -47,6 +47,10 @@ export class ApiProblemError extends ServerError {
   /** `gate`, `conflict`, `same-serial` and so on; empty where the answer named none. */
   readonly kind: string;
   readonly errors: readonly { pointer: string; reason: string }[];
+  /** The server's Retry-After, where it named one. */
+  readonly retryAfterSeconds: number | undefined;
+  /** The server's own time, of its Date header. */
+  readonly serverTime: Date | undefined;
   constructor(problem: {
     status: number;
     kind: string;
@@ -54,6 +58,8 @@ export class ApiProblemError extends ServerError {
     detail?: string | undefined;
     remedy: string;
     errors?: readonly { pointer: string; reason: string }[] | undefined;
+    retryAfterSeconds?: number | undefined;
+    serverTime?: Date | undefined;
   }) {
     // A detail that begins as the title does says it all.
     const { title, detail } = problem;
@@ -61,6 +67,8 @@ export class ApiProblemError extends ServerError {
     this.status = problem.status;
     this.kind = problem.kind;
     this.errors = problem.errors ?? [];
+    this.retryAfterSeconds = problem.retryAfterSeconds;
+    this.serverTime = problem.serverTime;
   }
 }
 

@@ -105,6 +105,8 @@ export function createApi({ server, token, bench, signal, fetch: send = fetch }:
 
 interface Response {
   status: number;
+  retryAfterSeconds: number | undefined;
+  serverTime: Date | undefined;
   /** Throws a ServerError where the text is no JSON. */
   json(): unknown;
 }
@@ -121,6 +123,7 @@ async function readWhole(response: globalThis.Response, server: string): Promise
   const text = await response.text();
   return {
     status: response.status,
+    ...timesOf(response.headers),
     json: () => {
       try {
         return JSON.parse(text) as unknown;
@@ -137,6 +140,20 @@ function notAnswered(error: unknown, server: string, signal: AbortSignal): Error
   return new ServerUnreachableError(server, whyUnreachable(error), { cause: error });
 }
 
+/** What the server says about time: when to come again (RFC 9110, section 10.2.3: seconds or a date), and what it is by its own clock. */
+function timesOf(headers: Headers): { retryAfterSeconds: number | undefined; serverTime: Date | undefined } {
+  const date = Date.parse(headers.get('date') ?? '');
+  const serverTime = Number.isNaN(date) ? undefined : new Date(date);
+  const after = headers.get('retry-after') ?? '';
+  const until = Date.parse(after);
+  const seconds = /^\d+$/.test(after)
+    ? Number(after)
+    : Number.isNaN(until)
+      ? undefined
+      : Math.max(0, (until - (serverTime ?? new Date()).getTime()) / 1000);
+  return { retryAfterSeconds: seconds, serverTime };
+}
+
 const isTimeout = (reason: unknown): boolean => reason instanceof Error && reason.name === 'TimeoutError';
 
 function whyUnreachable(error: unknown): string {
@@ -148,6 +165,16 @@ function whyUnreachable(error: unknown): string {
     case 'ENOTFOUND':
     case 'EAI_AGAIN':
       return 'its name is not known to the network';
+    // Node's words for a certificate that the shop made itself, or one made for another name.
+    case 'DEPTH_ZERO_SELF_SIGNED_CERT':
+    case 'SELF_SIGNED_CERT_IN_CHAIN':
+    case 'UNABLE_TO_VERIFY_LEAF_SIGNATURE':
+    case 'UNABLE_TO_GET_ISSUER_CERT_LOCALLY':
+      return 'this bench does not trust its certificate (NODE_EXTRA_CA_CERTS=/path/to/ca.pem names one to trust)';
+    case 'ERR_TLS_CERT_ALTNAME_INVALID':
+      return 'its certificate is for another name';
+    case 'CERT_HAS_EXPIRED':
+      return 'its certificate has ended';
     case 'ECONNRESET':
     case 'UND_ERR_SOCKET':
       return 'the connection broke off';
@@ -188,6 +215,8 @@ function problemOf(response: Response, server: string, signInRemedy: string | un
     title,
     detail,
     errors,
+    retryAfterSeconds: response.retryAfterSeconds,
+    serverTime: response.serverTime,
     remedy: remedy ?? usualRemedy(response.status),
   });
 }

@@ -1,7 +1,7 @@
 import { runVerdict, stepVerdict } from '../../shared/script/run-verdict.js';
 import { sinceOpened } from '../../shared/readiness/facts.js';
 import type { PersonRef } from '../../shared/history/events.js';
-import type { StepResult } from '../../shared/script/run-log.js';
+import type { ClockJump, StepResult } from '../../shared/script/run-log.js';
 import type { Script } from '../../shared/script/schema.js';
 import type { Verdict } from '../../shared/verdict.js';
 import type { Context } from '../context.js';
@@ -77,15 +77,22 @@ export async function goThrough(context: Context, parts: GoThroughParts): Promis
   const { unit, rig, person, before } = parts;
   if (rig.simulated && [...sinceOpened(unit.facts.events), ...before].some(({ kind }) => kind === 'repair')) rig.hands?.repaired();
   const startedMs = performance.now();
-  let journal: RunJournal | undefined;
+  /** Set back while nobody was at the run: noted as soon as the journal is open. */
+  const early: Omit<ClockJump, 'steps'>[] = [];
+  let note = (jump: Omit<ClockJump, 'steps'>): void => void early.push(jump);
   const clock = new SteadyClock(
     () => context.now(),
     () => performance.now(),
-    (jump) => jumped(context, journal, jump),
+    (jump) => {
+      sayJump(context, jump);
+      note(jump);
+    },
     parts.notBefore,
   );
   const steady: Context = { ...context, now: () => clock.now() };
-  journal = parts.openJournal(clock);
+  const journal = parts.openJournal(clock);
+  note = (jump) => journal.jump(jump);
+  early.forEach(note);
   let end: RunEnd;
   try {
     end = await runScript({ ...parts, context: steady, journal });
@@ -136,12 +143,10 @@ function leave(journal: RunJournal, clock: SteadyClock, how: RunStop['how'], by:
   }
 }
 
-function jumped({ stderr }: Context, journal: RunJournal | undefined, jump: { at: string; seconds: number }): void {
-  const { seconds } = jump;
+function sayJump({ stderr }: Context, { seconds }: { seconds: number }): void {
   stderr.say(
     `The clock of this bench was set ${seconds > 0 ? 'forward' : 'back'} by ${Math.abs(seconds)} s. The log's own times go on without running backwards; the jump is noted in it.`,
   );
-  journal?.jump(jump);
 }
 
 interface Said {

@@ -1,62 +1,120 @@
 import type { Context } from '../context.js';
-import { UsageError } from '../errors.js';
+import { StoppedError, UsageError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
-import { sendWaiting } from '../journal/deliver.js';
+import { sendWaiting, type Delivery } from '../journal/deliver.js';
+import { closeEnded, openRuns } from '../journal/open-runs.js';
 import { putAway, waitingEntries, type OutboxEntry } from '../journal/outbox.js';
-import { closeEnded } from '../journal/open-runs.js';
+import { backOffMs, triesOf } from '../journal/tries.js';
 import { printJson } from '../render/json.js';
-import { dayText, plural, timeText } from '../render/words.js';
+import { dayText, plural, timeText, times } from '../render/words.js';
 
 export interface SyncOptions {
   status?: boolean;
+  watch?: boolean;
   drop?: string;
   json?: boolean;
 }
 
-/** Sends what waits on this bench, in order, or says what waits and who must act. */
-export async function runSync({ status, drop, json }: SyncOptions, context: Context): Promise<number> {
+/** Something that waits, for people and programs. */
+interface Left {
+  id: string;
+  what: string;
+  madeAt: string;
+  server: string;
+  by: string;
+  state: 'waits' | 'refused';
+  /** How often it was tried, last when, and when again by itself. */
+  tries: number;
+  lastTryAt?: string;
+  nextTryAt?: string;
+  why: string;
+}
+
+/** Sends what waits on this bench, in order, or says what waits, why, and who must act. */
+export async function runSync({ status, watch, drop, json }: SyncOptions, context: Context): Promise<number> {
+  if (watch === true && (status === true || drop !== undefined))
+    throw new UsageError('--watch sends until nothing waits: leave --status and --drop out');
   closeEnded(context);
   if (drop !== undefined) return giveUp(drop, context);
   const { entries, unreadable } = waitingEntries(context.home);
   for (const file of unreadable)
     context.stderr.say(`${file}: this can't be read; it is left where it is. A newer version of Refettle may have written it.`);
-  const deliveries = status === true ? [] : await sendWaiting(context, { again: true });
+  const deliveries = status === true ? [] : watch === true ? await keepSending(context) : await sendWaiting(context, { again: true });
   const left =
     status === true
-      ? entries.map(describe)
+      ? entries.map((entry) => describe(context, entry))
       : deliveries
           .filter(({ state }) => state !== 'sent')
-          .map((one) => ({ ...describe(one.entry), state: one.state, why: 'why' in one ? one.why : '' }));
+          .map((one): Left => ({
+            ...describe(context, one.entry),
+            state: one.state === 'refused' ? 'refused' : 'waits',
+            why: 'why' in one ? one.why : '',
+          }));
   const sent = deliveries.filter(({ state }) => state === 'sent').map(({ entry }) => ({ id: entry.id, what: entry.what }));
 
   if (json === true) printJson(context, { sent, left });
-  else {
-    for (const { what } of sent) context.stdout.write(`sent: ${what}\n`);
-    for (const { id, what, madeAt, state, why } of left)
-      context.stdout.write(
-        `${state}: ${what}, ${dayText(madeAt)} ${timeText(madeAt)}  (${id})\n${why
-          .split('\n')
-          .map((line) => `  ${line}\n`)
-          .join('')}`,
-      );
-    if (sent.length === 0 && left.length === 0) context.stdout.write('Nothing waits on this bench.\n');
-    else if (left.length > 0)
-      context.stderr.say(`${plural(left.length, 'thing waits', 'things wait')} on this bench; nothing of it is lost.`);
-  }
+  else say(context, sent, left, status === true);
   return firstExitCode([left.length > 0 ? EXIT.server : EXIT.good, unreadable.length > 0 ? EXIT.badInput : EXIT.good]);
 }
 
-const describe = (entry: OutboxEntry) => ({
-  id: entry.id,
-  what: entry.what,
-  madeAt: entry.madeAt,
-  server: entry.server,
-  by: entry.by.name,
-  state: entry.refused ? ('refused' as const) : ('waits' as const),
-  why: entry.refused
-    ? `${entry.refused.reason}\n${entry.refused.remedy}`
-    : `recorded by ${entry.by.name}, for ${entry.server}: refettle sync sends it`,
-});
+function say(context: Context, sent: readonly { what: string }[], left: readonly Left[], status: boolean): void {
+  const { stdout, stderr } = context;
+  for (const { what } of sent) stdout.write(`sent: ${what}\n`);
+  for (const one of left) {
+    stdout.write(`${one.state}: ${one.what}, ${dayText(one.madeAt)} ${timeText(one.madeAt)}  (${one.id})\n`);
+    for (const line of one.why.split('\n')) stdout.write(`  ${line}\n`);
+    if (one.tries > 0 && one.lastTryAt !== undefined)
+      stdout.write(
+        `  tried ${times(one.tries)}, last at ${timeText(one.lastTryAt)}${one.nextTryAt === undefined ? '' : `; again from ${timeText(one.nextTryAt)} on`}\n`,
+      );
+  }
+  if (sent.length === 0 && left.length === 0) stdout.write('Nothing waits on this bench.\n');
+  else if (left.length > 0) stderr.say(`${plural(left.length, 'thing waits', 'things wait')} on this bench; nothing of it is lost.`);
+  const open = status ? openRuns(context).runs.length : 0;
+  if (open > 0) stderr.say(`${plural(open, 'run is', 'runs are')} open and not sent before they are closed: refettle runs`);
+}
+
+function describe({ home }: Context, entry: OutboxEntry): Left {
+  const tries = triesOf(home, entry.id);
+  return {
+    id: entry.id,
+    what: entry.what,
+    madeAt: entry.madeAt,
+    server: entry.server,
+    by: entry.by.name,
+    state: entry.refused ? 'refused' : 'waits',
+    tries: tries?.count ?? 0,
+    ...(tries ? { lastTryAt: tries.lastAt } : {}),
+    ...(tries && !entry.refused ? { nextTryAt: tries.nextAt } : {}),
+    why: entry.refused
+      ? `${entry.refused.reason}\n${entry.refused.remedy}`
+      : (tries?.why ?? `recorded by ${entry.by.name}, for ${entry.server}: refettle sync sends it`),
+  };
+}
+
+/** Sends until nothing waits but what somebody must decide on; what does not get through is tried again after a while, longer each time. */
+async function keepSending(context: Context): Promise<Delivery[]> {
+  const over = new Map<string, Delivery>();
+  for (let round = 1; ; round += 1) {
+    const deliveries = await sendWaiting(context, { again: round === 1, due: round > 1 });
+    for (const delivery of deliveries) over.set(delivery.entry.id, delivery);
+    const waiting = deliveries.filter((one) => one.state === 'waits');
+    if (waiting.length === 0) return [...over.values()];
+    const now = context.now().getTime();
+    const due = waiting.flatMap((one) => (one.nextAt === undefined ? [] : [Date.parse(one.nextAt) - now]));
+    const waitMs = Math.max(100, due.length > 0 ? Math.min(...due) : backOffMs(round, Math.random));
+    const [first] = waiting;
+    if (first)
+      context.stderr.say(`${plural(waiting.length, 'thing waits', 'things wait')}; again in ${Math.ceil(waitMs / 1000)} s: ${first.why}`);
+    await sleepUnlessStopped(context, waitMs);
+  }
+}
+
+async function sleepUnlessStopped({ sleep, interruption }: Context, milliseconds: number): Promise<void> {
+  const stopped = new Promise<void>((stop) => interruption.signal.addEventListener('abort', () => stop(), { once: true }));
+  await interruption.hold(() => Promise.race([sleep(milliseconds), stopped]));
+  if (interruption.interrupted) throw new StoppedError('Stopped. What waits stays on this bench.');
+}
 
 function giveUp(id: string, context: Context): number {
   const entry = waitingEntries(context.home).entries.find((one) => one.id === id);

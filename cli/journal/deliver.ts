@@ -3,41 +3,70 @@ import type { Context } from '../context.js';
 import { ApiProblemError, NotSignedInError, ServerError } from '../errors.js';
 import { wordsOf } from '../report-error.js';
 import { readSession } from '../session.js';
+import { takeLock } from './lock.js';
 import { keepEntry, putAway, waitingEntries, type OutboxEntry } from './outbox.js';
+import { countTry, forgetTries, triesOf } from './tries.js';
 
 export type Delivery =
   /** The server has it; `answer` is what it said. */
   | { state: 'sent'; entry: OutboxEntry; answer: unknown }
-  /** It waits on this bench for something that passes: the network, a sign-in. */
-  | { state: 'waits'; entry: OutboxEntry; why: string; onlyThis?: true }
+  /** It waits on this bench for something that passes: the network, a sign-in, a clock. `onlyThis`: the others may go. */
+  | { state: 'waits'; entry: OutboxEntry; why: string; onlyThis?: boolean; nextAt?: string }
   /** The server refuses it; `error` says why and who must act. */
   | { state: 'refused'; entry: OutboxEntry; why: string; error?: ApiProblemError };
 
 /** Refusals that pass by themselves or with a sign-in: nothing is wrong with the entry. */
 const PASSING_STATUS = new Set([408, 425, 429]);
+/** The server takes nothing that lies further ahead of its own clock than this. */
+const AHEAD_AT_MOST_MS = 600_000;
+const BY_ANOTHER = 'it is being sent by another terminal';
+
+export interface Sending {
+  /** What the server refused before is tried again. */
+  again?: boolean;
+  /** Only what is due: what did not get through waits longer each time. */
+  due?: boolean;
+  /** From 0 to 1. */
+  random?: () => number;
+}
 
 /**
- * Sends what waits, in order. Where the server is away or nobody is signed in, the rest waits too.
- * What was refused before is tried again only with `again`.
+ * Sends what waits, in order, one terminal of a bench at a time. Where the server is away or nobody is signed in, the rest waits too;
+ * where one thing of a unit waits, what came after it on that unit does.
  */
-export async function sendWaiting(context: Context, { again = false } = {}): Promise<Delivery[]> {
-  const deliveries: Delivery[] = [];
-  let standstill: string | undefined;
-  for (const entry of waitingEntries(context.home).entries) {
-    const delivery = standstill === undefined ? await send(context, entry, again) : ({ state: 'waits', entry, why: standstill } as const);
-    deliveries.push(delivery);
-    if (delivery.state === 'waits' && delivery.onlyThis !== true && delivery.why !== whyNotNow(context, entry)) standstill = delivery.why;
+export async function sendWaiting(context: Context, sending: Sending = {}): Promise<Delivery[]> {
+  const { entries } = waitingEntries(context.home);
+  if (entries.length === 0) return [];
+  const lock = await takeLock(context, SENDER_LOCK, { what: 'sending what waits' });
+  if ('owner' in lock) return entries.map((entry) => ({ state: 'waits', entry, why: BY_ANOTHER, onlyThis: true }));
+  try {
+    const deliveries: Delivery[] = [];
+    const heldUp = new Set<number>();
+    let standstill: string | undefined;
+    // Read again: another terminal may have sent some of it meanwhile.
+    for (const entry of waitingEntries(context.home).entries) {
+      const unit = 'params' in entry ? entry.params.number : undefined;
+      const behind =
+        standstill ?? (unit !== undefined && heldUp.has(unit) ? 'what was recorded before it on this unit goes first' : undefined);
+      const delivery: Delivery = behind === undefined ? await send(context, entry, sending) : { state: 'waits', entry, why: behind };
+      deliveries.push(delivery);
+      if (delivery.state !== 'waits') continue;
+      if (unit !== undefined && whyNotNow(context, entry) === undefined) heldUp.add(unit);
+      if (delivery.onlyThis !== true && behind === undefined) standstill = delivery.why;
+    }
+    return deliveries;
+  } finally {
+    lock.release();
   }
-  return deliveries;
 }
+
+export const SENDER_LOCK = 'sender';
 
 /** Writes an entry down, then sends it and whatever waited before it. */
 export async function keepAndSend(context: Context, entry: OutboxEntry): Promise<Delivery> {
   keepEntry(context.home, entry);
   const deliveries = await sendWaiting(context);
-  return (
-    deliveries.find((delivery) => delivery.entry.id === entry.id) ?? { state: 'waits', entry, why: 'it is being sent by another terminal' }
-  );
+  return deliveries.find((delivery) => delivery.entry.id === entry.id) ?? { state: 'waits', entry, why: BY_ANOTHER };
 }
 
 /** What keeps this one from being sent now, though another one may go. */
@@ -52,10 +81,22 @@ function whyNotNow({ home, server }: Context, entry: OutboxEntry): string | unde
   return undefined;
 }
 
-async function send(context: Context, entry: OutboxEntry, again: boolean): Promise<Delivery> {
+async function send(
+  context: Context,
+  entry: OutboxEntry,
+  { again = false, due = false, random = Math.random }: Sending,
+): Promise<Delivery> {
+  const { home } = context;
   if (entry.refused && !again) return { state: 'refused', entry, why: `${entry.refused.reason} ${entry.refused.remedy}` };
   const why = whyNotNow(context, entry);
-  if (why !== undefined) return { state: 'waits', entry, why };
+  if (why !== undefined) return { state: 'waits', entry, why, onlyThis: true };
+  const tries = triesOf(home, entry.id);
+  if (tries && (due || tries.serverAsks) && Date.parse(tries.nextAt) > context.now().getTime())
+    return { state: 'waits', entry, why: tries.why, nextAt: tries.nextAt, onlyThis: true };
+  const waits = (reason: string, { waitMs, ...about }: { waitMs?: number; serverAsks?: boolean; onlyThis?: boolean } = {}): Delivery => {
+    const { nextAt } = countTry(home, entry.id, { now: context.now(), why: reason, random, waitMs, serverAsks: about.serverAsks ?? false });
+    return { state: 'waits', entry, why: reason, nextAt, ...(about.onlyThis === true ? { onlyThis: true } : {}) };
+  };
   try {
     const api = await context.api(entry.by);
     const { route, body, id } = entry;
@@ -64,26 +105,38 @@ async function send(context: Context, entry: OutboxEntry, again: boolean): Promi
       body,
       idempotencyKey: id,
     });
-    putAway(context.home, id, 'sent');
+    putAway(home, id, 'sent');
+    forgetTries(home, id);
     return { state: 'sent', entry, answer };
   } catch (error) {
     if (!(error instanceof ServerError)) throw error;
-    if (error instanceof ApiProblemError && error.kind === 'sign-on')
-      return {
-        state: 'waits',
-        entry,
-        why: `${entry.by.name} recorded it and has never signed on at this bench. ${error.remedy}, then: refettle sync`,
+    if (error instanceof NotSignedInError) return waits(`${error.message} ${error.remedy}, then: refettle sync`);
+    if (!(error instanceof ApiProblemError)) return waits(wordsOf(error).replace('\n', ' '));
+    if (error.kind === 'sign-on')
+      return waits(`${entry.by.name} recorded it and has never signed on at this bench. ${error.remedy}, then: refettle sync`, {
         onlyThis: true,
-      };
-    if (error instanceof ApiProblemError && error.status < 500 && !PASSING_STATUS.has(error.status)) {
-      const refused = { at: context.now().toISOString(), status: error.status, reason: error.message, remedy: error.remedy };
-      keepEntry(context.home, { ...entry, refused });
-      return { state: 'refused', entry, why: wordsOf(error), error };
+      });
+    const aheadMs = error.status === 422 ? aheadOf(entry, error.serverTime) : 0;
+    if (aheadMs > 0)
+      return waits(
+        `It was recorded by a clock that runs ahead: its times lie up to ${String(Math.ceil((aheadMs + AHEAD_AT_MOST_MS) / 60_000))} min ahead of the server. ` +
+          'Set the clock of this bench. It is kept as it is, and goes when the server’s clock has come that far: refettle sync --watch',
+        { waitMs: aheadMs, onlyThis: true },
+      );
+    if (error.status >= 500 || PASSING_STATUS.has(error.status)) {
+      const { retryAfterSeconds } = error;
+      const asks = retryAfterSeconds === undefined ? {} : { waitMs: retryAfterSeconds * 1000, serverAsks: true };
+      return waits(wordsOf(error).replace('\n', ' '), asks);
     }
-    return {
-      state: 'waits',
-      entry,
-      why: error instanceof NotSignedInError ? `${error.message} ${error.remedy}, then: refettle sync` : wordsOf(error).replace('\n', ' '),
-    };
+    const refused = { at: context.now().toISOString(), status: error.status, reason: error.message, remedy: error.remedy };
+    keepEntry(home, { ...entry, refused });
+    return { state: 'refused', entry, why: wordsOf(error), error };
   }
+}
+
+/** By how many milliseconds the latest time of a message lies further ahead than the server takes; 0 or below where it does not. */
+function aheadOf({ body }: OutboxEntry, serverTime: Date | undefined): number {
+  if (serverTime === undefined) return 0;
+  const latest = 'endedAt' in body ? body.endedAt : 'at' in body ? body.at : undefined;
+  return latest === undefined ? 0 : Date.parse(latest) - serverTime.getTime() - AHEAD_AT_MOST_MS;
 }
