@@ -154,52 +154,56 @@ describe('The menu', () => {
 });
 
 describe('The program on a pseudo-terminal', () => {
-  test('When the menu is gone through with keys, then it does what they say, Ctrl-C comes back once, and the terminal is as it was', async () => {
-    const file = join(bench.home, 'refettle');
-    const program = theProgram.map((part) =>
-      part === 'tsx' ? import.meta.resolve(part) : part.startsWith('-') ? part : resolve(repository, part),
-    );
-    // What stands behind it in the shell shows the exit code and that the terminal echoes again.
-    writeFileSync(file, `#!/bin/sh\nstty cols 80 rows 24\n${shellLine([process.execPath, ...program])}\necho "ended with $?"\nstty -a\n`);
-    chmodSync(file, 0o755);
-    const env = {
-      PATH: process.env['PATH'],
-      LANG: 'C.UTF-8',
-      TERM: 'xterm',
-      NO_COLOR: '1',
-      REFETTLE_HOME: bench.home,
-      REFETTLE_SERVER: address,
-    };
-    const child = spawn('socat', [`EXEC:${file},pty,setsid,ctty,stderr`, 'STDIO'], { env, stdio: ['pipe', 'pipe', 'pipe'] });
-    const screen = { seen: '', heard: 0 };
-    const steps: [says: string, press: string][] = [
-      ['7. Readiness tag', '7'],
-      ['❯ 7. Readiness tag', ENTER],
-      ['Which unit', unit],
-      [`❯ ${unit}`, ENTER],
-      ['back to the menu', ENTER],
-      ['6. Take in a unit', '6'],
-      ['❯ 6. Take in a unit', ENTER],
-      ['Appliance', CTRL_C],
-      ['back to the menu', ENTER],
-      ['What now', CTRL_C],
-    ];
-    const answer = (): void => {
-      const [says, press] = steps[0] ?? [];
-      const at = says === undefined ? -1 : screen.seen.indexOf(says, screen.heard);
-      if (says === undefined || press === undefined || at < 0) return;
-      screen.heard = at + says.length;
-      steps.shift();
-      // A hand is not quicker than that.
-      setTimeout(() => (child.stdin.write(press), answer()), 80);
-    };
-    child.stdout.on('data', (chunk: Buffer) => ((screen.seen += chunk.toString()), answer()));
-    const code = await new Promise((ended) => child.once('close', ended));
-    expect(steps, screen.seen).toEqual([]);
-    expect(code).toBe(0);
-    expect(screen.seen).toContain(`$ refettle tag ${unit}`);
-    expect(screen.seen).toContain('0 of 5 rules met');
-    expect(screen.seen).toContain('ended with 130');
-    expect(screen.seen.slice(screen.seen.indexOf('ended with'))).toMatch(/(?<!-)\bicanon\b[\s\S]*(?<!-)\becho\b/);
-  });
+  test(
+    'When the menu is gone through with keys, then it does what they say, Ctrl-C comes back once, and the terminal is as it was',
+    { timeout: 90_000 },
+    async () => {
+      const file = join(bench.home, 'refettle');
+      const program = theProgram.map((part) =>
+        part === 'tsx' ? import.meta.resolve(part) : part.startsWith('-') ? part : resolve(repository, part),
+      );
+      // What stands behind it in the shell shows the exit code and that the terminal echoes again.
+      writeFileSync(file, `#!/bin/sh\nstty cols 80 rows 24\n${shellLine([process.execPath, ...program])}\necho "ended with $?"\nstty -a\n`);
+      chmodSync(file, 0o755);
+      const env = {
+        PATH: process.env['PATH'],
+        LANG: 'C.UTF-8',
+        TERM: 'xterm',
+        NO_COLOR: '1',
+        REFETTLE_HOME: bench.home,
+        REFETTLE_SERVER: address,
+      };
+      const child = spawn('socat', [`EXEC:${file},pty,setsid,ctty,stderr`, 'STDIO'], { env, stdio: ['pipe', 'pipe', 'pipe'] });
+      const screen = { seen: '', heard: 0 };
+      const steps: [says: string, press: string][] = [
+        ['7. Readiness tag', '7'],
+        ['❯ 7. Readiness tag', ENTER],
+        ['Which unit', unit],
+        [`❯ ${unit}`, ENTER],
+        ['back to the menu', ENTER],
+        ['6. Take in a unit', '6'],
+        ['❯ 6. Take in a unit', ENTER],
+        ['Appliance', CTRL_C],
+        ['back to the menu', ENTER],
+        ['What now', CTRL_C],
+      ];
+      const answer = (): void => {
+        const [says, press] = steps[0] ?? [];
+        const at = says === undefined ? -1 : screen.seen.indexOf(says, screen.heard);
+        if (says === undefined || press === undefined || at < 0) return;
+        screen.heard = at + says.length;
+        steps.shift();
+        // A hand is not quicker than that.
+        setTimeout(() => (child.stdin.write(press), answer()), 80);
+      };
+      child.stdout.on('data', (chunk: Buffer) => ((screen.seen += chunk.toString()), answer()));
+      const code = await new Promise((ended) => child.once('close', ended));
+      expect(steps, screen.seen).toEqual([]);
+      expect(code).toBe(0);
+      expect(screen.seen).toContain(`$ refettle tag ${unit}`);
+      expect(screen.seen).toContain('0 of 5 rules met');
+      expect(screen.seen).toContain('ended with 130');
+      expect(screen.seen.slice(screen.seen.indexOf('ended with'))).toMatch(/(?<!-)\bicanon\b[\s\S]*(?<!-)\becho\b/);
+    },
+  );
 });
