@@ -22,8 +22,9 @@ const FACES: Record<Face, { family: string; weight: number }> = {
   monoBold: { family: MONO, weight: 700 },
 };
 
-const type = (face: Face, points: number) => ({
-  style: { fontFamily: FACES[face].family },
+/** As a style: marks of the screen have inks of their own, and a style is stronger. */
+const type = (face: Face, points: number, fill: string) => ({
+  style: { fontFamily: FACES[face].family, fill },
   fontWeight: FACES[face].weight,
   fontSize: points / POINTS_PER_MM,
 });
@@ -38,8 +39,7 @@ function MarkOnPaper({ mark }: { mark: Mark }) {
           y={mark.baseline}
           textLength={mark.widthMm}
           lengthAdjust="spacingAndGlyphs"
-          fill={mark.white ? '#fff' : '#000'}
-          {...type(mark.face, mark.points)}
+          {...type(mark.face, mark.points, mark.white ? '#fff' : '#000')}
         >
           {mark.text}
         </text>
@@ -93,10 +93,9 @@ function MarkOnPaper({ mark }: { mark: Mark }) {
           y={mark.y + mark.drop}
           textLength={mark.widthMm}
           transform={`rotate(${mark.degrees} ${mark.x} ${mark.y})`}
-          fill="none"
           stroke="#000"
           strokeWidth={mark.thick}
-          {...type(mark.face, mark.points)}
+          {...type(mark.face, mark.points, 'none')}
         >
           {mark.text}
         </text>

@@ -1,0 +1,136 @@
+// What the browser prints, made into a PDF by the browser itself, held against what the terminal prints.
+import type { Page } from 'playwright-core';
+import { afterAll, beforeAll, expect, test } from 'vitest';
+import { code128Bars, qrModules } from '../../cli/render/paper-codes.js';
+import { paperPdf } from '../../cli/render/paper-pdf.js';
+import { dayText } from '../../cli/render/words.js';
+import { labelPaper } from '../../shared/paper/label-paper.js';
+import { readLabelSize, TAG_FORMATS, TAG_SHEETS } from '../../shared/paper/sizes.js';
+import { tagPaper } from '../../shared/paper/tag-paper.js';
+import { openShop, PHONE, expectNoSidewaysScroll, type BrowserShop } from '../helpers/browser.js';
+import { addHeron, mendAndProve, rulesSeen, takeIn } from '../helpers/factories.js';
+import { stockLabel, priceLabel } from '../helpers/labels.js';
+import { colouredDots, differingPart, pageSizes, partOf, picturesOf, readBars, readQr, wordsOnPaper } from '../helpers/read-paper.js';
+
+let shop: BrowserShop;
+let numbers: number[];
+beforeAll(async () => {
+  // Outside the demo shop no tag is printed that points to this machine.
+  shop = await openShop({}, { publicUrl: 'https://tags.millrace.example' });
+  await addHeron(shop.server);
+  numbers = [];
+  for (let count = 0; count < 2; count += 1) {
+    const { number } = await takeIn(shop.server);
+    await mendAndProve(shop.server, number);
+    await shop.server.ok('signOff', { as: shop.server.people.lead, params: { number }, body: await rulesSeen(shop.server, number) });
+    numbers.push(number);
+  }
+});
+afterAll(() => shop.close());
+
+const MADE_AT = new Date('2026-03-05T15:10:00Z');
+const text = (number: number): string => String(number).padStart(4, '0');
+const first = (): number => numbers[0] ?? 0;
+const tagOf = (number: number) => shop.server.ok('getUnitTag', { params: { number }, as: shop.server.people.sales });
+const words = (pdf: Buffer): string[] => wordsOnPaper(pdf).split(' ').sort();
+
+async function printed(page: Page): Promise<Buffer> {
+  await page.evaluate(() => document.fonts.ready);
+  return page.pdf({ preferCSSPageSize: true, printBackground: false });
+}
+
+/** Chromium's page sizes are whole points' fractions rounded up by its own units of 1/96 inch. */
+const CHROMIUM_POINTS = 0.8;
+/** Two renderers round edges of letters differently; a line moved by a millimetre is several times this. */
+const ALIKE_AT_MOST = 0.012;
+
+async function expectSamePaper(fromBrowser: Buffer, fromTerminal: Buffer): Promise<void> {
+  const [browserSizes, terminalSizes] = [pageSizes(fromBrowser), pageSizes(fromTerminal)];
+  expect(browserSizes).toHaveLength(terminalSizes.length);
+  for (const [index, size] of browserSizes.entries()) {
+    expect(Math.abs(size.width - (terminalSizes[index]?.width ?? 0))).toBeLessThan(CHROMIUM_POINTS);
+    expect(Math.abs(size.height - (terminalSizes[index]?.height ?? 0))).toBeLessThan(CHROMIUM_POINTS);
+  }
+  expect(words(fromBrowser)).toEqual(words(fromTerminal));
+  const [browserPictures, terminalPictures] = [picturesOf(fromBrowser), picturesOf(fromTerminal)];
+  for (const [index, picture] of browserPictures.entries()) {
+    expect(colouredDots(picture)).toBe(0);
+    expect(differingPart(picture, terminalPictures[index] ?? picture)).toBeLessThan(ALIKE_AT_MOST);
+  }
+}
+
+test.each(TAG_FORMATS)(
+  'When a tag is printed from the browser as %s at night, then it is the page that the terminal prints',
+  async (format) => {
+    const { page, complaints } = await shop.open(shop.server.people.sales, { night: true });
+    await page.goto(`/units/${text(first())}/tag?format=${format}`);
+    await page.getByRole('img', { name: /as printed/ }).waitFor();
+    const tag = await tagOf(first());
+    const fromBrowser = await printed(page);
+    expect(pageSizes(fromBrowser)).toHaveLength(1);
+    await expectSamePaper(fromBrowser, await paperPdf(tagPaper([{ tag, qr: qrModules(tag.url) }], format, dayText), MADE_AT));
+    expect(readQr(picturesOf(fromBrowser)[0]!)).toBe(tag.url);
+    expect(complaints).toEqual([]);
+    expect(TAG_SHEETS[format].width).toBeGreaterThan(100);
+  },
+);
+
+test('When two tags are printed on one A4 sheet, then each stands in its quarter; a unit without one is named', async () => {
+  const { number } = await takeIn(shop.server);
+  const { page } = await shop.open(shop.server.people.sales);
+  await page.goto(`/units/${text(first())}/tag?format=a4`);
+  await page.getByLabel('Units to print along').fill(`${text(numbers[1] ?? 0)}, ${text(number)}`);
+  await page.getByText(`No standing tag, so left out: No. ${text(number)}.`).waitFor();
+  await page.getByRole('img', { name: new RegExp(`${text(first())}-1, ${text(numbers[1] ?? 0)}-1 as printed`) }).waitFor();
+  const [picture] = picturesOf(await printed(page));
+  const [width, height] = [Math.floor(picture!.width / 2), Math.floor(picture!.height / 2)];
+  expect(readQr(partOf(picture!, 0, 0, width, height))).toBe((await tagOf(first())).url);
+  expect(readQr(partOf(picture!, width, 0, width, height))).toBe((await tagOf(numbers[1] ?? 0)).url);
+});
+
+test('When labels are printed from the browser, then they are the labels that the terminal prints, and their codes are read back', async () => {
+  const { page, complaints } = await shop.open(shop.server.people.sales, { night: true });
+  await page.goto(`/units/${text(first())}`);
+  await page.getByRole('link', { name: 'Stock label' }).click();
+  await page.getByRole('img', { name: /Stock label of/ }).waitFor();
+  const { unit, tag } = await shop.server.ok('getUnit', { params: { number: first() }, as: shop.server.people.sales });
+  const address = `${shop.baseUrl}/units/${text(first())}`;
+  const plate = { number: text(first()), maker: unit.plate.maker, model: unit.plate.model, appliance: unit.appliance };
+  const stock = stockLabel({
+    ...plate,
+    ...{ serial: unit.plate.serial, takenIn: dayText(unit.takenInAt), qr: qrModules(address), bars: code128Bars(text(first())) },
+  });
+  const qr = await printed(page);
+  await expectSamePaper(qr, await paperPdf(labelPaper(stock, readLabelSize('62x29')!), MADE_AT));
+  expect(readQr(picturesOf(qr)[0]!)).toBe(address);
+
+  await page.getByLabel('Code').selectOption('bars');
+  await page.getByLabel('Size in mm').fill('54x25');
+  await page.waitForURL(/size=54x25/);
+  const bars = await printed(page);
+  await expectSamePaper(bars, await paperPdf(labelPaper({ ...stock, code: 'bars' }, readLabelSize('54x25')!), MADE_AT));
+  expect(readBars(picturesOf(bars)[0]!)).toBe(text(first()));
+
+  await page.getByRole('link', { name: 'Price label' }).click();
+  await page.getByText('Type a price, and the label is drawn here.').waitFor();
+  expect(await page.getByRole('button', { name: /Print the/ }).count()).toBe(0);
+  await page.getByLabel('Price in').fill('129');
+  await page.getByLabel('Grade').fill('B');
+  await page.getByRole('img', { name: /Price label of/ }).waitFor();
+  const price = priceLabel({ ...plate, price: '£129.00', grade: 'B', tag: tag?.number });
+  await expectSamePaper(await printed(page), await paperPdf(labelPaper(price, readLabelSize('62x29')!), MADE_AT));
+  expect(complaints).toEqual([]);
+});
+
+test('When labels and tags are looked at on a phone, then nothing is wider than it', async () => {
+  const { page } = await shop.open(shop.server.people.sales, { viewport: PHONE });
+  for (const path of [
+    `/units/${text(first())}/labels?kind=price`,
+    `/units/${text(first())}/labels`,
+    `/units/${text(first())}/tag?format=a4`,
+  ]) {
+    await page.goto(path);
+    await page.getByRole('heading', { level: 1 }).waitFor();
+    await expectNoSidewaysScroll(page);
+  }
+});
