@@ -84,6 +84,8 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
       // Proxies that gather answers before they pass them on are told not to.
       'X-Accel-Buffering': 'no',
       'Cache-Control': 'no-store, no-transform',
+      // Kept open behind a stream that has ended, it would hold up the server's end.
+      Connection: 'close',
     });
     response.write(`retry: ${String(RETRY_MS)}\n\n`);
     const pause = async (): Promise<void> => {

@@ -113,7 +113,7 @@ export function LiveLanes({ capture }: { capture: LiveCapture }) {
       <div ref={paper} className="min-w-0 flex-1 overflow-hidden">
         {width > 0 && (
           <svg
-            className="strip block"
+            className="live-paper"
             width={width}
             height={height}
             role="img"
