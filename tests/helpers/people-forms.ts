@@ -17,7 +17,7 @@ export const PEOPLE_FORMS: Record<string, CommandForm> = {
     call: () => [],
     json: z.strictObject({ items: z.array(personRowSchema).min(1) }),
     wrong: ['everybody'],
-    says: /^Name +E-mail +Role +State +Last here$/m,
+    says: /^Name +Role +State +Last here( +E-mail)?$/m,
   },
   'person invite': {
     as: 'admin',

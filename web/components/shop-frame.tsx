@@ -93,12 +93,11 @@ export function ShopFrame({
         )}
         {find && <FindBox />}
         {user && (
-          <p className="top-who flex-col items-start! justify-center leading-tight">
-            <Link to={paths.account()} className="inline-flex min-h-6 items-center">
-              {user.name} <span className="sr-only">, your account</span>
-            </Link>
+          <Link to={paths.account()} className="top-who min-h-11 flex-col items-start! justify-center leading-tight">
+            <span className="sr-only">Your account, </span>
+            {user.name}
             <span className="lab">{user.role}</span>
-          </p>
+          </Link>
         )}
         <div className="top-actions gap-4">
           <ThemeSwitch />

@@ -43,7 +43,7 @@ export async function runSessionList({ person, json }: { person?: string; json?:
     id.slice(-SHORT_ID),
     current ? `${from} (this one)` : from,
     when(lastUsedAt ?? createdAt),
-    when(expiresAt),
+    dayText(expiresAt),
   ]);
   context.stdout.write(`${table([head, ...rows], style).join('\n')}\n`);
   return EXIT.good;

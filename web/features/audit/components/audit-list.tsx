@@ -1,5 +1,5 @@
 import { AUDIT_WORDS, type AuditRow } from '../../../../shared/api/audit.js';
-import { formatDay, formatTime } from '../../../lib/format.js';
+import { formatDay, formatDayTime, formatTime } from '../../../lib/format.js';
 
 /** Newest first, a day at a time; each change with what it was before and is after. */
 export function AuditList({ rows }: { rows: readonly AuditRow[] }) {
@@ -23,7 +23,12 @@ export function AuditList({ rows }: { rows: readonly AuditRow[] }) {
   ));
 }
 
-const valueText = (value: unknown): string => (typeof value === 'string' ? value : JSON.stringify(value));
+const MOMENT = /^\d{4}-\d\d-\d\dT[\d:.]+Z$/;
+function valueText(value: unknown): string {
+  if (typeof value === 'boolean') return value ? 'yes' : 'no';
+  if (typeof value !== 'string') return JSON.stringify(value);
+  return MOMENT.test(value) ? formatDayTime(value) : value;
+}
 /** `linkExpiresAt` is "link expires at". */
 const nameText = (name: string): string => name.replace(/[A-Z]/g, (letter) => ` ${letter.toLowerCase()}`);
 

@@ -7,7 +7,11 @@ import { PEOPLE_KEY } from './list-people.js';
 /** Whatever changes about somebody shows in the list, on their page and in their sessions. */
 const useThenLookAnew = () => {
   const queries = useQueryClient();
-  return { onSuccess: () => queries.invalidateQueries({ queryKey: PEOPLE_KEY }) };
+  return {
+    onSuccess: async () => {
+      await Promise.all([PEOPLE_KEY, ['sessions']].map((queryKey) => queries.invalidateQueries({ queryKey })));
+    },
+  };
 };
 
 /** The answer holds the link; nothing else ever does. */

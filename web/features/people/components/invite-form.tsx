@@ -45,7 +45,7 @@ export function InviteForm({ onMade }: { onMade: (made: MadeLink) => void }) {
       }
     >
       <ErrorSummary faults={summary} attempt={formState.submitCount + invite.failureCount} />
-      <div className="grid items-start gap-4 wide:grid-cols-[1fr_1fr_1fr_auto]">
+      <div className="grid items-start gap-4 wide:grid-cols-[1fr_1fr_1.4fr_auto]">
         <FormField id={fieldId('name')} label="Name" error={errorOf('name')}>
           {(a11y) => <input {...a11y} {...register('name')} maxLength={100} autoComplete="off" className="field" />}
         </FormField>

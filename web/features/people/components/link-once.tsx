@@ -14,9 +14,14 @@ export function LinkOnce({ made: { person, link }, onDone }: { made: MadeLink; o
   const copy = async (): Promise<void> => {
     field.current?.select();
     // Over plain http on a name of the network browsers offer no clipboard; the old way still works there.
-    if (typeof navigator.clipboard === 'object') await navigator.clipboard.writeText(link.url);
-    else document.execCommand('copy');
-    setCopied(true);
+    const byClipboard = async (): Promise<boolean> => {
+      if (typeof navigator.clipboard !== 'object') return false;
+      return navigator.clipboard.writeText(link.url).then(
+        () => true,
+        () => false,
+      );
+    };
+    setCopied((await byClipboard()) || document.execCommand('copy'));
   };
   return (
     <div ref={box} role="status" tabIndex={-1} className="my-4 border-2 border-ink bg-sheet px-4 py-3">
