@@ -1,0 +1,149 @@
+import { setTimeout as pause } from 'node:timers/promises';
+import { v4 as anyId } from 'uuid';
+import { expect, test } from 'vitest';
+import type { LiveMessage, NewLive } from '../../../shared/api/live.js';
+import type { Api } from '../../../cli/api/api-client.js';
+import { ApiProblemError, ServerUnreachableError } from '../../../cli/errors.js';
+import { fewerRows, LampThinner } from '../../../cli/live/lamp-thinner.js';
+import { LiveRelay } from '../../../cli/live/live-relay.js';
+
+const began: Extract<LiveMessage, { kind: 'began' }> = {
+  kind: 'began',
+  at: '2026-03-05T09:00:00.000Z',
+  what: 'run',
+  title: 'h6-find',
+  machine: 'Brindle BW 714',
+  steps: [{ id: 'see', kind: 'capture', title: 'Read the codes' }],
+  rig: { name: 'bench 2', simulated: false },
+};
+const ended: Extract<LiveMessage, { kind: 'ended' }> = { kind: 'ended', at: '2026-03-05T09:10:00.000Z', how: 'ended', verdict: 'pass' };
+
+/** A relay whose server is made up: `answer` says what becomes of each part. */
+function relayTo(answer: (part: NewLive) => Promise<void>) {
+  const parts: NewLive[] = [];
+  const said: string[] = [];
+  const call = async (_name: string, { body }: { body: NewLive }): Promise<{ taken: 'now' }> => {
+    // As it goes over the network: later changes of the relay's own lists are not seen.
+    parts.push(JSON.parse(JSON.stringify(body)) as NewLive);
+    await answer(body);
+    return { taken: 'now' };
+  };
+  const relay = new LiveRelay({
+    api: () => Promise.resolve({ call: call as unknown as Api['call'] }),
+    newId: anyId,
+    say: (line) => said.push(line),
+  });
+  return { relay, parts, said };
+}
+const kindsOf = (parts: readonly NewLive[]): string[] => parts.flatMap(({ messages }) => messages.map(({ kind }) => kind));
+const lamps = (ms: number): LiveMessage => ({ kind: 'lamps', rows: [[ms, 50]] });
+
+test('When work goes on, then all of it is told in order, the last word too, with one request in flight at most', async () => {
+  let inFlight = 0;
+  let most = 0;
+  const { relay, parts } = relayTo(async () => {
+    most = Math.max(most, (inFlight += 1));
+    await pause(20);
+    inFlight -= 1;
+  });
+  relay.begin({ id: anyId(), unit: 412 }, began);
+  for (let index = 0; index < 40; index += 1) {
+    relay.tell({ kind: 'mark', atMs: index });
+    await pause(5);
+  }
+  await relay.end(ended);
+  expect(kindsOf(parts)).toEqual(['began', ...Array.from({ length: 40 }, () => 'mark'), 'ended']);
+  expect(most).toBe(1);
+  expect(parts.map(({ part }) => part)).toEqual(parts.map((_, index) => index));
+});
+
+test('When a part may have arrived or not, then the same part is sent again as it was', async () => {
+  let failures = 1;
+  const { relay, parts, said } = relayTo(() =>
+    failures-- > 0 ? Promise.reject(new ServerUnreachableError('http://bench.example', 'the connection broke off')) : Promise.resolve(),
+  );
+  relay.begin({ id: anyId(), unit: 412 }, began);
+  await pause(50);
+  relay.tell({ kind: 'mark', atMs: 1 });
+  // RETRY.firstMs is half a second.
+  await pause(900);
+  await relay.end(ended);
+  expect(parts[1]).toEqual(parts[0]);
+  expect(kindsOf(parts.slice(1))).toEqual(['began', 'mark', 'ended']);
+  expect(said).toEqual([]);
+});
+
+test('When the network is away, then nothing is said, the end waits for nothing, and what waits is bounded, lamps dropped first', async () => {
+  const { relay, parts, said } = relayTo(() => Promise.reject(new ServerUnreachableError('http://bench.example', 'nothing listens there')));
+  relay.begin({ id: anyId(), unit: 412 }, began);
+  await pause(50);
+  for (let index = 0; index < 5_000; index += 1) relay.tell(index % 2 === 0 ? lamps(index) : { kind: 'mark', atMs: index });
+  const startedMs = performance.now();
+  await relay.end(ended);
+  expect(performance.now() - startedMs).toBeLessThan(200);
+  expect(parts).toHaveLength(1);
+  expect(said).toEqual([]);
+});
+
+test('When the server refuses, then it is said once, not while the screen is drawn on, and nothing more is sent', async () => {
+  const refusal = new ApiProblemError({
+    status: 403,
+    kind: 'role',
+    title: 'Not yours to do',
+    remedy: 'Somebody with the right role does it.',
+  });
+  const { relay, parts, said } = relayTo(() => Promise.reject(refusal));
+  relay.recording = true;
+  relay.begin({ id: anyId(), unit: 412 }, began);
+  await pause(50);
+  expect(said).toEqual([]);
+  relay.recording = false;
+  relay.tell(lamps(1));
+  await relay.end(ended);
+  expect(said).toEqual(['Nobody sees this live, the work itself goes on: Not yours to do']);
+  expect(parts).toHaveLength(1);
+});
+
+test('When the network is slow, then the lamps of the time between become one message of forty rows at most', async () => {
+  const { relay, parts } = relayTo(() => pause(120));
+  relay.begin({ id: anyId(), unit: 412 }, began);
+  await pause(10);
+  for (let ms = 0; ms < 20_000; ms += 50) relay.tell(lamps(ms));
+  await relay.end(ended);
+  const rows = parts.flatMap(({ messages }) => messages.flatMap((message) => (message.kind === 'lamps' ? [message.rows] : [])));
+  expect(rows.length).toBeLessThanOrEqual(2);
+  for (const one of rows) expect(one.length).toBeLessThanOrEqual(40);
+  // The first row is there, and time goes on to the last quarter: nothing of it was left out.
+  expect(rows[0]?.[0]?.[0]).toBe(0);
+});
+
+test('When samples come a hundred a second, then a row stands for each twentieth of a second: their mean, in percent', () => {
+  const thinner = new LampThinner({ scaleMax: 1000, byKeys: false });
+  const rows = Array.from({ length: 11 }, (_, sample) => thinner.push(sample * 10_000, [sample < 5 ? 100 * sample : 0, 1000]));
+  // (0 + 100 + 200 + 300 + 400) / 5 = 200 of 1000.
+  expect(rows.filter((row) => row !== undefined)).toEqual([
+    [0, 20, 100],
+    [50, 0, 100],
+  ]);
+});
+
+test('When lamps are tapped in by keys, then each press is told at once', () => {
+  const thinner = new LampThinner({ scaleMax: 1, byKeys: true });
+  expect(thinner.push(1_234_000, [1, 0])).toEqual([1234, 100, 0]);
+});
+
+test('When there are more rows than fit, then neighbours become one', () => {
+  expect(
+    fewerRows(
+      [
+        [0, 10],
+        [50, 20],
+        [100, 30],
+      ],
+      2,
+    ),
+  ).toEqual([
+    [0, 15],
+    [100, 30],
+  ]);
+});
