@@ -21,7 +21,8 @@ export const paths = {
     const query = new URLSearchParams(Object.entries(print ?? {}).flatMap(([key, value]) => (value ? [[key, value]] : [])));
     return `${paths.unit(number)}/tag${query.size > 0 ? `?${query.toString()}` : ''}`;
   },
-  unitLabels: (number: number, kind: 'stock' | 'price' = 'stock') => `${paths.unit(number)}/labels?kind=${kind}`,
+  unitLabels: (number: number, kind: 'stock' | 'price' = 'stock', size?: string) =>
+    `${paths.unit(number)}/labels?${new URLSearchParams({ kind, ...(size === undefined ? {} : { size }) }).toString()}`,
   capture: (id: string) => `/captures/${encodeURIComponent(id)}`,
   run: (id: string) => `/runs/${encodeURIComponent(id)}`,
   lookUpTag: (tag?: string) => (tag === undefined ? '/t' : `/t?${new URLSearchParams({ tag }).toString()}`),

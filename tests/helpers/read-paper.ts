@@ -119,11 +119,19 @@ export const colouredDots = ({ data }: Picture): number => {
   return count;
 };
 
-/** What part of the dots two pictures of one size disagree about. */
-export function differingPart(one: Picture, other: Picture): number {
-  const width = Math.min(one.width, other.width);
-  const height = Math.min(one.height, other.height);
-  let differ = 0;
-  for (let y = 0; y < height; y += 1) for (let x = 0; x < width; x += 1) if (dark(one, x, y) !== dark(other, x, y)) differ += 1;
-  return differ / (width * height);
+/** What part of the dark dots of one picture has no dark dot of the other so near. */
+export function strayPart(one: Picture, other: Picture, dotsAway: number): number {
+  let [all, stray] = [0, 0];
+  const near = (x: number, y: number): boolean => {
+    for (let v = Math.max(0, y - dotsAway); v <= Math.min(other.height - 1, y + dotsAway); v += 1)
+      for (let u = Math.max(0, x - dotsAway); u <= Math.min(other.width - 1, x + dotsAway); u += 1) if (dark(other, u, v)) return true;
+    return false;
+  };
+  for (let y = 0; y < one.height; y += 1)
+    for (let x = 0; x < one.width; x += 1) {
+      if (!dark(one, x, y)) continue;
+      all += 1;
+      if (!near(x, y)) stray += 1;
+    }
+  return stray / Math.max(1, all);
 }

@@ -61,7 +61,12 @@ function Labels({ page }: { page: UnitPage }) {
         </p>
         <nav aria-label="Which label" className="word-tabs mt-4 border-b border-line">
           {(['stock', 'price'] as const).map((one) => (
-            <Link key={one} to={paths.unitLabels(number, one)} replace aria-current={one === kind ? 'true' : undefined}>
+            <Link
+              key={one}
+              to={paths.unitLabels(number, one, query.get('size') ?? undefined)}
+              replace
+              aria-current={one === kind ? 'true' : undefined}
+            >
               {one === 'stock' ? 'Stock label' : 'Price label'}
             </Link>
           ))}
