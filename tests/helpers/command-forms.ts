@@ -231,6 +231,27 @@ export const COMMAND_FORMS: Record<string, CommandForm> = {
     says: /pass/,
     colour: false,
   },
+  runs: {
+    call: () => [],
+    json: z.strictObject({ runs: z.array(z.unknown()), unreadable: z.array(z.string()) }),
+    wrong: ['everywhere'],
+    says: /^No run is open on this bench/m,
+    colour: false,
+  },
+  'rig show': {
+    as: null,
+    call: () => ['--rig', 'sim:heron-good'],
+    json: z.object({ file: z.null(), simulated: z.literal(true), instruments: z.array(z.unknown()) }),
+    wrong: ['--rig'],
+    says: /heron-good/,
+  },
+  label: {
+    call: ({ unit, bench }) => [unit, '--code', 'bars', '--pdf', `${bench.home}/label.pdf`],
+    json: z.object({ unit: z.number(), kind: z.literal('stock'), says: z.array(z.string()) }),
+    wrong: NUMBER_WRONG,
+    says: /Brindle/,
+    colour: false,
+  },
   completion: {
     as: null,
     call: () => ['bash'],
