@@ -1,6 +1,6 @@
 import type { PortAnswer } from '../../instruments/ask-port.js';
 import type { Style } from '../../output.js';
-import { indented } from '../../render/columns.js';
+import { wrap } from '../../render/columns.js';
 import { plural } from '../../render/words.js';
 import type { Found, Matched } from './match-instruments.js';
 
@@ -15,7 +15,8 @@ interface Checked {
 export function checkLines({ answers, matched, file }: Checked, style: Style): string[] {
   const { ink } = style;
   const lines = answers.flatMap((answer) => {
-    if (answer.state !== 'answers') return [ink.bold(answer.port), `  ${answer.state}: ${answer.why}`, ...toDo(answer.toDo, style)];
+    if (answer.state !== 'answers')
+      return [ink.bold(answer.port), ...under(`${answer.state}: ${answer.why}`, style), ...under(answer.toDo, style)];
     const found = matched.found.find((one) => one.answer === answer);
     const sensors = answer.sensorCount === undefined ? [] : [plural(answer.sensorCount, 'sensor')];
     return [
@@ -43,4 +44,5 @@ function standingText({ instrument: { id }, standing, before }: Found, hasFile: 
   }
 }
 
-const toDo = (text: string, { columns }: Style): string[] => indented([text], columns).map((line) => line.replace(/^ {11}/, '  '));
+/** Under a port: wrapped, two columns in. */
+const under = (text: string, { columns }: Style): string[] => wrap(text, Math.max(20, columns - 3)).map((line) => `  ${line}`);

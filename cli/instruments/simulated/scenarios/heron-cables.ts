@@ -27,6 +27,6 @@ measurements:
   protective-conductor-current: {unit: mA, before: [{unplugged: 5}, 0.62]}
 probeFaults:
   - {fault: unplug, at: 12, seconds: 4}
-  - {fault: restart, at: 20}
+  - {fault: restart, at: 30}
 ${HERON_ANSWERS}
 `;
