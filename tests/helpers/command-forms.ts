@@ -12,7 +12,8 @@ import { repairBodySchema, unitEventSchema } from '../../shared/history/events.j
 import { judgementSchema } from '../../shared/measure/judge.js';
 import { verdictSchema } from '../../shared/verdict.js';
 import { BENCH_FORMS } from './bench-forms.js';
-import type { BenchTerminal } from './bench-terminal.js';
+import { runProgram } from '../../cli/program.js';
+import { benchTerminal, type BenchTerminal } from './bench-terminal.js';
 import { newUnit, shopFileText, takeIn } from './factories.js';
 import { examplePath } from './fixtures.js';
 import { PEOPLE_FORMS } from './people-forms.js';
@@ -68,6 +69,15 @@ family: heron-h6
 steps:
   - {id: visual, kind: inspect, title: Visual check, check: visual}
 `;
+
+/** A run of the quick script on a unit of its own, begun at this bench's terminal and parked at its only step; gives the unit's number. */
+async function parkedRun({ server, bench, write }: FormShop): Promise<string> {
+  const unit = String((await takeIn(server)).number);
+  const { REFETTLE_SERVER = '' } = bench.context.env;
+  const before = benchTerminal({ home: bench.home, terminal: true, env: { REFETTLE_SERVER } }).when('park', 'k');
+  await runProgram(['run', write('quick-look.yaml', QUICK_SCRIPT), unit, '--rig', 'sim:heron-good'], before.context);
+  return unit;
+}
 
 export const COMMAND_FORMS: Record<string, CommandForm> = {
   ...BENCH_FORMS,
@@ -251,6 +261,28 @@ export const COMMAND_FORMS: Record<string, CommandForm> = {
     wrong: NUMBER_WRONG,
     says: /Brindle/,
     colour: false,
+  },
+  resume: {
+    call: async (shop) => [await parkedRun(shop), '--rig', 'sim:heron-good', '--unattended'],
+    json: z.object({ run: z.uuid(), unit: z.number(), script: z.literal('quick-look'), verdict: z.literal('pass'), sent }),
+    wrong: ['0412'],
+    says: /Ended ■ pass/,
+  },
+  abandon: {
+    call: async (shop) => [await parkedRun(shop), '--reason', 'the machine was sold for parts'],
+    json: z.object({ run: z.uuid(), unit: z.number(), script: z.literal('quick-look'), reason: z.string(), sent }),
+    wrong: ['0412', '--reason', 'there is no such run'],
+    says: /quick-look/,
+    colour: false,
+  },
+  'rig check': {
+    as: null,
+    // No port of this name is on any machine: it is asked, and says so.
+    call: () => ['--port', '/dev/refettle-no-such-port'],
+    code: 4,
+    json: z.object({}),
+    wrong: ['--port'],
+    says: /refettle-no-such-port/,
   },
   completion: {
     as: null,
