@@ -1,0 +1,72 @@
+// A run at a bench, through the real program, heard by another person.
+import { createServer, type Server } from 'node:http';
+import type { AddressInfo } from 'node:net';
+import { afterAll, beforeAll, expect, test } from 'vitest';
+import { runProgram } from '../../../cli/program.js';
+import { benchTerminal, signedIn, type BenchTerminal } from '../../helpers/bench-terminal.js';
+import { addHeron, takeIn } from '../../helpers/factories.js';
+import { liveClient } from '../../helpers/live-client.js';
+import { startTestServer, type TestServer } from '../../helpers/test-server.js';
+
+let server: TestServer;
+let http: Server;
+let address: string;
+beforeAll(async () => {
+  server = await startTestServer({ shop: { demo: true } });
+  server.deps.clock = () => new Date();
+  await addHeron(server);
+  http = createServer(server.app);
+  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
+  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
+});
+afterAll(async () => {
+  http.closeAllConnections();
+  await new Promise((closed) => http.close(closed));
+  await server.close();
+});
+
+function benchOf(env: Record<string, string> = {}): BenchTerminal {
+  const bench = benchTerminal({ env: { REFETTLE_SERVER: address, ...env } });
+  signedIn(bench, server.people.technician);
+  return bench;
+}
+const shop = (name: string): string => new URL(`../../../server/seed/shop/${name}.yaml`, import.meta.url).pathname;
+
+test('When a script runs at a bench, then another person hears each step, the lamps, the code and the end, and the bench log goes its own way', async () => {
+  const { number } = await takeIn(server);
+  const client = liveClient(address, server.people.sales.token, `?unit=${number}`);
+  await client.until(({ event }) => event.kind === 'now');
+  const bench = benchOf();
+  await runProgram(['run', shop('h6-find'), String(number), '--rig', 'sim:heron-mend', '--json'], bench.context);
+  expect(bench.stdout(), bench.stderr()).not.toBe('');
+  const run = JSON.parse(bench.stdout()) as { run: string; verdict: string; steps: { id: string; verdict: string | null }[] };
+  await client.until(({ event }) => event.kind === 'work' && event.messages.some(({ kind }) => kind === 'ended'));
+  // What it recorded came by the bench log, and was announced by itself.
+  await client.until(({ event }) => event.kind === 'unit changed');
+  client.cut();
+  const messages = client.heard.flatMap(({ event }) => (event.kind === 'work' && event.work === run.run ? event.messages : []));
+  const began = messages[0];
+  expect(began).toMatchObject({ kind: 'began', what: 'run', rig: { simulated: true } });
+  expect(began?.kind === 'began' && began.steps.map(({ id }) => id)).toEqual(run.steps.map(({ id }) => id));
+  const results = messages.flatMap((message) => (message.kind === 'step ended' ? [[message.index, message.verdict ?? null]] : []));
+  expect(results).toEqual(run.steps.map(({ verdict }, index) => [index, verdict]));
+  expect(messages.some(({ kind }) => kind === 'lamps')).toBe(true);
+  // The simulated panel shows G5K3 (the scenario's own plan).
+  expect(messages.some((message) => message.kind === 'code so far' && message.code === 'G5K3')).toBe(true);
+  expect(messages.at(-1)).toMatchObject({ kind: 'ended', how: 'ended', verdict: run.verdict });
+  bench.remove();
+});
+
+test('When a single check is measured, then its reading is heard', async () => {
+  const { number } = await takeIn(server);
+  const client = liveClient(address, server.people.sales.token, `?unit=${number}`);
+  await client.until(({ event }) => event.kind === 'now');
+  const bench = benchOf();
+  expect(await runProgram(['measure', String(number), 'drain-pump-winding', '--rig', 'sim:heron-good'], bench.context)).toBe(0);
+  await client.until(({ event }) => event.kind === 'work' && event.messages.some(({ kind }) => kind === 'ended'));
+  client.cut();
+  const messages = client.heard.flatMap(({ event }) => (event.kind === 'work' ? event.messages : []));
+  expect(messages.map(({ kind }) => kind)).toEqual(['began', 'step began', 'step ended', 'ended']);
+  expect(messages[2]).toMatchObject({ verdict: 'pass', told: expect.stringMatching(/Ω/) as string });
+  bench.remove();
+});
