@@ -49,7 +49,7 @@ export async function checkSensors(context: Context, rig: OpenRig, sheet: Sheet)
         const covered = coveredSensor(free, await watch.settled());
         if (covered === index) break;
         const seen = covered === undefined ? 'No sensor changed clearly.' : `The sensor for ${sheet.lamps[covered]?.label ?? ''} changed.`;
-        stderr.write(`           ${seen} Move the sensors, or write their order down: refettle rig check finds it.\n`);
+        stderr.say(`           ${seen} Move the sensors, or write their order down: refettle rig check finds it.`);
         await prompt.key({
           message: '           Take the hand away',
           keys: [{ key: ' ', word: 'it is away' }],
