@@ -53,7 +53,7 @@ describe('The sensor check before the first capture', () => {
     bench.when('on Fill', ' ').when('Take the hand away', ' ');
     for (const { label } of heron.lamps) bench.when(`Cover the sensor on ${label}`, ' ');
     await checkSensors(bench.context, handOnProbe([1, 0, 1, 2, 3, 4, 5]), heron);
-    expect(bench.stderr()).toMatch(/The sensor for Wash changed\. Move the sensors, or write their\s+order down/);
+    expect(bench.stderr()).toMatch(/The sensor for Wash changed\. Move the sensors, or write\s+their\s+order\s+down/);
     expect(bench.stderr()).toContain('Every sensor is on its lamp');
   });
 });
