@@ -14,7 +14,7 @@ import {
 } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
-import { afterAll, afterEach, beforeAll, beforeEach, describe, expect, test } from 'vitest';
+import { afterAll, afterEach, beforeAll, beforeEach, describe, expect, onTestFinished, test } from 'vitest';
 import { hashPassword } from '../../../server/auth/password.js';
 import { insertPerson } from '../../../server/auth/people-store.js';
 import { makeBackup } from '../../../server/backup/make-backup.js';
@@ -40,7 +40,12 @@ let signed: Awaited<ReturnType<typeof signedOffUnit>>;
 let file: string;
 let made: Awaited<ReturnType<typeof makeBackup>>;
 
-const folderFor = (name: string): string => mkdtempSync(join(tmpdir(), `refettle-${name}-`));
+const folders: string[] = [];
+function folderFor(name: string): string {
+  const folder = mkdtempSync(join(tmpdir(), `refettle-${name}-`));
+  folders.push(folder);
+  return folder;
+}
 const backUp = (target: string, change: Partial<Parameters<typeof makeBackup>[0]> = {}) =>
   makeBackup({
     db: shop.deps.db,
@@ -71,7 +76,7 @@ beforeAll(async () => {
 });
 afterAll(async () => {
   await shop.close();
-  rmSync(shopDir, { recursive: true, force: true });
+  for (const folder of folders) rmSync(folder, { recursive: true, force: true });
 });
 
 let target: { database: FreshDatabase; dataDir: string };
@@ -80,7 +85,6 @@ beforeEach(async () => {
 });
 afterEach(async () => {
   await target.database.drop();
-  rmSync(target.dataDir, { recursive: true, force: true });
 });
 const restore = (from: string, replace = false) =>
   restoreBackup({ databaseUrl: target.database.url, dataDir: target.dataDir, file: from, replace, now: NOW, env: {} });
@@ -137,9 +141,18 @@ describe('A backup', () => {
 
   test('When the dump fails half-way, then there is no file and nothing beside it', async () => {
     const folder = folderFor('half');
-    const url = new URL(shop.deps.config.databaseUrl ?? '');
-    url.searchParams.set('options', '-c statement_timeout=1');
-    await expect(backUp(join(folder, 'shop.tar'), { databaseUrl: url.href })).rejects.toThrow(/pg_dump/);
+    // As if the disk were full: it has written something, and then gives up.
+    const tools = folderFor('tools');
+    const script =
+      '#!/bin/sh\nfor one; do case $one in --file=*) echo half > "${one#--file=}";; esac; done\necho "no space left" >&2\nexit 1\n';
+    for (const name of ['pg_dump', 'pg_restore', 'psql']) writeFileSync(join(tools, name), script, { mode: 0o755 });
+    const before = process.env['PG_BIN'];
+    process.env['PG_BIN'] = tools;
+    onTestFinished(() => {
+      if (before === undefined) delete process.env['PG_BIN'];
+      else process.env['PG_BIN'] = before;
+    });
+    await expect(backUp(join(folder, 'shop.tar'))).rejects.toThrow('pg_dump ended with 1: no space left');
     expect(readdirSync(folder)).toEqual([]);
     expect((await refusal(backUp(join(folder, 'nowhere', 'shop.tar')))).remedy).toContain('folder');
   });

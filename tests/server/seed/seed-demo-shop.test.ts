@@ -16,7 +16,17 @@ const now = new Date('2026-03-05T09:00:00Z');
 beforeEach(async () => {
   fresh = await freshDatabase();
   dataDir = mkdtempSync(join(tmpdir(), 'refettle-seed-'));
-  config = { host: '127.0.0.1', port: 4780, dataDir, databaseUrl: fresh.url, demo: true, publicUrl: undefined };
+  config = {
+    host: '127.0.0.1',
+    port: 4780,
+    dataDir,
+    databaseUrl: fresh.url,
+    demo: true,
+    publicUrl: undefined,
+    tls: undefined,
+    trustedProxies: ['loopback'],
+    publicListener: undefined,
+  };
 });
 afterEach(async () => {
   await fresh.drop();
@@ -24,6 +34,8 @@ afterEach(async () => {
 });
 
 const seed = () => seedDemoShop({ db: fresh.db, config, clock: () => now });
+const signInTo = (db: FreshDatabase['db'], request: { email: string; password: string }) =>
+  signIn(db, { request, from: 'a test', now, ifRefused: () => undefined });
 const path = () => join(dataDir, 'demo-accounts.json');
 const counts = async () => {
   const count = async (table: string): Promise<number> => Number((await fresh.db(table).count('* as n').first())?.['n']);
@@ -38,7 +50,7 @@ test('When the demo shop is made, then the file holds one account a role, its ow
   expect(Object.keys(accounts[0] ?? {}).sort()).toEqual(['email', 'password', 'role']);
   expect(statSync(path()).mode & 0o777).toBe(0o600);
   for (const { role, email, password } of accounts) {
-    expect((await signIn(fresh.db, { email, password }, now)).user).toMatchObject({ role, email });
+    expect((await signInTo(fresh.db, { email, password })).user).toMatchObject({ role, email });
   }
   expect(new Set(accounts.map(({ password }) => password)).size).toBe(4);
   expect(await counts()).toEqual({ people: 5, sheets: 1, units: 3, shop: 1 });
@@ -59,14 +71,14 @@ test('When the server starts again, then nothing is made twice and the passwords
 test('When the file was lost, then the accounts get new passwords, and sessions under the old ones end', async () => {
   const first = await seed();
   const lead = first.find(({ role }) => role === 'lead');
-  await signIn(fresh.db, { email: lead?.email ?? '', password: lead?.password ?? '' }, now);
+  await signInTo(fresh.db, { email: lead?.email ?? '', password: lead?.password ?? '' });
   unlinkSync(path());
 
   const second = await seed();
   const fresher = second.find(({ role }) => role === 'lead');
   expect(fresher?.password).not.toBe(lead?.password);
-  await expect(signIn(fresh.db, { email: lead?.email ?? '', password: lead?.password ?? '' }, now)).rejects.toThrow();
-  await signIn(fresh.db, { email: fresher?.email ?? '', password: fresher?.password ?? '' }, now);
+  await expect(signInTo(fresh.db, { email: lead?.email ?? '', password: lead?.password ?? '' })).rejects.toThrow();
+  await signInTo(fresh.db, { email: fresher?.email ?? '', password: fresher?.password ?? '' });
   expect(await fresh.db('sessions').whereNull('revoked_at').count('* as n')).toEqual([{ n: 1 }]);
 });
 
@@ -75,7 +87,7 @@ test('When the database is new and the file is old, then the passwords of the fi
   const other = await freshDatabase();
   expect(await seedDemoShop({ db: other.db, config, clock: () => now })).toEqual(first);
   const { email, password } = first[0] ?? { email: '', password: '' };
-  await signIn(other.db, { email, password }, now);
+  await signInTo(other.db, { email, password });
   await other.drop();
 });
 
