@@ -10,7 +10,7 @@ import { cutOf, lastPersonIn, RunJournal, writtenRun } from '../journal/run-jour
 import { SteadyClock } from '../journal/steady-clock.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
-import { byOf, openRunNamed } from './resume.js';
+import { byOf, closedInstead, openRunNamed } from './resume.js';
 
 const REASON_AT_MOST = 500;
 
@@ -19,7 +19,13 @@ export async function runAbandon(
   { run, reason: told, json }: { run?: string | undefined; reason?: string | undefined; json?: boolean | undefined },
   context: Context,
 ): Promise<number> {
-  closeEnded(context);
+  const closed = closedInstead(run, context, closeEnded(context));
+  if (closed) {
+    context.stderr.say(
+      `The ${closed.entry.what} has ended and is closed: it can’t be abandoned any more.${closed.where === 'waiting' ? ' It waits to be sent: refettle sync' : ''}`,
+    );
+    return EXIT.notGood;
+  }
   if (told === undefined && !context.interactive) throw new NobodyToAskError('Why is it abandoned?', 'give it with --reason');
   const open = await openRunNamed(run, context, 'abandon');
   if (!open) return EXIT.notGood;

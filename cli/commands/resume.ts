@@ -5,12 +5,18 @@ import { signOn } from '../bench/sign-on.js';
 import { unitOnBench } from '../bench/unit-on-bench.js';
 import { BadInputError } from '../../shared/errors.js';
 import { energisingOf } from '../../shared/script/energised.js';
+import { runVerdict, stepVerdict } from '../../shared/script/run-verdict.js';
 import type { Context } from '../context.js';
 import { UsageError } from '../errors.js';
-import { EXIT } from '../exit-codes.js';
+import { EXIT, firstExitCode } from '../exit-codes.js';
+import { closedRunNamed, type ClosedRun } from '../journal/closed-runs.js';
+import { sendWaiting } from '../journal/deliver.js';
 import { heldWords } from '../journal/lock.js';
 import { closeEnded, openRuns, runWords, type OpenRun } from '../journal/open-runs.js';
+import type { OutboxEntry } from '../journal/outbox.js';
 import { cutOf, journalFileOf, lastPersonIn, resultsOf, RunJournal, writtenRun, type WrittenRun } from '../journal/run-journal.js';
+import { deliveryWords } from '../render/delivery-words.js';
+import { printJson } from '../render/json.js';
 import { openRunText } from '../render/open-run-text.js';
 import { printRunHeader } from '../render/run-header.js';
 import { plural, unitLabel } from '../render/words.js';
@@ -25,7 +31,9 @@ export interface ResumeOptions {
 
 /** Goes on with a run of this bench where it was left. */
 export async function runResume(options: ResumeOptions, context: Context): Promise<number> {
-  closeEnded(context);
+  const endedNow = closeEnded(context);
+  const closed = closedInstead(options.run, context, endedNow);
+  if (closed) return finishClosed(closed, options, context);
   const open = await openRunNamed(options.run, context, 'resume');
   return open === undefined ? EXIT.notGood : resumeRun(options, context, open);
 }
@@ -61,6 +69,40 @@ export async function openRunNamed(named: string | undefined, context: Context, 
     instead: `name one: refettle ${verb} RUN`,
   });
   return free.find(({ written }) => written.header.id === id);
+}
+
+/** A run that is meant and has ended already: the program was killed after its last step, or it was sent long ago. Undefined: one that is open is meant. */
+export function closedInstead(named: string | undefined, context: Context, endedNow: readonly OutboxEntry[]): ClosedRun | undefined {
+  const { runs } = openRuns(context);
+  if (named === undefined) {
+    const ended = runs.some(({ owner }) => owner === undefined) ? undefined : endedNow.at(-1);
+    return ended && closedRunNamed(context.home, ended.id);
+  }
+  const isOpen = runs.some(
+    ({ written: { header } }) => header.id === named.toLowerCase() || String(header.unit) === named.replace(/^0+/, ''),
+  );
+  return isOpen ? undefined : closedRunNamed(context.home, named);
+}
+
+/** Nothing is left to do at the machine: what waits is sent, and the run's own verdict decides. */
+async function finishClosed({ entry, where }: ClosedRun, { json }: ResumeOptions, context: Context): Promise<number> {
+  const { body, id, what, params } = entry;
+  const delivery = where === 'waiting' ? (await sendWaiting(context, { again: true })).find((one) => one.entry.id === id) : undefined;
+  const sent = where === 'sent' || delivery?.state === 'sent';
+  const verdict = runVerdict(body.steps, body.interrupted);
+  context.stderr.say(`The ${what} has ended and is closed: nothing of it is left to do at the machine.`);
+  if (where === 'dropped') context.stderr.say('The server refused it, and it was given up; it stays on the disk.');
+  else if (!sent) context.stderr.say(delivery ? deliveryWords(delivery) : 'It waits to be sent: refettle sync');
+  if (json === true) {
+    const steps = body.steps.map((result) => ({
+      id: result.stepId,
+      kind: result.kind,
+      title: result.title,
+      verdict: stepVerdict(result) ?? null,
+    }));
+    printJson(context, { run: id, unit: params.number, script: body.script.name, verdict, sent, steps });
+  } else context.stdout.write(`${what}: ${verdict}. ${sent ? 'It is sent.' : 'It is not sent.'}\n`);
+  return firstExitCode([verdict === 'pass' ? EXIT.good : EXIT.notGood, sent ? EXIT.good : EXIT.server]);
 }
 
 const listed = (runs: readonly OpenRun[]): string =>

@@ -55,6 +55,14 @@ export function waitingEntries(home: Home): { entries: OutboxEntry[]; unreadable
   return { entries, unreadable };
 }
 
+const UUID = /^[0-9a-f]{8}(?:-[0-9a-f]{4}){3}-[0-9a-f]{12}$/;
+
+/** What waits no longer, by its id; undefined where this bench has none of it. */
+export function awayEntry(home: Home, id: string, where: 'sent' | 'dropped'): OutboxEntry | undefined {
+  if (!UUID.test(id)) return undefined;
+  return entrySchema.safeParse(parseJson(readIfThere(home.path('journal', where, `${id}.json`)) ?? '')).data;
+}
+
 /** The server has it (`sent`), or a person gave it up (`dropped`): it waits no longer, and stays on the disk. */
 export function putAway(home: Home, id: string, where: 'sent' | 'dropped'): void {
   const folder = makeFolder(home.path('journal', where));

@@ -49,11 +49,14 @@ afterAll(async () => {
   rmSync(folder, { recursive: true, force: true });
 });
 
-/** The program in a process of its own; killed so many milliseconds after it began, or after its first words. */
+/** So many milliseconds after it began, after its first words, or after the run's last step, where it is closed and sent. */
+type Kill = { afterMs: number; from: 'start' | 'first words' | RegExp };
+
+/** The program in a process of its own, killed when it is told. */
 function refettle(
   home: string,
   args: string[],
-  kill?: { afterMs: number; from: 'start' | 'first words' },
+  kill?: Kill,
 ): Promise<{ killed: boolean; code: number | null; stderr: string; stdout: string; tookMs: number; wordsMs: number }> {
   const { port } = http.address() as AddressInfo;
   const env = { PATH: process.env['PATH'], LANG: 'C.UTF-8', REFETTLE_HOME: home, REFETTLE_SERVER: `http://127.0.0.1:${String(port)}` };
@@ -71,7 +74,9 @@ function refettle(
       wordsMs = performance.now() - startedMs;
       if (kill?.from === 'first words') killLater();
     }
+    const before = stderr;
     stderr += chunk.toString();
+    if (kill?.from instanceof RegExp && kill.from.test(stderr) && !kill.from.test(before)) killLater();
   });
   child.stdout.on('data', (chunk: Buffer) => (stdout += chunk.toString()));
   return new Promise((done) =>
@@ -87,16 +92,15 @@ const journalsIn = (home: string): string[] =>
 const saidToBeDone = (stderr: string): number =>
   [...stderr.matchAll(/^ ?\d{1,2} (?:inspect|measure|expect|watch|clear|note|repair|capture) .*(?:pass|fail|ended)/gm)].length;
 
-type Kill = { afterMs: number; from: 'start' | 'first words' };
-
 async function runUntilItIsThere(
   home: string,
   script: string,
   number: number,
   killNext: (killed: number) => Kill | undefined,
   tookMs: (ms: number) => void,
-): Promise<{ kills: number; snapshot: string }> {
+): Promise<{ kills: number; snapshot: string; hadEnded: number }> {
   let kills = 0;
+  let hadEnded = 0;
   let snapshot = '';
   let said = 0;
   for (;;) {
@@ -118,11 +122,14 @@ async function runUntilItIsThere(
       snapshot = text;
       const written = readRunJournal(text);
       expect(written?.damage).toBeUndefined();
+      if (written?.end) hadEnded += 1;
       // What the screen said was in the journal before.
       expect((written?.results ?? []).length).toBeGreaterThanOrEqual(said);
     }
     const over = left === undefined && existsSync(join(home, 'journal', 'closed'));
-    if (over || (!outcome.killed && left === undefined)) return { kills, snapshot };
+    const waits = existsSync(join(home, 'journal', 'outbox')) ? readdirSync(join(home, 'journal', 'outbox')) : [];
+    if (over && outcome.killed && waits.length > 0) hadEnded += 1;
+    if (over || (!outcome.killed && left === undefined)) return { kills, snapshot, hadEnded };
   }
 }
 
@@ -135,6 +142,7 @@ test(
     let kills = 0;
     let runs = 0;
     let cuts = 0;
+    let ended = 0;
     /** How long the work of a whole run takes here, once it has said its first words: a guess, until one was let be. */
     const workMs: Record<string, number> = { 'h6-find': 2500, 'h6-prove': 5000 };
     while (kills < count) {
@@ -148,10 +156,12 @@ test(
       const killNext = (killed: number): Kill | undefined => {
         // Some right after the start, most once it works; some of the time it is let go on to its end.
         if (kills + killed >= count || random() < 0.15) return undefined;
+        if (random() < 0.2) return { from: new RegExp(`^ ?${String(steps)} `, 'm'), afterMs: below(80) };
         return random() < 0.15 ? { from: 'start', afterMs: below(1500) } : { from: 'first words', afterMs: below(workMs[name] ?? 0) };
       };
-      const { kills: times, snapshot } = await runUntilItIsThere(home, name, number, killNext, (ms) => (workMs[name] = ms));
+      const { kills: times, snapshot, hadEnded } = await runUntilItIsThere(home, name, number, killNext, (ms) => (workMs[name] = ms));
       kills += times;
+      ended += hadEnded;
 
       // Whatever still waits goes now; a second time does no harm.
       for (let round = 0; round < 2; round += 1) expect((await refettle(home, ['sync'])).code).toBe(0);
@@ -194,6 +204,8 @@ test(
       expect(times_).toEqual([...times_].sort((a, b) => a - b));
       rmSync(home, { recursive: true, force: true });
     }
-    process.stdout.write(`${String(kills)} kills in ${String(runs)} runs, ${String(cuts)} captures cut; all finished, all stored once\n`);
+    process.stdout.write(
+      `${String(kills)} kills in ${String(runs)} runs, ${String(cuts)} captures cut, ${String(ended)} killed between their end and the server's answer; all finished, all stored once\n`,
+    );
   },
 );
