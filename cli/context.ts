@@ -77,7 +77,7 @@ export function createContext(parts: ContextParts): Context {
     newId,
     sleep: (milliseconds) => new Promise((resolve) => setTimeout(resolve, milliseconds)),
     openRig: async (choice) =>
-      (await import('./instruments/rig.js')).openRig(choice, home.folder, { say: errors.say, signal: interruption.signal }),
+      (await import('./instruments/rig.js')).openRig(choice, home.folder, { say: (line) => errors.say(line), signal: interruption.signal }),
     api: async (as) => {
       const [{ createApi }, { readSession }, { joinedBench }, { standingHere }] = await Promise.all([
         import('./api/api-client.js'),

@@ -2,9 +2,10 @@ import type { Context } from '../context.js';
 import { StoppedError, UsageError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
 import { sendWaiting, type Delivery } from '../journal/deliver.js';
+import { leftHere, type Left } from '../journal/left-here.js';
 import { closeEnded, openRuns } from '../journal/open-runs.js';
-import { putAway, waitingEntries, type OutboxEntry } from '../journal/outbox.js';
-import { backOffMs, triesOf } from '../journal/tries.js';
+import { putAway, waitingEntries } from '../journal/outbox.js';
+import { backOffMs } from '../journal/tries.js';
 import { printJson } from '../render/json.js';
 import { dayText, plural, timeText, times } from '../render/words.js';
 
@@ -13,21 +14,6 @@ export interface SyncOptions {
   watch?: boolean;
   drop?: string;
   json?: boolean;
-}
-
-/** Something that waits, for people and programs. */
-interface Left {
-  id: string;
-  what: string;
-  madeAt: string;
-  server: string;
-  by: string;
-  state: 'waits' | 'refused';
-  /** How often it was tried, last when, and when again by itself. */
-  tries: number;
-  lastTryAt?: string;
-  nextTryAt?: string;
-  why: string;
 }
 
 /** Sends what waits on this bench, in order, or says what waits, why, and who must act. */
@@ -42,11 +28,11 @@ export async function runSync({ status, watch, drop, json }: SyncOptions, contex
   const deliveries = status === true ? [] : watch === true ? await keepSending(context) : await sendWaiting(context, { again: true });
   const left =
     status === true
-      ? entries.map((entry) => describe(context, entry))
+      ? entries.map((entry) => leftHere(context, entry))
       : deliveries
           .filter(({ state }) => state !== 'sent')
           .map((one): Left => ({
-            ...describe(context, one.entry),
+            ...leftHere(context, one.entry),
             state: one.state === 'refused' ? 'refused' : 'waits',
             why: 'why' in one ? one.why : '',
           }));
@@ -74,24 +60,6 @@ function say(context: Context, sent: readonly { what: string }[], left: readonly
   if (open > 0) stderr.say(`${plural(open, 'run is', 'runs are')} open and not sent before they are closed: refettle runs`);
 }
 
-function describe({ home }: Context, entry: OutboxEntry): Left {
-  const tries = triesOf(home, entry.id);
-  return {
-    id: entry.id,
-    what: entry.what,
-    madeAt: entry.madeAt,
-    server: entry.server,
-    by: entry.by.name,
-    state: entry.refused ? 'refused' : 'waits',
-    tries: tries?.count ?? 0,
-    ...(tries ? { lastTryAt: tries.lastAt } : {}),
-    ...(tries && !entry.refused ? { nextTryAt: tries.nextAt } : {}),
-    why: entry.refused
-      ? `${entry.refused.reason}\n${entry.refused.remedy}`
-      : (tries?.why ?? `recorded by ${entry.by.name}, for ${entry.server}: refettle sync sends it`),
-  };
-}
-
 /** Sends until nothing waits but what somebody must decide on; what does not get through is tried again after a while, longer each time. */
 async function keepSending(context: Context): Promise<Delivery[]> {
   const over = new Map<string, Delivery>();
@@ -110,9 +78,10 @@ async function keepSending(context: Context): Promise<Delivery[]> {
   }
 }
 
-async function sleepUnlessStopped({ sleep, interruption }: Context, milliseconds: number): Promise<void> {
+async function sleepUnlessStopped(context: Context, milliseconds: number): Promise<void> {
+  const { interruption } = context;
   const stopped = new Promise<void>((stop) => interruption.signal.addEventListener('abort', () => stop(), { once: true }));
-  await interruption.hold(() => Promise.race([sleep(milliseconds), stopped]));
+  await interruption.hold(() => Promise.race([context.sleep(milliseconds), stopped]));
   if (interruption.interrupted) throw new StoppedError('Stopped. What waits stays on this bench.');
 }
 

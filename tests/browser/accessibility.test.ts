@@ -1,6 +1,15 @@
 import type { Page } from 'playwright-core';
 import { afterAll, beforeAll, expect, test } from 'vitest';
-import { accessibilityFaults, DESK, expectNoSidewaysScroll, openShop, PHONE, settled, type BrowserShop } from '../helpers/browser.js';
+import {
+  accessibilityFaults,
+  DESK,
+  expectNoSidewaysScroll,
+  openShop,
+  PHONE,
+  RULES_OF_LOOKS,
+  settled,
+  type BrowserShop,
+} from '../helpers/browser.js';
 import { addHeron, mendAndProve, newLive, newReading, newRepair, newRun, pass, rulesSeen, takeIn } from '../helpers/factories.js';
 import { makeBench, standsAt } from '../helpers/shared-bench.js';
 
@@ -130,8 +139,8 @@ async function look(page: Page, name: string): Promise<void> {
 
 // Colours differ by theme, layout by width: two looks at each page see all four.
 const LOOKS = [
-  { bench: 'by day at the desk', night: false, viewport: DESK },
-  { bench: 'at night on a phone', night: true, viewport: PHONE },
+  { bench: 'by day at the desk', night: false, viewport: DESK, rules: undefined },
+  { bench: 'at night on a phone', night: true, viewport: PHONE, rules: RULES_OF_LOOKS },
 ];
 
 test.each([
@@ -142,7 +151,7 @@ test.each([
   'When $who opens each page, at the desk and on a phone, then axe finds nothing, nothing is wider than the window, and the console stays empty',
   async ({ who, pages }) => {
     const faults = await Promise.all(
-      LOOKS.map(async ({ bench, night, viewport }) => {
+      LOOKS.map(async ({ bench, night, viewport, rules }) => {
         const { lead, admin } = shop.server.people;
         const as = who === 'nobody' ? undefined : who === 'an admin' ? admin : lead;
         const { page, complaints } = await shop.open(as, { night, viewport });
@@ -151,7 +160,7 @@ test.each([
           await look(page, name);
           expect(await page.evaluate(() => document.documentElement.dataset['theme'])).toBe(night ? 'night' : 'day');
           await expectNoSidewaysScroll(page);
-          found.push(...(await accessibilityFaults(page)).map((fault) => `${name}, ${bench}: ${fault}`));
+          found.push(...(await accessibilityFaults(page, rules)).map((fault) => `${name}, ${bench}: ${fault}`));
         }
         return [...found, ...complaints];
       }),

@@ -30,7 +30,7 @@ async function takeIn(page: Page): Promise<number> {
 }
 
 async function scan(page: Page): Promise<string> {
-  const code = page.getByRole('img', { name: /QR code/ });
+  const code = page.getByRole('img', { name: /QR code/ }).first();
   await code.waitFor();
   const picture = PNG.sync.read(await code.screenshot());
   const found = jsQR.default(new Uint8ClampedArray(picture.data), picture.width, picture.height);
