@@ -78,7 +78,7 @@ export const arrivingNow = ({ placed }: Pick<UnitHistory, 'placed'>, now: Date):
 
 /**
  * A history is in the order of arrival, with one exception: what a bench measured before the last repair and sent only afterwards
- * stands before that repair, for it says nothing about the mended machine. A repair with a clock that runs ahead counts from when
+ * stands before that repair, for it says nothing about the mended machine; so it is with a sale and a return. A repair with a clock that runs ahead counts from when
  * it was written down.
  */
 export function placeOf(history: UnitHistory, at: Date, now: Date): Place {
@@ -89,7 +89,8 @@ export function placeOf(history: UnitHistory, at: Date, now: Date): Place {
   return { orderedAt, before: history.placed.filter((one) => one.orderedAt <= orderedAt).map(({ event }) => event) };
 }
 
-const opensAnew = (event: UnitEvent): boolean => isMend(event) || event.kind === 'returned';
+/** A sale opens nothing, but what was measured before it must not make a sold machine one that is being tested. */
+const opensAnew = (event: UnitEvent): boolean => isMend(event) || event.kind === 'returned' || event.kind === 'sold';
 
 /**
  * Each event of a bench log by its own time, for the machine may have been mended while the run went on: what was measured before that

@@ -2,24 +2,27 @@ import type { UnitPage } from '../../../shared/api/units.js';
 import { unitPage } from '../../bench/unit-on-bench.js';
 import type { Context } from '../../context.js';
 import { EXIT } from '../../exit-codes.js';
+import { leftOfUnit, type Left } from '../../journal/left-here.js';
 import { moneyText } from '../../money.js';
 import type { Style } from '../../output.js';
 import { eventLine } from '../../render/event-line.js';
 import { printJson } from '../../render/json.js';
 import { blankTagLines } from '../../render/tag-box.js';
-import { dayText, unitLabel } from '../../render/words.js';
+import { dayText, timeText, unitLabel } from '../../render/words.js';
 import { shopHere } from '../../session.js';
 
 /** Everything about a unit, newest first. */
 export async function runUnitShow({ number, json }: { number: number; json?: boolean }, context: Context): Promise<number> {
   const { value: page, offline } = await unitPage(context, number);
   if (offline) context.stderr.say('The server can’t be reached: this is from last time.');
+  const left = leftOfUnit(context, number);
   if (json === true) {
-    printJson(context, page);
+    printJson(context, left.length > 0 ? { ...page, onThisBench: left } : page);
     return EXIT.good;
   }
   const shop = await shopHere(context);
   context.stdout.write(`${unitLines(page, shop.currency, await context.stdout.style()).join('\n')}\n`);
+  if (left.length > 0) context.stdout.write(`\n${leftLines(left).join('\n')}\n`);
   return EXIT.good;
 }
 
@@ -50,6 +53,15 @@ function unitLines(page: UnitPage, currency: string, style: Style): string[] {
     ...[...events].reverse().flatMap((event) => eventLine(event, style)),
   ];
 }
+
+/** What the server does not know of it. */
+const leftLines = (left: readonly Left[]): string[] => [
+  'Only on this bench:',
+  ...left.flatMap(({ state, what, madeAt, why }) => [
+    `  ${state}: ${what}, ${dayText(madeAt)} ${timeText(madeAt)}`,
+    ...why.split('\n').map((line) => `    ${line}`),
+  ]),
+];
 
 function gateLines({ open, reasons, remedy, override }: UnitPage['energising'], ink: Style['ink']): string[] {
   if (override) return [`Power: a lead, ${override.by}, opened the gate: ${override.reason}`];

@@ -4,6 +4,7 @@ import { BadInputError } from '../../../shared/errors.js';
 import { settleRun, type SettledRun } from '../../../shared/history/settle-run.js';
 import type { PersonRef } from '../../../shared/history/events.js';
 import { runGateBreach } from '../../../shared/readiness/run-gates.js';
+import { stageOf } from '../../../shared/readiness/stage.js';
 import { checkScript } from '../../../shared/script/check-script.js';
 import { readScript } from '../../../shared/script/read-script.js';
 import { holdsFile, peopleOf, type RunLog } from '../../../shared/script/run-log.js';
@@ -20,6 +21,7 @@ import { donorsOf, takePartFrom } from '../../history/donor.js';
 import { happenedAt, refuseFuture } from '../../history/happened-at.js';
 import { insertRun } from '../../history/run-store.js';
 import { sheetOf } from '../../history/sheet-of.js';
+import { findSheet } from '../../history/sheet-store.js';
 import {
   factsOf,
   openUnitHistory,
@@ -86,6 +88,48 @@ function askGates(history: UnitHistory, settled: SettledRun, script: Script, she
     throw new GateError(`Step ${breach.stepId} of the run on unit ${number} should not have begun`, breach.reasons, breach.remedy);
 }
 
+/** What was measured on a machine that is the buyer's says nothing about what was sold. Before the sale, it is taken down as what it was. */
+function refuseAfterSale(unitNumber: number, before: Place['before']): void {
+  if (stageOf(before) !== 'sold') return;
+  const number = unitNumberText(unitNumber);
+  throw new ConflictError(
+    `Unit ${number} was sold before this run began, so it is not on its books.`,
+    `Is it the right unit? If it came back, a lead takes ${number} in as returned; if the run was a mistake, give it up: refettle sync --drop ID.`,
+  );
+}
+
+/**
+ * By the newest sheet; by the edition that the run was made with where the newest no longer fits its script. What is ready is asked of
+ * the newest one either way, so an older edition makes a run storable and nothing easier.
+ */
+async function settleByFittingSheet(
+  db: Db,
+  history: UnitHistory,
+  told: RunLog,
+  by: PersonRef,
+): Promise<{ sheet: Sheet; script: Script; settled: SettledRun }> {
+  const settledBy = (sheet: Sheet): { sheet: Sheet; script: Script; settled: SettledRun } => {
+    const script = readScriptOf(told, sheet);
+    const faults = logFaults(told, script);
+    if (faults.length > 0) throw new InvalidError(faults);
+    return { sheet, script, settled: settle(told, script, sheet, by) };
+  };
+  const newest = sheetOf(history, 'no script can run on it');
+  try {
+    return settledBy(newest);
+  } catch (error) {
+    if (!(error instanceof InvalidError) || told.sheetEdition === undefined || told.sheetEdition >= newest.edition) throw error;
+    const older = await findSheet(db, newest.family, told.sheetEdition);
+    if (!older) throw error;
+    try {
+      return settledBy(older.sheet);
+    } catch (olderError) {
+      // It fits neither: what is wrong with it today is what can be mended.
+      throw olderError instanceof InvalidError ? error : olderError;
+    }
+  }
+}
+
 /** A bench log, whole: nothing of it is believed before it has been decoded, judged and asked for at the gates again. */
 export async function recordRun(
   db: Db,
@@ -97,17 +141,14 @@ export async function recordRun(
   const repairs = told.steps.flatMap((step) => (step.kind === 'repair' ? [step.repair] : []));
   const history = await openUnitHistory(db, unitNumber, donorsOf(repairs));
   const { unit } = history;
-  const sheet = sheetOf(history, 'no script can run on it');
-  const script = readScriptOf(told, sheet);
-  const faults = logFaults(told, script);
-  if (faults.length > 0) throw new InvalidError(faults);
-
+  const { before } = placeOf(history, new Date(told.startedAt), now);
+  refuseAfterSale(unitNumber, before);
   const by = refOf(person);
-  const settled = settle(told, script, sheet, by);
+  const { sheet, script, settled } = await settleByFittingSheet(db, history, told, by);
   refuseWhatIsNoText(settled.events, '/steps');
   for (const { body } of settled.captures) refuseFuture(body.capturedAt, now, '/steps');
   // What the bench could know when it began: what others wrote down meanwhile is placed around the run's steps, and shuts no gate behind it.
-  askGates(history, settled, script, sheet, placeOf(history, new Date(told.startedAt), now).before);
+  askGates(history, settled, script, sheet, before);
 
   const steps = settled.log.steps.map((step) => (holdsFile(step) ? { ...step, file: '' } : step));
   const stored = await insertRun(db, { unitId: unit.id, by, log: { ...settled.log, steps }, verdict: settled.verdict, recordedAt: now });
