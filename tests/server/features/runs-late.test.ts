@@ -8,7 +8,7 @@ import { runUnitShow } from '../../../cli/commands/unit/show.js';
 import { keepEntry } from '../../../cli/journal/outbox.js';
 import { openUnitHistory, recordEvents, arrivingNow } from '../../../server/history/unit-history.js';
 import { benchTerminal, signedIn } from '../../helpers/bench-terminal.js';
-import { addHeron, mendAndProve, newRun, pass, signedOffUnit, takeIn } from '../../helpers/factories.js';
+import { addHeron, mendAndProve, newRepair, newRun, pass, signedOffUnit, takeIn } from '../../helpers/factories.js';
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 let server: TestServer;
@@ -101,6 +101,21 @@ test('When a run was begun before the sale and sent after it, then it is stored 
   expect(stage).toBe('sold');
   expect(runs.map(({ id }) => id)).toContain(run.id);
   expect(events.findIndex(({ runId }) => runId === run.id)).toBeLessThan(events.findIndex(({ kind }) => kind === 'sold'));
+});
+
+test('When a run was begun before a part was taken out of the unit and sent after it, then it stands before that and proves nothing of what is left', async () => {
+  const { number } = await takeIn(server);
+  const other = await takeIn(server);
+  const run = newRun(server, 'h6-find');
+  pass(server, 60);
+  const repair = newRepair(server, { partSource: { kind: 'used', fromUnit: number } });
+  await server.ok('recordRepair', { params: { number: other.number }, as: server.people.technician, body: repair });
+  pass(server, 5);
+  await send(number, run).expect(201);
+  const { stage, events, energising } = await page(number);
+  expect(stage).toBe('repair');
+  expect(events.at(-1)?.kind).toBe('part removed');
+  expect(energising.open).toBe(false);
 });
 
 test('When a run was begun after the sale, then it is refused with what to do, and stays on the bench where sync and the unit show it', async () => {
