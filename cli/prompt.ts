@@ -122,7 +122,7 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
     async key(question) {
       needSomebody(question);
       const { ink } = await output.style();
-      const row = question.keys.map(({ key, word }) => `${ink.inverse(` ${nameOfKey(key)} `)} ${word}`).join('   ');
+      const row = question.keys.map(({ key, word }) => `${ink.inverse(` ${nameOfKey(key)} `)} ${word}`).join('  ');
       return new Promise<string>((resolve, reject) => {
         let keyboard: { close(): void } | undefined;
         const settle = (end: () => void): void => {
@@ -141,13 +141,13 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
           if (answer) settle(() => (output.write(`${nameOfKey(answer.key)}  ${timeText(now())}\n`), resolve(answer.key)));
           else
             output.write(
-              `\n${question.again ?? `${indentOf(question.message)}There is no default: press one of these keys.`}\n${question.message}  ${row}   > `,
+              `\n${question.again ?? `${indentOf(question.message)}There is no default: press one of these keys.`}\n${question.message}  ${row}  > `,
             );
         };
         readKeys(stdin, onKey, () => interruption.interrupt()).then((opened) => {
           keyboard = opened;
           if (interruption.interrupted) opened.close();
-          else output.write(`${question.message}  ${row}   > `);
+          else output.write(`${question.message}  ${row}  > `);
         }, reject);
       });
     },

@@ -71,7 +71,8 @@ async function table(runs: readonly ListedRun[], { stdout }: Context): Promise<s
   const width = Math.max(...runs.map(({ script }) => widthOf(script)));
   return runs.flatMap(({ run, unit, script, state, place, people, since, damage }) => [
     `${ink.bold(unitLabel(unit))}  ${padRight(script, width)}  ${[place, state].filter(Boolean).join(', ')}`,
-    `          ${people}, since ${dayText(since)} ${timeText(since)}   ${run}`,
+    `          ${people}, since ${dayText(since)} ${timeText(since)}`,
+    `          ${run}`,
     ...(damage ? [`          line ${damage.line} of its journal is damaged: ${damage.reason}`] : []),
   ]);
 }

@@ -14,7 +14,7 @@ import { spread } from './columns.js';
 import { stepLines } from './step-lines.js';
 import { blankTagLines } from './tag-box.js';
 import { verdictText } from './verdict.js';
-import { durationText, plural, unitLabel } from './words.js';
+import { durationText, plural, unitLabel, unitNumberText } from './words.js';
 
 interface RunEnded {
   unit: UnitOnBench;
@@ -24,7 +24,6 @@ interface RunEnded {
   /** Undefined: it was left before its end and stays on this bench. */
   delivery?: Delivery;
   left?: RunStop['how'];
-  runId: string;
   code: number;
   tookMs: number;
 }
@@ -32,7 +31,7 @@ interface RunEnded {
 /** The last words of a run: the steps where they were not on this screen already, the tag after a proof run, the verdict, what became of it. */
 export async function printRunEnd(
   context: Context,
-  { unit, script, results, verdict, delivery, left, runId, code, tookMs }: RunEnded,
+  { unit, script, results, verdict, delivery, left, code, tookMs }: RunEnded,
 ): Promise<void> {
   const { stdout, stderr } = context;
   const style = await stdout.style();
@@ -50,6 +49,7 @@ export async function printRunEnd(
       : '';
   const sent = delivery?.state === 'sent' ? 'Written down here, and sent.' : 'Written down here; not sent yet.';
   if (!delivery) {
+    const unitText = unitNumberText(unit.page.unit.number);
     const done = new Set(results.filter(({ kind }) => kind !== 'cut').map(({ stepId }) => stepId)).size;
     const how = left === 'parked' ? 'Parked' : left === 'instrument failed' ? 'Stopped for an instrument' : 'Stopped';
     lines.push(
@@ -59,8 +59,9 @@ export async function printRunEnd(
         `exit ${code}`,
         style.columns - 1,
       ),
-      ` Go on: refettle resume ${runId}`,
-      ` Close: refettle abandon ${runId} --reason TEXT`,
+      // By its unit: an id is too long to type.
+      ` Go on: refettle resume ${unitText}`,
+      ` Close: refettle abandon ${unitText} --reason TEXT`,
     );
     stdout.write(`${lines.join('\n')}\n`);
     return;
