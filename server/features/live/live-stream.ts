@@ -30,6 +30,8 @@ const eventText = (event: LiveEvent, id?: number): string =>
 export async function openStream({ hub, db, response, unit, after, stillAllowed }: StreamParts): Promise<void> {
   let over = false;
   let caughtUp = false;
+  /** What the page has heard from another server, which may be ahead of this one. */
+  let heardBefore = 0;
   const waiting: PlacedLive[] = [];
   const concerns = ({ event }: PlacedLive): boolean => unit === undefined || ('unit' in event && event.unit === unit);
 
@@ -60,7 +62,7 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
   };
   const listener: LiveListener = {
     heard(placed) {
-      if (!concerns(placed)) return;
+      if (placed.id <= heardBefore || !concerns(placed)) return;
       if (caughtUp) write(eventText(placed.event, placed.id));
       else if (waiting.push(placed) > WAITING_ROWS_AT_MOST) cutOff();
     },
@@ -69,7 +71,7 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
   };
   const beat = setInterval(() => {
     // It carries the newest id, so that a page which hears of one quiet unit can resume, too.
-    if (caughtUp) write(`id: ${String(hub.newest)}\nevent: ${LIVE_BEAT}\ndata:\n\n`);
+    if (caughtUp) write(`id: ${String(Math.max(hub.newest, heardBefore))}\nevent: ${LIVE_BEAT}\ndata:\n\n`);
     checkSignIn();
   }, LIVE_BEAT_SECONDS * 1000);
   beat.unref();
@@ -77,7 +79,8 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
 
   try {
     const upTo = await hub.join(listener);
-    const resumeAfter = await resumable(db, after, upTo);
+    const resumeAfter = await resumable(db, after);
+    heardBefore = resumeAfter ?? 0;
     if (over) return;
     response.status(200).set({
       'Content-Type': 'text/event-stream; charset=utf-8',
@@ -107,8 +110,8 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
         rows = await liveAfter(db, from, { upTo, limit: ROWS_AT_ONCE });
       }
     }
-    write(eventText({ kind: 'now' }, upTo));
-    for (const placed of waiting.splice(0)) write(eventText(placed.event, placed.id));
+    write(eventText({ kind: 'now' }, Math.max(upTo, heardBefore)));
+    for (const placed of waiting.splice(0)) if (placed.id > heardBefore) write(eventText(placed.event, placed.id));
     caughtUp = true;
   } catch (error) {
     // Where the answer has begun, the page is cut off and comes back; otherwise it gets a problem like any other request.
@@ -123,8 +126,7 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
   }
 }
 
-async function resumable(db: Db, after: string | undefined, upTo: number): Promise<number | undefined> {
+async function resumable(db: Db, after: string | undefined): Promise<number | undefined> {
   const id = after !== undefined && /^\d{1,15}$/.test(after) ? Number(after) : undefined;
-  if (id === undefined || id > upTo) return undefined;
-  return (await canResumeAfter(db, id)) ? id : undefined;
+  return id !== undefined && (await canResumeAfter(db, id)) ? id : undefined;
 }
