@@ -40,6 +40,8 @@ export class LiveHub {
   #timers = new Set<NodeJS.Timeout>();
   /** Everything up to here was handed on. */
   #newest = 0;
+  /** Until then nobody knows from where to look. */
+  #begun = false;
   #looking = false;
   #lookAgain = false;
 
@@ -90,10 +92,13 @@ export class LiveHub {
     await this.#connect();
     try {
       this.#newest = await newestLiveId(this.#parts.db);
+      this.#begun = true;
     } catch (error) {
       await this.#hangUp();
       throw error;
     }
+    // What was told between listening and knowing from where.
+    this.#look();
     this.#lookNowAndThen();
   }
 
@@ -162,6 +167,7 @@ export class LiveHub {
   }
 
   #look(): void {
+    if (!this.#begun) return;
     if (this.#looking) {
       this.#lookAgain = true;
       return;
