@@ -1,4 +1,4 @@
-import { runVerdict, stepVerdict } from '../../shared/script/run-verdict.js';
+import { runVerdict } from '../../shared/script/run-verdict.js';
 import { sinceOpened } from '../../shared/readiness/facts.js';
 import type { PersonRef } from '../../shared/history/events.js';
 import type { ClockJump, StepResult } from '../../shared/script/run-log.js';
@@ -15,6 +15,7 @@ import { writtenRun, type RunJournal, type RunStop } from '../journal/run-journa
 import { SteadyClock } from '../journal/steady-clock.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
+import { runAnswer } from '../render/run-answer.js';
 import { printRunEnd } from '../render/run-end.js';
 import { runScript, type RunEnd } from './run-script.js';
 import { simulatedTechnician } from './simulated-technician.js';
@@ -163,15 +164,8 @@ async function say(context: Context, { json, unit, script }: GoThroughParts, sai
   const { delivery, results, verdict, runId, left } = said;
   if (delivery && delivery.state !== 'sent') context.stderr.say(deliveryWords(delivery));
   if (json) {
-    printJson(context, {
-      run: runId,
-      unit: unit.page.unit.number,
-      script: script.name,
-      verdict,
-      sent: delivery?.state === 'sent',
-      ...(left === undefined ? {} : { left }),
-      steps: results.map((result) => ({ id: result.stepId, kind: result.kind, title: result.title, verdict: stepVerdict(result) ?? null })),
-    });
+    const sent = delivery?.state === 'sent';
+    printJson(context, runAnswer({ id: runId, unit: unit.page.unit.number, script: script.name, verdict, sent, left, results }));
     return;
   }
   await printRunEnd(context, { unit, script, ...said });

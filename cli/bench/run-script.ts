@@ -51,8 +51,9 @@ const PARKED = { interrupted: true, left: 'parked', exitCode: EXIT.good } as con
 const INSTRUMENT_FAILED = { interrupted: true, left: 'instrument failed', exitCode: EXIT.instrument } as const;
 
 /**
- * Goes through the steps of a script, from the first that is not done. Each step's result is in the journal before the next begins; before a step that energises the
- * machine the safety gates are asked, and after an interruption its caution once more. Ends by itself, by a `no`, by `q`, by Ctrl-C, or by an instrument that fails; the caller closes the journal.
+ * Goes through the steps of a script, from the first that is not done. Each step's result is in the journal before the next begins;
+ * before a step that energises the machine the safety gates are asked, and after an interruption its caution once more. Ends by itself,
+ * by a `no`, by a key that parks, by Ctrl-C, or by an instrument that fails; the caller closes the journal.
  */
 export async function runScript(parts: RunParts): Promise<RunEnd> {
   const { unit, script, rig, journal, before = [], person } = parts;
@@ -218,7 +219,7 @@ async function tryStep(
       try {
         if (!(technician.attended && (await technician.triesAgain(step.id, 'Try this step again?')))) return 'instrument';
       } catch (answer) {
-        if (answer instanceof StoppedError) return 'stopped';
+        if (answer instanceof StoppedError) return context.interruption.interrupted ? 'stopped' : 'left';
         throw answer;
       }
     }

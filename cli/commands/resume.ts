@@ -5,7 +5,7 @@ import { signOn } from '../bench/sign-on.js';
 import { unitOnBench } from '../bench/unit-on-bench.js';
 import { BadInputError } from '../../shared/errors.js';
 import { energisingOf } from '../../shared/script/energised.js';
-import { runVerdict, stepVerdict } from '../../shared/script/run-verdict.js';
+import { runVerdict } from '../../shared/script/run-verdict.js';
 import type { Context } from '../context.js';
 import { UsageError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
@@ -18,6 +18,7 @@ import { cutOf, journalFileOf, lastPersonIn, resultsOf, RunJournal, writtenRun, 
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
 import { openRunText } from '../render/open-run-text.js';
+import { runAnswer } from '../render/run-answer.js';
 import { printRunHeader } from '../render/run-header.js';
 import { plural, unitLabel } from '../render/words.js';
 
@@ -93,15 +94,9 @@ async function finishClosed({ entry, where }: ClosedRun, { json }: ResumeOptions
   context.stderr.say(`The ${what} has ended and is closed: nothing of it is left to do at the machine.`);
   if (where === 'dropped') context.stderr.say('The server refused it, and it was given up; it stays on the disk.');
   else if (!sent) context.stderr.say(delivery ? deliveryWords(delivery) : 'It waits to be sent: refettle sync');
-  if (json === true) {
-    const steps = body.steps.map((result) => ({
-      id: result.stepId,
-      kind: result.kind,
-      title: result.title,
-      verdict: stepVerdict(result) ?? null,
-    }));
-    printJson(context, { run: id, unit: params.number, script: body.script.name, verdict, sent, steps });
-  } else context.stdout.write(`${what}: ${verdict}. ${sent ? 'It is sent.' : 'It is not sent.'}\n`);
+  if (json === true)
+    printJson(context, runAnswer({ id, unit: params.number, script: body.script.name, verdict, sent, results: body.steps }));
+  else context.stdout.write(`${what}: ${verdict}. ${sent ? 'It is sent.' : 'It is not sent.'}\n`);
   return firstExitCode([verdict === 'pass' ? EXIT.good : EXIT.notGood, sent ? EXIT.good : EXIT.server]);
 }
 

@@ -22,7 +22,10 @@ export async function runBenchJoin(options: BenchJoinOptions, context: Context):
       ? await firstLineOfInput(context, { option: '--token-stdin', what: 'token' })
       : await context.prompt.secret({ message: 'The bench’s token', instead: 'give it on standard input with --token-stdin' })
   ).trim();
-  const asBench = { person: () => undefined, remedy: 'A lead or an admin makes a bench, or gives it a new token, on the page Shared benches' };
+  const asBench = {
+    person: () => undefined,
+    remedy: 'A lead or an admin makes a bench, or gives it a new token, on the page Shared benches',
+  };
   const api = createApi({ server, token: () => token, bench: asBench, signal: context.interruption.signal });
   const own = await api.call('ownBench').catch((error: unknown) => {
     // Somebody's own token is let in as that person, and then refused here.

@@ -1,27 +1,24 @@
 // A run at a bench, through the real program, heard by another person.
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { runProgram } from '../../../cli/program.js';
 import { benchTerminal, signedIn, type BenchTerminal } from '../../helpers/bench-terminal.js';
 import { addHeron, takeIn } from '../../helpers/factories.js';
 import { liveClient } from '../../helpers/live-client.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let address: string;
 beforeAll(async () => {
   server = await startTestServer({ shop: { demo: true } });
   server.deps.clock = () => new Date();
   await addHeron(server);
-  http = createServer(server.app);
-  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
-  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
+  http = await overHttp(server.app);
+  address = http.address;
 });
 afterAll(async () => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
+  await http.unplug();
   await server.close();
 });
 

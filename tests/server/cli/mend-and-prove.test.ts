@@ -1,8 +1,6 @@
 // The whole way through the real program and the real server, on simulated instruments: find, mend, prove, tag; and without the network.
 import { execFile } from 'node:child_process';
 import { mkdtempSync, readFileSync, rmSync, statSync, writeFileSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
@@ -13,6 +11,7 @@ import { unitSchema } from '../../../shared/api/units.js';
 import { benchTerminal } from '../../helpers/bench-terminal.js';
 import { addHeron, rulesSeen } from '../../helpers/factories.js';
 import { theProgram } from '../../helpers/the-program.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 const repository = new URL('../../..', import.meta.url);
@@ -20,19 +19,9 @@ const shop = (name: string): string => new URL(`server/seed/shop/${name}.yaml`, 
 const PASSWORD = 'a password for the test';
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let address: string;
 let home: string;
-
-const listen = async (port: number): Promise<void> => {
-  http = createServer(server.app);
-  await new Promise<void>((ready) => http.listen(port, '127.0.0.1', ready));
-  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
-};
-const unplug = async (): Promise<void> => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
-};
 
 beforeAll(async () => {
   server = await startTestServer({ shop: { demo: true } });
@@ -41,10 +30,11 @@ beforeAll(async () => {
   home = mkdtempSync(join(tmpdir(), 'refettle-e2e-'));
   await setPassword(server.deps.db, server.people.technician.id, await hashPassword(PASSWORD), new Date());
   await addHeron(server);
-  await listen(0);
+  http = await overHttp(server.app);
+  address = http.address;
 });
 afterAll(async () => {
-  await unplug();
+  await http.unplug();
   await server.close();
   rmSync(home, { recursive: true, force: true });
 });
@@ -202,8 +192,7 @@ describe('Without the network', () => {
       const unit = String(number);
       // The bench has seen the unit and its sheet.
       expect((await inProcess(['measure', unit, 'visual', '--verdict', 'pass'])).code).toBe(0);
-      const { port } = new URL(address);
-      await unplug();
+      await http.unplug();
 
       const find = await inProcess(['run', shop('h6-find'), unit, ...rig]);
       // A failed run whose result still waits is 1, and says that it waits (contract, section 5).
@@ -222,7 +211,7 @@ describe('Without the network', () => {
       expect(status.stdout).toContain('repair of');
       expect((await inProcess(['sync'])).code).toBe(5);
 
-      await listen(Number(port));
+      await http.plugIn();
       expect(await inProcess(['sync'])).toMatchObject({ code: 0 });
       const page = await server.ok('getUnit', { as: server.people.lead, params: { number } });
       expect(page.runs).toHaveLength(1);

@@ -1,8 +1,6 @@
 // The menu: each flow in this process, by the keys a person presses; and once as the real program on a pseudo-terminal.
 import { spawn } from 'node:child_process';
 import { chmodSync, mkdirSync, writeFileSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { join, resolve } from 'node:path';
 import { afterAll, afterEach, beforeAll, beforeEach, describe, expect, test } from 'vitest';
 import { waitingFor } from '../../../cli/menu/places.js';
@@ -10,6 +8,7 @@ import { shellLine } from '../../../cli/menu/shell-words.js';
 import { runProgram } from '../../../cli/program.js';
 import { benchTerminal, signedIn, type BenchTerminal } from '../../helpers/bench-terminal.js';
 import { addHeron, takeIn } from '../../helpers/factories.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 import { theProgram } from '../../helpers/the-program.js';
 
@@ -19,7 +18,7 @@ const CTRL_C = '\u0003';
 const repository = new URL('../../..', import.meta.url).pathname;
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let address: string;
 let unit: string;
 let bench: BenchTerminal;
@@ -28,13 +27,11 @@ beforeAll(async () => {
   server = await startTestServer({ shop: { demo: true } });
   server.deps.clock = () => new Date();
   await addHeron(server);
-  http = createServer(server.app);
-  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
-  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
+  http = await overHttp(server.app);
+  address = http.address;
 });
 afterAll(async () => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
+  await http.unplug();
   await server.close();
 });
 beforeEach(async () => {

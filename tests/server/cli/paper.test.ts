@@ -1,7 +1,5 @@
 // Tags and labels through the program against a real server: as a terminal, a pipe and JSON; with and without the network.
 import { chmodSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, expect, test } from 'vitest';
@@ -9,10 +7,11 @@ import { runProgram } from '../../../cli/program.js';
 import { benchTerminal, signedIn } from '../../helpers/bench-terminal.js';
 import { addHeron, mendAndProve, rulesSeen, takeIn } from '../../helpers/factories.js';
 import { pageSizes, picturesOf, readQr, wordsOnPaper } from '../../helpers/read-paper.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let address: string;
 let home: string;
 let ready: number;
@@ -25,16 +24,14 @@ beforeAll(async () => {
   await mendAndProve(server, ready);
   await server.ok('signOff', { as: server.people.lead, params: { number: ready }, body: await rulesSeen(server, ready) });
   bare = (await takeIn(server)).number;
-  http = createServer(server.app);
-  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
-  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
+  http = await overHttp(server.app);
+  address = http.address;
   home = mkdtempSync(join(tmpdir(), 'refettle-paper-cli-'));
   writeFileSync(join(home, 'lp'), "#!/bin/sh\necho 'request id is desk-7 (1 file(s))'\n");
   chmodSync(join(home, 'lp'), 0o755);
 });
 afterAll(async () => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
+  await http.unplug();
   await server.close();
   rmSync(home, { recursive: true, force: true });
 });

@@ -1,29 +1,26 @@
 // What the three forms don't show: finding somebody, the file that the audit log is written to, passwords typed at a terminal.
 import { mkdtempSync, readdirSync, readFileSync, rmSync, statSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { runProgram } from '../../../cli/program.js';
 import { benchTerminal, signedIn } from '../../helpers/bench-terminal.js';
 import { cheapHash } from '../../helpers/shared-bench.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type SignedInPerson, type TestServer } from '../../helpers/test-server.js';
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let address: string;
 const folder = mkdtempSync(join(tmpdir(), 'refettle-people-'));
 beforeAll(async () => {
   server = await startTestServer();
   server.deps.clock = () => new Date();
-  http = createServer(server.app);
-  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
-  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
+  http = await overHttp(server.app);
+  address = http.address;
 });
 afterAll(async () => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
+  await http.unplug();
   await server.close();
   rmSync(folder, { recursive: true, force: true });
 });

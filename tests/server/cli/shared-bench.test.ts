@@ -1,7 +1,5 @@
 // A computer that several people work at, through the real program and the real server: join, sign on, with and without the network.
 import { mkdtempSync, readFileSync, rmSync, statSync, writeFileSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, beforeEach, describe, expect, test } from 'vitest';
@@ -9,26 +7,16 @@ import { runProgram } from '../../../cli/program.js';
 import { addHeron, takeIn } from '../../helpers/factories.js';
 import { benchTerminal, signedIn } from '../../helpers/bench-terminal.js';
 import { givePin, makeBench, PIN, type TestBench } from '../../helpers/shared-bench.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type SignedInPerson, type TestServer } from '../../helpers/test-server.js';
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let address: string;
 let home: string;
 let bench: TestBench;
 let wil: SignedInPerson;
 let maren: SignedInPerson;
-
-const listen = async (port: number): Promise<void> => {
-  http = createServer(server.app);
-  await new Promise<void>((ready) => http.listen(port, '127.0.0.1', ready));
-  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
-};
-const unplug = async (): Promise<void> => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
-};
-const plugIn = (): Promise<void> => listen(Number(new URL(address).port));
 
 beforeAll(async () => {
   server = await startTestServer({ shop: { demo: true } });
@@ -39,10 +27,11 @@ beforeAll(async () => {
   wil = server.people.technician;
   maren = server.people.lead;
   for (const person of [wil, maren]) await givePin(server, person);
-  await listen(0);
+  http = await overHttp(server.app);
+  address = http.address;
 });
 afterAll(async () => {
-  await unplug();
+  await http.unplug();
   await server.close();
   rmSync(home, { recursive: true, force: true });
 });
@@ -238,7 +227,7 @@ describe('Without the network', () => {
     const { number } = await takeIn(server);
     const unit = String(number);
     expect((await refettle(['measure', unit, 'visual', '--verdict', 'pass'])).code).toBe(0);
-    await unplug();
+    await http.unplug();
     expect((await signOn('wil tarrow')).code).toBe(0);
     const repair = ['repair', unit, '--part', 'Drain pump', '--source', 'new', '--minutes', '30', '--cost', '24.50'];
     expect((await refettle(repair)).code).toBe(5);
@@ -248,7 +237,7 @@ describe('Without the network', () => {
     expect(stranger.code).toBe(5);
     expect(stranger.stderr).toMatch(/It knows Maren Holt, Wil Tarrow\. Others sign on once while the server can be reached/);
 
-    await plugIn();
+    await http.plugIn();
     await refettle(['sign-out']);
     expect((await refettle(['sync'])).code).toBe(0);
     const page = await server.ok('getUnit', { as: maren, params: { number } });
@@ -260,7 +249,7 @@ describe('Without the network', () => {
 
   test('When a PIN is guessed at without the network, then each wrong one makes the wait longer, also in a new process', async () => {
     await signOn('Wil Tarrow');
-    await unplug();
+    await http.unplug();
     for (let tries = 0; tries < 3; tries += 1) expect((await signOn('Wil Tarrow', '1379')).stderr).toContain('The PIN is wrong');
     const fourth = await signOn('Wil Tarrow');
     expect(fourth.code).toBe(5);
@@ -271,7 +260,7 @@ describe('Without the network', () => {
     expect((await signOn('Wil Tarrow', PIN, { later: 1.8 })).stderr).toContain('Too many wrong PINs');
     expect((await signOn('Wil Tarrow', PIN, { later: 2.1 })).code).toBe(0);
     expect(kept('bench-people.json')).not.toContain('"wrong"');
-    await plugIn();
+    await http.plugIn();
   });
 
   test('When somebody left or has a new PIN, then the next contact drops them, and without the network they sign on no longer', async () => {
@@ -283,14 +272,14 @@ describe('Without the network', () => {
     await server.ok('setPin', { as: maren, params: { id: wil.id }, body: { pin: '40719' } });
     await refettle(['whoami']);
     expect(kept('bench-people.json')).not.toMatch(/Leaver Lime|Wil Tarrow/);
-    await unplug();
+    await http.unplug();
     for (const [name, pin] of [
       ['Leaver Lime', PIN],
       ['Wil Tarrow', PIN],
       ['Wil Tarrow', '40719'],
     ] as const)
       expect((await signOn(name, pin)).code).toBe(5);
-    await plugIn();
+    await http.plugIn();
     expect((await signOn('Wil Tarrow', '40719')).code).toBe(0);
   });
 });

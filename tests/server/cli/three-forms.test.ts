@@ -1,7 +1,5 @@
 // Each command of the tree in its three forms: help, wrong usage, as a pipe, as JSON, at a terminal with and without colour.
 import { writeFileSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { join } from 'node:path';
 import { Help, type Command } from 'commander';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
@@ -12,6 +10,7 @@ import type { Role } from '../../../shared/api/roles.js';
 import { benchTerminal, signedIn, type BenchTerminal } from '../../helpers/bench-terminal.js';
 import { COMMAND_FORMS, type CommandForm, type Form, type FormShop } from '../../helpers/command-forms.js';
 import { addHeron, signedOffUnit, takeIn } from '../../helpers/factories.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 // eslint-disable-next-line no-control-regex -- ESC begins a colour
@@ -36,7 +35,7 @@ function nameOf(command: Command): string {
 }
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let address: string;
 let people = 0;
 let units: { unit: string; readyUnit: string };
@@ -48,13 +47,11 @@ beforeAll(async () => {
   server.deps.clock = () => new Date();
   await setPassword(server.deps.db, server.people.sales.id, await hashPassword(PASSWORD), new Date());
   units = { unit: String((await takeIn(server)).number), readyUnit: String(ready.number) };
-  http = createServer(server.app);
-  await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
-  address = `http://127.0.0.1:${(http.address() as AddressInfo).port}`;
+  http = await overHttp(server.app);
+  address = http.address;
 });
 afterAll(async () => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
+  await http.unplug();
   await server.close();
 });
 

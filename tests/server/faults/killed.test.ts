@@ -1,8 +1,6 @@
 // kill -9 at random moments of runs of the real program against a real server: whatever was said to be recorded is there, once.
 import { spawn } from 'node:child_process';
 import { existsSync, mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, beforeAll, expect, test } from 'vitest';
@@ -13,6 +11,7 @@ import { keepSession } from '../../../cli/session.js';
 import { holdsFile } from '../../../shared/script/run-log.js';
 import { addHeron, newUnit } from '../../helpers/factories.js';
 import { faults } from '../../helpers/faults.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 import { theProgram } from '../../helpers/the-program.js';
 
@@ -28,7 +27,7 @@ const SCRIPTS = [
 const SPEED = 400;
 
 let server: TestServer;
-let http: Server;
+let http: OverHttp;
 let folder: string;
 let rig: string;
 
@@ -36,15 +35,13 @@ beforeAll(async () => {
   server = await startTestServer({ shop: { demo: true } });
   server.deps.clock = () => new Date();
   await addHeron(server);
-  http = createServer(server.app);
-  await new Promise<void>((ready) => http.listen(0, '127.0.0.1', ready));
+  http = await overHttp(server.app);
   folder = mkdtempSync(join(tmpdir(), 'refettle-killed-'));
   rig = join(folder, 'quick.yaml');
   writeFileSync(rig, HERON_GOOD.replace(/^speed: .*$/m, `speed: ${String(SPEED)}`));
 });
 afterAll(async () => {
-  http.closeAllConnections();
-  await new Promise((closed) => http.close(closed));
+  await http.unplug();
   await server.close();
   rmSync(folder, { recursive: true, force: true });
 });
@@ -58,8 +55,7 @@ function refettle(
   args: string[],
   kill?: Kill,
 ): Promise<{ killed: boolean; code: number | null; stderr: string; stdout: string; tookMs: number; wordsMs: number }> {
-  const { port } = http.address() as AddressInfo;
-  const env = { PATH: process.env['PATH'], LANG: 'C.UTF-8', REFETTLE_HOME: home, REFETTLE_SERVER: `http://127.0.0.1:${String(port)}` };
+  const env = { PATH: process.env['PATH'], LANG: 'C.UTF-8', REFETTLE_HOME: home, REFETTLE_SERVER: http.address };
   const child = spawn(process.execPath, [...theProgram, ...args], { cwd: repository, env, stdio: ['ignore', 'pipe', 'pipe'] });
   const startedMs = performance.now();
   let wordsMs = Infinity;
@@ -149,9 +145,8 @@ test(
       const { name, steps } = SCRIPTS[runs % SCRIPTS.length] ?? SCRIPTS[0];
       runs += 1;
       const home = mkdtempSync(join(folder, 'home-'));
-      const { port } = http.address() as AddressInfo;
       const { token, ...user } = person;
-      keepSession(homeOf({ REFETTLE_HOME: home }), { server: `http://127.0.0.1:${String(port)}`, token, user });
+      keepSession(homeOf({ REFETTLE_HOME: home }), { server: http.address, token, user });
       const { number } = await server.ok('takeInUnit', { as: person, body: newUnit() });
       const killNext = (killed: number): Kill | undefined => {
         // Some right after the start, most once it works; some of the time it is let go on to its end.

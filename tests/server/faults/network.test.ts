@@ -1,7 +1,5 @@
 // A bench that sends over bad cables, and many benches that send while the database is restarted: everything is stored, once.
 import { chmodSync, mkdtempSync, rmSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { setTimeout as pause } from 'node:timers/promises';
@@ -14,6 +12,7 @@ import { CABLE_FAULTS, startBadNetwork, type CableFault } from '../../helpers/ba
 import { benchTerminal, signedIn, type BenchTerminal } from '../../helpers/bench-terminal.js';
 import { addHeron, pass } from '../../helpers/factories.js';
 import { faults } from '../../helpers/faults.js';
+import { overHttp, type OverHttp } from '../../helpers/over-http.js';
 import { startProxy } from '../../helpers/proxy.js';
 import { startTestServer, type SignedInPerson, type TestServer } from '../../helpers/test-server.js';
 import { expectStoredOnce, workWithoutNetwork } from '../../helpers/waiting-work.js';
@@ -26,14 +25,11 @@ afterEach(async () => {
   undo = [];
 });
 
-async function overHttp(server: TestServer): Promise<number> {
-  const http: Server = createServer(server.app);
-  await new Promise<void>((ready) => http.listen(0, '127.0.0.1', ready));
-  undo.push(() => {
-    http.closeAllConnections();
-    return new Promise((closed) => http.close(closed));
-  });
-  return (http.address() as AddressInfo).port;
+/** For as long as the test lasts. */
+async function putOnline(server: TestServer): Promise<OverHttp> {
+  const http = await overHttp(server.app);
+  undo.push(() => http.unplug());
+  return http;
 }
 
 function benchAt(address: string, person: SignedInPerson): BenchTerminal {
@@ -55,7 +51,7 @@ test(
     await addHeron(server);
     const seen: Partial<Record<CableFault, number>> = {};
     let made = 0;
-    const network = await startBadNetwork(await overHttp(server), () => {
+    const network = await startBadNetwork((await putOnline(server)).port, () => {
       if (made >= count || random() < 0.3) return undefined;
       // Each kind in turn, then by chance.
       const fault = CABLE_FAULTS[made < CABLE_FAULTS.length ? made : below(CABLE_FAULTS.length)];
@@ -108,7 +104,7 @@ test(
     const server = await startTestServer({ existing: { database: { db, url: address.href, drop: () => Promise.resolve() }, people } });
     undo.push(() => server.close());
     await addHeron(server);
-    const url = `http://127.0.0.1:${String(await overHttp(server))}`;
+    const { address: url } = await putOnline(server);
 
     const benches: BenchTerminal[] = [];
     const entries: OutboxEntry[] = [];

@@ -1,6 +1,4 @@
 // Runs that come late: made by an older sheet, or on a machine that was sold or opened meanwhile.
-import { createServer, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
 import { afterAll, afterEach, beforeEach, expect, test } from 'vitest';
 import { v7 as newId } from 'uuid';
 import { runSync } from '../../../cli/commands/sync.js';
@@ -9,6 +7,7 @@ import { keepEntry } from '../../../cli/journal/outbox.js';
 import { openUnitHistory, recordEvents, arrivingNow } from '../../../server/history/unit-history.js';
 import { benchTerminal, signedIn } from '../../helpers/bench-terminal.js';
 import { addHeron, mendAndProve, newRepair, newRun, pass, signedOffUnit, takeIn } from '../../helpers/factories.js';
+import { overHttp } from '../../helpers/over-http.js';
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 let server: TestServer;
@@ -127,9 +126,8 @@ test('When a run was begun after the sale, then it is refused with what to do, a
   const run = newRun(server, 'h6-find');
   pass(server, 60);
 
-  const http: Server = createServer(server.app);
-  await new Promise<void>((ready) => http.listen(0, '127.0.0.1', ready));
-  const address = `http://127.0.0.1:${String((http.address() as AddressInfo).port)}`;
+  const http = await overHttp(server.app);
+  const { address } = http;
   const bench = benchTerminal({ env: { REFETTLE_SERVER: address } });
   try {
     const { id, name, role } = server.people.technician;
@@ -163,7 +161,6 @@ test('When a run was begun after the sale, then it is refused with what to do, a
     expect((await page(number)).runs.map(({ id: stored }) => stored)).not.toContain(run.id);
   } finally {
     bench.remove();
-    http.closeAllConnections();
-    await new Promise((closed) => http.close(closed));
+    await http.unplug();
   }
 });

