@@ -1,5 +1,6 @@
 import type { Knex } from 'knex';
 import * as first from '../migrations/20261201090000_first.js';
+import * as benchOfWork from '../migrations/20261201160000_bench_of_work.js';
 import * as liveEvents from '../migrations/20261201134500_live_events.js';
 import * as auditLog from '../migrations/20261201133000_audit_log.js';
 import * as peopleAndSessions from '../migrations/20261201134600_people_and_sessions.js';
@@ -19,6 +20,7 @@ const migrations: Record<string, Knex.Migration> = {
   '20261201134200_run_people': runPeople,
   '20261201134000_signing_keys': signingKeys,
   '20261201133500_shared_benches': sharedBenches,
+  '20261201160000_bench_of_work': benchOfWork,
 };
 
 export const migrationSource: Knex.MigrationSource<string> = {

@@ -8,7 +8,7 @@ import { routes, type Route, type RouteName } from '../shared/api/routes.js';
 import type { User } from '../shared/api/sessions.js';
 import type { AppDependencies } from './app.js';
 import { authorise } from './auth/authenticate.js';
-import type { BenchRef } from './auth/bench-store.js';
+import { recordAtBench, type BenchRef } from './auth/bench-store.js';
 import { holdPerson } from './auth/people-store.js';
 import type { Db } from './db.js';
 import { InvalidError, MalformedError, NotSignedInError, RoleError, type Fault } from './errors.js';
@@ -145,6 +145,7 @@ async function answer(
   const run = async (trx: Db): Promise<StoredAnswer & { again: boolean }> => {
     await first?.(trx);
     if (person && spec.method !== 'GET') await refuseWhoMayNoLonger(trx, person, spec.action);
+    if (request.bench && spec.method !== 'GET') await recordAtBench(trx, request.bench);
     const work = async (): Promise<StoredAnswer> => {
       const asks = { person, bench: request.bench, http: { request, response } };
       const result = await handler({ ...parts, ...asks, trx, now, ifRefused } as unknown as RouteContext<RouteName>);

@@ -130,8 +130,12 @@ export async function insertBench(db: Db, bench: { id: string; name: string; tok
   return inserted.length > 0;
 }
 
-/** A new token for a bench, revoked or not: the old one is gone for good. */
+/**
+ * A new token for a bench, revoked or not: the old one is gone for good. Whoever holds the new one acts for nobody until somebody signs on
+ * again; else a lead could renew a token and work in a technician's name.
+ */
 export async function setBenchToken(db: Db, id: string, token: string): Promise<void> {
+  await db('bench_people').where({ bench_id: id }).delete();
   await db('benches')
     .where({ id })
     .update({ token_hash: tokenHash(token), revoked_at: null });
@@ -152,6 +156,11 @@ export async function noteSignOn(db: Db, benchId: string, personId: string, now:
     .insert({ bench_id: benchId, person_id: personId, first_signed_on_at: now, last_signed_on_at: now })
     .onConflict(['bench_id', 'person_id'])
     .merge(['last_signed_on_at']);
+}
+
+/** Whatever this transaction puts into histories, captures and runs is noted as recorded at this bench: by the default of their columns. */
+export async function recordAtBench(trx: Db, bench: BenchRef): Promise<void> {
+  await trx.raw("select set_config('refettle.bench', ?, true)", [bench.id]);
 }
 
 /** Whom a bench may offer at sign-on: those it has seen, who still work here and have a PIN. */

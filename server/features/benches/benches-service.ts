@@ -24,7 +24,7 @@ export async function makeBench(db: Db, name: string, person: User, now: Date): 
   return { bench: await benchOrNone(db, bench.id), token: bench.token };
 }
 
-/** Also brings back a bench that was revoked: the computer is another one, the place and its history are the same. */
+/** Also brings back a bench that was revoked: the computer is another one, the place and its history are the same. Everybody signs on anew. */
 export async function renewToken(db: Db, id: string, person: User, now: Date): Promise<{ bench: Bench; token: string }> {
   const before = await benchOrNone(db, id);
   const token = newBenchToken();

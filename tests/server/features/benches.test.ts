@@ -1,6 +1,6 @@
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { verify } from '@node-rs/argon2';
-import { newRepair, newUnit, takeIn, addHeron } from '../../helpers/factories.js';
+import { addHeron, newCapture, newRepair, newRun, newUnit, passDeadTests, takeIn } from '../../helpers/factories.js';
 import { benchAlone, cheapHash, givePin, makeBench, PIN, standsAt, type TestBench } from '../../helpers/shared-bench.js';
 import { problemIn, startTestServer, type SignedInPerson, type TestServer } from '../../helpers/test-server.js';
 
@@ -203,6 +203,47 @@ describe('Who acts', () => {
     const lead = await standsAt(server, bench, server.people.lead);
     // Another person at the same bench is another matter: the key says nothing there, the id of the work does.
     expect(problemIn(await server.send('recordRepair', { ...call, as: lead }))).toMatchObject({ status: 409 });
+  });
+});
+
+describe('The bench that it was recorded at', () => {
+  const benchesOf = async (table: string, unit: number): Promise<(string | null)[]> =>
+    server.deps
+      .db(table)
+      .join('units', 'units.id', `${table}.unit_id`)
+      .where({ number: unit })
+      .orderBy(table === 'unit_events' ? 'position' : `${table}.id`)
+      .pluck<(string | null)[]>(`${table}.bench_id`);
+
+  test('When a lead renews a token, then it acts for nobody who signed on before: everybody gives the PIN again', async () => {
+    const bench = await makeBench(server);
+    const worker = await server.addPerson('technician', 'Renewed Rowan');
+    await standsAt(server, bench, worker);
+    const { number } = await takeIn(server);
+    const { token } = await server.ok('renewBenchToken', { as: server.people.lead, params: { id: bench.id } });
+    const as = { token, person: worker.id };
+    const refused = problemIn(await server.send('recordRepair', { as, params: { number }, body: newRepair(server) }));
+    expect(refused).toMatchObject({ status: 403, kind: 'sign-on' });
+    expect((await server.ok('ownBench', { as: benchAlone({ ...bench, token }) })).people).toEqual([]);
+    await standsAt(server, { ...bench, token }, worker);
+    expect((await server.send('recordRepair', { as, params: { number }, body: newRepair(server) })).status).toBe(201);
+  });
+
+  test('When events, captures and runs come by a bench’s token, then the bench stands with them; by an own sign-in, none does', async () => {
+    const bench = await makeBench(server);
+    const as = await standsAt(server, bench, server.people.technician);
+    const { number } = await takeIn(server);
+    await passDeadTests(server, number);
+    const before = (await benchesOf('unit_events', number)).length;
+    expect(new Set(await benchesOf('unit_events', number))).toEqual(new Set([null]));
+    await server.ok('recordCapture', { as, params: { number }, body: newCapture(server) });
+    await server.ok('recordRun', { as, params: { number }, body: newRun(server, 'h6-find') });
+    await server.ok('recordRepair', { params: { number }, as: server.people.technician, body: newRepair(server) });
+    const events = (await benchesOf('unit_events', number)).slice(before);
+    expect(events.at(-1)).toBeNull();
+    expect(new Set(events.slice(0, -1))).toEqual(new Set([bench.id]));
+    expect(await benchesOf('captures', number)).toContain(bench.id);
+    expect(await benchesOf('runs', number)).toEqual([bench.id]);
   });
 });
 
