@@ -52,6 +52,11 @@ export async function deleteLinks(db: Db, personId: string): Promise<void> {
   await db('person_links').where({ person_id: personId }).delete();
 }
 
+/** Whoever is no admin any more leaves no way in behind: a link in their hands would open another account, an admin's too. */
+export async function deleteLinksMadeBy(db: Db, personId: string): Promise<number> {
+  return z.number().parse(await db('person_links').where({ made_by: personId }).delete());
+}
+
 export async function deleteExpiredLinks(db: Db, now: Date): Promise<void> {
   await db('person_links').where('expires_at', '<=', now).delete();
 }

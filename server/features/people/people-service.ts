@@ -14,7 +14,7 @@ import {
   setRole,
   type PersonWithPassword,
 } from '../../auth/people-store.js';
-import { deleteLinks, findLink, makeLink, useLink, type PersonLink } from '../../auth/person-links.js';
+import { deleteLinks, deleteLinksMadeBy, findLink, makeLink, useLink, type PersonLink } from '../../auth/person-links.js';
 import { revokeSessions } from '../../auth/session-store.js';
 import { tokenHash } from '../../auth/token.js';
 import type { Db } from '../../db.js';
@@ -128,13 +128,14 @@ export async function changeRole(trx: Db, id: string, role: Role, { who, now }: 
   if (before !== role) {
     if (role !== 'admin') await keepAnAdmin(trx, person);
     await setRole(trx, id, role);
-    const change = { before: { role: before }, after: { role } };
+    const linksEnded = before === 'admin' ? await deleteLinksMadeBy(trx, id) : 0;
+    const change = { before: { role: before }, after: { role, ...(linksEnded > 0 ? { linksEnded } : {}) } };
     await audit(trx, { who: refOf(who), what: 'person.role-changed', subject: subjectOf(person.user), ...change, at: now });
   }
   return rowOf(trx, id, now);
 }
 
-/** Somebody no longer works here: no session, no link, no sign-in. What they did stays theirs. People must be locked. */
+/** Somebody no longer works here: no session, no link for them or by them, no sign-in. What they did stays theirs. People must be locked. */
 export async function deactivate(trx: Db, id: string, reason: string, { who, now }: Doing): Promise<PersonRow> {
   const person = await held(trx, id, 'out');
   if (!person.active) throw new ConflictError(`${person.user.name} is deactivated already.`);
@@ -142,12 +143,13 @@ export async function deactivate(trx: Db, id: string, reason: string, { who, now
   await setActive(trx, id, false);
   const sessionsEnded = await revokeSessions(trx, id, now);
   await deleteLinks(trx, id);
+  const linksEnded = await deleteLinksMadeBy(trx, id);
   await audit(trx, {
     who: refOf(who),
     what: 'person.deactivated',
     subject: subjectOf(person.user),
     before: { active: true },
-    after: { active: false, reason, sessionsEnded },
+    after: { active: false, reason, sessionsEnded, ...(linksEnded > 0 ? { linksEnded } : {}) },
     at: now,
   });
   return rowOf(trx, id, now);

@@ -280,6 +280,23 @@ describe('Somebody who no longer works here', () => {
     expect(problemIn(await server.send('activatePerson', { as: admin, params: { id: leaver.id } })).status).toBe(409);
   });
 
+  test.each([
+    ['deactivated', (id: string) => deactivate(id)],
+    ['an admin no more', (id: string) => server.send('changeRole', { as: admin, params: { id }, body: { role: 'sales' } })],
+  ])('When an admin is %s, then the links that they made open no longer: no way in is left in their hands', async (_what, shutOut) => {
+    const leaver = await server.addPerson('admin', `Link Maker ${String((count += 1))}`);
+    const other = await server.addPerson('technician', `Linked ${String((count += 1))}`);
+    const { link } = await server.ok('makeLink', { as: leaver, params: { id: other.id } });
+    const { link: kept } = await server.ok('makeLink', {
+      as: admin,
+      params: { id: (await server.addPerson('sales', `Kept Link ${String((count += 1))}`)).id },
+    });
+    expect((await shutOut(leaver.id)).status).toBe(200);
+    expect((await useLink(tokenOf(link.url))).status).toBe(401);
+    expect((await useLink(tokenOf(kept.url))).status).toBe(200);
+    expect((await audited({ subject: leaver.id }))[0]?.after).toMatchObject({ linksEnded: 1 });
+  });
+
   test('When a person is deactivated in the middle of their own request, then the request leaves nothing', async () => {
     const leaver = await server.addPerson('technician', 'Leaver Two');
     const units = async (): Promise<number> => (await server.deps.db('units').select('id')).length;
