@@ -5,7 +5,7 @@ import type { RateLimits } from '../../auth/rate-limits.js';
 import { cursorOf, pageOf, uuidCursor } from '../../paging.js';
 import type { RegisterRoute } from '../../route.js';
 import { endBench, makeBench, ownBench, renewToken } from './benches-service.js';
-import { pinStateOf, putPin, setOwnPin, takePinAway } from './pins-service.js';
+import { pinStateOf, putPinOfAnother, setOwnPin, takePinAway } from './pins-service.js';
 import { signOnAtBench } from './sign-on-service.js';
 
 export function registerBenchRoutes(route: RegisterRoute, limits: Pick<RateLimits, 'signOn' | 'ownPin'>): void {
@@ -30,6 +30,6 @@ export function registerBenchRoutes(route: RegisterRoute, limits: Pick<RateLimit
     const states = await listPinStates(trx, ROLES_BY_ACTION['run.record'], uuidCursor(query.cursor), query.limit + 1);
     return pageOf(states, query.limit, ({ person }) => cursorOf(person.id));
   });
-  route('setPin', ({ params, body, person, trx, now }) => putPin(trx, params.id, body.pin, person, now));
+  route('setPin', ({ params, body, person, trx, now }) => putPinOfAnother(trx, params.id, body.pin, person, now));
   route('clearPin', ({ params, person, trx, now }) => takePinAway(trx, params.id, person, now));
 }

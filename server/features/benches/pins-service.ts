@@ -3,7 +3,7 @@ import type { User } from '../../../shared/api/sessions.js';
 import { hashPin, passwordFits } from '../../auth/password.js';
 import { clearPin, findPinState, passwordHashOf, setPin } from '../../auth/pin-store.js';
 import type { Db } from '../../db.js';
-import { InvalidError, NotFoundError } from '../../errors.js';
+import { InvalidError, NotFoundError, RoleError } from '../../errors.js';
 import { audit } from '../../history/audit.js';
 import { refOf } from '../../history/unit-history.js';
 
@@ -20,7 +20,13 @@ export async function setOwnPin(db: Db, person: User, { password, pin }: { passw
 }
 
 /** Whose PIN somebody else sets, that one could act for at a bench: it stands in the audit log, and beside the PIN. */
-export async function putPin(db: Db, personId: string, pin: string, by: User, now: Date): Promise<PinState> {
+export async function putPinOfAnother(db: Db, personId: string, pin: string, by: User, now: Date): Promise<PinState> {
+  if (personId === by.id)
+    throw new RoleError('Your own PIN is set on your account page, with your password: an open browser must not be enough.');
+  return putPin(db, personId, pin, by, now);
+}
+
+async function putPin(db: Db, personId: string, pin: string, by: User, now: Date): Promise<PinState> {
   const before = await pinStateOf(db, personId);
   await setPin(db, personId, await hashPin(pin), refOf(by), now);
   const { id, name } = before.person;

@@ -287,6 +287,13 @@ describe('PINs', () => {
     expect((await signOn(bench, { name: person.name, pin: '40719' })).status).toBe(422);
   });
 
+  test.each(['lead', 'admin'] as const)('When a %s sets the own PIN without the own password, then it is refused', async (role) => {
+    const person = await server.addPerson(role, `Own ${role}`);
+    const refused = await server.send('setPin', { as: person, params: { id: person.id }, body: { pin: '40719' } });
+    expect(problemIn(refused)).toMatchObject({ status: 403, kind: 'role' });
+    expect((await server.ok('getOwnPin', { as: person })).pinSetAt).toBeUndefined();
+  });
+
   test('When a PIN is set anew, then a bench that knows the old one can tell', async () => {
     const person = await server.addPerson('technician', 'Changing Chestnut');
     const bench = await makeBench(server);
