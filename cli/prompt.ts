@@ -87,8 +87,18 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
     const choices = question.choices.map((choice) => ({ ...choice, short: choice.name.split(/ {2,}/, 1)[0] ?? choice.name }));
     const { ink } = await output.style();
     const escape = new AbortController();
-    const onKeypress = (_text: string | undefined, key: { name?: string } | undefined): void => {
+    let asking = true;
+    let again = false;
+    const onKeypress = (text: string | undefined, key: { name?: string } | undefined): void => {
       if (key?.name === 'escape') escape.abort();
+      if (!search || key?.name !== 'return' || again) return;
+      // A scanner sends a number and its Enter in one piece, and the list takes no Enter while it is still looking.
+      setImmediate(() => {
+        if (!asking) return;
+        again = true;
+        stdin.emit('keypress', text, key);
+        again = false;
+      });
     };
     const theme = {
       prefix: '',
@@ -115,6 +125,7 @@ export function promptOn({ stdin, output, rawOutput, interactive, interruption, 
       if (escape.signal.aborted && error instanceof Error && error.name === 'AbortPromptError') return undefined;
       throw error;
     } finally {
+      asking = false;
       stdin.off('keypress', onKeypress);
     }
   };

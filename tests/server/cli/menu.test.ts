@@ -86,6 +86,14 @@ describe('The menu', () => {
     expect(bench.stdout()).toContain('Ended ■ pass');
   });
 
+  test('When a scanner types a unit’s number and its Enter in one piece, then that unit is taken', async () => {
+    picks(7, 'Readiness tag');
+    bench.when('Which unit', `${unit}${ENTER}`);
+    leaves();
+    expect(await runProgram([], bench.context), bench.stderr()).toBe(0);
+    expect(bench.stderr()).toContain(`$ refettle tag ${unit}\n`);
+  });
+
   test('When Escape is pressed in a list of a list, then each press goes back one', async () => {
     picks(1, 'Units waiting for me');
     finds('Units waiting for you', unit);
@@ -193,8 +201,12 @@ describe('The program on a pseudo-terminal', () => {
         // A hand is not quicker than that.
         setTimeout(() => (child.stdin.write(press), answer()), 80);
       };
-      child.stdout.on('data', (chunk: Buffer) => ((screen.seen += chunk.toString()), answer()));
+      // A character of several bytes may come in two pieces.
+      child.stdout.setEncoding('utf8').on('data', (text: string) => ((screen.seen += text), answer()));
+      // Ended here, so that what stands on the screen is shown where it hangs.
+      const patience = setTimeout(() => child.kill(), 80_000);
       const code = await new Promise((ended) => child.once('close', ended));
+      clearTimeout(patience);
       expect(steps, screen.seen).toEqual([]);
       expect(code).toBe(0);
       expect(screen.seen).toContain(`$ refettle tag ${unit}`);
