@@ -1,4 +1,6 @@
+import type { Shop } from '../../shared/api/sessions.js';
 import type { UnitPage } from '../../shared/api/units.js';
+import { priceLabelOf, stockLabelOf } from '../../shared/paper/label-content.js';
 import type { PriceLabel, StockLabel } from '../../shared/paper/label-paper.js';
 import { LARGEST_LABEL, readLabelSize, SMALLEST_LABEL, type LabelFormat, type LabelSize } from '../../shared/paper/sizes.js';
 import { isLoopbackAddress, unitAddress } from '../../shared/paper/unit-address.js';
@@ -70,34 +72,19 @@ function checkKind({ kind, price, grade }: LabelOptions): void {
     throw new UsageError(`--grade: write a short one, like B: at most ${GRADE_AT_MOST} letters.`);
 }
 
-async function stockLabel({ unit }: UnitPage, code: 'qr' | 'bars', context: Context): Promise<StockLabel> {
+async function stockLabel(page: UnitPage, code: 'qr' | 'bars', context: Context): Promise<StockLabel> {
   const { code128Bars, qrModules } = await import('../render/paper-codes.js');
-  const number = unitNumberText(unit.number);
+  const number = unitNumberText(page.unit.number);
   if (code === 'qr' && isLoopbackAddress(context.server))
     context.stderr.say(
       `The code on the label points to ${context.server}, which no phone can open: set REFETTLE_SERVER to the server's name on the network, or print --code bars.`,
     );
-  const { maker, model, serial } = unit.plate;
-  return {
-    ...{ kind: 'stock', number, maker, model, appliance: unit.appliance, serial, takenIn: dayText(unit.takenInAt) },
-    ...{ licensedOnly: unit.licensedOnly, qr: qrModules(unitAddress(context.server, number)), bars: code128Bars(number), code },
-  };
+  const codes = { qr: qrModules(unitAddress(context.server, number)), bars: code128Bars(number), code };
+  return stockLabelOf(page, { takenIn: dayText(page.unit.takenInAt), ...codes });
 }
 
-function priceLabel(
-  { unit, tag }: UnitPage,
-  { price = '', grade }: LabelOptions,
-  shop: { name: string; phone: string; currency: string },
-): PriceLabel {
-  const { maker, model } = unit.plate;
-  return {
-    ...{ kind: 'price', number: unitNumberText(unit.number), maker, model, appliance: unit.appliance },
-    price: moneyText(parseMoney(price, shop.currency, '--price'), shop.currency),
-    grade: grade?.trim(),
-    tag: tag?.standing === 'stands' ? tag.number : undefined,
-    shop: { name: shop.name, phone: shop.phone },
-  };
-}
+const priceLabel = (page: UnitPage, { price = '', grade }: LabelOptions, shop: Shop): PriceLabel =>
+  priceLabelOf(page, { price: moneyText(parseMoney(price, shop.currency, '--price'), shop.currency), grade, shop });
 
 /** What stands on the label, a line each. */
 function wordsOn(label: StockLabel | PriceLabel): string[] {

@@ -65,6 +65,20 @@ export function drawBars(pen: Pen, { bars }: Bars, { x, y, height, dots }: { x: 
   pen.fill(...bars.map(({ start, wide }) => ({ x: x + (start + BARS_QUIET_MODULES) * module, y, width: wide * module, height })));
 }
 
+/**
+ * What the bar code library is asked for: a QR code of error level M, as `codeCollector` takes it.
+ *
+ * @example qrcode(qrAsked('A'), codeCollector()).modules.length // 21
+ */
+export const qrAsked = (text: string) => ({ bcid: 'qrcode', text, eclevel: 'M', scale: 1 });
+
+/**
+ * What the bar code library is asked for: a Code 128, as `codeCollector` takes it.
+ *
+ * @example code128(barsAsked('0412'), codeCollector()).bars.modules // 57
+ */
+export const barsAsked = (text: string) => ({ bcid: 'code128', text, scale: 1 });
+
 type Point = readonly [number, number];
 /** The library draws a QR code's module two units wide. */
 const UNITS_PER_MODULE = 2;

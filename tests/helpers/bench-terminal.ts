@@ -63,8 +63,6 @@ export function benchTerminal({
     }),
     { isTTY: terminal, columns: 80, rows: 24 },
   );
-  // Like a terminal's own, it is not ended by whoever has drawn on it.
-  stderr.end = () => stderr;
   // Nor can a terminal's be ended: inquirer ends what it has drawn on, after each prompt.
   stderr.end = () => stderr;
   const context = createContext({

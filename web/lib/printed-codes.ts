@@ -1,4 +1,4 @@
-import { codeCollector, type Bars, type QrModules } from '../../shared/paper/codes.js';
+import { barsAsked, codeCollector, qrAsked, type Bars, type QrModules } from '../../shared/paper/codes.js';
 
 export interface PrintedCodes {
   qr: (text: string) => QrModules;
@@ -9,10 +9,7 @@ export interface PrintedCodes {
 export async function loadPrintedCodes(): Promise<PrintedCodes> {
   const { code128, qrcode } = await import('bwip-js/browser');
   return {
-    qr: (text) => {
-      const options = { bcid: 'qrcode', text, eclevel: 'M', scale: 1 };
-      return qrcode(options, codeCollector()).modules;
-    },
-    bars: (text) => code128({ bcid: 'code128', text, scale: 1 }, codeCollector()).bars,
+    qr: (text) => qrcode(qrAsked(text), codeCollector()).modules,
+    bars: (text) => code128(barsAsked(text), codeCollector()).bars,
   };
 }

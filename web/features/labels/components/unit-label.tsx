@@ -1,5 +1,6 @@
 import type { Shop } from '../../../../shared/api/sessions.js';
 import type { UnitPage } from '../../../../shared/api/units.js';
+import { priceLabelOf, stockLabelOf } from '../../../../shared/paper/label-content.js';
 import { labelPaper, type PriceLabel, type StockLabel } from '../../../../shared/paper/label-paper.js';
 import type { LabelSize } from '../../../../shared/paper/sizes.js';
 import { unitAddress } from '../../../../shared/paper/unit-address.js';
@@ -24,22 +25,11 @@ export function UnitLabel({ page, shop, wish, size }: { page: UnitPage; shop: Sh
   );
 }
 
-function stockLabel({ unit }: UnitPage, code: 'qr' | 'bars', codes: PrintedCodes): StockLabel {
-  const number = unitNumber(unit.number);
-  const { maker, model, serial } = unit.plate;
-  return {
-    ...{ kind: 'stock', number, maker, model, appliance: unit.appliance, serial, takenIn: formatDate(unit.takenInAt) },
-    ...{ licensedOnly: unit.licensedOnly, qr: codes.qr(unitAddress(window.location.origin, number)), bars: codes.bars(number), code },
-  };
+function stockLabel(page: UnitPage, code: 'qr' | 'bars', codes: PrintedCodes): StockLabel {
+  const number = unitNumber(page.unit.number);
+  const drawn = { qr: codes.qr(unitAddress(window.location.origin, number)), bars: codes.bars(number), code };
+  return stockLabelOf(page, { takenIn: formatDate(page.unit.takenInAt), ...drawn });
 }
 
-function priceLabel({ unit, tag }: UnitPage, shop: Shop, { priceMinor, grade }: LabelWish & { kind: 'price' }): PriceLabel {
-  const { maker, model } = unit.plate;
-  return {
-    ...{ kind: 'price', number: unitNumber(unit.number), maker, model, appliance: unit.appliance },
-    price: formatMoney(priceMinor, shop.currency),
-    grade: grade.trim() || undefined,
-    tag: tag?.standing === 'stands' ? tag.number : undefined,
-    shop: { name: shop.name, phone: shop.phone },
-  };
-}
+const priceLabel = (page: UnitPage, shop: Shop, { priceMinor, grade }: LabelWish & { kind: 'price' }): PriceLabel =>
+  priceLabelOf(page, { price: formatMoney(priceMinor, shop.currency), grade, shop });
