@@ -13,6 +13,7 @@ import { heldWords, takeLock, type Lock } from '../journal/lock.js';
 import { closeRun, rigLock, runLock } from '../journal/open-runs.js';
 import { writtenRun, type RunJournal, type RunStop } from '../journal/run-journal.js';
 import { SteadyClock } from '../journal/steady-clock.js';
+import { liveOf } from '../live/live-of.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
 import { runAnswer } from '../render/run-answer.js';
@@ -94,12 +95,14 @@ export async function goThrough(context: Context, parts: GoThroughParts): Promis
   const journal = parts.openJournal(clock);
   note = (jump) => journal.jump(jump);
   early.forEach(note);
+  const live = liveOf(steady);
   let end: RunEnd;
   try {
     end = await runScript({ ...parts, context: steady, journal });
   } catch (error) {
     await rig.close();
     leave(journal, clock, 'fault', person);
+    await live.ends('failed');
     throw error;
   }
   await rig.close();
@@ -111,6 +114,7 @@ export async function goThrough(context: Context, parts: GoThroughParts): Promis
     const verdict = runVerdict(results, true);
     const code = firstExitCode([end.exitCode, EXIT.notGood]);
     await say(context, parts, { results, verdict, code, tookMs, runId: header.id, left: end.left ?? 'stopped' });
+    await live.runEnds(results, end);
     return code;
   }
   journal.end(clock.now().toISOString(), false);
@@ -128,6 +132,8 @@ export async function goThrough(context: Context, parts: GoThroughParts): Promis
     delivery.state === 'sent' ? EXIT.good : EXIT.server,
   ]);
   await say(context, parts, { results, verdict, code, tookMs, runId: header.id, delivery });
+  // Closed, sent and said first: nothing waits for those who watch.
+  await live.runEnds(results, end);
   return code;
 }
 

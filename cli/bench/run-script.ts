@@ -53,20 +53,13 @@ const INSTRUMENT_FAILED = { interrupted: true, left: 'instrument failed', exitCo
 /**
  * Goes through the steps of a script, from the first that is not done. Each step's result is in the journal before the next begins;
  * before a step that energises the machine the safety gates are asked, and after an interruption its caution once more. Ends by itself,
- * by a `no`, by a key that parks, by Ctrl-C, or by an instrument that fails; the caller closes the journal.
+ * by a `no`, by a key that parks, by Ctrl-C, or by an instrument that fails; the caller closes the journal, and says to those who
+ * watch that it has ended.
  */
 export async function runScript(parts: RunParts): Promise<RunEnd> {
   const { unit, script, rig, journal, before = [], person } = parts;
-  const live = liveOf(parts.context);
-  live.runBegins({ id: journal.header.id, unit, script, rig, before, person });
-  try {
-    const end = await goThrough(parts);
-    await live.runEnds(end.results, end);
-    return end;
-  } catch (error) {
-    await live.ends('failed');
-    throw error;
-  }
+  liveOf(parts.context).runBegins({ id: journal.header.id, unit, script, rig, before, person });
+  return goThrough(parts);
 }
 
 async function goThrough(parts: RunParts): Promise<RunEnd> {

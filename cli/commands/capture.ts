@@ -56,15 +56,22 @@ export async function runCapture(options: CaptureOptions, context: Context): Pro
   const recorded = options.file === undefined ? await record(options, context, unit) : fromFile(options.file, context);
   if (recorded === undefined) return EXIT.notGood;
 
-  if (options.out !== undefined) {
-    try {
-      writeFileSync(options.out, recorded.file);
-    } catch (error) {
-      throw notWritable(options.out, error);
-    }
+  try {
+    if (options.out !== undefined) writeOut(options.out, recorded.file);
+    const answer = decodeCapture(readCapture(recorded.file), unit.sheet);
+    return await keepAndSay(options, context, unit, recorded, answer);
+  } finally {
+    // Kept, sent and said first: nothing waits for those who watch.
+    await liveOf(context).ends(recorded.interrupted ? 'stopped' : 'ended');
   }
-  const answer = decodeCapture(readCapture(recorded.file), unit.sheet);
-  return keepAndSay(options, context, unit, recorded, answer);
+}
+
+function writeOut(out: string, file: string): void {
+  try {
+    writeFileSync(out, file);
+  } catch (error) {
+    throw notWritable(out, error);
+  }
 }
 
 function fromFile(file: string, context: Context): Recorded {
@@ -101,12 +108,12 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
         );
         throw error;
       });
-      await live.ends(ended === 'interrupted' ? 'stopped' : 'ended');
       return { id, file: captureText(context.home, id), fromFile: false, interrupted: ended === 'interrupted' };
     });
-  } finally {
-    // Where it has not ended by itself.
+  } catch (error) {
     await liveOf(context).ends('failed');
+    throw error;
+  } finally {
     await rig?.close();
   }
 }

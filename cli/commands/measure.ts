@@ -79,7 +79,6 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
     if (reading === undefined) return EXIT.notGood;
     await rig?.close();
     live.told(step.id, readingTold(reading), reading.judgement.verdict);
-    await live.ends('ended', reading.judgement.verdict);
     const id = context.newId();
     const at = context.now().toISOString();
     const delivery = await keepAndSend(context, {
@@ -87,11 +86,15 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
       route: 'recordReading',
       body: { id, at, simulated: rig?.simulated === true, reading },
     });
+    // Told while the rest goes on, and waited for last: nobody at the bench waits for those who watch.
+    const lastWord = live.ends('ended', reading.judgement.verdict);
     if (check.deadTest === 'insulation') {
       context.stderr.say(DISCHARGE);
       if (technician.attended) await technician.hasDone(check.id, 'instruct', 'Discharged?');
     }
-    return await say(options, context, { check, verdict: reading.judgement.verdict, delivery, reading });
+    const code = await say(options, context, { check, verdict: reading.judgement.verdict, delivery, reading });
+    await lastWord;
+    return code;
   } finally {
     // Where it has not ended by itself.
     await liveOf(context).ends('failed');

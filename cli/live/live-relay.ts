@@ -46,6 +46,7 @@ export class LiveRelay {
   #saidOff = false;
   #recording = false;
   #onIdle = (): void => undefined;
+  #ending: Promise<void> | undefined;
 
   constructor(parts: LiveRelayParts) {
     this.#parts = parts;
@@ -84,9 +85,15 @@ export class LiveRelay {
     this.#sayOff();
   }
 
-  /** The work is over: waits a moment until the last is told, never for a network that is away. */
+  /** The work is over: waits a moment until the last is told, never for a network that is away. It ends once; how, the first word says. */
   async end(message: LiveMessageOf<'ended'>): Promise<void> {
     if (this.#work === undefined) return;
+    this.#ending ??= this.#end(message);
+    await this.#ending;
+    this.#ending = undefined;
+  }
+
+  async #end(message: LiveMessageOf<'ended'>): Promise<void> {
     this.tell(message);
     clearInterval(this.#signOfLife);
     if (this.on && !this.#failing) {

@@ -57,6 +57,13 @@ test('When work goes on, then all of it is told in order, the last word too, wit
   expect(parts.map(({ part }) => part)).toEqual(parts.map((_, index) => index));
 });
 
+test('When work ends twice, then the first word is the last', async () => {
+  const { relay, parts } = relayTo(() => Promise.resolve());
+  relay.begin({ id: anyId(), unit: 412 }, began);
+  await Promise.all([relay.end(ended), relay.end({ kind: 'ended', at: ended.at, how: 'failed' })]);
+  expect(parts.flatMap(({ messages }) => messages)).toEqual([began, ended]);
+});
+
 test('When a part may have arrived or not, then the same part is sent again as it was', async () => {
   let failures = 1;
   const { relay, parts, said } = relayTo(() =>
