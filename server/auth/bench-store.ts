@@ -145,6 +145,16 @@ export async function revokeBench(db: Db, id: string, now: Date): Promise<void> 
   await db('benches').where({ id }).whereNull('revoked_at').update({ token_hash: null, revoked_at: now });
 }
 
+/** Every bench's token; answers the names of those that had one. */
+export async function revokeEveryBench(db: Db, now: Date): Promise<string[]> {
+  const revoked: unknown = await db('benches').whereNotNull('token_hash').update({ token_hash: null, revoked_at: now }).returning('name');
+  return z
+    .array(z.object({ name: z.string() }))
+    .parse(revoked)
+    .map(({ name }) => name)
+    .sort();
+}
+
 export async function setBenchRig(db: Db, id: string, rig: BenchRig, now: Date): Promise<void> {
   await db('benches')
     .where({ id })

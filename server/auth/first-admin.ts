@@ -21,7 +21,7 @@ export async function createFirstAdminLink(
   const isNeeded = await deps.db.transaction(async (trx) => {
     await insertShop(trx, EMPTY_SHOP);
     if (await anybodyThere(trx)) return false;
-    await trx('first_admin_links').delete();
+    await deleteFirstAdminLinks(trx);
     await trx('first_admin_links').insert({
       token_hash: tokenHash(token),
       created_at: now,
@@ -30,6 +30,11 @@ export async function createFirstAdminLink(
     return true;
   });
   return isNeeded ? `${baseOf(deps.config, ownAddress)}/first-admin?token=${token}` : undefined;
+}
+
+/** What was printed before no longer makes anybody an admin; the next start prints a new one where nobody is there. */
+export async function deleteFirstAdminLinks(db: Db): Promise<void> {
+  await db('first_admin_links').delete();
 }
 
 /** True once a link: two who send it at the same moment get one yes between them. */

@@ -1,7 +1,7 @@
 import { z } from 'zod';
 import { personRowSchema, type PersonRow } from '../../shared/api/people.js';
 import type { Role } from '../../shared/api/roles.js';
-import { userSchema } from '../../shared/api/sessions.js';
+import { userSchema, type User } from '../../shared/api/sessions.js';
 import type { Db } from '../db.js';
 
 const emailKey = (email: string): string => email.trim().toLowerCase();
@@ -96,6 +96,12 @@ export async function setRole(db: Db, personId: string, role: Role): Promise<voi
 
 export async function setActive(db: Db, personId: string, active: boolean): Promise<void> {
   await db('people').where({ id: personId }).update({ active });
+}
+
+/** Who may sign in, in the order in which they were added. */
+export async function listActivePeople(db: Db): Promise<User[]> {
+  const rows: unknown = await db('people').where({ active: true }).orderBy('id').select('id', 'name', 'email', 'role');
+  return z.array(userSchema).parse(rows);
 }
 
 export async function anybodyThere(db: Db): Promise<boolean> {

@@ -57,6 +57,12 @@ export async function deleteLinksMadeBy(db: Db, personId: string): Promise<numbe
   return z.number().parse(await db('person_links').where({ made_by: personId }).delete());
 }
 
+/** Answers how many could still have been used. */
+export async function deleteEveryLink(db: Db, now: Date): Promise<number> {
+  await deleteExpiredLinks(db, now);
+  return z.number().parse(await db('person_links').delete());
+}
+
 export async function deleteExpiredLinks(db: Db, now: Date): Promise<void> {
   await db('person_links').where('expires_at', '<=', now).delete();
 }

@@ -107,6 +107,11 @@ export async function revokeSessionOfToken(db: Db, token: string, now: Date): Pr
     .update({ revoked_at: now });
 }
 
+/** Every session of everybody's: a restore would bring back those that were ended since. Answers how many. */
+export async function revokeEverySession(db: Db, now: Date): Promise<number> {
+  return z.number().parse(await db('sessions').whereNull('revoked_at').where('expires_at', '>', now).update({ revoked_at: now }));
+}
+
 export async function deleteExpiredSessions(db: Db, before: Date): Promise<number> {
   return z.number().parse(await db('sessions').where('expires_at', '<', before).delete());
 }

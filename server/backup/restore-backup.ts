@@ -1,5 +1,10 @@
 import { existsSync, mkdirSync, renameSync, rmSync } from 'node:fs';
 import { dirname, join } from 'node:path';
+import { revokeEveryBench } from '../auth/bench-store.js';
+import { deleteFirstAdminLinks } from '../auth/first-admin.js';
+import { listActivePeople } from '../auth/people-store.js';
+import { deleteEveryLink } from '../auth/person-links.js';
+import { revokeEverySession } from '../auth/session-store.js';
 import { migrate, openDb, type Db } from '../db.js';
 import { audit } from '../history/audit.js';
 import { readShop } from '../history/shop-store.js';
@@ -27,6 +32,10 @@ export interface Restored {
   migrated: string[];
   /** Where what was there before is kept: a backup of the database, a folder of the files. */
   kept: { backup?: string; files?: string };
+  /** What opened the shop at the time of the backup and opens it no more. */
+  ended: { sessions: number; links: number; benches: string[] };
+  /** Who may sign in again, as it was then. */
+  active: { name: string; role: string }[];
 }
 
 /** Brings a shop back from one file. Nothing is touched before every byte of it was checked; the database changes as one, or not at all. */
@@ -50,10 +59,10 @@ export async function restoreBackup({ databaseUrl, dataDir, file, replace, now, 
         );
       }
       await migrate(db);
+      const { ended, active } = await settleAccess(db, manifest, now);
       const kept = keepFiles(dataDir, mark);
       const files = placeFiles(join(content, FILES), dataDir);
-      await noteRestore(db, manifest, now);
-      return { manifest, files, migrated, kept: { ...(backup ? { backup } : {}), ...(kept ? { files: kept } : {}) } };
+      return { manifest, files, migrated, kept: { ...(backup ? { backup } : {}), ...(kept ? { files: kept } : {}) }, ended, active };
     } finally {
       await db.destroy();
     }
@@ -130,13 +139,33 @@ function move(source: string, target: string): void {
   renameSync(source, target);
 }
 
-async function noteRestore(db: Db, { madeAt, migrations }: Manifest, now: Date): Promise<void> {
-  const { name } = await readShop(db);
-  await audit(db, {
-    who: undefined,
-    what: 'backup.restored',
-    subject: { kind: 'shop', id: 'shop', name },
-    after: { madeAt, newestMigration: migrations.at(-1) ?? '' },
-    at: now,
+/**
+ * A backup knows nothing of what was revoked after it: a session that was ended, the token of a stolen bench, a link that was used. None of
+ * them lives again; people come back by their passwords. Who was deactivated since is active again, which only a person can put right.
+ */
+function settleAccess(db: Db, { madeAt, migrations }: Manifest, now: Date): Promise<Pick<Restored, 'ended' | 'active'>> {
+  return db.transaction(async (trx) => {
+    await deleteFirstAdminLinks(trx);
+    const ended = {
+      sessions: await revokeEverySession(trx, now),
+      links: await deleteEveryLink(trx, now),
+      benches: await revokeEveryBench(trx, now),
+    };
+    const { name } = await readShop(trx);
+    await audit(trx, {
+      who: undefined,
+      what: 'backup.restored',
+      subject: { kind: 'shop', id: 'shop', name },
+      after: {
+        madeAt,
+        newestMigration: migrations.at(-1) ?? '',
+        sessionsEnded: ended.sessions,
+        linksEnded: ended.links,
+        benchesEnded: ended.benches.length,
+      },
+      at: now,
+    });
+    const people = await listActivePeople(trx);
+    return { ended, active: people.map(({ name: called, role }) => ({ name: called, role })) };
   });
 }

@@ -10,6 +10,7 @@ await runTool({
 
 Brings a shop back from a backup, into the data folder and the database that the settings name. The server must be off.
 Where a shop stands already, only with --replace; it is kept in a backup of its own first.
+Sessions, benches' tokens and one-time links of the backup are ended: some may have been revoked since it was made.
 `,
   options: { replace: { type: 'boolean' }, json: { type: 'boolean' } },
   run: async (values, [file]) => {
@@ -26,7 +27,7 @@ Where a shop stands already, only with --replace; it is kept in a backup of its 
       }),
     );
     if (values['json']) return say(JSON.stringify(restored));
-    const { manifest, files, migrated, kept } = restored;
+    const { manifest, files, migrated, kept, ended, active } = restored;
     const { people, units, tags } = manifest.counts;
     const settings = Object.entries(manifest.settings).filter(([name, value]) => name !== 'REFETTLE_DATA' && process.env[name] !== value);
     say(
@@ -37,7 +38,11 @@ Where a shop stands already, only with --replace; it is kept in a backup of its 
       ...(settings.length > 0
         ? [`Settings that were set then, and are not now:\n${settings.map(([name, value]) => `  ${name}=${value}`).join('\n')}`]
         : []),
-      'Now start it: npm start. Everybody signs in as before.',
+      `Active as at that time: ${active.map(({ name, role }) => `${name} (${role})`).join(', ') || 'nobody'}. Whoever left since then is in again: an admin deactivates them first thing.`,
+      ...(ended.benches.length > 0
+        ? [`Shared benches that need a new token, and everybody’s sign-on with it: ${ended.benches.join(', ')}.`]
+        : []),
+      'Now start it: npm start. Everybody signs in anew, by the password of that time; one-time links of before are void.',
     );
   },
 });

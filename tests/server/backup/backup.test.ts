@@ -15,12 +15,15 @@ import {
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, afterEach, beforeAll, beforeEach, describe, expect, onTestFinished, test } from 'vitest';
+import { ROLES, type Role } from '../../../shared/api/roles.js';
 import { hashPassword } from '../../../server/auth/password.js';
 import { insertPerson } from '../../../server/auth/people-store.js';
+import { insertSession } from '../../../server/auth/session-store.js';
+import { newToken } from '../../../server/auth/token.js';
 import { makeBackup } from '../../../server/backup/make-backup.js';
 import { manifestSchema } from '../../../server/backup/manifest.js';
 import { restoreBackup } from '../../../server/backup/restore-backup.js';
-import { migrate } from '../../../server/db.js';
+import { migrate, type Db } from '../../../server/db.js';
 import { registerSigningKey } from '../../../server/features/tags/signing-key-store.js';
 import { kidOf, signaturePart } from '../../../server/features/tags/tag-signature.js';
 import { loadSigningKey, readSigningKey } from '../../../server/features/tags/signing-key.js';
@@ -29,6 +32,7 @@ import { SetUpError } from '../../../server/set-up-error.js';
 import { addHeron, mendAndProve, newReading, rulesSeen, signedOffUnit, takeIn } from '../../helpers/factories.js';
 import { firstReleaseDatabase, firstRelease, placeFirstReleaseKey } from '../../helpers/first-release.js';
 import { freshDatabase, type FreshDatabase } from '../../helpers/fresh-database.js';
+import { benchAlone, makeBench } from '../../helpers/shared-bench.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 const PASSWORD = 'a mill race in March';
@@ -99,13 +103,26 @@ const refusal = async (work: Promise<unknown>): Promise<SetUpError> => {
 const tablesThere = async (): Promise<string[]> =>
   (await target.database.db('pg_tables').where({ schemaname: 'public' }).pluck<string[]>('tablename')).sort();
 
+/** The same people by new tokens: those of before have ended. */
+async function signInAgain(db: Db, people: TestServer['people'], roles: readonly Role[] = ROLES): Promise<TestServer['people']> {
+  const again = { ...people };
+  for (const role of roles) {
+    const { id: personId } = people[role];
+    const token = newToken();
+    await insertSession(db, { token, personId, createdAt: NOW, expiresAt: new Date('2100-01-01T00:00:00Z') });
+    again[role] = { ...people[role], token };
+  }
+  return again;
+}
+
 /** A server on what was restored. */
-const serve = () =>
+const serve = (people: TestServer['people']) =>
   startTestServer({
-    existing: { database: target.database, people: shop.people },
+    existing: { database: target.database, people },
     signingKey: () => readSigningKey(target.dataDir),
     config: { dataDir: target.dataDir },
   });
+const serveSignedIn = async () => serve(await signInAgain(target.database.db, shop.people));
 
 describe('A backup', () => {
   test('When it was made, then it is one file for its owner only, and says what is in it', () => {
@@ -159,7 +176,7 @@ describe('A backup', () => {
 });
 
 describe('Another data folder', () => {
-  test('When the backup is restored there, then old tags verify, people sign in, their tokens hold, and the work goes on', async () => {
+  test('When the backup is restored there, then old tags verify, people sign in, and the work goes on', async () => {
     const restored = await restore(file);
     expect(restored).toMatchObject({ migrated: [], kept: {}, files: made.files });
     expect(statSync(join(target.dataDir, 'signing-key.pem')).mode & 0o777).toBe(0o600);
@@ -167,28 +184,54 @@ describe('Another data folder', () => {
     expect(existsSync(join(target.dataDir, 'postgres-password'))).toBe(false);
     expect(readdirSync(target.dataDir).filter((name) => name.startsWith('.'))).toEqual([]);
 
-    const other = await serve();
+    const other = await serveSignedIn();
     const { tag, unit } = signed;
     expect(
       await other.ok('getPublicTag', { params: { tag: tag.state.number }, query: { signature: signaturePart(tag.jws) } }),
     ).toMatchObject({ standing: 'stands', content: { tag: tag.state.number } });
     await other.ok('signIn', { body: { email: 'perrin@millrace.example', password: PASSWORD } });
-    const page = await other.ok('getUnit', { params: { number: unit.number }, as: shop.people.technician });
+    const page = await other.ok('getUnit', { params: { number: unit.number }, as: other.people.technician });
     expect(page).toEqual(await shop.ok('getUnit', { params: { number: unit.number }, as: shop.people.technician }));
 
     const { number } = await takeIn(other);
     await mendAndProve(other, number);
-    const next = await other.ok('signOff', { params: { number }, as: shop.people.lead, body: await rulesSeen(other, number) });
+    const next = await other.ok('signOff', { params: { number }, as: other.people.lead, body: await rulesSeen(other, number) });
     expect([number, kidOf(next.jws)]).toEqual([unit.number + 1, kidOf(tag.jws)]);
     const noted = await target.database.db('audit_log').where({ what: 'backup.restored' });
     expect(noted).toHaveLength(1);
     await other.close();
   });
 
+  test('When something opened the shop at the time of the backup, then it opens it no more, and what an admin must look at is said', async () => {
+    const bench = await makeBench(shop, 'bench by the door');
+    const { link } = await shop.ok('makeLink', { as: shop.people.admin, params: { id: shop.people.sales.id } });
+    const token = link.url.split('#')[1] ?? '';
+    const late = join(folderFor('late'), 'shop.tar');
+    await backUp(late);
+    // Since then the bench was stolen and revoked, the link was used, a session ended, and somebody left.
+    await shop.ok('revokeBench', { as: shop.people.lead, params: { id: bench.id } });
+    await shop.ok('useLink', { body: { token, password: PASSWORD } });
+    const leaver = shop.people.technician;
+    await shop.ok('deactivatePerson', { as: shop.people.admin, params: { id: leaver.id }, body: { reason: 'has left the shop' } });
+
+    const { ended, active } = await restore(late);
+    expect(ended).toMatchObject({ links: 1, benches: ['bench by the door'] });
+    expect(active).toContainEqual({ name: leaver.name, role: 'technician' });
+    const other = await serveSignedIn();
+    expect((await other.send('ownBench', { as: benchAlone(bench) })).status).toBe(401);
+    expect((await other.send('lookAtLink', { body: { token } })).status).toBe(401);
+    for (const role of ROLES) expect((await other.send('me', { as: shop.people[role] })).status).toBe(401);
+    const noted = await other.ok('listAudit', { as: other.people.admin, query: { what: 'backup.restored' } });
+    expect(noted.items[0]?.after).toMatchObject({ sessionsEnded: ended.sessions, linksEnded: 1, benchesEnded: 1 });
+    await other.close();
+    await shop.ok('activatePerson', { as: shop.people.admin, params: { id: leaver.id } });
+    shop.people = await signInAgain(shop.deps.db, shop.people, ['technician', 'sales']);
+  });
+
   test('When a shop stands there already, then it is refused; told to, it is replaced, and what was there is kept', async () => {
     await restore(file);
-    const other = await serve();
-    await other.ok('recordReading', { params: { number: 1 }, as: shop.people.technician, body: newReading(other, 'heater') });
+    const other = await serveSignedIn();
+    await other.ok('recordReading', { params: { number: 1 }, as: other.people.technician, body: newReading(other, 'heater') });
     const events = async (): Promise<number> => Number((await target.database.db('unit_events').count({ count: '*' }))[0]?.['count']);
     const more = await events();
 
@@ -315,7 +358,7 @@ test('When the backup is of the first release, then it is restored and migrated,
 
   const { migrated } = await restore(oldFile);
   expect(migrated).toEqual((await migrationSource.getMigrations([])).slice(1));
-  const server = await serve();
+  const server = await serve(shop.people);
   const [[tag, known] = ['', undefined]] = Object.entries(firstRelease.tags);
   // As a start does it: the key's public half is kept.
   await registerSigningKey(target.database.db, await readSigningKey(target.dataDir), NOW);
