@@ -1,6 +1,7 @@
 import { z } from 'zod';
+import type { UnitEvent } from '../history/events.js';
 import { deadTestSchema, type DeadTest } from '../sheet/schema.js';
-import { countingEvents, sinceRepair, type UnitFacts } from './facts.js';
+import { countingEvents, isMend, sinceRepair, type UnitFacts } from './facts.js';
 import { isCheckEvent, standingResult, verdictOf, type CheckEvent } from './standing.js';
 
 /** A safety gate: open, or shut with each reason and the way through. */
@@ -26,6 +27,15 @@ const deadTestOf = (event: CheckEvent): DeadTest | undefined =>
 /** Only class I has a protective conductor (common practice after IEC 61140's protection classes; the clause was not read). */
 const deadTestsFor = (protectionClass: UnitFacts['unit']['protectionClass']): DeadTest[] =>
   deadTestSchema.options.filter((test) => test !== 'protective-conductor' || protectionClass === 'I');
+
+/**
+ * Whether an event can only make a gate shut, never open it: the machine was mended or came back, or one of its checks did not pass.
+ * Such an event counts for the gates even where nothing else of its source does (refused by the server, set aside).
+ *
+ * @example mayShut(repair) // true
+ */
+export const mayShut = (event: UnitEvent): boolean =>
+  isMend(event) || event.kind === 'returned' || (isCheckEvent(event) && verdictOf(event) !== 'pass');
 
 export interface EnergisingQuestion {
   /** A real rig puts power on a real machine: then only results off a real machine open the gate, in the demo shop too. */
