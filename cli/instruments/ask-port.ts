@@ -1,4 +1,16 @@
-import { InstrumentError, PermissionError, PortBusyError, PortMissingError } from './instrument-error.js';
+import {
+  HalfAnswerError,
+  InstrumentError,
+  InstrumentRefusalError,
+  InstrumentTimeoutError,
+  NoLinesError,
+  PermissionError,
+  PortBusyError,
+  PortMissingError,
+  ProbeOrMeterError,
+  TwoAnswersError,
+  type Where,
+} from './instrument-error.js';
 import { COUNT_QUERY, sensorCountOf, STOP } from './light-probe.js';
 import { isSampleLine } from './sample-line.js';
 import { ScpiConversation } from './scpi-conversation.js';
@@ -47,9 +59,7 @@ async function askAt(port: string, baudRate: number, binding: Binding | undefine
   try {
     const conversation = new ScpiConversation(transport, { timeoutMs, passOver: isSampleLine });
     const { text: identification } = await conversation.identify();
-    // A meter refuses this with an entry in its error queue, which is emptied for it.
-    const count = await conversation.ask(COUNT_QUERY).catch(() => undefined);
-    const sensorCount = count === undefined ? undefined : sensorCountOf(count);
+    const sensorCount = await sensorsOf(conversation, transport);
     if (sensorCount !== undefined) await conversation.tell(STOP);
     await conversation.errors();
     return { port, state: 'answers', baudRate, identification, ...(sensorCount === undefined ? {} : { sensorCount }) };
@@ -59,6 +69,37 @@ async function askAt(port: string, baudRate: number, binding: Binding | undefine
 }
 
 const ASKED = 'what hangs';
+
+/** A question may get lost on its way, an answer too, and either may come damaged: what an instrument is, is said at least twice. */
+const MOST_ASKINGS = 6;
+const SAID_TWICE = 2;
+const SAYS_NOTHING = [InstrumentTimeoutError, HalfAnswerError, NoLinesError, TwoAnswersError] as const;
+
+/**
+ * How many sensors hang there; undefined where it is no probe. A meter refuses the question with an entry in its error queue, which is
+ * emptied for it. Silence says nothing of the kind.
+ */
+async function sensorsOf(conversation: ScpiConversation, where: Where): Promise<number | undefined> {
+  const said = new Map<number | 'no probe', number>();
+  for (let asking = 1; asking <= MOST_ASKINGS; asking += 1) {
+    const saying = await sensorsSaid(conversation);
+    if (saying === undefined) continue;
+    const often = (said.get(saying) ?? 0) + 1;
+    if (often === SAID_TWICE) return saying === 'no probe' ? undefined : saying;
+    said.set(saying, often);
+  }
+  throw new ProbeOrMeterError(where, COUNT_QUERY);
+}
+
+async function sensorsSaid(conversation: ScpiConversation): Promise<number | 'no probe' | undefined> {
+  try {
+    return sensorCountOf(await conversation.askSurely(COUNT_QUERY)) ?? 'no probe';
+  } catch (error) {
+    if (error instanceof InstrumentRefusalError) return 'no probe';
+    if (!SAYS_NOTHING.some((kind) => error instanceof kind)) throw error;
+    return (await conversation.errors()).length > 0 ? 'no probe' : undefined;
+  }
+}
 
 /** The message without whom it is about: nobody knows yet. */
 const wordsFor = (error: InstrumentError): { why: string; toDo: string } => ({

@@ -196,6 +196,17 @@ export class WrongInstrumentError extends InstrumentError {
   }
 }
 
+/** It says who it is, and neither that it has sensors nor that it has none. */
+export class ProbeOrMeterError extends InstrumentError {
+  override readonly name = 'ProbeOrMeterError';
+  constructor(where: Where, asked: string) {
+    super(`it answers to '*IDN?', and neither answers nor refuses '${asked}': whether it is a probe or a meter is not known`, {
+      ...where,
+      toDo: 'Check its cable and ask again; or write it into the rig file by hand.',
+    });
+  }
+}
+
 /** The probe was started and sends no samples. */
 export class ProbeSilentError extends InstrumentError {
   override readonly name = 'ProbeSilentError';

@@ -67,12 +67,13 @@ export class OpenInstruments {
       if (!isMaybeSomebodyElse(error)) throw error;
       failure = error;
     }
-    // Only what says who it is can be recognised elsewhere.
-    if (instrument.identification === undefined) throw failure;
+    // Only what says who it is, and is not the double of another, can be recognised elsewhere.
+    const { identification } = instrument;
+    if (identification === undefined || this.#others(instrument).some((other) => mayAnswerAs(other, identification))) throw failure;
     if (this.#met.has(instrument.id) && !(failure instanceof WrongInstrumentError)) throw failure;
-    for (const other of this.#parts.instruments) {
+    for (const other of this.#others(instrument)) {
       const otherPort = this.#portOf(other);
-      if (other.id === instrument.id || this.#open.has(other.id) || otherPort === port) continue;
+      if (this.#open.has(other.id) || otherPort === port) continue;
       try {
         const found = await this.#openOn(otherPort, instrument, greet);
         this.#ports.set(instrument.id, otherPort);
@@ -87,6 +88,8 @@ export class OpenInstruments {
     }
     throw failure;
   }
+
+  #others = ({ id }: RigInstrument): RigInstrument[] => this.#parts.instruments.filter((other) => other.id !== id);
 
   #portOf = ({ id, port }: RigInstrument): string => this.#ports.get(id) ?? port;
 
@@ -105,15 +108,17 @@ export class OpenInstruments {
   }
 
   /** Refuses an instrument that is another than the rig file names, and one that it names elsewhere. */
-  #check({ id, identification }: RigInstrument, answered: string, transport: Transport): void {
-    if (identification !== undefined && isSameInstrument(identification, answered)) return;
-    const named = this.#parts.instruments.find(
-      (other) => other.id !== id && other.identification !== undefined && isSameInstrument(other.identification, answered),
-    );
+  #check(instrument: RigInstrument, answered: string, transport: Transport): void {
+    const { identification } = instrument;
+    if (mayAnswerAs(instrument, answered)) return;
+    const named = this.#others(instrument).find((other) => mayAnswerAs(other, answered));
     if (identification === undefined && named === undefined) return;
     throw new WrongInstrumentError(transport, identification ?? 'another instrument', answered, named?.id);
   }
 }
+
+const mayAnswerAs = ({ identification }: RigInstrument, answered: string): boolean =>
+  identification !== undefined && isSameInstrument(identification, answered);
 
 /** What an instrument looks like that hangs on another one's port: at another speed it is silent, or makes no sense. */
 function isMaybeSomebodyElse(error: unknown): error is InstrumentError {

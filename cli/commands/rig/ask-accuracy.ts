@@ -25,14 +25,19 @@ const LIKELY: Readonly<Record<RigMeter['kind'], readonly Quantity[]>> = {
 };
 const NO_MORE = 'no more';
 
-/** Asks what kind of meter it is, and its accuracy for each function, as the sheet of its manual prints it. */
-export async function askMeter(context: Context, meter: RigMeter): Promise<RigMeter> {
+/** Asks what kind of meter it is, and its accuracy for each function, as the sheet of its manual prints it. `taken`: what others are called. */
+export async function askMeter(context: Context, meter: RigMeter, taken: readonly string[]): Promise<RigMeter> {
   const { prompt, stderr } = context;
   stderr.say(`${meter.identification ?? meter.id} is not in the rig file yet, or its accuracy is asked anew.`);
   const id = await prompt.text({
     message: 'What the shop calls it',
     initial: meter.id,
-    refuse: (text) => (text === '' ? 'it needs a name, like M-03' : undefined),
+    refuse: (text) =>
+      text === ''
+        ? 'it needs a name, like M-03'
+        : taken.includes(text)
+          ? `${text} is the name of another instrument of this rig`
+          : undefined,
     instead: INSTEAD,
   });
   const kind = (await prompt.choice({

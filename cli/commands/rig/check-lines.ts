@@ -18,11 +18,18 @@ export function checkLines({ answers, matched, file }: Checked, style: Style): s
     if (answer.state !== 'answers')
       return [ink.bold(answer.port), ...under(`${answer.state}: ${answer.why}`, style), ...under(answer.toDo, style)];
     const found = matched.found.find((one) => one.answer === answer);
+    const unclear = matched.unclear.find((one) => one.answer === answer);
     const sensors = answer.sensorCount === undefined ? [] : [plural(answer.sensorCount, 'sensor')];
     return [
       ink.bold(answer.port),
       `  ${answer.identification}, ${[...sensors, `${answer.baudRate} baud`].join(', ')}`,
       ...(found === undefined ? [] : [`  ${standingText(found, file !== undefined)}`]),
+      ...(unclear === undefined
+        ? []
+        : under(
+            `may be ${unclear.candidates.map(({ id }) => id).join(' or ')}: which one, neither its serial number nor its port tells`,
+            style,
+          )),
     ];
   });
   const missing = matched.missing.flatMap(({ id, kind, port, identification }) => [

@@ -19,7 +19,7 @@ import { rigText } from '../../instruments/write-rig.js';
 import { printJson } from '../../render/json.js';
 import { askMeter } from './ask-accuracy.js';
 import { checkLines } from './check-lines.js';
-import { matchInstruments, type Found } from './match-instruments.js';
+import { foundAs, matchInstruments, type Found, type Matched, type Unclear } from './match-instruments.js';
 
 export interface RigCheckOptions {
   port?: string[];
@@ -75,29 +75,82 @@ export async function runRigCheck(
     context.stdout.write(`${checkLines({ answers, matched, file: text === undefined ? undefined : file }, style).join('\n')}\n`);
   }
 
-  const asked = context.interactive ? await askAll(matched.found, sheet, rig, context, machine) : matched.found;
-  const next: Rig = { ...rig, instruments: [...asked.map(({ instrument }) => instrument), ...matched.missing].sort(byOrderOf(rig)) };
-  const nextText = rigText(next);
-  const differs = written === undefined ? asked.length > 0 : JSON.stringify(parseRig(nextText, file)) !== JSON.stringify(written);
-  const kept = differs && (await mayWrite(options, context, file, nextText)) ? write(file, text, nextText, context) : undefined;
+  const { found, unclear, missing } = context.interactive ? await askWhich(matched, rig, context) : matched;
+  const asked = context.interactive ? await askAll(found, sheet, rig, context, machine) : found;
+  const anything = asked.length + unclear.length > 0;
+  // What may be one of several is not guessed, and a file without it would be wrong: nothing is proposed then.
+  const nextText =
+    unclear.length > 0
+      ? undefined
+      : rigText({ ...rig, instruments: [...asked.map(({ instrument }) => instrument), ...missing].sort(byOrderOf(rig)) });
+  const next = nextText === undefined ? undefined : readable(nextText, file, context);
+  const differs = next === undefined || (written === undefined ? anything : JSON.stringify(next) !== JSON.stringify(written));
+  const kept =
+    nextText !== undefined && differs && (await mayWrite(options, context, file, nextText))
+      ? write(file, text, nextText, context)
+      : undefined;
 
-  const complete = matched.missing.length === 0 && asked.length > 0;
+  const complete = missing.length === 0 && anything;
   const open = differs && kept === undefined;
   if (options.json === true)
     printJson(context, {
       ports: answers,
       instruments: asked.map(({ instrument, standing }) => ({ ...instrument, standing })),
-      missing: matched.missing,
+      unclear: unclear.map(({ answer: { port, identification }, candidates }) => ({
+        port,
+        identification,
+        candidates: candidates.map(({ id }) => id),
+      })),
+      missing,
       rigFile: file,
       differs,
       written: kept !== undefined,
       ...(kept?.backup === undefined ? {} : { backup: kept.backup }),
-      ...(open ? { proposal: nextText } : {}),
+      ...(open && nextText !== undefined ? { proposal: nextText } : {}),
     });
-  else sayEnd({ file, differs, kept, complete, anything: asked.length > 0 }, context);
+  else sayEnd({ file, differs, kept, complete, anything, unclear }, context);
   if (!complete) return EXIT.instrument;
-  return open && asked.some(({ standing }) => standing === 'moved' || standing === 'new') ? EXIT.notGood : EXIT.good;
+  return open && (unclear.length > 0 || asked.some(({ standing }) => standing === 'moved' || standing === 'new'))
+    ? EXIT.notGood
+    : EXIT.good;
 }
+
+/** What is to be written must be a rig file. Where it is none, what was typed is shown before it is refused. */
+function readable(text: string, file: string, { stderr }: Context): Rig {
+  try {
+    return parseRig(text, file);
+  } catch (error) {
+    stderr.write(`\n${text}\n`);
+    stderr.say('Nothing was written; what would have been stands above.');
+    throw error;
+  }
+}
+
+/** Asks which of the rig file's instruments it is that answers, where several may be meant. */
+async function askWhich(matched: Matched, rig: Rig, { prompt, stderr }: Context): Promise<Matched> {
+  const found = [...matched.found];
+  const free = new Set(matched.unclear.flatMap(({ candidates }) => candidates));
+  const ids = new Set([...rig.instruments, ...found.map(({ instrument }) => instrument)].map(({ id }) => id));
+  for (const { answer, candidates } of matched.unclear) {
+    const left = candidates.filter((one) => free.has(one));
+    const choices = left.map(({ id, port }) => ({ value: id, name: `${id}, which the rig file has on ${port}` }));
+    if (left.length > 0) stderr.say(`${answer.identification} says no serial number. Look which one hangs on ${answer.port}.`);
+    const id =
+      left.length === 0
+        ? A_NEW_ONE
+        : await prompt.choice({
+            message: `Which one is on ${answer.port}?`,
+            choices: [...choices, { value: A_NEW_ONE, name: 'none of these: a new one' }],
+            instead: 'run it at a terminal',
+          });
+    const chosen = left.find((one) => one.id === id);
+    if (chosen) free.delete(chosen);
+    found.push(foundAs(chosen, answer, ids));
+  }
+  return { found, unclear: [], missing: [...matched.missing, ...free] };
+}
+
+const A_NEW_ONE = '';
 
 /** What a rig file says where there is none yet. */
 const emptyRig = (name: string): Rig => parseRig(JSON.stringify({ format: 'refettle.rig', version: 1, name, instruments: [] }), RIG_FILE);
@@ -130,6 +183,12 @@ async function askAll(found: readonly Found[], sheet: Sheet | undefined, rig: Ri
   const { prompt, stderr } = context;
   const instead = 'run it at a terminal';
   const asked: Found[] = [];
+  /** The names that others have. */
+  const taken = (one: Found): string[] => [
+    ...rig.instruments.map(({ id }) => id).filter((id) => id !== one.before?.id),
+    ...found.filter((other) => other !== one).map(({ instrument }) => instrument.id),
+    ...asked.map(({ instrument }) => instrument.id),
+  ];
   for (const one of found) {
     const { instrument } = one;
     if (instrument.kind === 'light-probe') {
@@ -143,9 +202,11 @@ async function askAll(found: readonly Found[], sheet: Sheet | undefined, rig: Ri
       const keys = [...YES_NO];
       const message = `${instrument.id}: keep the accuracies of the rig file?`;
       asked.push(
-        (await prompt.key({ message, keys, instead })) === 'y' ? one : { ...one, instrument: await askMeter(context, instrument) },
+        (await prompt.key({ message, keys, instead })) === 'y'
+          ? one
+          : { ...one, instrument: await askMeter(context, instrument, taken(one)) },
       );
-    } else asked.push({ ...one, instrument: await askMeter(context, instrument) });
+    } else asked.push({ ...one, instrument: await askMeter(context, instrument, taken(one)) });
   }
   return asked;
 }
@@ -201,13 +262,18 @@ interface End {
   kept: { backup?: string } | undefined;
   complete: boolean;
   anything: boolean;
+  unclear: readonly Unclear[];
 }
 
-function sayEnd({ file, differs, kept, complete, anything }: End, { stdout, stderr, interactive }: Context): void {
+function sayEnd({ file, differs, kept, complete, anything, unclear }: End, { stdout, stderr, interactive }: Context): void {
   if (kept) {
     const old = kept.backup === undefined ? '' : ` The old one is kept as ${basename(kept.backup)}.`;
     stdout.write(`Written: ${file}.${old}\n`);
-  } else if (differs)
+  } else if (unclear.length > 0)
+    stderr.say(
+      `Nothing was written: ${unclear.map(({ answer, candidates }) => `what answers on ${answer.port} may be ${candidates.map(({ id }) => id).join(' or ')}`).join('; ')}. Run refettle rig check at a terminal and say which, or plug each where the rig file has it.`,
+    );
+  else if (differs)
     stderr.say(`Nothing was written. To let the rig file follow: refettle rig check ${interactive ? '' : '--write'}`.trim());
   else if (complete) stdout.write(`${file} says it as it is.\n`);
   if (!anything)

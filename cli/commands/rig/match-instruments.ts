@@ -1,6 +1,6 @@
 import { usualBaudRate } from '../../instruments/assemble-rig.js';
 import type { PortAnswer } from '../../instruments/ask-port.js';
-import { isSameInstrument } from '../../instruments/identity.js';
+import { likenessOf } from '../../instruments/identity.js';
 import { deviceOf } from '../../instruments/port-holder.js';
 import type { Rig, RigInstrument } from '../../instruments/rig-file.js';
 
@@ -15,45 +15,86 @@ export interface Found {
   before?: RigInstrument;
 }
 
+/** An instrument that answered and may be any of several of the rig file: which one, a person must say. */
+export interface Unclear {
+  answer: Answering;
+  candidates: RigInstrument[];
+}
+
 export interface Matched {
   found: Found[];
+  unclear: Unclear[];
   /** Of the rig file, and answering nowhere; they stay in it. */
   missing: RigInstrument[];
 }
 
 /**
- * Holds what answered against the rig file: an instrument is known by what it says it is, and where the file does not say that, by its
- * port and its kind. What the file knows of it (id, accuracies, sensors) is kept; port, speed and identification are renewed.
+ * Holds what answered against the rig file. An instrument is known by its serial number, wherever it hangs; without one, by where it
+ * hangs; and elsewhere only if nothing else can be meant, for two of one model that say no serial number look the same. What the file
+ * knows of it (id, accuracies, sensors) is kept; port, speed and identification are renewed.
  */
 export function matchInstruments(rig: Pick<Rig, 'instruments'>, answers: readonly PortAnswer[]): Matched {
-  const free = new Set(rig.instruments);
   const answering = answers.filter((answer) => answer.state === 'answers');
+  const free = new Set(rig.instruments);
+  const open = new Set(answering);
   const taken = new Map<Answering, RigInstrument>();
-  const take = (answer: Answering, fits: (instrument: RigInstrument) => boolean): void => {
-    const instrument = taken.has(answer) ? undefined : [...free].find((one) => isProbe(one) === isProbeAnswer(answer) && fits(one));
-    if (instrument === undefined) return;
+  const take = (answer: Answering, instrument: RigInstrument): void => {
     free.delete(instrument);
+    open.delete(answer);
     taken.set(answer, instrument);
   };
-  // Every known name first: a port alone may be the plug of somebody else.
-  for (const answer of answering)
-    take(answer, (one) => one.identification !== undefined && isSameInstrument(one.identification, answer.identification));
-  for (const answer of answering) take(answer, (one) => one.identification === undefined && deviceOf(one.port) === deviceOf(answer.port));
+  const fitting = (answer: Answering, fits: Fits): RigInstrument[] =>
+    [...free].filter((one) => isProbe(one) === isProbeAnswer(answer) && fits(one, answer));
+  const takeHere = (fits: Fits): void => {
+    for (const answer of open) {
+      const [here] = fitting(answer, (one) => hangsThere(one, answer) && fits(one, answer));
+      if (here) take(answer, here);
+    }
+  };
+  const takeTheOnly = (fits: Fits): void => {
+    const candidates = [...open].map((answer) => ({ answer, fit: fitting(answer, fits) }));
+    for (const { answer, fit } of candidates) {
+      const [only] = fit;
+      if (only && fit.length === 1 && candidates.filter((other) => other.fit.includes(only)).length === 1) take(answer, only);
+    }
+  };
+  takeHere(isSurely);
+  takeTheOnly(isSurely);
+  takeHere(isAlike);
+  takeTheOnly(mayBe);
 
-  const ids = new Set(rig.instruments.map(({ id }) => id));
-  const found = answering.map((answer): Found => {
-    const before = taken.get(answer);
-    if (before === undefined) return { instrument: newInstrument(answer, ids), answer, standing: 'new' };
-    const moved = deviceOf(before.port) !== deviceOf(answer.port);
-    return {
-      instrument: renewed(before, answer),
-      answer,
-      before,
-      standing: moved ? 'moved' : before.identification === undefined ? 'named' : 'as written',
-    };
+  const unclear = [...open].flatMap((answer) => {
+    const candidates = fitting(answer, mayBe);
+    return candidates.length === 0 ? [] : [{ answer, candidates }];
   });
-  return { found, missing: [...free] };
+  const ids = new Set(rig.instruments.map(({ id }) => id));
+  const found = answering
+    .filter((answer) => !unclear.some((one) => one.answer === answer))
+    .map((answer) => foundAs(taken.get(answer), answer, ids));
+  return { found, unclear, missing: [...free].filter((one) => !unclear.some(({ candidates }) => candidates.includes(one))) };
 }
+
+/** What answered, as one of the rig file or as a new one. `ids` are those that are given; a new one's is added. */
+export function foundAs(before: RigInstrument | undefined, answer: Answering, ids: Set<string>): Found {
+  if (before === undefined) return { instrument: newInstrument(answer, ids), answer, standing: 'new' };
+  const moved = !hangsThere(before, answer);
+  return {
+    instrument: renewed(before, answer),
+    answer,
+    before,
+    standing: moved ? 'moved' : before.identification === undefined ? 'named' : 'as written',
+  };
+}
+
+type Fits = (instrument: RigInstrument, answer: Answering) => boolean;
+
+const hangsThere: Fits = ({ port }, answer) => deviceOf(port) === deviceOf(answer.port);
+const isSurely: Fits = ({ identification }, answer) =>
+  identification !== undefined && likenessOf(identification, answer.identification) === 'sure';
+const isAlike: Fits = ({ identification }, answer) =>
+  identification !== undefined && likenessOf(identification, answer.identification) !== 'different';
+/** Where the file does not say what it answers, its port is all that tells. */
+const mayBe: Fits = (one, answer) => (one.identification === undefined ? hangsThere(one, answer) : isAlike(one, answer));
 
 const isProbe = ({ kind }: RigInstrument): boolean => kind === 'light-probe';
 const isProbeAnswer = ({ sensorCount }: Answering): boolean => sensorCount !== undefined;

@@ -238,6 +238,21 @@ instruments:
     }
   });
 
+  test('When a stranger hangs where one of two without a serial number should, then the other is not taken for it', async () => {
+    const ports = '/sim/doubles';
+    const meter = (says: string): SimulatedMeter => new SimulatedMeter(says, () => 5, { unplug: () => undefined });
+    const { binding } = await plugIn([
+      { path: `${ports}/a`, instrument: meter('Dyehouse,X-1,0,2.0') },
+      { path: `${ports}/b`, instrument: meter('Millrace,BM-4,0,1.0') },
+    ]);
+    const text = RIG.replaceAll('PORTS', ports)
+      .replace('IDENTITY', "identification: 'Millrace,BM-4,0,1.0',")
+      .replace('Millrace,IT-1,5,1.0', 'Millrace,BM-4,0,1.0');
+    const rig = assembleRig(parseRig(text, 'rig.yaml'), { binding });
+    rigs.push(rig);
+    await expect(rig.openMeterFor('resistance')).rejects.toMatchObject({ name: 'WrongInstrumentError' });
+  });
+
   test('When a stranger answers, then it is not taken for the one that is written down', async () => {
     const rig = await answering('Dyehouse,X-1,0,2.0', 'Millrace,BM-4,3,1.0');
     await expect(rig.openMeterFor('resistance')).rejects.toMatchObject({

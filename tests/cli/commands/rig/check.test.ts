@@ -63,6 +63,16 @@ instruments:
   - {id: P-01, kind: light-probe, port: ${at('a')}, identification: 'Millrace,LP-6,1,1.0', sensors: [fill, wash, rinse, drain, spin, lock]}
   - {id: M-03, kind: meter, port: ${meterPort}, identification: 'Millrace,BM-4,3,1.0', accuracy: {resistance: {unit: ohm, accuracy: 1%+1, resolution: 1}}}
 `;
+/** Serial number 0: "not available" (IEEE 488.2, 10.14). */
+const NAMELESS = 'Millrace,BM-4,0,1.0';
+const twoOfOneModel = (at: (name: string) => string): string => `
+format: refettle.rig
+version: 1
+name: bench-2
+instruments:
+  - {id: M-01, kind: meter, port: ${at('a')}, identification: '${NAMELESS}', accuracy: {resistance: {unit: ohm, accuracy: 1%+1, resolution: 1}}}
+  - {id: M-02, kind: meter, port: ${at('b')}, identification: '${NAMELESS}', accuracy: {resistance: {unit: ohm, accuracy: 2%+1, resolution: 1}}}
+`;
 const check = (options: RigCheckOptions, machine: Machine) => runRigCheck(options, bench.context, machine);
 const json = () => JSON.parse(bench.stdout()) as Record<string, unknown>;
 
@@ -125,6 +135,49 @@ describe('In a pipe', () => {
     expect(await check({ write: true }, machine)).toBe(0);
     expect(bench.stdout()).toContain(`${rigFile()} says it as it is.`);
     expect(readdirSync(bench.home)).toEqual(['rig.yaml']);
+  });
+
+  test('When what answers may be one of two, then nothing is written, and it says which', async () => {
+    bench = benchTerminal();
+    const { machine, at } = await machineWith({ c: meter(NAMELESS) });
+    const old = twoOfOneModel(at);
+    writeFileSync(rigFile(), old);
+    expect(await check({ write: true }, machine)).toBe(1);
+    expect(bench.stdout()).toContain('may be M-01 or M-02');
+    expect(bench.stderr()).toContain(`Nothing was written: what answers on ${at('c')} may be M-01 or M-02.`);
+    expect(readFileSync(rigFile(), 'utf8')).toBe(old);
+  });
+
+  test('When answers about sensors get lost or come damaged, then a probe is a probe all the same', async () => {
+    bench = benchTerminal();
+    const inner = probe();
+    // Lost, right, damaged, right.
+    const asked = ['lost', 'right', 'damaged', 'right'];
+    const { machine } = await machineWith({
+      a: {
+        connect: (send) => inner.connect((text) => send(text === '6\n' && asked.shift() === 'damaged' ? '\u0016\n' : text)),
+        receive: (line) => (line.startsWith('SENS') && asked[0] === 'lost' ? void asked.shift() : inner.receive(line)),
+        disconnect: () => inner.disconnect(),
+      },
+    });
+    expect(await check({ json: true }, machine)).toBe(1);
+    expect(json()).toMatchObject({ instruments: [{ id: 'P-01', kind: 'light-probe' }] });
+  });
+
+  test('When something says who it is and nothing about sensors, then it is taken for neither meter nor probe', async () => {
+    bench = benchTerminal();
+    const inner = meter('Millrace,BM-4,3,1.0');
+    const { machine } = await machineWith({
+      b: {
+        connect: (send) => inner.connect(send),
+        receive: (line) => (line.startsWith('SENS') ? undefined : inner.receive(line)),
+        disconnect: () => inner.disconnect(),
+      },
+    });
+    expect(await check({ json: true }, machine)).toBe(4);
+    expect(json()).toMatchObject({
+      ports: [{ state: 'makes no sense', why: expect.stringContaining('whether it is a probe or a meter') as string }],
+    });
   });
 
   test('When an instrument of the rig answers nowhere, then it is named, stays in the file, and the exit code is 4', async () => {
@@ -263,6 +316,36 @@ describe('At a terminal', () => {
         },
       },
     ]);
+  });
+
+  test('When what answers may be one of two, then the technician says which', async () => {
+    bench = benchTerminal({ terminal: true });
+    const { machine, at } = await machineWith({ c: meter(NAMELESS) });
+    writeFileSync(rigFile(), twoOfOneModel(at));
+    // The second of the two, and "none of these".
+    bench
+      .when(`Which one is on ${at('c')}?`, '\u001b[B\r')
+      .when('keep the accuracies', 'y')
+      .when('Write this to', 'y');
+    expect(await check({}, machine)).toBe(4);
+    expect(written().instruments).toMatchObject([
+      { id: 'M-01', port: at('a') },
+      { id: 'M-02', port: at('c') },
+    ]);
+  });
+
+  test('When a new meter is given the name of another, then that is refused while it is typed', async () => {
+    bench = benchTerminal({ terminal: true });
+    const { machine, at } = await machineWith({ b: meter('Millrace,BM-4,4,1.0') });
+    writeFileSync(rigFile(), rigYaml(at, at('c')));
+    bench
+      .when('What the shop calls it', 'M-03\r')
+      .when('M-03 is the name of another instrument', '\u007f4\r')
+      .when('What it is', '\r')
+      .when('Which function', '\u001b[A\r')
+      .when('Write this to', 'y');
+    expect(await check({}, machine)).toBe(4);
+    expect(written().instruments.map(({ id }) => id)).toEqual(['P-01', 'M-03', 'M-04']);
   });
 
   test('When the technician leaves, then nothing is written', async () => {
