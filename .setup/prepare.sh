@@ -85,7 +85,7 @@ install_node_modules() {
     fail 'The Node.js packages could not be installed.' 'Is the npm registry reachable? Then try again: npm ci'
 }
 
-sources=(cli migrations server shared web index.html package-lock.json package.json tailwind.config.ts tsconfig.build.json tsconfig.json vite.config.ts)
+sources=(cli migrations server shared web index.html package-lock.json package.json tailwind.config.ts tsconfig.build.json tsconfig.json vite.cli.config.ts vite.config.ts)
 stamp=dist/.built
 
 # Folders count too: theirs is the only date that a deleted file changes.
