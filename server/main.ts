@@ -9,6 +9,7 @@ import { createApp, type AppDependencies } from './app.js';
 import { createFirstAdminLink } from './auth/first-admin.js';
 import { readConfig, type Config } from './config.js';
 import { holdDataFolder, makeDataFolder } from './data-folder.js';
+import { keepHolding } from './database-hold.js';
 import { migrate, openDb, type Db } from './db.js';
 import { LiveHub } from './features/live/live-hub.js';
 import { registerSigningKey } from './features/tags/signing-key-store.js';
@@ -48,7 +49,7 @@ async function main(): Promise<void> {
   const databaseUrl = config.databaseUrl ?? (await startDatabase(config));
   const db = openDb(databaseUrl);
   shutdown.add(() => db.destroy());
-  await migrateOrSayWhy(db, config);
+  await takeDatabase(db, databaseUrl, config);
   await registerSigningKey(db, await loadSigningKey(config.dataDir), new Date());
 
   const builtWeb = join(packageRoot, 'dist/web');
@@ -109,11 +110,18 @@ async function startDatabase(config: Config): Promise<string> {
   return cluster.url;
 }
 
-async function migrateOrSayWhy(db: Db, config: Config): Promise<void> {
+/** Held against a restore for as long as the server works, and brought to the newest shape. */
+async function takeDatabase(db: Db, databaseUrl: string, config: Config): Promise<void> {
   try {
+    shutdown.add(
+      await keepHolding(databaseUrl, (why) => {
+        writeError(`${why.message} This server ends.\nWhat to do: ${why.remedy}\n`);
+        void shutdown.stop(1);
+      }),
+    );
     await migrate(db);
   } catch (cause) {
-    if (config.databaseUrl === undefined) throw cause;
+    if (config.databaseUrl === undefined || cause instanceof SetUpError) throw cause;
     throw new SetUpError(
       `The database that DATABASE_URL names can't be used: ${cause instanceof AggregateError ? String(cause.errors[0]) : String(cause)}`,
       'Is it running, is the password right, and may this role make tables there? Unset DATABASE_URL to use a database in the data folder.',

@@ -15,7 +15,7 @@ export async function majorOf(url: string): Promise<number> {
   });
 }
 
-export async function withClient<T>(url: string, work: (client: pg.Client) => Promise<T>): Promise<T> {
+async function withClient<T>(url: string, work: (client: pg.Client) => Promise<T>): Promise<T> {
   const client = new pg.Client({ connectionString: url, application_name: 'refettle-backup' });
   await client.connect();
   try {

@@ -5,13 +5,14 @@ import { deleteFirstAdminLinks } from '../auth/first-admin.js';
 import { listActivePeople } from '../auth/people-store.js';
 import { deleteEveryLink } from '../auth/person-links.js';
 import { revokeEverySession } from '../auth/session-store.js';
+import { whileHolding } from '../database-hold.js';
 import { migrate, openDb, type Db } from '../db.js';
 import { audit } from '../history/audit.js';
 import { readShop } from '../history/shop-store.js';
 import { migrationSource } from '../migration-source.js';
 import { SetUpError } from '../set-up-error.js';
 import { filesBelow, inWorkshop, unpack } from './archive.js';
-import { majorOf, replaceDatabase, withClient } from './database-tools.js';
+import { majorOf, replaceDatabase } from './database-tools.js';
 import { countsOf, filesToKeep, makeBackup } from './make-backup.js';
 import { DATABASE, FILES, type Manifest } from './manifest.js';
 
@@ -38,35 +39,51 @@ export interface Restored {
   active: { name: string; role: string }[];
 }
 
-/** Brings a shop back from one file. Nothing is touched before every byte of it was checked; the database changes as one, or not at all. */
-export async function restoreBackup({ databaseUrl, dataDir, file, replace, now, env }: Restore): Promise<Restored> {
-  const mark = `before-restore-${now.toISOString().replace(/\D/g, '').slice(0, 14)}`;
+/**
+ * Brings a shop back from one file. Nothing is touched before every byte of it was checked; the database changes as one, or not at all, and
+ * nobody else works with it until all is done.
+ */
+export async function restoreBackup(asked: Restore): Promise<Restored> {
+  const { databaseUrl, dataDir, file } = asked;
   return inWorkshop(dataDir, async (workshop) => {
     const content = join(workshop, 'content');
     const manifest = await unpack(file, content);
     const migrated = await refuseNewer(file, manifest, databaseUrl);
-    await refuseWhereOthersWork(databaseUrl);
-    const db = openDb(databaseUrl);
-    try {
-      const backup = await keepWhatIsThere(db, { databaseUrl, dataDir, file: join(dataDir, `${mark}.tar`), now, env }, replace);
-      try {
-        await replaceDatabase(databaseUrl, join(content, DATABASE), workshop);
-      } catch (cause) {
-        throw new SetUpError(
-          `The database could not be restored, and nothing was changed. ${cause instanceof Error ? cause.message : String(cause)}`,
-          'Look at what PostgreSQL says above.',
-          { cause },
-        );
-      }
-      await migrate(db);
-      const { ended, active } = await settleAccess(db, manifest, now);
-      const kept = keepFiles(dataDir, mark);
-      const files = placeFiles(join(content, FILES), dataDir);
-      return { manifest, files, migrated, kept: { ...(backup ? { backup } : {}), ...(kept ? { files: kept } : {}) }, ended, active };
-    } finally {
-      await db.destroy();
-    }
+    return whileHolding(databaseUrl, 'alone', async () => ({
+      manifest,
+      migrated,
+      ...(await putInPlace(asked, manifest, workshop, content)),
+    }));
   });
+}
+
+async function putInPlace(
+  { databaseUrl, dataDir, replace, now, env }: Restore,
+  manifest: Manifest,
+  workshop: string,
+  content: string,
+): Promise<Omit<Restored, 'manifest' | 'migrated'>> {
+  const mark = `before-restore-${now.toISOString().replace(/\D/g, '').slice(0, 14)}`;
+  const db = openDb(databaseUrl);
+  try {
+    const backup = await keepWhatIsThere(db, { databaseUrl, dataDir, file: join(dataDir, `${mark}.tar`), now, env }, replace);
+    try {
+      await replaceDatabase(databaseUrl, join(content, DATABASE), workshop);
+    } catch (cause) {
+      throw new SetUpError(
+        `The database could not be restored, and nothing was changed. ${cause instanceof Error ? cause.message : String(cause)}`,
+        'Look at what PostgreSQL says above.',
+        { cause },
+      );
+    }
+    await migrate(db);
+    const access = await settleAccess(db, manifest, now);
+    const kept = keepFiles(dataDir, mark);
+    const files = placeFiles(join(content, FILES), dataDir);
+    return { files, kept: { ...(backup ? { backup } : {}), ...(kept ? { files: kept } : {}) }, ...access };
+  } finally {
+    await db.destroy();
+  }
 }
 
 /** The migrations that the backup still has to go through. */
@@ -87,20 +104,6 @@ async function refuseNewer(file: string, manifest: Manifest, databaseUrl: string
     );
   }
   return ours.filter((name) => !manifest.migrations.includes(name));
-}
-
-async function refuseWhereOthersWork(databaseUrl: string): Promise<void> {
-  const others = await withClient(databaseUrl, async (client) => {
-    const { rows } = await client.query<{ others: number }>(
-      "select count(*)::int as others from pg_stat_activity where datname = current_database() and application_name = 'refettle'",
-    );
-    return rows[0]?.others ?? 0;
-  });
-  if (others > 0)
-    throw new SetUpError(
-      'A Refettle server works with this database.',
-      'Stop it first (Ctrl-C, or systemctl stop refettle), then restore.',
-    );
 }
 
 async function keepWhatIsThere(

@@ -1,6 +1,7 @@
 import { existsSync, readFileSync } from 'node:fs';
 import { join } from 'node:path';
 import type { Config } from '../config.js';
+import { whileHolding } from '../database-hold.js';
 import { holdDataFolder, makeDataFolder } from '../data-folder.js';
 import { folderOfOwnCluster, startOwnCluster } from '../postgres/own-cluster.js';
 import { urlOfCluster } from '../postgres/cluster.js';
@@ -8,7 +9,7 @@ import { SetUpError } from '../set-up-error.js';
 
 /**
  * The shop's database, for a tool: DATABASE_URL's; or the cluster of the data folder, as the running server has it, or started for as long
- * as the tool works. `alone`: only while no server works in the data folder.
+ * as the tool works. `alone`: only while no server works in the data folder; such a tool holds the database itself, as it needs it.
  */
 export async function withDatabase<T>(
   config: Config,
@@ -22,12 +23,14 @@ export async function withDatabase<T>(
   } catch (error) {
     if (alone || !(error instanceof SetUpError)) throw error;
   }
+  const held = (databaseUrl: string): Promise<T> =>
+    alone ? work(databaseUrl) : whileHolding(databaseUrl, 'with others', () => work(databaseUrl));
   try {
-    if (config.databaseUrl !== undefined) return await work(config.databaseUrl);
-    if (hold === undefined) return await work(runningCluster(config.dataDir));
+    if (config.databaseUrl !== undefined) return await held(config.databaseUrl);
+    if (hold === undefined) return await held(runningCluster(config.dataDir));
     const cluster = await startOwnCluster(config.dataDir);
     try {
-      return await work(cluster.url);
+      return await held(cluster.url);
     } finally {
       await cluster.stop();
     }

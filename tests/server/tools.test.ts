@@ -1,10 +1,12 @@
 // npm run backup, restore and rotate-key as processes of their own, on a cluster of their own, beside a server and without one.
 import { spawn, type ChildProcess } from 'node:child_process';
-import { chmodSync, existsSync, mkdtempSync, rmSync } from 'node:fs';
+import { chmodSync, existsSync, mkdtempSync, readFileSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { execa } from 'execa';
 import { afterAll, beforeAll, expect, test } from 'vitest';
+import { urlOfCluster } from '../../server/postgres/cluster.js';
+import { folderOfOwnCluster } from '../../server/postgres/own-cluster.js';
 
 const checkout = join(import.meta.dirname, '../..');
 let folder: string;
@@ -14,10 +16,10 @@ let serverProcess: ChildProcess | undefined;
 const isBuilt = process.env['REFETTLE_TEST_PROGRAM'] !== undefined;
 const program = (name: string): string[] => (isBuilt ? [`dist/server/${name}.js`] : ['--import', 'tsx', `server/${name}.ts`]);
 
-const tool = (name: string, args: string[], dataDir = join(folder, 'data')) =>
+const tool = (name: string, args: string[], dataDir = join(folder, 'data'), databaseUrl?: string) =>
   execa(process.execPath, [...program(`tools/${name}`), ...args], {
     cwd: checkout,
-    env: { REFETTLE_DATA: dataDir, REFETTLE_DEMO: '0', INIT_CWD: folder },
+    env: { REFETTLE_DATA: dataDir, REFETTLE_DEMO: '0', INIT_CWD: folder, ...(databaseUrl ? { DATABASE_URL: databaseUrl } : {}) },
     reject: false,
     stdin: 'ignore',
   });
@@ -81,6 +83,13 @@ test('When a shop runs, then it is backed up and its key rotated beside it; when
   const early = await tool('restore', ['shop.tar', '--replace']);
   expect(early.exitCode).toBe(1);
   expect(early.stderr).toContain('already works in');
+  const [port] = readFileSync(join(folderOfOwnCluster(join(folder, 'data')) ?? '', 'postmaster.pid'), 'utf8')
+    .split('\n')
+    .slice(3);
+  const password = readFileSync(join(folder, 'data', 'postgres-password'), 'utf8').trim();
+  const byAddress = await tool('restore', ['shop.tar', '--replace'], join(folder, 'third'), urlOfCluster(password, Number(port)));
+  expect(byAddress.exitCode).toBe(1);
+  expect(byAddress.stderr).toContain('A Refettle server or tool works with this database.');
   await stopServer();
 
   const restored = await tool('restore', ['shop.tar'], join(folder, 'other'));

@@ -23,6 +23,7 @@ import { newToken } from '../../../server/auth/token.js';
 import { makeBackup } from '../../../server/backup/make-backup.js';
 import { manifestSchema } from '../../../server/backup/manifest.js';
 import { restoreBackup } from '../../../server/backup/restore-backup.js';
+import { keepHolding } from '../../../server/database-hold.js';
 import { migrate, type Db } from '../../../server/db.js';
 import { registerSigningKey } from '../../../server/features/tags/signing-key-store.js';
 import { kidOf, signaturePart } from '../../../server/features/tags/tag-signature.js';
@@ -235,24 +236,19 @@ describe('Another data folder', () => {
     const events = async (): Promise<number> => Number((await target.database.db('unit_events').count({ count: '*' }))[0]?.['count']);
     const more = await events();
 
-    // Somebody works there: knex keeps connections open.
+    // As a server does it, however quiet it is.
+    const release = await keepHolding(target.database.url, () => expect.unreachable());
     expect((await refusal(restore(file, true))).message).toContain('works with this database');
-    await other.deps.live.close();
-    await target.database.db.destroy();
-    target.database.db.initialize();
+    await release();
 
     const refused = await refusal(restore(file));
     expect(refused.message).toContain('6 people and 1 units');
     expect(refused.remedy).toContain('--replace');
     expect(await events()).toBe(more);
-    await target.database.db.destroy();
-    target.database.db.initialize();
 
     const { kept } = await restore(file, true);
     expect(await events()).toBe(more - 1);
     expect(readFileSync(join(kept.files ?? '', 'photos/0001/front.jpg'), 'utf8')).toBe('a picture');
-    await target.database.db.destroy();
-    target.database.db.initialize();
 
     // And back again, from what was kept.
     const last = await restoreBackup({
@@ -326,8 +322,6 @@ describe('When the file is not what was made, then it is refused, and neither da
 
   test('the database refuses the dump half-way', async () => {
     await migrate(target.database.db);
-    await target.database.db.destroy();
-    target.database.db.initialize();
     const copy = repacked((folder) => {
       const path = join(folder, 'database.dump');
       const bytes = readFileSync(path);
@@ -339,8 +333,6 @@ describe('When the file is not what was made, then it is refused, and neither da
       writeFileSync(join(folder, 'SHA256SUMS'), sums.replace(/[0-9a-f]{64} {2}database.dump/, `${sum}  database.dump`));
     });
     const before = await tablesThere();
-    await target.database.db.destroy();
-    target.database.db.initialize();
     expect((await refusal(restore(copy))).message).toContain('nothing was changed');
     expect(await tablesThere()).toEqual(before);
     expect(before).toContain('units');
