@@ -4,7 +4,7 @@ import { createServer as createTlsServer, Server as TlsServer } from 'node:https
 import type { AddressInfo } from 'node:net';
 import { hostname, networkInterfaces } from 'node:os';
 import { SetUpError } from './set-up-error.js';
-import type { TlsPair } from './tls.js';
+import { keepTlsFresh, readTlsPair, type Tls } from './tls.js';
 
 const everyAddress = new Set(['0.0.0.0', '::']);
 /** Live pages hold their connection open for as long as they are looked at. */
@@ -17,18 +17,19 @@ interface Settings {
 }
 const USUAL: Settings = { host: 'HOST', port: 'PORT' };
 
-/** A server that listens, by https where there is a certificate. Refuses with a remedy where the address can't be had. */
+/** A server that listens, by https where there is a certificate, renewed ones too. Refuses with a remedy where the address can't be had. */
 export async function listen(
   handler: RequestListener,
   host: string,
   port: number,
-  { tls, settings = USUAL }: { tls?: TlsPair | undefined; settings?: Settings } = {},
+  { tls, settings = USUAL }: { tls?: Tls | undefined; settings?: Settings } = {},
 ): Promise<Server | TlsServer> {
-  const server = tls ? createTlsServer(tls, handler) : createServer(handler);
+  const server = tls ? createTlsServer(readTlsPair(tls.files), handler) : createServer(handler);
   try {
     await new Promise<void>((resolve, reject) => {
       server.once('error', reject).listen(port, host, resolve);
     });
+    if (tls && server instanceof TlsServer) server.once('close', keepTlsFresh(server, tls.files, tls.log));
     return server;
   } catch (cause) {
     const { code } = cause as NodeJS.ErrnoException;

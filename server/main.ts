@@ -25,7 +25,7 @@ import { seedDemoBench } from './seed/seed-demo-bench.js';
 import { seedDemoShop } from './seed/seed-demo-shop.js';
 import { SetUpError } from './set-up-error.js';
 import { Shutdown } from './shutdown.js';
-import { daysLeft, keepTlsFresh, readTlsPair, type TlsPair } from './tls.js';
+import { daysLeft, readTlsPair, type Tls } from './tls.js';
 
 const write = (text: string): void => void process.stdout.write(text);
 const writeError = (text: string): void => void process.stderr.write(text);
@@ -42,7 +42,7 @@ async function main(): Promise<void> {
   shutdown.add(() => {
     hold.release();
   });
-  const tls = config.tls && readTlsPair(config.tls);
+  const pair = config.tls && readTlsPair(config.tls);
   await makeSureThatPortIsFree(config.host, config.port);
   if (config.publicListener) await makeSureThatPortIsFree(config.publicListener.host, config.publicListener.port, PUBLIC_SETTINGS);
 
@@ -70,12 +70,10 @@ async function main(): Promise<void> {
   const accounts = config.demo ? await seedDemoShop(deps) : [];
   const demoBench = config.demo ? await seedDemoBench(deps) : undefined;
   const app = createApp(deps);
+  const tls = config.tls && { files: config.tls, log };
   const server = await listen(app, config.host, config.port, { tls });
   shutdown.add(() => closeServer(server));
-  if (config.tls && tls && server instanceof TlsServer) {
-    shutdown.add(keepTlsFresh(server, config.tls, log));
-    warnOfEnd(daysLeft(tls, new Date()));
-  }
+  if (pair) warnOfEnd(daysLeft(pair, new Date()));
   const publicServer = config.publicListener && (await listenToBuyers(app, config.publicListener, tls));
   // Before the server: an open page must not hold it up.
   shutdown.add(() => live.close());
@@ -88,7 +86,7 @@ async function main(): Promise<void> {
   if (!shutdown.isUnderWay) write(announcement(config, places, accounts, firstAdminLink, demoBench));
 }
 
-async function listenToBuyers(app: RequestListener, { host, port }: { host: string; port: number }, tls: TlsPair | undefined) {
+async function listenToBuyers(app: RequestListener, { host, port }: { host: string; port: number }, tls: Tls | undefined) {
   const server = await listen(publicOnly(app), host, port, { tls, settings: PUBLIC_SETTINGS });
   shutdown.add(() => closeServer(server));
   return server;

@@ -11,6 +11,12 @@ export interface TlsFiles {
   keyFile: string;
 }
 
+/** What a listener speaks https by. */
+export interface Tls {
+  files: TlsFiles;
+  log: Logger;
+}
+
 export interface TlsPair {
   cert: string;
   key: string;
@@ -66,7 +72,7 @@ export function daysLeft({ cert }: TlsPair, now: Date): number {
 
 /**
  * Takes a renewed certificate while the server runs: when one of the files changes, and on SIGHUP. A pair that can't be used is said,
- * and the old one goes on. The answer stops it.
+ * and the old one goes on. The answer stops it. `listen` does it for every door.
  */
 export function keepTlsFresh(server: Server, files: TlsFiles, log: Logger): () => void {
   const renew = (): void => {

@@ -6,11 +6,11 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { chromium, type Browser, type BrowserContext, type Page } from 'playwright-core';
 import { PNG } from 'pngjs';
+import { pino } from 'pino';
 import { afterAll, beforeAll, describe, expect, inject, test } from 'vitest';
 import { createFirstAdminLink } from '../../server/auth/first-admin.js';
 import { closeServer, listen } from '../../server/listen.js';
 import { publicOnly } from '../../server/public-listener.js';
-import { readTlsPair } from '../../server/tls.js';
 import { chromiumPath, settled } from '../helpers/browser.js';
 import { makeCertificate } from '../helpers/certificate.js';
 import { addHeron, signedOffUnit } from '../helpers/factories.js';
@@ -41,7 +41,7 @@ interface House {
 async function openHouse({ https }: { https: boolean }): Promise<House> {
   const server = await startTestServer({ config: { host: '0.0.0.0', publicUrl: undefined }, webDir: inject('webDir') });
   server.time.now = new Date();
-  const tls = https ? readTlsPair(makeCertificate(folder, NAME)) : undefined;
+  const tls = https ? { files: makeCertificate(folder, NAME), log: pino({ level: 'silent' }) } : undefined;
   const http = await listen(server.app, '0.0.0.0', 0, { tls });
   return { server, http, base: `${https ? 'https' : 'http'}://${NAME}:${String((http.address() as AddressInfo).port)}` };
 }

@@ -4,9 +4,9 @@ import type { Server } from 'node:http';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { execa } from 'execa';
+import { pino } from 'pino';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { addressOf, closeServer, listen } from '../../../server/listen.js';
-import { readTlsPair } from '../../../server/tls.js';
 import { makeCertificate } from '../../helpers/certificate.js';
 import { theProgram } from '../../helpers/the-program.js';
 
@@ -24,7 +24,7 @@ beforeAll(async () => {
         .end('{"type":"urn:refettle:problem:not-signed-in","title":"Sign in first","status":401}'),
     '127.0.0.1',
     0,
-    { tls: readTlsPair(certificate) },
+    { tls: { files: certificate, log: pino({ level: 'silent' }) } },
   );
 });
 afterAll(async () => {

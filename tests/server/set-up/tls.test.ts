@@ -1,5 +1,5 @@
 import { copyFileSync, mkdtempSync, rmSync, writeFileSync } from 'node:fs';
-import { get, Server as TlsServer } from 'node:https';
+import { get } from 'node:https';
 import type { AddressInfo } from 'node:net';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
@@ -7,7 +7,7 @@ import type { TLSSocket } from 'node:tls';
 import { pino } from 'pino';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { addressOf, closeServer, listen, networkAddressesOf } from '../../../server/listen.js';
-import { daysLeft, keepTlsFresh, readTlsPair } from '../../../server/tls.js';
+import { daysLeft, readTlsPair } from '../../../server/tls.js';
 import { SetUpError } from '../../../server/set-up-error.js';
 import { makeCertificate } from '../../helpers/certificate.js';
 
@@ -38,40 +38,39 @@ const shownBy = (port: number): Promise<string> =>
   });
 
 test('When a pair is given, then the server speaks https and says so in its address', async () => {
-  const server = await listen(answer, '127.0.0.1', 0, { tls: readTlsPair(workshop) });
+  const server = await listen(answer, '127.0.0.1', 0, { tls: { files: workshop, log: pino({ level: 'silent' }) } });
   expect(addressOf(server)).toMatch(/^https:\/\/127\.0\.0\.1:\d+$/);
   expect(await shownBy((server.address() as AddressInfo).port)).toBe('workshop.test');
   await closeServer(server);
 });
 
-test('When the files are renewed and SIGHUP comes, then the new pair is shown without a restart; a broken one leaves the old', async () => {
+test('When the files are renewed and SIGHUP comes, then every door shows the new pair without a restart; a broken one leaves the old', async () => {
   const files = { certFile: join(folder, 'live.pem'), keyFile: join(folder, 'live.key') };
   const put = (pair: typeof files): void => {
     copyFileSync(pair.certFile, files.certFile);
     copyFileSync(pair.keyFile, files.keyFile);
   };
   put(workshop);
-  const server = await listen(answer, '127.0.0.1', 0, { tls: readTlsPair(files) });
-  if (!(server instanceof TlsServer)) throw new Error('no TLS');
-  const { port } = server.address() as AddressInfo;
+  const listenersBefore = process.listenerCount('SIGHUP');
   const logged: string[] = [];
-  const stop = keepTlsFresh(server, files, pino({ level: 'warn' }, { write: (line: string) => void logged.push(line) }));
+  const tls = { files, log: pino({ level: 'warn' }, { write: (line: string) => void logged.push(line) }) };
+  // The house's door, and the street's: started alike.
+  const doors = [await listen(answer, '127.0.0.1', 0, { tls }), await listen(answer, '127.0.0.1', 0, { tls })];
+  const shown = () => Promise.all(doors.map((door) => shownBy((door.address() as AddressInfo).port)));
+  expect(await shown()).toEqual(['workshop.test', 'workshop.test']);
 
   put(other);
   process.emit('SIGHUP');
-  expect(await shownBy(port)).toBe('renewed.test');
+  expect(await shown()).toEqual(['renewed.test', 'renewed.test']);
   expect(logged).toEqual([]);
 
   copyFileSync(workshop.keyFile, files.keyFile); // the wrong key
   process.emit('SIGHUP');
-  expect(await shownBy(port)).toBe('renewed.test');
+  expect(await shown()).toEqual(['renewed.test', 'renewed.test']);
   expect(logged.join('')).toContain('the old one goes on');
 
-  stop();
-  put(workshop);
-  process.emit('SIGHUP');
-  expect(await shownBy(port)).toBe('renewed.test');
-  await closeServer(server);
+  for (const door of doors) await closeServer(door);
+  expect(process.listenerCount('SIGHUP')).toBe(listenersBefore);
 });
 
 test('When its days are counted, then they are those that it was made for', () => {
