@@ -76,9 +76,18 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
   }, LIVE_BEAT_SECONDS * 1000);
   beat.unref();
   response.on('close', end);
+  // A page that left while its sign-in was looked at was told of before anybody listened here.
+  if (response.closed) {
+    end();
+    return;
+  }
 
   try {
     const upTo = await hub.join(listener);
+    if (over) {
+      hub.leave(listener);
+      return;
+    }
     const resumeAfter = await resumable(db, after);
     heardBefore = resumeAfter ?? 0;
     if (over) return;
