@@ -31,12 +31,15 @@ export class ServerError extends Error {
 
 export class ServerUnreachableError extends ServerError {
   override readonly name = 'ServerUnreachableError';
-  constructor(server: string, why: string, options?: ErrorOptions) {
+  /** It was reached, and did not answer in time. */
+  readonly timedOut: boolean;
+  constructor(server: string, why: string, { timedOut = false, ...options }: ErrorOptions & { timedOut?: boolean } = {}) {
     super(
       `The server at ${server} can't be reached: ${why}.`,
       'Start it, check the network, or say where it is with REFETTLE_SERVER.',
       options,
     );
+    this.timedOut = timedOut;
   }
 }
 

@@ -137,7 +137,7 @@ async function readWhole(response: globalThis.Response, server: string): Promise
 function notAnswered(error: unknown, server: string, signal: AbortSignal): Error {
   if (error instanceof ServerError) return error;
   if (signal.aborted && !isTimeout(signal.reason)) return new StoppedError();
-  return new ServerUnreachableError(server, whyUnreachable(error), { cause: error });
+  return new ServerUnreachableError(server, whyUnreachable(error), { cause: error, timedOut: isTimeout(error) });
 }
 
 /** What the server says about time: when to come again (RFC 9110, section 10.2.3: seconds or a date), and what it is by its own clock. */

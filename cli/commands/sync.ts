@@ -53,6 +53,8 @@ function say(context: Context, sent: readonly { what: string }[], left: readonly
       stdout.write(
         `  tried ${times(one.tries)}, last at ${timeText(one.lastTryAt)}${one.nextTryAt === undefined ? '' : `; again from ${timeText(one.nextTryAt)} on`}\n`,
       );
+    if (one.state === 'waits' && one.mayBeGivenUp)
+      stdout.write(`  The server is there and this does not get through. To give it up: refettle sync --drop ${one.id}\n`);
   }
   if (sent.length === 0 && left.length === 0) stdout.write('Nothing waits on this bench.\n');
   else if (left.length > 0) stderr.say(`${plural(left.length, 'thing waits', 'things wait')} on this bench; nothing of it is lost.`);
@@ -88,7 +90,8 @@ async function sleepUnlessStopped(context: Context, milliseconds: number): Promi
 function giveUp(id: string, context: Context): number {
   const entry = waitingEntries(context.home).entries.find((one) => one.id === id);
   if (!entry) throw new UsageError(`Nothing waits here with the id '${id}': refettle sync --status lists what does`);
-  if (!entry.refused) throw new UsageError(`The ${entry.what} was not refused: it is only waiting. refettle sync sends it`);
+  if (!leftHere(context, entry).mayBeGivenUp)
+    throw new UsageError(`The ${entry.what} was not refused: it is only waiting. refettle sync sends it`);
   putAway(context.home, id, 'dropped');
   context.stdout.write(`Given up: ${entry.what}. It stays on the disk, in ${context.home.path('journal', 'dropped')}.\n`);
   return EXIT.good;

@@ -11,6 +11,8 @@ const triesSchema = z.strictObject({
   /** The server asked for it: not even then. */
   serverAsks: z.boolean(),
   why: z.string(),
+  /** How often the server was there, and this one did not get through all the same. */
+  stuck: z.number().int().nonnegative().default(0),
 });
 /** How often one message was tried, and when it is tried again. Beside the message, which may be long and never changes. */
 export type Tries = z.infer<typeof triesSchema>;
@@ -36,23 +38,32 @@ export function triesOf(home: Home, id: string): Tries | undefined {
   return triesSchema.safeParse(parseJson(readIfThere(fileOf(home, id)) ?? '')).data;
 }
 
-/** One more try that did not get through. `waitMs`: longer than the back-off, where the server or a clock asks for it. */
-export function countTry(
-  home: Home,
-  id: string,
-  {
-    now,
-    why,
-    random,
-    waitMs,
-    serverAsks = false,
-  }: { now: Date; why: string; random: () => number; waitMs?: number | undefined; serverAsks?: boolean },
-): Tries {
-  const count = (triesOf(home, id)?.count ?? 0) + 1;
-  const nextAt = new Date(now.getTime() + Math.max(backOffMs(count, random), waitMs ?? 0)).toISOString();
-  const tries = { count, lastAt: now.toISOString(), nextAt, serverAsks, why };
+/** A try that did not get through. */
+export interface Failure {
+  now: Date;
+  why: string;
+  random: () => number;
+  /** Longer than the back-off, where the server or a clock asks for it. */
+  waitMs?: number;
+  serverAsks?: boolean;
+  /** It is this message that the server can't do with, as far as one can tell. */
+  stuck?: boolean;
+}
+
+/** One more try that did not get through. */
+export function countTry(home: Home, id: string, { now, why, random, waitMs = 0, serverAsks = false, stuck = false }: Failure): Tries {
+  const before = triesOf(home, id);
+  const count = (before?.count ?? 0) + 1;
+  const nextAt = new Date(now.getTime() + Math.max(backOffMs(count, random), waitMs)).toISOString();
+  const tries = { count, lastAt: now.toISOString(), nextAt, serverAsks, why, stuck: (before?.stuck ?? 0) + (stuck ? 1 : 0) };
   writeWhole(fileOf(home, id), `${JSON.stringify(tries)}\n`);
   return tries;
 }
+
+/** So often it may be chance, a server that was just being started, or a proxy before it. */
+const STUCK_FROM = 3;
+
+/** Whether a message has failed by itself so often that a person may give it up, though nobody refused it. */
+export const isStuck = (tries: Tries | undefined): boolean => (tries?.stuck ?? 0) >= STUCK_FROM;
 
 export const forgetTries = (home: Home, id: string): void => rmSync(fileOf(home, id), { force: true });

@@ -3,7 +3,7 @@ import { createServer, type Server } from 'node:http';
 import type { AddressInfo } from 'node:net';
 import { afterEach, beforeEach, describe, expect, test } from 'vitest';
 import { runSync } from '../../../cli/commands/sync.js';
-import { sendWaiting, SENDER_LOCK } from '../../../cli/journal/deliver.js';
+import { keepAndSend, sendWaiting, SENDER_LOCK } from '../../../cli/journal/deliver.js';
 import { takeLock } from '../../../cli/journal/lock.js';
 import { keepEntry, type OutboxEntry } from '../../../cli/journal/outbox.js';
 import { backOffMs, triesOf } from '../../../cli/journal/tries.js';
@@ -112,6 +112,59 @@ describe('The spool', () => {
     const deliveries = await sendWaiting(context);
     expect(deliveries.map(({ state }) => state)).toEqual(['waits', 'waits', 'sent']);
     expect(asked).toEqual([first.id, other.id]);
+  });
+
+  test.each<[string, Told]>([
+    ['fails at it each time', { status: 500 }],
+    ['answers what can’t be read', { status: 200, body: 'hello' }],
+  ])('When the server %s, then only that unit waits behind it, and after some tries it may be given up', async (_what, answer) => {
+    const [first, second, other] = [repair(412), repair(412), repair(77)];
+    keep(first, second, other);
+    answers.push(answer, stored(other), answer);
+    const deliveries = await sendWaiting(context);
+    expect(deliveries.map(({ state }) => state)).toEqual(['waits', 'waits', 'sent']);
+    expect(deliveries[1]).toMatchObject({ why: expect.stringContaining('what was recorded before it on this unit goes first') as string });
+    await sendWaiting(context, { again: true });
+    await expect(runSync({ drop: first.id }, context)).rejects.toThrow('only waiting');
+    answers.push(answer);
+    expect(await runSync({}, context)).toBe(5);
+    expect(bench.stdout()).toContain(`To give it up: refettle sync --drop ${first.id}`);
+    expect(await runSync({ drop: first.id }, context)).toBe(0);
+    answers.push(stored(second));
+    expect(await sendWaiting(context)).toMatchObject([{ state: 'sent', entry: { id: second.id } }]);
+  });
+
+  test('When nobody answers, then all the rest waits, and next time another unit goes first', async () => {
+    const [first, other] = [repair(412), repair(77)];
+    keep(first, other);
+    answers.push({ status: 503 });
+    expect((await sendWaiting(context)).map(({ state }) => state)).toEqual(['waits', 'waits']);
+    answers.push(stored(other), { status: 503 });
+    expect((await sendWaiting(context, { again: true })).map(({ state }) => state)).toEqual(['waits', 'sent']);
+    expect(asked).toEqual([first.id, other.id, first.id]);
+    await expect(runSync({ drop: first.id }, context)).rejects.toThrow('only waiting');
+  });
+
+  test('When one thing waits for whoever recorded it, then what came after it on that unit waits too', async () => {
+    const tamsins = { ...repair(412), by: { id: 'tamsin', name: 'Tamsin Oake', role: 'technician' } } as OutboxEntry;
+    const [second, other] = [repair(412), repair(77)];
+    keep(tamsins, second, other);
+    answers.push(stored(other));
+    const deliveries = await sendWaiting(context);
+    expect(deliveries.map(({ state }) => state)).toEqual(['waits', 'waits', 'sent']);
+    expect(deliveries[1]).toMatchObject({ why: expect.stringContaining('Tamsin Oake recorded it') as string });
+    expect(asked).toEqual([other.id]);
+  });
+
+  test('When a new thing is recorded, then another unit that did not get through waits for its time, and its own unit does not', async () => {
+    const [mine, others] = [repair(412), repair(77)];
+    keep(mine, others);
+    answers.push({ status: 500 }, { status: 500 });
+    await sendWaiting(context);
+    const next = repair(412);
+    answers.push(stored(mine), stored(next));
+    expect(await keepAndSend(context, next)).toMatchObject({ state: 'sent' });
+    expect(asked).toEqual([mine.id, others.id, mine.id, next.id]);
   });
 
   test('When a clock ran ahead, then it is not refused but kept, with what to do, and goes when the server has come that far', async () => {
