@@ -1,12 +1,12 @@
 import type { Shop } from '../../shared/api/sessions.js';
 import type { UnitPage } from '../../shared/api/units.js';
-import { priceLabelOf, stockLabelOf } from '../../shared/paper/label-content.js';
+import { priceLabelOf, standingTagOf, stockLabelOf } from '../../shared/paper/label-content.js';
 import type { PriceLabel, StockLabel } from '../../shared/paper/label-paper.js';
 import { LARGEST_LABEL, readLabelSize, SMALLEST_LABEL, type LabelFormat, type LabelSize } from '../../shared/paper/sizes.js';
 import { isLoopbackAddress, unitAddress } from '../../shared/paper/unit-address.js';
 import { unitPage } from '../bench/unit-on-bench.js';
 import type { Context } from '../context.js';
-import { UsageError } from '../errors.js';
+import { ServerUnreachableError, UsageError } from '../errors.js';
 import { moneyText, parseMoney } from '../money.js';
 import { checkPaperOptions, putOnPaper, wantsPaper, type PaperOptions } from '../print/put-on-paper.js';
 import { printJson } from '../render/json.js';
@@ -35,6 +35,10 @@ export async function runLabel(options: LabelOptions, context: Context): Promise
   checkKind(options);
   const me = await whoIsHere(context);
   const { value: page, offline } = await unitPage(context, number);
+  const tag = kind === 'price' && offline ? standingTagOf(page) : undefined;
+  // It may have been withdrawn since this bench saw it.
+  if (tag !== undefined)
+    throw new ServerUnreachableError(context.server, `nobody can say whether tag ${tag} still stands, so no label that names it is made`);
   if (offline) context.stderr.say(`The server at ${context.server} can't be reached: the label says what this bench knows from last time.`);
   const label = kind === 'stock' ? await stockLabel(page, options.code, context) : priceLabel(page, options, me.shop);
   const { labelPaper } = await import('../../shared/paper/label-paper.js');

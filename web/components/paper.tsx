@@ -145,9 +145,3 @@ export function WithPrintedCodes({ children }: { children: (codes: PrintedCodes)
   if (!codes) return <div className="min-h-[60vh]" role="status" aria-busy="true" aria-label="Drawing what is printed" />;
   return children(codes);
 }
-
-/** Prints when the faces are there: a browser that prints too early prints in another face. */
-export async function printPaper(): Promise<void> {
-  await document.fonts.ready;
-  window.print();
-}

@@ -1,15 +1,17 @@
-import { useQuery } from '@tanstack/react-query';
-import { useState } from 'react';
+import { useQuery, useQueryClient } from '@tanstack/react-query';
+import { useCallback, useState } from 'react';
 import { Link, useSearchParams } from 'react-router-dom';
 import type { UnitPage } from '../../shared/api/units.js';
+import { standingTagOf } from '../../shared/paper/label-content.js';
 import { LABEL_FORMATS, readLabelSize, USUAL_LABEL } from '../../shared/paper/sizes.js';
 import { isLoopbackAddress } from '../../shared/paper/unit-address.js';
 import { FormField } from '../components/form-field.js';
 import { PageHeading } from '../components/page-heading.js';
 import { Fetched } from '../components/page-states.js';
-import { printPaper } from '../components/paper.js';
+import { nobodyCanSay, usePrinting, type MayPrint } from '../components/printing.js';
 import { UnitLabel, type LabelWish } from '../features/labels/components/unit-label.js';
-import { unitQuery } from '../features/units/api/get-unit.js';
+import { useLive } from '../features/live/api/hear-live.js';
+import { LOOK_AGAIN_MS, unitQuery } from '../features/units/api/get-unit.js';
 import { parseMoney, unitNumber } from '../lib/format.js';
 import { useSignedIn } from '../lib/signed-in.js';
 import { useUnitNumber } from '../lib/unit-number.js';
@@ -18,11 +20,14 @@ import { NotFoundPage } from './not-found-page.js';
 
 export function UnitLabelsPage() {
   const number = useUnitNumber();
-  return number === undefined ? <NotFoundPage /> : <UnitLabels number={number} />;
+  return number === undefined ? <NotFoundPage /> : <UnitLabels number={number} key={number} />;
 }
 
 function UnitLabels({ number }: { number: number }) {
-  const unit = useQuery(unitQuery(number));
+  const client = useQueryClient();
+  const changed = useCallback(() => void client.invalidateQueries({ queryKey: unitQuery(number).queryKey }), [client, number]);
+  const live = useLive(number, changed);
+  const unit = useQuery({ ...unitQuery(number), refetchInterval: live.up ? false : LOOK_AGAIN_MS });
   return (
     <Fetched query={unit} what={`unit ${unitNumber(number)}`}>
       {(page) => <Labels page={page} />}
@@ -50,7 +55,9 @@ function Labels({ page }: { page: UnitPage }) {
     setQuery(next, { replace: true, preventScrollReset: true });
   };
   const title = `Labels of No. ${unitNumber(number)}`;
-  const stands = page.tag?.standing === 'stands';
+  const tag = standingTagOf(page);
+  const ask = useAskWhetherTagIsThis();
+  const printing = usePrinting(() => (kind === 'price' ? ask(number, tag) : Promise.resolve({ go: true })));
 
   return (
     <>
@@ -140,16 +147,19 @@ function Labels({ page }: { page: UnitPage }) {
             </FormField>
           )}
         </div>
-        {kind === 'price' && !stands && <p className="mt-4 font-bold">It has no standing tag: the label says “for parts only, no tag”.</p>}
+        {kind === 'price' && tag === undefined && (
+          <p className="mt-4 font-bold">It has no standing tag: the label says “for parts only, no tag”.</p>
+        )}
         {kind === 'stock' && code === 'qr' && isLoopbackAddress(window.location.origin) && (
           <p className="mt-4">
             The code points to {window.location.origin}, which no phone can open. Open this page by the server’s name on the network, or
             print bars.
           </p>
         )}
+        {printing.refused}
         <div className="mt-4 flex flex-wrap gap-3">
           {wish && size && (
-            <button type="button" className="button" onClick={() => void printPaper()}>
+            <button type="button" className="button" disabled={printing.asking} onClick={printing.print}>
               Print the {kind} label
             </button>
           )}
@@ -167,4 +177,19 @@ function Labels({ page }: { page: UnitPage }) {
       )}
     </>
   );
+}
+
+/** Asks anew which tag a unit has before a label that names it is printed. One without a tag is for parts whatever has come since. */
+function useAskWhetherTagIsThis(): (unit: number, shown: string | undefined) => Promise<MayPrint> {
+  const client = useQueryClient();
+  return async (unit, shown) => {
+    try {
+      const now = standingTagOf(await client.fetchQuery({ ...unitQuery(unit), staleTime: 0, retry: false }));
+      if (now === shown) return { go: true };
+      const what = shown === undefined ? `Tag ${now ?? ''} was signed off` : `Tag ${shown} was withdrawn`;
+      return { go: false, why: `${what} meanwhile: look at the label, then print again.` };
+    } catch (error) {
+      return shown === undefined ? { go: true } : { go: false, why: nobodyCanSay(shown, error) };
+    }
+  };
 }

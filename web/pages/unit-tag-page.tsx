@@ -1,4 +1,5 @@
-import { useQuery } from '@tanstack/react-query';
+import { useCallback } from 'react';
+import { useQuery, useQueryClient } from '@tanstack/react-query';
 import { Link, useSearchParams } from 'react-router-dom';
 import { mayDo } from '../../shared/api/roles.js';
 import type { TagPage } from '../../shared/api/tags.js';
@@ -6,7 +7,9 @@ import { TAG_FORMATS } from '../../shared/paper/sizes.js';
 import { Caution } from '../components/caution.js';
 import { PageHeading } from '../components/page-heading.js';
 import { Fetched } from '../components/page-states.js';
-import { printPaper } from '../components/paper.js';
+import { usePrinting } from '../components/printing.js';
+import { useLive } from '../features/live/api/hear-live.js';
+import { useAskWhetherTagsStand } from '../features/tags/api/ask-whether-tags-stand.js';
 import { unitTagQuery } from '../features/tags/api/get-unit-tag.js';
 import { PrintedTags } from '../features/tags/components/printed-tags.js';
 import { TagFormatTabs } from '../features/tags/components/tag-format-tabs.js';
@@ -15,6 +18,7 @@ import { TagStanding } from '../features/tags/components/tag-standing.js';
 import { mendedInWords } from '../features/tags/components/tag-words.js';
 import { TestedList } from '../features/tags/components/tested-list.js';
 import { WithdrawForm } from '../features/tags/components/withdraw-form.js';
+import { LOOK_AGAIN_MS } from '../features/units/api/get-unit.js';
 import { formatDate, formatDayTime, unitNumber } from '../lib/format.js';
 import { useSignedIn } from '../lib/signed-in.js';
 import { useUnitNumber } from '../lib/unit-number.js';
@@ -23,11 +27,15 @@ import { NotFoundPage } from './not-found-page.js';
 
 export function UnitTagPage() {
   const number = useUnitNumber();
-  return number === undefined ? <NotFoundPage /> : <UnitTag number={number} />;
+  return number === undefined ? <NotFoundPage /> : <UnitTag number={number} key={number} />;
 }
 
 function UnitTag({ number }: { number: number }) {
-  const tag = useQuery(unitTagQuery(number));
+  const client = useQueryClient();
+  // A tag that is withdrawn while somebody looks at it does not go on looking as if it stood.
+  const changed = useCallback(() => void client.invalidateQueries({ queryKey: unitTagQuery(number).queryKey }), [client, number]);
+  const live = useLive(number, changed);
+  const tag = useQuery({ ...unitTagQuery(number), refetchInterval: live.up ? false : LOOK_AGAIN_MS });
   return (
     <Fetched query={tag} what={`the tag of unit ${unitNumber(number)}`}>
       {(page) => <TagInFull tag={page} unit={number} />}
@@ -42,6 +50,12 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
   const [query] = useSearchParams();
   const format = TAG_FORMATS.find((one) => one === query.get('format')) ?? 'a6';
   const beside = useTagsBeside(unit, query.get('with') ?? '');
+  const shown = [{ unit, tag }, ...beside.tags];
+  const askWhetherTagsStand = useAskWhetherTagsStand();
+  const printing = usePrinting(async () => {
+    const why = await askWhetherTagsStand(shown);
+    return why === undefined ? { go: true } : { go: false, why };
+  });
   return (
     <div className="paper-beside grid items-start gap-x-11 gap-y-6 min-[1100px]:grid-cols-[minmax(0,auto)_minmax(0,1fr)]">
       <div className="beside-paper max-w-[620px] min-w-0 min-[1100px]:order-last">
@@ -66,6 +80,7 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
             </p>
           )}
         </TagStanding>
+        {printing.refused}
         {stands && (
           <>
             <TagFormatTabs format={format} linkTo={(one) => paths.unitTag(unit, { format: one, with: query.get('with') ?? undefined })} />
@@ -74,7 +89,7 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
         )}
         <div className="mt-4 flex flex-wrap gap-3">
           {stands && (
-            <button type="button" className="button" onClick={() => void printPaper()}>
+            <button type="button" className="button" disabled={beside.pending || printing.asking} onClick={printing.print}>
               Print it
             </button>
           )}
@@ -98,7 +113,7 @@ function TagInFull({ tag, unit }: { tag: TagPage; unit: number }) {
       </div>
       {stands && (
         <div className="min-w-0">
-          <PrintedTags tags={[tag, ...beside.tags]} format={format} />
+          <PrintedTags tags={shown.map((one) => one.tag)} format={format} />
         </div>
       )}
     </div>

@@ -14,17 +14,7 @@ import { LABEL_FORMATS, readLabelSize, TAG_FORMATS, type LabelSize, type TagForm
 import { tagPaper } from '../../../shared/paper/tag-paper.js';
 import { widthMm, type Face } from '../../../shared/paper/type.js';
 import { priceLabel, stockLabel, UNIT_ADDRESS } from '../../helpers/labels.js';
-import {
-  colouredDots,
-  marginMm,
-  pageSizes,
-  partOf,
-  picturesOf,
-  readBars,
-  readQr,
-  wordsOnPaper,
-  type Picture,
-} from '../../helpers/read-paper.js';
+import { marginMm, pageSizes, partOf, picturesOf, readBars, readQr, wordsOnPaper, type Picture } from '../../helpers/read-paper.js';
 import { tagPage } from '../../helpers/tag-page.js';
 
 type Tag = ReturnType<typeof tagPage>;
@@ -144,7 +134,7 @@ describe('Tags on paper', () => {
       expect(Math.abs(pages[0]!.height - points(height))).toBeLessThan(EXACT_POINTS);
       const [picture] = picturesOf(pdf);
       expect(readQr(picture!)).toBe(tagPage().url);
-      expect(colouredDots(picture!)).toBe(0);
+      expect(picture!.coloured).toBe(0);
       // The outline's outer edge: 2.5 - 0.35 mm; on an office printer 4.6 - 0.35, outside the sixth of an inch it leaves white.
       expect(marginMm(picture!)).toBeGreaterThan(format === 'a6' || format === '4x6' ? 2 : 4.1);
       const words = wordsOnPaper(pdf);
@@ -227,7 +217,7 @@ describe('Labels on paper', () => {
       expect(readQr(qr!)).toBe(UNIT_ADDRESS);
       expect(readBars(bars!)).toBe('0412');
       for (const picture of [qr!, bars!, price!]) {
-        expect(colouredDots(picture)).toBe(0);
+        expect(picture.coloured).toBe(0);
         expect(marginMm(picture)).toBeGreaterThan(1);
       }
       const words = wordsOnPaper(pdf);

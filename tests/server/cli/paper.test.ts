@@ -96,7 +96,7 @@ test('When labels are printed, then as a terminal, a pipe and JSON they say what
   expect((await refettle(['label', text(bare), '--kind', 'price', '--price', '12,50', '--print'])).code).toBe(2);
 });
 
-test('When the network is away, then labels of units this bench has seen are printed all the same, and no tag is', async () => {
+test('When the network is away, then labels of units this bench has seen are printed all the same, but no tag, and no label that names one', async () => {
   await refettle(['label', text(ready), '--code', 'bars', '--print']);
   const before = address;
   address = 'http://127.0.0.1:1';
@@ -106,6 +106,11 @@ test('When the network is away, then labels of units this bench has seen are pri
     expect(await runProgram(['label', text(ready), '--code', 'bars', '--print'], bench.context)).toBe(0);
     expect(bench.stderr()).toMatch(/can't be reached: the label says what this bench knows[\s\S]*job desk-7/);
     expect((await refettle(['tag', text(ready), '--print'])).code).toBe(5);
+    // Its tag may have been withdrawn meanwhile: a price label would name it.
+    const price = await refettle(['label', text(ready), '--kind', 'price', '--price', '129', '--print']);
+    expect(price).toMatchObject({ code: 5, stdout: '' });
+    expect(price.stderr).toContain(`nobody can say whether tag ${text(ready)}-1 still stands`);
+    expect((await refettle(['label', text(bare), '--kind', 'price', '--price', '20', '--print'])).stdout).toContain('no tag');
   } finally {
     address = before;
   }
