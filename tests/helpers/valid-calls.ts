@@ -129,7 +129,7 @@ export const validCalls: Record<RouteName, MakeCall> = {
   recordReading: onNewUnit((server) => newReading(server, 'heater')),
   recordInspection: onNewUnit((server) => newInspection(server)),
   recordRepair: onNewUnit((server) => newRepair(server)),
-  recordRun: onNewUnit((server) => newRun(server, 'h6-mend')),
+  recordRun: onNewUnit((server) => ({ ...newRun(server, 'h6-mend'), sheetEdition: 1 })),
   getRun: async (server) => {
     const { number } = await takeIn(server);
     return {

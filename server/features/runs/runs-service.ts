@@ -115,6 +115,10 @@ async function settleByFittingSheet(
     return { sheet, script, settled: settle(told, script, sheet, by) };
   };
   const newest = sheetOf(history, 'no script can run on it');
+  if (told.sheetEdition !== undefined && told.sheetEdition > newest.edition) {
+    const reason = `is an edition that the shop does not have: the newest of ${newest.family} is ${String(newest.edition)}. A lead adds it first`;
+    throw new InvalidError([{ pointer: '/sheetEdition', reason }]);
+  }
   try {
     return settledBy(newest);
   } catch (error) {

@@ -55,16 +55,27 @@ test('When a run was made by an older edition whose check the newest no longer h
   expect(readiness.readyToSign).toBe(false);
 });
 
-test('When a log names no edition, or one that the shop never had, then a script that no longer fits is refused', async () => {
+test('When a log names no edition, or the newest, then a script that no longer fits is refused', async () => {
   const { number } = await takeIn(server);
   const run = newRun(server, 'h6-find');
   pass(server, 30);
   await renameWinding();
-  for (const sheetEdition of [undefined, 2, 7]) {
+  for (const sheetEdition of [undefined, 2]) {
     const refused = await send(number, sheetEdition === undefined ? run : { ...run, sheetEdition });
     expect(problemIn(refused)).toMatchObject({ status: 422, kind: 'invalid' });
     expect(refused.text).toContain('drain-pump-winding');
   }
+});
+
+test('When a log names an edition that the shop does not have, then it is refused there and nothing is stored', async () => {
+  const { number } = await takeIn(server);
+  // The second is more than a column of the database holds.
+  for (const sheetEdition of [2, 3_000_000_000]) {
+    const refused = await send(number, { ...newRun(server, 'h6-find'), sheetEdition });
+    expect(problemIn(refused).errors?.map(({ pointer }) => pointer)).toEqual(['/sheetEdition']);
+    expect(refused.text).toContain('the newest of heron-h6 is 1');
+  }
+  expect((await page(number)).runs).toEqual([]);
 });
 
 test('When the newest edition still fits, then a run by an older one is judged by the newest', async () => {
