@@ -5,7 +5,7 @@ import { sendWaiting, type Delivery } from '../journal/deliver.js';
 import { leftHere, type Left } from '../journal/left-here.js';
 import { closeEnded, openRuns } from '../journal/open-runs.js';
 import { putAway, waitingEntries } from '../journal/outbox.js';
-import { backOffMs } from '../journal/tries.js';
+import { backOffMs, LONGEST_BACK_OFF_MS } from '../journal/tries.js';
 import { printJson } from '../render/json.js';
 import { dayText, plural, timeText, times } from '../render/words.js';
 
@@ -54,13 +54,15 @@ function say(context: Context, sent: readonly { what: string }[], left: readonly
         `  tried ${times(one.tries)}, last at ${timeText(one.lastTryAt)}${one.nextTryAt === undefined ? '' : `; again from ${timeText(one.nextTryAt)} on`}\n`,
       );
     if (one.state === 'waits' && one.mayBeGivenUp)
-      stdout.write(`  The server is there and this does not get through. To give it up: refettle sync --drop ${one.id}\n`);
+      stdout.write(`  The server is there, and this does not get through. To give it up: refettle sync --drop ${one.id}\n`);
   }
   if (sent.length === 0 && left.length === 0) stdout.write('Nothing waits on this bench.\n');
   else if (left.length > 0) stderr.say(`${plural(left.length, 'thing waits', 'things wait')} on this bench; nothing of it is lost.`);
   const open = status ? openRuns(context).runs.length : 0;
   if (open > 0) stderr.say(`${plural(open, 'run is', 'runs are')} open and not sent before they are closed: refettle runs`);
 }
+
+const LEAST_WAIT_MS = 100;
 
 /** Sends until nothing waits but what somebody must decide on; what does not get through is tried again after a while, longer each time. */
 async function keepSending(context: Context): Promise<Delivery[]> {
@@ -72,7 +74,9 @@ async function keepSending(context: Context): Promise<Delivery[]> {
     if (waiting.length === 0) return [...over.values()];
     const now = context.now().getTime();
     const due = waiting.flatMap((one) => (one.nextAt === undefined ? [] : [Date.parse(one.nextAt) - now]));
-    const waitMs = Math.max(100, due.length > 0 ? Math.min(...due) : backOffMs(round, Math.random));
+    // Not longer than the longest back-off, whatever is waited for: clocks are set, and a timer takes no month.
+    const untilDueMs = due.length > 0 ? Math.min(...due) : backOffMs(round, Math.random);
+    const waitMs = Math.min(LONGEST_BACK_OFF_MS, Math.max(LEAST_WAIT_MS, untilDueMs));
     const [first] = waiting;
     if (first)
       context.stderr.say(`${plural(waiting.length, 'thing waits', 'things wait')}; again in ${Math.ceil(waitMs / 1000)} s: ${first.why}`);

@@ -4,8 +4,9 @@ import { ApiProblemError, NotSignedInError, ServerError, ServerUnreachableError 
 import { wordsOf } from '../report-error.js';
 import { readSession } from '../session.js';
 import { takeLock } from './lock.js';
+import { closeEnded } from './open-runs.js';
 import { keepEntry, putAway, waitingEntries, type OutboxEntry } from './outbox.js';
-import { countTry, forgetTries, triesOf, type Failure } from './tries.js';
+import { countTry, forgetTries, isDue, triesOf, type Failure } from './tries.js';
 
 export type Delivery =
   /** The server has it; `answer` is what it said. */
@@ -73,8 +74,9 @@ function neverTriedFirst({ home }: Context, entries: readonly OutboxEntry[]): Ou
 
 export const SENDER_LOCK = 'sender';
 
-/** Writes an entry down, then sends it and whatever waited before it, of other units what is due. */
+/** Writes an entry down behind the runs that had ended before it, then sends it and whatever waited before it, of other units what is due. */
 export async function keepAndSend(context: Context, entry: OutboxEntry): Promise<Delivery> {
+  closeEnded(context);
   keepEntry(context.home, entry);
   const deliveries = await sendWaiting(context, { due: true, besides: entry });
   return deliveries.find((delivery) => delivery.entry.id === entry.id) ?? { state: 'waits', entry, why: BY_ANOTHER };
@@ -103,7 +105,7 @@ async function send(
   if (why !== undefined) return { state: 'waits', entry, why, onlyThis: true };
   const tries = triesOf(home, entry.id);
   const patient = due && (besides === undefined || unitOf(entry) !== unitOf(besides));
-  if (tries && (patient || tries.serverAsks) && Date.parse(tries.nextAt) > context.now().getTime())
+  if (tries && (patient || tries.serverAsks) && !isDue(tries, context.now()))
     return { state: 'waits', entry, why: tries.why, nextAt: tries.nextAt, onlyThis: true };
   const waits = (reason: string, { onlyThis = false, ...about }: NotThrough = {}): Delivery => {
     const { nextAt } = countTry(home, entry.id, { now: context.now(), why: reason, random, ...about });
@@ -136,7 +138,7 @@ async function send(
       return waits(
         `It was recorded by a clock that runs ahead: its times lie up to ${String(Math.ceil((aheadMs + AHEAD_AT_MOST_MS) / 60_000))} min ahead of the server. ` +
           'Set the clock of this bench. It is kept as it is, and goes when the server’s clock has come that far: refettle sync --watch',
-        { waitMs: aheadMs, onlyThis: true },
+        { waitMs: aheadMs, onlyThis: true, ahead: true },
       );
     const { retryAfterSeconds } = error;
     const asks = retryAfterSeconds === undefined ? {} : { waitMs: retryAfterSeconds * 1000, serverAsks: true };

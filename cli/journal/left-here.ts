@@ -1,6 +1,6 @@
 import type { Context } from '../context.js';
 import { waitingEntries, type OutboxEntry } from './outbox.js';
-import { isStuck, triesOf } from './tries.js';
+import { mayBeGivenUp, triesOf } from './tries.js';
 
 /** Something that waits, for people and programs. */
 export interface Left {
@@ -31,7 +31,7 @@ export function leftHere({ home }: Pick<Context, 'home'>, entry: OutboxEntry): L
     tries: tries?.count ?? 0,
     ...(tries ? { lastTryAt: tries.lastAt } : {}),
     ...(tries && !entry.refused ? { nextTryAt: tries.nextAt } : {}),
-    mayBeGivenUp: entry.refused !== undefined || isStuck(tries),
+    mayBeGivenUp: entry.refused !== undefined || mayBeGivenUp(tries),
     why: entry.refused
       ? `${entry.refused.reason}\n${entry.refused.remedy}`
       : (tries?.why ?? `recorded by ${entry.by.name}, for ${entry.server}: refettle sync sends it`),

@@ -13,6 +13,8 @@ const entryBase = {
   /** The Idempotency-Key: sent twice, it is stored once. */
   id: z.uuid(),
   madeAt: z.iso.datetime(),
+  /** What was written down before it has a lower one, whatever the clock said. Entries of before there were numbers have none. */
+  sequence: z.number().int().positive().optional(),
   server: z.string(),
   by: personRefSchema,
   /** For people: `bench run h6-find on No. 0412`. */
@@ -34,12 +36,16 @@ export type OutboxEntry = z.infer<typeof entrySchema>;
 const folderOf = (home: Home): string => home.path('journal', 'outbox');
 const fileOf = (home: Home, id: string): string => home.path('journal', 'outbox', `${id}.json`);
 
-/** Writes an entry down; from here on it survives until the server has it. */
+/** Writes an entry down, behind what waits already; from here on it survives until the server has it. */
 export function keepEntry(home: Home, entry: OutboxEntry): void {
-  writeWhole(fileOf(home, entry.id), `${JSON.stringify(entry)}\n`);
+  const { entries } = waitingEntries(home);
+  const here = entries.find(({ id }) => id === entry.id);
+  const sequence = here ? here.sequence : 1 + Math.max(0, ...entries.map((one) => one.sequence ?? 0));
+  const { sequence: _told, ...rest } = entry;
+  writeWhole(fileOf(home, entry.id), `${JSON.stringify(sequence === undefined ? rest : { ...rest, sequence })}\n`);
 }
 
-/** What waits, oldest first. A file that can't be read is left where it is and named. */
+/** What waits, in the order in which it was written down. A file that can't be read is left where it is and named. */
 export function waitingEntries(home: Home): { entries: OutboxEntry[]; unreadable: string[] } {
   const entries: OutboxEntry[] = [];
   const unreadable: string[] = [];
@@ -51,7 +57,7 @@ export function waitingEntries(home: Home): { entries: OutboxEntry[]; unreadable
     if (parsed.success) entries.push(parsed.data);
     else unreadable.push(file);
   }
-  entries.sort((a, b) => a.madeAt.localeCompare(b.madeAt) || a.id.localeCompare(b.id));
+  entries.sort((a, b) => (a.sequence ?? 0) - (b.sequence ?? 0) || a.madeAt.localeCompare(b.madeAt) || a.id.localeCompare(b.id));
   return { entries, unreadable };
 }
 

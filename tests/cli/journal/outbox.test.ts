@@ -84,16 +84,27 @@ describe('What must not get lost', () => {
     expect(existsSync(join(bench.home, 'journal', 'sent', `${entry.id}.json`))).toBe(true);
   });
 
-  test('When the network is away, then everything waits, oldest first, and is sent in that order under the same keys', async () => {
-    const [first, second] = [repair(), repair()];
-    keepEntry(bench.context.home, second);
+  test('When the network is away, then everything waits in the order in which it was written down, and is sent so under the same keys', async () => {
+    // The clock of the bench is set back between the two.
+    const [second, first] = [repair(), repair()];
     keepEntry(bench.context.home, first);
+    keepEntry(bench.context.home, second);
     answers.push({ status: 503, body: { type: 'urn:refettle:problem:fault', title: 'Not now', status: 503 } });
     expect(states(await sendWaiting(bench.context))).toEqual(['waits', 'waits']);
     expect(asked).toHaveLength(1);
     answers.push(stored(first), stored(second));
     expect(states(await sendWaiting(bench.context))).toEqual(['sent', 'sent']);
     expect(asked.map(({ key }) => key)).toEqual([first.id, first.id, second.id]);
+  });
+
+  test('When entries of before there were numbers wait, then they go first, by their time', () => {
+    const [older, newer, numbered] = [repair(), repair(), repair({ madeAt: '2026-03-04T09:00:00.000Z' })];
+    mkdirSync(join(bench.home, 'journal', 'outbox'), { recursive: true });
+    for (const entry of [newer, older]) writeFileSync(join(bench.home, 'journal', 'outbox', `${entry.id}.json`), JSON.stringify(entry));
+    keepEntry(bench.context.home, numbered);
+    // Written down again, it keeps its place.
+    keepEntry(bench.context.home, older);
+    expect(waitingEntries(bench.context.home).entries.map(({ id }) => id)).toEqual([older.id, newer.id, numbered.id]);
   });
 
   test('When the server refuses one, then it is kept with who must act, the others go, and only sync tries it again', async () => {

@@ -179,6 +179,34 @@ describe('The spool', () => {
     expect(await sendWaiting(context, { due: true })).toMatchObject([{ state: 'sent' }]);
   });
 
+  test('When a clock ran a year ahead, then the watch sleeps minutes at a time, and a person may give it up', async () => {
+    const entry = repair(412, '2027-03-05T09:00:00.000Z');
+    keep(entry);
+    answers.push({ status: 422, body: { type: 'urn:refettle:problem:invalid', title: 'Invalid', status: 422 } });
+    const slept: number[] = [];
+    const enough = Object.assign(new Error('enough'), { name: 'Enough' });
+    const sleep = (ms: number): Promise<void> => {
+      slept.push(ms);
+      return slept.length < 3 ? context.sleep(ms) : Promise.reject(enough);
+    };
+    await expect(runSync({ watch: true }, { ...context, sleep })).rejects.toBe(enough);
+    // The longest back-off: five minutes.
+    expect(slept).toEqual([300_000, 300_000, 300_000]);
+    expect(asked).toHaveLength(1);
+    expect(await runSync({ drop: entry.id }, context)).toBe(0);
+  });
+
+  test('When a wait was set by a clock that ran ahead and has been put right, then it is over', async () => {
+    const entry = repair();
+    keep(entry);
+    now = new Date('2027-03-05T09:00:00.000Z');
+    answers.push({ status: 503, headers: { 'retry-after': '120' } });
+    await sendWaiting(context);
+    now = new Date('2026-03-05T09:00:00.000Z');
+    answers.push(stored(entry));
+    expect(await sendWaiting(context, { due: true })).toMatchObject([{ state: 'sent' }]);
+  });
+
   test('When it is watched, then it is tried again, longer apart each time, until everything is there', async () => {
     const entry = repair();
     keep(entry);
