@@ -7,12 +7,16 @@ import { filesIn, makeFolder, readIfThere, writeWhole, type Home } from '../home
 import { dayText, timeText } from '../render/words.js';
 import { parseJson } from '../session.js';
 
-const ownerSchema = z.strictObject({
+/** One process, told from every other one, now and later. */
+export const processSchema = z.strictObject({
   pid: z.number().int(),
   /** When the kernel started that process and which boot it was: a number is given out again after a while. Absent where the system does not say. */
   processStart: z.string().optional(),
   boot: z.string().optional(),
   host: z.string(),
+});
+
+const ownerSchema = processSchema.extend({
   /** Since when, by the bench's clock. */
   since: z.iso.datetime(),
   /** For people: `bench run h6-find on No. 0412, by Wil Tarrow`. */
@@ -43,13 +47,7 @@ const folderOf = (home: Home, name: string): string => home.path('journal', 'loc
 export async function takeLock(context: Context, name: string, about: { what: string; run?: string }): Promise<Lock | Held> {
   const folder = makeFolder(folderOf(context.home, name));
   const mine = `${folder}/${process.pid}-${context.newId()}.json`;
-  const owner: LockOwner = {
-    pid: process.pid,
-    ...processMarks(process.pid),
-    host: hostname(),
-    since: context.now().toISOString(),
-    ...about,
-  };
+  const owner: LockOwner = { ...thisProcess(), since: context.now().toISOString(), ...about };
   for (let tries = 1; ; tries += 1) {
     writeWhole(mine, `${JSON.stringify(owner)}\n`);
     const other = holders(context, name, { besides: mine, clear: true })[0];
@@ -91,8 +89,10 @@ export function heldWords({ what, since, pid, host }: LockOwner): string {
   return `${what}, since ${dayText(since)} ${timeText(since)} (${where})`;
 }
 
+export const thisProcess = (): z.infer<typeof processSchema> => ({ pid: process.pid, ...processMarks(process.pid), host: hostname() });
+
 /** Whether the very process that took a lock still runs. On another machine nobody can tell: it is taken to. */
-export function isAlive(owner: Pick<LockOwner, 'pid' | 'processStart' | 'boot' | 'host'>): boolean {
+export function isAlive(owner: z.infer<typeof processSchema>): boolean {
   if (owner.host !== hostname()) return true;
   try {
     process.kill(owner.pid, 0);

@@ -11,6 +11,9 @@ const MOST_SECONDS = 3600;
 /** After this a command that was asked to end is ended. */
 const MERCY_MS = 1000;
 
+/** After its end a command's last words are waited for so long: a child that it left behind may keep them open for ever. */
+const LAST_WORDS_MS = 1000;
+
 /** Hands a PDF to the system's print command. A print that fails is an answer, never an exception: the file is still there. */
 export async function printFile(order: PrintOrder, context: Context): Promise<Printed> {
   const { env, interruption } = context;
@@ -26,18 +29,28 @@ export async function printFile(order: PrintOrder, context: Context): Promise<Pr
     extendEnv: false,
     env: { ...env, LC_ALL: 'C.UTF-8' },
   });
+  const timers: NodeJS.Timeout[] = [];
+  const after = (ms: number, work: () => void): void => void timers.push(setTimeout(work, ms));
   let ended: 'late' | 'stopped' | undefined;
   const end = (why: 'late' | 'stopped'): void => {
     ended ??= why;
     signalGroup(child.pid, 'SIGTERM');
-    const mercy = setTimeout(() => signalGroup(child.pid, 'SIGKILL'), MERCY_MS);
-    void child.finally(() => clearTimeout(mercy));
+    after(MERCY_MS, () => signalGroup(child.pid, 'SIGKILL'));
   };
-  const timer = setTimeout(() => end('late'), seconds * 1000);
+  after(seconds * 1000, () => end('late'));
   const stop = (): void => end('stopped');
   interruption.signal.addEventListener('abort', stop);
-  const result = await interruption.hold(async () => child).finally(() => clearTimeout(timer));
+  // What counts is the command's own end: whatever left its group with the pipes is not waited for.
+  child.once('exit', () =>
+    after(LAST_WORDS_MS, () => {
+      child.stdout.destroy();
+      child.stderr.destroy();
+    }),
+  );
+  const result = await interruption.hold(async () => child).finally(() => timers.forEach(clearTimeout));
   interruption.signal.removeEventListener('abort', stop);
+  // Whoever of its group did not hear the first word.
+  if (ended !== undefined) signalGroup(child.pid, 'SIGKILL');
 
   const said = oneLine(result.stderr) || oneLine(result.stdout);
   if (ended === 'late')

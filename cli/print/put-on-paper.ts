@@ -1,11 +1,12 @@
-import { mkdirSync, readdirSync, rmSync, statSync, writeFileSync } from 'node:fs';
-import { dirname, join, resolve } from 'node:path';
+import { writeFileSync } from 'node:fs';
+import { resolve } from 'node:path';
 import type { Paper } from '../../shared/paper/pages.js';
 import type { Context } from '../context.js';
 import { UsageError } from '../errors.js';
 import { EXIT } from '../exit-codes.js';
 import { notWritable } from '../home.js';
 import { capital } from '../report-error.js';
+import { keepPdf, type KeptPdf } from './keep-pdf.js';
 import { printFile } from './print-file.js';
 
 export interface PaperOptions {
@@ -22,9 +23,6 @@ export interface PutOnPaper {
   answer: { pdf?: string; printed?: { done: boolean; job?: string | undefined; why?: string } };
 }
 
-/** PDFs that were printed stay on the bench for a while, so that one can be printed again without the server. */
-const KEPT_PDFS = 40;
-
 export const wantsPaper = ({ pdf, print }: PaperOptions): boolean => pdf !== undefined || print === true;
 
 /** Wrong usage is found before anything is asked of the server. */
@@ -40,22 +38,15 @@ export async function putOnPaper(
   { paper, name, options, what, size: sizeName }: { paper: Paper; name: string; options: PaperOptions; what: string; size: string },
   context: Context,
 ): Promise<PutOnPaper> {
-  const { stderr, home } = context;
+  const { stderr } = context;
   const { paperPdf } = await import('../render/paper-pdf.js');
   const bytes = await paperPdf(paper, context.now());
-  const file = options.pdf === undefined ? home.path('paper', `${name}.pdf`) : resolve(options.pdf);
-  try {
-    if (options.pdf === undefined) mkdirSync(dirname(file), { recursive: true, mode: 0o700 });
-    writeFileSync(file, bytes, options.pdf === undefined ? { mode: 0o600 } : {});
-  } catch (error) {
-    throw notWritable(file, error);
-  }
-  if (options.pdf === undefined) dropOldest(dirname(file));
+  const { file, done } = options.pdf === undefined ? keepPdf(context.home, name, bytes) : writePdf(resolve(options.pdf), bytes);
   if (options.pdf !== undefined) stderr.say(`${capital(what)} in ${options.pdf}: ${sizeName}, print it at 100 %.`);
   if (options.print !== true) return { code: EXIT.good, answer: { pdf: file } };
 
   const [size = { widthMm: 0, heightMm: 0 }] = paper.pages;
-  const outcome = await printFile({ file, title: paper.title, size, printer: options.printer }, context);
+  const outcome = await printFile({ file, title: paper.title, size, printer: options.printer }, context).finally(done);
   if (!outcome.printed) {
     stderr.say(`Not printed: ${outcome.why}. ${outcome.toDo}.\nNothing is lost: the PDF is in ${file}`);
     const code = context.interruption.interrupted ? EXIT.stopped : EXIT.instrument;
@@ -66,10 +57,12 @@ export async function putOnPaper(
   return { code: EXIT.good, answer: { pdf: file, printed: { done: true, ...(outcome.job === undefined ? {} : { job: outcome.job }) } } };
 }
 
-function dropOldest(folder: string): void {
-  const files = readdirSync(folder)
-    .filter((name) => name.endsWith('.pdf'))
-    .map((name) => ({ path: join(folder, name), at: statSync(join(folder, name)).mtimeMs }))
-    .sort((a, b) => b.at - a.at);
-  for (const { path } of files.slice(KEPT_PDFS)) rmSync(path, { force: true });
+/** Where somebody wants it; it stays there. */
+function writePdf(file: string, bytes: Uint8Array): KeptPdf {
+  try {
+    writeFileSync(file, bytes);
+  } catch (error) {
+    throw notWritable(file, error);
+  }
+  return { file, done: () => undefined };
 }
