@@ -51,6 +51,10 @@ const nasty = fc.oneof(
     '2026-02-30T00:00:00Z',
     '017f22e2-79b0-7cc3-98c4-dc0c0c07398f',
     'x'.repeat(5000),
+    // As long as a token, and as the hash of one.
+    'x'.repeat(43),
+    'f'.repeat(64),
+    '$argon2',
     { constructor: 1 },
     [[[[]]]],
   ),

@@ -80,6 +80,14 @@ test('When a secret or its hash is handed in, under whatever name, then it does 
   expect(await rows()).toEqual(before);
 });
 
+test('When somebody types a name or a reason that looks like a secret, then it stands there as it was typed', async () => {
+  for (const typed of ['a'.repeat(43), 'f'.repeat(64), 'the $argon2 hash was printed'])
+    for (const after of [{ reason: typed }, { name: typed }]) {
+      await audit(fresh.db, entry({ after }));
+      expect((await rows()).at(-1)).toMatchObject({ after });
+    }
+});
+
 test('When a kind of change is named, then it says what it is about and what was done to it', () => {
   for (const what of AUDIT_WHATS) expect(what).toMatch(/^[a-z-]+\.[a-z-]+$/);
 });
