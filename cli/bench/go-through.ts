@@ -1,5 +1,7 @@
+import { isCharged } from '../../shared/script/charge.js';
 import { runVerdict } from '../../shared/script/run-verdict.js';
 import { sinceOpened } from '../../shared/readiness/facts.js';
+import { mayHoldCharge } from '../../shared/readiness/gates.js';
 import type { PersonRef } from '../../shared/history/events.js';
 import type { ClockJump, StepResult } from '../../shared/script/run-log.js';
 import type { Script } from '../../shared/script/schema.js';
@@ -7,13 +9,15 @@ import type { Verdict } from '../../shared/verdict.js';
 import type { Context } from '../context.js';
 import { NobodyToAskError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
+import { readIfThere } from '../home.js';
 import type { OpenRig } from '../instruments/rig.js';
 import { sendWaiting, type Delivery } from '../journal/deliver.js';
 import { heldWords, takeLock, type Lock } from '../journal/lock.js';
 import { closeRun, rigLock, runLock } from '../journal/open-runs.js';
-import { writtenRun, type RunJournal, type RunStop } from '../journal/run-journal.js';
+import { journalFileOf, readRunJournal, writtenRun, type RunJournal, type RunStop } from '../journal/run-journal.js';
 import { SteadyClock } from '../journal/steady-clock.js';
 import { liveOf } from '../live/live-of.js';
+import { MAY_BE_CHARGED } from '../render/charge-words.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
 import { runAnswer } from '../render/run-answer.js';
@@ -77,6 +81,7 @@ export async function takeRunLocks(context: Context, runId: string, rigName: str
  */
 export async function goThrough(context: Context, parts: GoThroughParts): Promise<number> {
   const { unit, rig, person, before } = parts;
+  if (mayHoldCharge(unit.facts.events)) context.stderr.say(MAY_BE_CHARGED);
   if (rig.simulated && [...sinceOpened(unit.facts.events), ...before].some(({ kind }) => kind === 'repair')) rig.hands?.repaired();
   const startedMs = performance.now();
   /** Set back while nobody was at the run: noted as soon as the journal is open. */
@@ -96,21 +101,23 @@ export async function goThrough(context: Context, parts: GoThroughParts): Promis
   note = (jump) => journal.jump(jump);
   early.forEach(note);
   const live = liveOf(steady);
+  const { header } = journal;
   let end: RunEnd;
   try {
     end = await runScript({ ...parts, context: steady, journal });
   } catch (error) {
     await rig.close();
     leave(journal, clock, 'fault', person);
+    sayCharge(context, parts, header.id);
     await live.ends('failed');
     throw error;
   }
   await rig.close();
   const tookMs = performance.now() - startedMs;
-  const { header } = journal;
   const { results } = end;
   if (end.interrupted) {
     leave(journal, clock, end.left ?? 'stopped', person);
+    sayCharge(context, parts, header.id);
     const verdict = runVerdict(results, true);
     const code = firstExitCode([end.exitCode, EXIT.notGood]);
     await say(context, parts, { results, verdict, code, tookMs, runId: header.id, left: end.left ?? 'stopped' });
@@ -119,6 +126,7 @@ export async function goThrough(context: Context, parts: GoThroughParts): Promis
   }
   journal.end(clock.now().toISOString(), false);
   journal.close();
+  sayCharge(context, parts, header.id);
   const entry = closeRun(context, writtenRun(context.home, header.id));
   const delivery = (await sendWaiting(context)).find((one) => one.entry.id === entry.id) ?? {
     state: 'waits' as const,
@@ -148,6 +156,12 @@ function leave(journal: RunJournal, clock: SteadyClock, how: RunStop['how'], by:
   } finally {
     journal.close();
   }
+}
+
+/** Nobody walks away from a machine that may bite without being told. */
+function sayCharge(context: Context, { script, unit }: GoThroughParts, runId: string): void {
+  const written = readRunJournal(readIfThere(journalFileOf(context.home, runId)) ?? '');
+  if (written && isCharged(written.results, script, unit.sheet, written.begun?.stepId)) context.stderr.say(MAY_BE_CHARGED);
 }
 
 function sayJump({ stderr }: Context, { seconds }: { seconds: number }): void {

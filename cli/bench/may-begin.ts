@@ -1,9 +1,11 @@
+import { mayHoldCharge } from '../../shared/readiness/gates.js';
 import { stepGate } from '../../shared/readiness/run-gates.js';
 import { energisingOf } from '../../shared/script/energised.js';
 import { sinceOpened } from '../../shared/readiness/facts.js';
 import type { Step } from '../../shared/script/schema.js';
 import type { Context } from '../context.js';
 import { cautionLines } from '../render/caution-lines.js';
+import { MAY_BE_CHARGED } from '../render/charge-words.js';
 import { NobodyToAskError } from '../errors.js';
 import type { OpenRig } from '../instruments/rig.js';
 import { simulatedTechnician } from './simulated-technician.js';
@@ -34,6 +36,7 @@ export async function mayBegin({ context, unit, rig, step, caution, alreadyDone 
     stderr.say(`A safety gate is shut: ${gate.reasons.join('; ')}.${gate.remedy === undefined ? '' : `\nTo open it: ${gate.remedy}.`}`);
     return undefined;
   }
+  if (mayHoldCharge(unit.facts.events)) stderr.say(MAY_BE_CHARGED);
   if (gate.override)
     stderr.say(`The dead tests are missing (${gate.reasons.join('; ')}); ${gate.override.by} opened the gate: ${gate.override.reason}`);
   if (simulated && sinceOpened(unit.facts.events).some((event) => event.kind === 'repair')) rig?.hands?.repaired();

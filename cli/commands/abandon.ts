@@ -1,3 +1,4 @@
+import { isCharged } from '../../shared/script/charge.js';
 import { refuseStranger } from '../bench/refuse-stranger.js';
 import { signOn } from '../bench/sign-on.js';
 import type { Context } from '../context.js';
@@ -8,6 +9,7 @@ import { heldWords, takeLock } from '../journal/lock.js';
 import { closeEnded, closeRun, runLock, runWords } from '../journal/open-runs.js';
 import { cutOf, lastPersonIn, RunJournal, writtenRun } from '../journal/run-journal.js';
 import { SteadyClock } from '../journal/steady-clock.js';
+import { MAY_BE_CHARGED } from '../render/charge-words.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
 import { byOf, closedInstead, openRunNamed } from './resume.js';
@@ -19,7 +21,7 @@ export async function runAbandon(
   { run, reason: told, json }: { run?: string | undefined; reason?: string | undefined; json?: boolean | undefined },
   context: Context,
 ): Promise<number> {
-  const closed = closedInstead(run, context, closeEnded(context));
+  const closed = closedInstead(run, context, await closeEnded(context));
   if (closed) {
     context.stderr.say(
       `The ${closed.entry.what} has ended and is closed: it can’t be abandoned any more.${closed.where === 'waiting' ? ' It waits to be sent: refettle sync' : ''}`,
@@ -53,6 +55,7 @@ export async function runAbandon(
       written.lastAt,
     );
     if (cut) journal.record({ ...cut, ...byOf(written) });
+    if (open.script && isCharged(written.results, open.script, undefined, written.begun?.stepId)) context.stderr.say(MAY_BE_CHARGED);
     const at = clock.now().toISOString();
     journal.person({ person, at, how: 'abandoned', reason });
     journal.end(at, true);

@@ -3,7 +3,7 @@ import type { InspectionBody, ReadingBody } from '../../shared/history/events.js
 import { settleInspection } from '../../shared/history/settle-reading.js';
 import { formatLimits, formatReading, formatSpread } from '../../shared/measure/format-reading.js';
 import { checksFor } from '../../shared/readiness/facts.js';
-import { checkOf } from '../../shared/script/energised.js';
+import { checkOf, energisingOfCheck } from '../../shared/script/energised.js';
 import type { Step } from '../../shared/script/schema.js';
 import type { Check, MeasuredCheck } from '../../shared/sheet/schema.js';
 import { verdictSchema, type Verdict } from '../../shared/verdict.js';
@@ -20,6 +20,7 @@ import { keepAndSend, type Delivery } from '../journal/deliver.js';
 import { liveOf } from '../live/live-of.js';
 import { readingTold } from '../live/live-words.js';
 import { wordsOf } from '../report-error.js';
+import { COUNTS_DISCHARGED, DISCHARGE } from '../render/charge-words.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
 import { readingLines } from '../render/reading-lines.js';
@@ -38,9 +39,6 @@ export interface MeasureOptions {
   rig?: string;
   json?: boolean;
 }
-
-/** An insulation test puts 500 V on the wiring and ends with discharge (gate 2). */
-const DISCHARGE = 'Discharge it now through the tester, wait, measure: below 50 V before anybody touches anything.';
 
 /** Takes one check of the unit's sheet: measured by the rig, typed in, or looked at. */
 export async function runMeasure(options: MeasureOptions, context: Context): Promise<number> {
@@ -78,28 +76,38 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
       : typedReading(check, unit.sheet, { value, accuracy, resolution, meter });
     if (reading === undefined) return EXIT.notGood;
     await rig?.close();
-    live.told(step.id, readingTold(reading), reading.judgement.verdict);
     const id = context.newId();
     const at = context.now().toISOString();
-    const delivery = await keepAndSend(context, {
-      ...entryBase(context, unit, check, id, at),
-      route: 'recordReading',
-      body: { id, at, simulated: rig?.simulated === true, reading },
+    const base = entryBase(context, unit, check, id, at);
+    const keep = (body: ReadingBody): Promise<Delivery> =>
+      keepAndSend(context, { ...base, route: 'recordReading', body: { id, at, simulated: rig?.simulated === true, reading: body } });
+    const uncounted = { ...reading, undischarged: true } as const;
+    const left = await leftBy(check, technician, context).catch(async (error: unknown) => {
+      await keep(uncounted);
+      throw error;
     });
+    const taken = left === 'charged' ? uncounted : reading;
+    const delivery = await keep(taken);
+    live.told(step.id, readingTold(taken), taken.judgement.verdict);
     // Told while the rest goes on, and waited for last: nobody at the bench waits for those who watch.
-    const lastWord = live.ends('ended', reading.judgement.verdict);
-    if (check.deadTest === 'insulation') {
-      context.stderr.say(DISCHARGE);
-      if (technician.attended) await technician.hasDone(check.id, 'instruct', 'Discharged?');
-    }
-    const code = await say(options, context, { check, verdict: reading.judgement.verdict, delivery, reading });
+    const lastWord = live.ends('ended', taken.judgement.verdict);
+    const code = await say(options, context, { check, verdict: taken.judgement.verdict, delivery, reading: taken });
     await lastWord;
-    return code;
+    return firstExitCode([code, left === 'charged' ? EXIT.notGood : EXIT.good]);
   } finally {
     // Where it has not ended by itself.
     await liveOf(context).ends('failed');
     await rig?.close();
   }
+}
+
+/** A test that puts voltage on the machine ends with its discharge: whether that is done is asked before the reading is taken for one. */
+async function leftBy(check: MeasuredCheck, technician: Technician, { stderr }: Context): Promise<'charged' | 'safe'> {
+  if (energisingOfCheck(check) !== 'test voltage') return 'safe';
+  stderr.say(DISCHARGE);
+  if (!technician.attended || (await technician.hasDone(check.id, 'instruct', 'Discharged?'))) return 'safe';
+  stderr.say(COUNTS_DISCHARGED);
+  return 'charged';
 }
 
 /** A reading off the rig's meter; after a failure a person may try again. Undefined: the probes were not put on. */

@@ -4,8 +4,9 @@ import { refuseStranger } from '../bench/refuse-stranger.js';
 import { signOn } from '../bench/sign-on.js';
 import { unitOnBench } from '../bench/unit-on-bench.js';
 import { BadInputError } from '../../shared/errors.js';
-import { energisingOf } from '../../shared/script/energised.js';
+import { isCharged } from '../../shared/script/charge.js';
 import { runVerdict } from '../../shared/script/run-verdict.js';
+import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Context } from '../context.js';
 import { UsageError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
@@ -15,6 +16,7 @@ import { heldWords } from '../journal/lock.js';
 import { closeEnded, openRuns, runWords, type OpenRun } from '../journal/open-runs.js';
 import type { OutboxEntry } from '../journal/outbox.js';
 import { cutOf, journalFileOf, lastPersonIn, resultsOf, RunJournal, writtenRun, type WrittenRun } from '../journal/run-journal.js';
+import { MAY_BE_CHARGED } from '../render/charge-words.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
 import { openRunText } from '../render/open-run-text.js';
@@ -32,7 +34,7 @@ export interface ResumeOptions {
 
 /** Goes on with a run of this bench where it was left. */
 export async function runResume(options: ResumeOptions, context: Context): Promise<number> {
-  const endedNow = closeEnded(context);
+  const endedNow = await closeEnded(context);
   const closed = closedInstead(options.run, context, endedNow);
   if (closed) return finishClosed(closed, options, context);
   const open = await openRunNamed(options.run, context, 'resume');
@@ -178,7 +180,7 @@ function sayWhatChanged({ stderr }: Context, { written }: OpenRun, edition: numb
     );
 }
 
-function sayWhereItStands({ stderr }: Context, open: OpenRun, cut: boolean, sheet: Parameters<typeof energisingOf>[1]): void {
+function sayWhereItStands({ stderr }: Context, open: OpenRun, cut: boolean, sheet: Sheet): void {
   const { written, script } = open;
   const begun = script?.steps.find(({ id }) => id === written.begun?.stepId);
   const lines = [`Resumed: ${openRunText(open)}.`];
@@ -186,8 +188,7 @@ function sayWhereItStands({ stderr }: Context, open: OpenRun, cut: boolean, shee
     lines.push(
       `Step '${begun.title}' had begun and has no result: it is asked again.${cut ? ' The lamps recorded before the break are kept.' : ''}`,
     );
-  if (begun && energisingOf(begun, sheet) === 'test voltage')
-    lines.push('It puts test voltage on the wiring. Treat the machine as charged until it is discharged and measured.');
+  if (script && isCharged(written.results, script, sheet, begun?.id)) lines.push(MAY_BE_CHARGED);
   lines.push(
     'The machine may have been switched on or opened meanwhile: isolate and prove dead before you touch it. What energises it is asked with its caution again.',
   );

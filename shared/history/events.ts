@@ -20,6 +20,8 @@ export const readingBodySchema = z.strictObject({
   accuracy: z.string(),
   resolution: z.number().positive(),
   judgement: judgementSchema,
+  /** A test that puts voltage on the machine, and no discharge is written down after it: as a pass it does not count (gate 2). */
+  undischarged: z.literal(true).optional(),
 });
 export type ReadingBody = z.infer<typeof readingBodySchema>;
 

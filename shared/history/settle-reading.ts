@@ -2,7 +2,7 @@ import { BadInputError } from '../errors.js';
 import { judge } from '../measure/judge.js';
 import { parseAccuracy } from '../measure/parse-accuracy.js';
 import { readingUncertainty } from '../measure/uncertainty.js';
-import { checkOf } from '../script/energised.js';
+import { checkOf, energisingOfCheck } from '../script/energised.js';
 import type { MeasuredCheck, Sheet } from '../sheet/schema.js';
 import type { InspectionBody, ReadingBody } from './events.js';
 
@@ -34,7 +34,7 @@ const NEVER_NEGATIVE: readonly MeasuredCheck['quantity'][] = [
 export function settleReading(reading: ReadingBody, sheet: Sheet): ReadingBody {
   const check = checkOf(sheet, reading.checkId);
   if (check?.kind !== 'measure') throw new BadInputError(`the sheet has no measured check '${reading.checkId}'`);
-  const { deadTest: _told, ...rest } = reading;
+  const { deadTest: _told, undischarged, ...rest } = reading;
   const { value } = reading.judgement;
   const { resolution } = reading;
   const accuracy = parseAccuracy(reading.accuracy);
@@ -56,6 +56,7 @@ export function settleReading(reading: ReadingBody, sheet: Sheet): ReadingBody {
     condition: check.condition,
     ...(check.deadTest === undefined ? {} : { deadTest: check.deadTest }),
     judgement,
+    ...(undischarged === true && energisingOfCheck(check) === 'test voltage' ? { undischarged } : {}),
   };
 }
 

@@ -3,6 +3,7 @@ import { decodeCapture } from '../decode/decode-capture.js';
 import { viewCapture } from '../decode/view-capture.js';
 import type { Capture } from '../lamps/capture.js';
 import { readCapture } from '../lamps/read-capture.js';
+import { isDischargedAfter } from '../script/charge.js';
 import { judgeExpectation } from '../script/judge-expect.js';
 import { holesOf } from '../lamps/holes.js';
 import { judgeWatch, watchSpec } from '../script/judge-watch.js';
@@ -66,10 +67,13 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
     return capture;
   };
 
-  const steps = log.steps.map((result): StepResult => {
+  const steps = log.steps.map((result, index): StepResult => {
     switch (result.kind) {
       case 'measure': {
-        const reading = settleReading(result.reading, sheet);
+        // Whether it was discharged is what the log's own steps say, never the sender.
+        const { undischarged: _told, ...told } = result.reading;
+        const open = isDischargedAfter(log.steps, index, script, sheet) ? {} : ({ undischarged: true } as const);
+        const reading = settleReading({ ...told, ...open }, sheet);
         events.push({ ...ofStep(result), kind: 'reading', reading });
         return { ...result, reading };
       }
@@ -102,7 +106,12 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
         if (step?.kind !== 'watch') throw new BadInputError(`the script has no watch step '${result.stepId}'`);
         const capture = keepCapture(result, false);
         const body = bodies.get(result.captureId) as CaptureBody;
-        const { seconds, verdict, reason } = judgeWatch(viewCapture(capture, sheet), watchSpec(step, sheet), body.answer.durationS, holesOf(capture));
+        const { seconds, verdict, reason } = judgeWatch(
+          viewCapture(capture, sheet),
+          watchSpec(step, sheet),
+          body.answer.durationS,
+          holesOf(capture),
+        );
         const { capturedAt, headerUnit } = body;
         const watched = {
           seconds,

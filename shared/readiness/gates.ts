@@ -1,7 +1,7 @@
 import { z } from 'zod';
 import type { UnitEvent } from '../history/events.js';
 import { deadTestSchema, type DeadTest } from '../sheet/schema.js';
-import { countingEvents, isMend, sinceRepair, type UnitFacts } from './facts.js';
+import { countingEvents, isMend, sinceOpened, sinceRepair, type UnitFacts } from './facts.js';
 import { isCheckEvent, standingResult, verdictOf, type CheckEvent } from './standing.js';
 
 /** A safety gate: open, or shut with each reason and the way through. */
@@ -36,6 +36,16 @@ const deadTestsFor = (protectionClass: UnitFacts['unit']['protectionClass']): De
  */
 export const mayShut = (event: UnitEvent): boolean =>
   isMend(event) || event.kind === 'returned' || (isCheckEvent(event) && verdictOf(event) !== 'pass');
+
+/**
+ * Whether the last test that put voltage on the machine has no discharge written down after it: whoever comes to it is told so.
+ *
+ * @example mayHoldCharge([intake, insulationOfAParkedRun]) // true
+ */
+export function mayHoldCharge(events: readonly UnitEvent[]): boolean {
+  const tests = sinceOpened(events).flatMap((event) => (event.kind === 'reading' ? [event.reading] : []));
+  return tests.findLast(({ deadTest, undischarged }) => deadTest === 'insulation' || undischarged === true)?.undischarged === true;
+}
 
 export interface EnergisingQuestion {
   /** A real rig puts power on a real machine: then only results off a real machine open the gate, in the demo shop too. */
@@ -74,6 +84,12 @@ export function energisingGate(facts: UnitFacts, question: EnergisingQuestion): 
       continue;
     }
     const verdict = verdictOf(standing);
+    if (verdict === 'not done' && standing.kind === 'reading') {
+      reasons.push(
+        `${DEAD_TEST_TITLE[test]} has no discharge written down after it: discharge the machine, then do it again and discharge`,
+      );
+      continue;
+    }
     if (verdict !== 'pass') {
       reasons.push(`${DEAD_TEST_TITLE[test]}: ${verdict}`);
       continue;

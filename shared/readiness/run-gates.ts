@@ -1,4 +1,5 @@
 import type { SettledRun } from '../history/settle-run.js';
+import { isCharged } from '../script/charge.js';
 import { isReturn } from '../script/run-log.js';
 import { deadTestOfStep, energisingOf } from '../script/energised.js';
 import type { Script, Step, StepOf } from '../script/schema.js';
@@ -39,7 +40,6 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
   const events = [...facts.events];
   const confirmed = new Set<string>();
   let place = -1;
-  let charged = false;
   for (const [position, result] of run.log.steps.entries()) {
     if (run.log.people.some((person) => isReturn(person) && person.steps === position)) confirmed.clear();
     const breach = (reason: string | string[], remedy?: string): GateBreach => ({
@@ -57,11 +57,8 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
     const cutShort = result.kind === 'cut' && (step.kind === 'capture' || step.kind === 'watch');
     if (result.kind !== step.kind && !cutShort) return breach(`the log calls it ${result.kind}, the script ${step.kind}`);
 
-    if (charged) {
-      if (!(step.kind === 'instruct' && step.discharge))
-        return breach('the machine was not discharged after the insulation test', 'discharge it, then run from there');
-      charged = result.kind === 'instruct' && result.answer !== 'done';
-    }
+    if (isCharged(run.log.steps.slice(0, position), script, sheet) && !(step.kind === 'instruct' && step.discharge))
+      return breach('the machine was not discharged after the insulation test', 'discharge it, then run from there');
     if (result.kind === 'caution' && result.answer === 'yes') confirmed.add(step.id);
     const energising = energisingOf(step, sheet);
     const caution = cautionBefore(script, index);
@@ -69,7 +66,6 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
       return breach('its caution was not answered with yes', 'run it again from its caution');
     const gate = stepGate(step, sheet, { ...facts, events }, run.log.rig.simulated);
     if (!gate.open) return breach(gate.reasons, gate.remedy);
-    if (energising === 'test voltage') charged = true;
     events.push(...run.events.filter((event) => event.stepId === result.stepId));
   }
   return undefined;

@@ -6,8 +6,14 @@ import type { Verdict } from '../verdict.js';
 export type CheckEvent = UnitEventOf<'reading'> | UnitEventOf<'inspection'>;
 
 export const isCheckEvent = (event: UnitEvent): event is CheckEvent => event.kind === 'reading' || event.kind === 'inspection';
-export const verdictOf = (event: CheckEvent): Verdict =>
-  event.kind === 'reading' ? event.reading.judgement.verdict : event.inspection.verdict;
+
+/** What a check counts as. A pass of a test that was not followed by its discharge is not done: the test ends with it (gate 2). */
+export function verdictOf(event: CheckEvent): Verdict {
+  if (event.kind === 'inspection') return event.inspection.verdict;
+  const { judgement, undischarged } = event.reading;
+  return undischarged === true && judgement.verdict === 'pass' ? 'not done' : judgement.verdict;
+}
+
 export const checkIdOf = (event: CheckEvent): string | undefined =>
   event.kind === 'reading' ? event.reading.checkId : event.inspection.checkId;
 

@@ -1,10 +1,21 @@
-import type { Check, DeadTest, Sheet } from '../sheet/schema.js';
+import type { Check, DeadTest, MeasuredCheck, Sheet } from '../sheet/schema.js';
 import type { Step } from './schema.js';
 
 export const checkOf = (sheet: Sheet, checkId: string | undefined): Check | undefined => sheet.checks.find((check) => check.id === checkId);
 
 /** What a step does to the machine: `mains` puts it on the supply, `test voltage` is an insulation test, `dead` leaves it isolated. */
 export type Energising = 'mains' | 'test voltage' | 'dead';
+
+/**
+ * What measuring a check does to the machine. An insulation test puts some hundred volts on it, by whichever of its two marks a sheet
+ * calls it one; any other check says itself whether it is measured on mains.
+ *
+ * @example energisingOfCheck({ kind: 'measure', condition: 'dead', quantity: 'insulation resistance', … }) // 'test voltage'
+ */
+export function energisingOfCheck(check: MeasuredCheck): Energising {
+  if (check.deadTest === 'insulation' || check.quantity === 'insulation resistance') return 'test voltage';
+  return check.condition === 'energised' ? 'mains' : 'dead';
+}
 
 /**
  * Whether a step energises the machine. Captures and watches need the control to run; a measured check says so itself;
@@ -16,8 +27,7 @@ export function energisingOf(step: Step, sheet: Sheet): Energising {
   if (step.kind === 'instruct' && step.procedure !== undefined) return 'mains';
   if (step.kind !== 'measure') return 'dead';
   const check = checkOf(sheet, step.check);
-  if (check?.deadTest === 'insulation') return 'test voltage';
-  return check?.kind === 'measure' && check.condition === 'energised' ? 'mains' : 'dead';
+  return check?.kind === 'measure' ? energisingOfCheck(check) : 'dead';
 }
 
 /** The dead test that a step is, if it is one. */
