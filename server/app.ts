@@ -46,14 +46,18 @@ const ONE_YEAR_MS = 31_536_000_000;
 
 export function createApp(deps: AppDependencies): Express {
   const app = express();
-  const { publicUrl } = deps.config;
+  const { publicUrl, tls } = deps.config;
   // A proxy may end TLS and say for whom; nobody else is believed.
   app.set('trust proxy', deps.config.trustedProxies);
   app.set('query parser', 'simple');
   app.use(requestLog(deps.log));
-  const [overHttps, overHttp] = [helmet(securityHeaders(true)), helmet(securityHeaders(false))];
+  const headers = {
+    https: helmet(securityHeaders({ https: true, only: tls !== undefined })),
+    http: helmet(securityHeaders({ https: false })),
+  };
   app.use((request, response, next) => {
-    (ownOrigin(request, publicUrl).startsWith('https:') ? overHttps : overHttp)(request, response, next);
+    request.overHttps = ownOrigin(request, publicUrl).startsWith('https:');
+    (request.overHttps ? headers.https : headers.http)(request, response, next);
   });
   app.use('/api', (_request, response, next) => {
     response.set('Cache-Control', 'no-store');
@@ -91,10 +95,13 @@ export function createApp(deps: AppDependencies): Express {
   return app;
 }
 
-/** Over plain http a browser that is told to upgrade shows a blank page, and one shop may be reached both ways. */
-const securityHeaders = (https: boolean) => ({
+/**
+ * Over plain http a browser that is told to upgrade shows a blank page. HSTS would do the same to every other door of the host name, for a
+ * year: it is said only by a server that ends TLS itself and so has no plain one (`only`). A proxy in front says it where it should be said.
+ */
+const securityHeaders = ({ https, only = false }: { https: boolean; only?: boolean }) => ({
   contentSecurityPolicy: { directives: { upgradeInsecureRequests: https ? [] : null, imgSrc: ["'self'", 'data:', 'blob:'] } },
-  strictTransportSecurity: https,
+  strictTransportSecurity: only && { maxAge: ONE_YEAR_MS / 1000, includeSubDomains: false },
   // Browsers heed these two over https alone, and complain about them elsewhere.
   crossOriginOpenerPolicy: https,
   originAgentCluster: https,

@@ -3,7 +3,7 @@ import { problemSchema } from '../shared/api/problem.js';
 import { PERSON_HEADER } from '../shared/api/benches.js';
 import { benchMay, ROLES_BY_ACTION } from '../shared/api/roles.js';
 import { routes, type Route } from '../shared/api/routes.js';
-import { SESSION_COOKIE } from './auth/session-cookie.js';
+import { SESSION_COOKIES } from './auth/session-cookie.js';
 import { IDEMPOTENCY_HEADER } from './idempotency.js';
 import { PROBLEM_MEDIA_TYPE } from './problem.js';
 
@@ -140,8 +140,8 @@ export function openApiDocument(): Json {
         cookie: {
           type: 'apiKey',
           in: 'cookie',
-          name: SESSION_COOKIE,
-          description: 'Set by POST /api/sessions with keep: "cookie"; a write by it must come from the server’s own pages.',
+          name: SESSION_COOKIES.http,
+          description: `Set by POST /api/sessions with keep: "cookie"; over https it is called ${SESSION_COOKIES.https}. A write by it must come from the server’s own pages.`,
         },
       },
       schemas: { Problem: jsonSchema(problemSchema, 'output') },

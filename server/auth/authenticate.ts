@@ -23,6 +23,8 @@ declare global {
     interface Request {
       /** The shared bench whose token this request came by; `user` is then who acts there, if anybody does. */
       bench?: BenchRef;
+      /** Whether the browser sees us by https, whoever ends it. */
+      overHttps: boolean;
     }
   }
 }

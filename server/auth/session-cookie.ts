@@ -1,18 +1,22 @@
 import { parse } from 'cookie';
 import type { Request, Response } from 'express';
-import { ownOrigin } from './origin.js';
 
-export const SESSION_COOKIE = 'refettle_session';
+/**
+ * Two names, because a shop may be reached both ways under one host: a browser lets no plain http answer write over a Secure cookie of the
+ * same name, and sends a cookie to every port of its host. `__Host-` (RFC 6265bis): no plain http page can have set it.
+ */
+export const SESSION_COOKIES = { http: 'refettle_session', https: '__Host-refettle_session' };
 
-export const sessionCookie = (request: Request): string | undefined => parse(request.headers.cookie ?? '')[SESSION_COOKIE];
+const nameFor = ({ overHttps }: Request): string => (overHttps ? SESSION_COOKIES.https : SESSION_COOKIES.http);
 
-const attributes = (request: Request, publicUrl: string | undefined) =>
-  ({ httpOnly: true, sameSite: 'strict', path: '/', secure: ownOrigin(request, publicUrl).startsWith('https:') }) as const;
+export const sessionCookie = (request: Request): string | undefined => parse(request.headers.cookie ?? '')[nameFor(request)];
 
-export function setSessionCookie(request: Request, response: Response, publicUrl: string | undefined, token: string, expires: Date): void {
-  response.cookie(SESSION_COOKIE, token, { ...attributes(request, publicUrl), expires });
+const attributes = ({ overHttps }: Request) => ({ httpOnly: true, sameSite: 'strict', path: '/', secure: overHttps }) as const;
+
+export function setSessionCookie(request: Request, response: Response, token: string, expires: Date): void {
+  response.cookie(nameFor(request), token, { ...attributes(request), expires });
 }
 
-export function clearSessionCookie(request: Request, response: Response, publicUrl: string | undefined): void {
-  response.clearCookie(SESSION_COOKIE, attributes(request, publicUrl));
+export function clearSessionCookie(request: Request, response: Response): void {
+  response.clearCookie(nameFor(request), attributes(request));
 }

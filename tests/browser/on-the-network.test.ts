@@ -105,7 +105,14 @@ describe.each([
     await page.getByRole('heading', { level: 1 }).waitFor();
     expect(await coloursOf(page)).toBeGreaterThan(20);
 
-    expect(await sessionCookie(context)).toMatchObject({ httpOnly: true, secure: https, sameSite: 'Strict', domain: NAME, path: '/' });
+    expect(await sessionCookie(context)).toMatchObject({
+      name: https ? '__Host-refettle_session' : 'refettle_session',
+      httpOnly: true,
+      secure: https,
+      sameSite: 'Strict',
+      domain: NAME,
+      path: '/',
+    });
     await page.reload();
     await page.getByRole('heading', { level: 1 }).waitFor();
     expect(page.url()).toContain('/units');

@@ -3,6 +3,7 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import request from 'supertest';
 import { afterAll, beforeAll, expect, test } from 'vitest';
+import { createApp } from '../../server/app.js';
 import { problemIn, startTestServer, type TestServer } from '../helpers/test-server.js';
 
 let server: TestServer;
@@ -47,15 +48,21 @@ test('When an address below /api is unknown, then it is a problem and not the pa
   expect(problemIn(await request(server.app).post('/units')).status).toBe(404);
 });
 
-test('When the browser came by plain http, then it is not told to come back by https; when it came by the public address, then it is', async () => {
-  const headersAt = async (host: string) => (await request(server.app).get('/api/health').set('Host', host)).headers;
+test('When the browser came by plain http, then it is not told to come back by https; when it came by the public address, then its page is all https', async () => {
+  const headersAt = async (host: string, app = server.app) => (await request(app).get('/api/health').set('Host', host)).headers;
   const inTheHouse = await headersAt('192.168.1.5:4780');
   expect(inTheHouse['strict-transport-security']).toBeUndefined();
   expect(inTheHouse['content-security-policy']).not.toContain('upgrade-insecure-requests');
   expect(inTheHouse['cache-control']).toBe('no-store');
   expect(inTheHouse['x-powered-by']).toBeUndefined();
 
+  // A proxy ends TLS, and the same host may have a plain door beside it: RFC 6797 would shut that one for the whole host.
   const outside = await headersAt('tags.millrace.example');
-  expect(outside['strict-transport-security']).toContain('max-age=');
+  expect(outside['strict-transport-security']).toBeUndefined();
   expect(outside['content-security-policy']).toContain('upgrade-insecure-requests');
+
+  // Where the server has no plain door, it may be said; a year in seconds, and nothing of other hosts.
+  const tls = { certFile: '/nowhere/chain.pem', keyFile: '/nowhere/key.pem' };
+  const alone = createApp({ ...server.deps, config: { ...server.deps.config, tls } });
+  expect((await headersAt('tags.millrace.example', alone))['strict-transport-security']).toBe('max-age=31536000');
 });

@@ -34,7 +34,7 @@ export function registerSessionRoutes(
       const { token, user, expiresAt } = await signIn(trx, { request: body, from: usedFrom(request), now, ifRefused });
       request.log.info({ person: user.id, keep: body.keep ?? 'bearer' }, 'signed in');
       if (body.keep !== 'cookie') return { token, user };
-      setSessionCookie(request, response, publicUrl, token, expiresAt);
+      setSessionCookie(request, response, token, expiresAt);
       return { user };
     },
     { limits: limits.signIn },
@@ -45,7 +45,7 @@ export function registerSessionRoutes(
     if (credential) await revokeSessionOfToken(trx, credential.token, now);
     const subject = { kind: 'person' as const, id: person.id, name: person.name };
     await audit(trx, { who: refOf(person), what: 'session.ended', subject, after: { from: usedFrom(request) }, at: now });
-    clearSessionCookie(request, response, publicUrl);
+    clearSessionCookie(request, response);
     return {};
   });
 

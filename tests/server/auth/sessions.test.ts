@@ -157,6 +157,27 @@ describe('The cookie', () => {
     expect(cookieFrom(response)).toMatch(/; Secure/);
   });
 
+  test('When the shop is reached both ways under one host name, then neither sign-in stands in the other’s way', async () => {
+    const at = (Host: string, Cookie: string) => request(server.app).get('/api/me').set({ Host, Cookie });
+    const street = { Host: 'tags.millrace.example', Origin: 'https://tags.millrace.example' };
+    const signedIn = await request(server.app)
+      .post('/api/sessions')
+      .set(street)
+      .send({ email: server.people.lead.email, password, keep: 'cookie' });
+    // RFC 6265bis, section 4.1.3.2: with this prefix a browser takes it over https alone.
+    const overHttps = /^(__Host-refettle_session=[\w-]+); /.exec(cookieFrom(signedIn))?.[1] ?? '';
+    expect(cookie).toMatch(/^refettle_session=/);
+
+    // The browser sends both wherever the connection is safe; each counts where it was set.
+    await at(street.Host, `${cookie}; ${overHttps}`).expect(200);
+    const out = await request(server.app)
+      .delete('/api/sessions/current')
+      .set({ ...street, Cookie: `${cookie}; ${overHttps}` });
+    expect(cookieFrom(out)).toMatch(/^__Host-refettle_session=;.*; Secure/);
+    await at(street.Host, `${cookie}; ${overHttps}`).expect(401);
+    await at(host, cookie).expect(200);
+  });
+
   test('When a page of ours reads or writes, then the cookie lets it in', async () => {
     expect((await request(server.app).get('/api/me').set('Cookie', cookie)).status).toBe(200);
     expect((await withdraw({ Origin: own })).status).toBe(404);
