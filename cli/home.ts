@@ -65,6 +65,17 @@ export function syncFolder(folder: string): void {
   }
 }
 
+/** Moves a file to another folder. Where it is gone, another terminal of this bench was quicker. */
+export function moveIfThere(from: string, to: string): void {
+  try {
+    renameSync(from, to);
+  } catch (error) {
+    if ((error as NodeJS.ErrnoException).code !== 'ENOENT') throw error;
+  }
+  syncFolder(dirname(to));
+  syncFolder(dirname(from));
+}
+
 /** The text of a file, or undefined where there is none. */
 export function readIfThere(file: string): string | undefined {
   try {

@@ -27,7 +27,7 @@ export async function runScriptCommand(options: RunOptions, context: Context): P
   const file = scriptFileOf(context.home, options.script);
   const scriptText = textOf(file, 'bench script');
   const script = readScript(scriptText, file);
-  closeEnded(context);
+  await closeEnded(context);
   const open = openRuns(context).runs.find(({ written }) => written.header.unit === options.number);
   if (open) {
     const instead = await inItsPlace(options, context, open);

@@ -24,7 +24,7 @@ interface ListedRun {
 
 /** The runs of this bench: going, parked, broken off, and closed ones that wait to be sent. */
 export async function runRuns({ json }: { json?: boolean }, context: Context): Promise<number> {
-  closeEnded(context);
+  await closeEnded(context);
   const { runs, unreadable } = openRuns(context);
   const listed = [...runs.map(describe), ...closedAndWaiting(context)];
   for (const file of unreadable)

@@ -20,7 +20,7 @@ export interface SyncOptions {
 export async function runSync({ status, watch, drop, json }: SyncOptions, context: Context): Promise<number> {
   if (watch === true && (status === true || drop !== undefined))
     throw new UsageError('--watch sends until nothing waits: leave --status and --drop out');
-  closeEnded(context);
+  await closeEnded(context);
   if (drop !== undefined) return giveUp(drop, context);
   const { entries, unreadable } = waitingEntries(context.home);
   for (const file of unreadable)

@@ -76,7 +76,7 @@ export const SENDER_LOCK = 'sender';
 
 /** Writes an entry down behind the runs that had ended before it, then sends it and whatever waited before it, of other units what is due. */
 export async function keepAndSend(context: Context, entry: OutboxEntry): Promise<Delivery> {
-  closeEnded(context);
+  await closeEnded(context);
   keepEntry(context.home, entry);
   const deliveries = await sendWaiting(context, { due: true, besides: entry });
   return deliveries.find((delivery) => delivery.entry.id === entry.id) ?? { state: 'waits', entry, why: BY_ANOTHER };

@@ -23,7 +23,10 @@ const ownerSchema = processSchema.extend({
   what: z.string(),
   run: z.string().optional(),
 });
-export type LockOwner = z.infer<typeof ownerSchema>;
+export interface LockOwner extends z.infer<typeof ownerSchema> {
+  /** Where that stands. */
+  file?: string;
+}
 
 export interface Lock {
   release(): void;
@@ -71,7 +74,7 @@ function holders(
     const file = `${folder}/${entry}`;
     if (file === besides || !entry.endsWith('.json')) return [];
     const owner = ownerSchema.safeParse(parseJson(readIfThere(file) ?? '')).data;
-    if (owner && isAlive(owner)) return [owner];
+    if (owner && isAlive(owner)) return [{ ...owner, file }];
     if (clear) {
       rmSync(file, { force: true });
       if (owner)
@@ -83,17 +86,19 @@ function holders(
   });
 }
 
-/** Who holds it and since when, for whoever is turned away. */
-export function heldWords({ what, since, pid, host }: LockOwner): string {
-  const where = host === hostname() ? `process ${pid}` : `process ${pid} on ${host}`;
-  return `${what}, since ${dayText(since)} ${timeText(since)} (${where})`;
+/** Who holds it and since when, for whoever is turned away. Whether something on another machine still goes on, only a person can say. */
+export function heldWords(owner: LockOwner): string {
+  const { what, since, pid, host, file } = owner;
+  const goes = `${what}, since ${dayText(since)} ${timeText(since)}`;
+  if (isOfThisMachine(owner)) return `${goes} (process ${pid})`;
+  return `${goes} (process ${pid} on ${host}${file === undefined ? '' : `; where nothing goes on there any more, delete ${file}`})`;
 }
 
 export const thisProcess = (): z.infer<typeof processSchema> => ({ pid: process.pid, ...processMarks(process.pid), host: hostname() });
 
 /** Whether the very process that took a lock still runs. On another machine nobody can tell: it is taken to. */
 export function isAlive(owner: z.infer<typeof processSchema>): boolean {
-  if (owner.host !== hostname()) return true;
+  if (!isOfThisMachine(owner)) return true;
   try {
     process.kill(owner.pid, 0);
   } catch (error) {
@@ -103,6 +108,10 @@ export function isAlive(owner: z.infer<typeof processSchema>): boolean {
   const same = (then: string | undefined, is: string | undefined): boolean => then === undefined || is === undefined || then === is;
   return same(owner.boot, now.boot) && same(owner.processStart, now.processStart);
 }
+
+/** A machine is called otherwise now and then; one boot is one machine all the same. */
+const isOfThisMachine = ({ host, boot }: Pick<LockOwner, 'host' | 'boot'>): boolean =>
+  host === hostname() || (boot !== undefined && boot === processMarks(process.pid).boot);
 
 /** What tells a process from another one that got its number later (proc(5): field 22 of stat is its start in clock ticks since the boot). */
 function processMarks(pid: number): Pick<LockOwner, 'processStart' | 'boot'> {

@@ -1,13 +1,13 @@
-import { renameSync } from 'node:fs';
 import { parse as parseYaml } from 'yaml';
 import { BadInputError } from '../../shared/errors.js';
 import { scriptSchema, type Script } from '../../shared/script/schema.js';
 import type { Context } from '../context.js';
-import { filesIn, makeFolder, readIfThere } from '../home.js';
+import { filesIn, makeFolder, moveIfThere, readIfThere, type Home } from '../home.js';
 import { unitLabel } from '../render/words.js';
-import { lockOwner, type LockOwner } from './lock.js';
-import { keepEntry, type OutboxEntry } from './outbox.js';
-import { logOf, readRunJournal, type WrittenRun } from './run-journal.js';
+import { lockOwner, takeLock, type LockOwner } from './lock.js';
+import { withoutLostCaptures } from './lost-captures.js';
+import { awayEntry, keepEntry, type OutboxEntry } from './outbox.js';
+import { journalFileOf, logOf, readRunJournal, writtenRun, type WrittenRun } from './run-journal.js';
 
 /** The lock of a run: whoever holds it writes its journal. */
 export const runLock = (runId: string): string => `run-${runId}`;
@@ -67,12 +67,26 @@ export const runWords = ({ header }: Pick<WrittenRun, 'header'>): string => `ben
 
 /**
  * Makes a run that was written down into an entry of the outbox, and puts its journal away. Doing it twice does no harm:
- * the same journal gives the same message with the same key.
+ * the same journal gives the same message with the same key, and one that is sent or given up already is left where it is.
+ * A capture whose file is gone is left out of it, which is said here and in the log.
  */
-export function closeRun({ home }: Pick<Context, 'home'>, written: WrittenRun): OutboxEntry {
+export function closeRun({ home, stderr }: Pick<Context, 'home' | 'stderr'>, whole: WrittenRun): OutboxEntry {
+  const { written, lost } = withoutLostCaptures(home, whole);
+  const { header } = written;
+  const away = awayEntry(home, header.id, 'sent') ?? awayEntry(home, header.id, 'dropped');
+  for (const { title, file } of away ? [] : lost)
+    stderr.say(`The capture of step '${title}' is gone (${file}): the ${runWords(written)} goes without it, and its log says so.`);
+  const entry = away ?? messageOf(home, written);
+  if (!away) keepEntry(home, entry);
+  makeFolder(home.path('journal', 'closed'));
+  moveIfThere(journalFileOf(home, header.id), home.path('journal', 'closed', `${header.id}.ndjson`));
+  return entry;
+}
+
+function messageOf(home: Home, written: WrittenRun): OutboxEntry {
   const { header } = written;
   const log = logOf(home, written);
-  const entry: OutboxEntry = {
+  return {
     route: 'recordRun',
     id: header.id,
     madeAt: log.endedAt,
@@ -82,25 +96,27 @@ export function closeRun({ home }: Pick<Context, 'home'>, written: WrittenRun): 
     params: { number: header.unit },
     body: log,
   };
-  keepEntry(home, entry);
-  makeFolder(home.path('journal', 'closed'));
-  renameSync(home.path('journal', `${header.id}.ndjson`), home.path('journal', 'closed', `${header.id}.ndjson`));
-  return entry;
 }
 
 /** Closes the runs that had ended when the program was killed: nothing of them is left to do but to send them. */
-export function closeEnded(context: Pick<Context, 'home' | 'stderr'>): OutboxEntry[] {
-  return openRuns(context)
-    .runs.filter(({ state }) => state === 'ended')
-    .flatMap(({ written }) => {
-      try {
-        return [closeRun(context, written)];
-      } catch (error) {
-        if (!(error instanceof BadInputError)) throw error;
-        context.stderr.say(
-          `The ${runWords(written)} has ended and can't be closed: ${error.message}${error.file === undefined ? '' : ` (${error.file})`}`,
-        );
-        return [];
-      }
-    });
+export async function closeEnded(context: Context): Promise<OutboxEntry[]> {
+  const closed: OutboxEntry[] = [];
+  for (const { written } of openRuns(context).runs.filter(({ state }) => state === 'ended')) {
+    const { id } = written.header;
+    const lock = await takeLock(context, runLock(id), { what: `${runWords(written)}, being closed`, run: id });
+    // Another terminal is closing it.
+    if ('owner' in lock) continue;
+    try {
+      // Nor is it there any more where another one has just done so.
+      if (readIfThere(journalFileOf(context.home, id)) !== undefined) closed.push(closeRun(context, writtenRun(context.home, id)));
+    } catch (error) {
+      if (!(error instanceof BadInputError)) throw error;
+      context.stderr.say(
+        `The ${runWords(written)} has ended and can't be closed: ${error.message}${error.file === undefined ? '' : ` (${error.file})`}`,
+      );
+    } finally {
+      lock.release();
+    }
+  }
+  return closed;
 }

@@ -1,11 +1,10 @@
-import { renameSync } from 'node:fs';
 import { z } from 'zod';
 import { newCaptureSchema } from '../../shared/api/captures.js';
 import { newInspectionSchema, newReadingSchema, newRepairSchema } from '../../shared/api/readings.js';
 import { newRunSchema } from '../../shared/api/runs.js';
 import { newUnitSchema } from '../../shared/api/units.js';
 import { personRefSchema } from '../../shared/history/events.js';
-import { filesIn, makeFolder, readIfThere, syncFolder, writeWhole, type Home } from '../home.js';
+import { filesIn, makeFolder, moveIfThere, readIfThere, writeWhole, type Home } from '../home.js';
 import { parseJson } from '../session.js';
 
 const unit = z.strictObject({ number: z.number().int() });
@@ -71,13 +70,6 @@ export function awayEntry(home: Home, id: string, where: 'sent' | 'dropped'): Ou
 
 /** The server has it (`sent`), or a person gave it up (`dropped`): it waits no longer, and stays on the disk. */
 export function putAway(home: Home, id: string, where: 'sent' | 'dropped'): void {
-  const folder = makeFolder(home.path('journal', where));
-  try {
-    renameSync(fileOf(home, id), home.path('journal', where, `${id}.json`));
-  } catch (error) {
-    // Another terminal of this bench was quicker; the server stored it once all the same.
-    if ((error as NodeJS.ErrnoException).code !== 'ENOENT') throw error;
-  }
-  syncFolder(folder);
-  syncFolder(folderOf(home));
+  // Where another terminal was quicker, the server stored it once all the same.
+  moveIfThere(fileOf(home, id), `${makeFolder(home.path('journal', where))}/${id}.json`);
 }

@@ -4,11 +4,12 @@ import type { AddressInfo } from 'node:net';
 import { afterEach, beforeEach, describe, expect, test } from 'vitest';
 import { runAbandon } from '../../../cli/commands/abandon.js';
 import { runResume } from '../../../cli/commands/resume.js';
-import { closeRun } from '../../../cli/journal/open-runs.js';
+import { closeEnded, closeRun } from '../../../cli/journal/open-runs.js';
 import { putAway, waitingEntries } from '../../../cli/journal/outbox.js';
 import { journalFileOf, RunJournal, writtenRun } from '../../../cli/journal/run-journal.js';
 import type { StepResult } from '../../../shared/script/run-log.js';
 import { benchTerminal, signedIn, type BenchTerminal } from '../../helpers/bench-terminal.js';
+import { offlineBench } from '../../helpers/offline-bench.js';
 import { wil } from '../../helpers/unit-facts.js';
 
 const RUN = '019af7a0-0000-7000-8000-000000000001';
@@ -51,6 +52,13 @@ function begin(address: string): void {
 
 /** The journal of a run on No. 0412 that has come to its end. */
 function ended(verdict: 'pass' | 'fail' = 'pass'): void {
+  const journal = begun(verdict);
+  journal.end(at(5), false);
+  journal.close();
+}
+
+/** One that has done its first step. */
+function begun(verdict: 'pass' | 'fail' = 'pass'): RunJournal {
   const { home, server: address } = bench.context;
   const journal = RunJournal.create(home, {
     id: RUN,
@@ -63,8 +71,7 @@ function ended(verdict: 'pass' | 'fail' = 'pass'): void {
     pid: process.pid,
   });
   journal.record(looked(verdict));
-  journal.end(at(5), false);
-  journal.close();
+  return journal;
 }
 
 /** How far the program came before it was killed. */
@@ -98,7 +105,46 @@ const KILLED: { where: string; state: () => void; asked: number }[] = [
     },
     asked: 0,
   },
+  {
+    where: 'between the message and the journal’s move, and another terminal sent it since',
+    state: () => {
+      ended();
+      const { home } = bench.context;
+      closeRun(bench.context, writtenRun(home, RUN));
+      putAway(home, RUN, 'sent');
+      renameSync(home.path('journal', 'closed', `${RUN}.ndjson`), journalFileOf(home, RUN));
+    },
+    asked: 0,
+  },
 ];
+
+describe('A run that lost a capture’s file', () => {
+  const CAPTURE = '019af7a0-0000-7000-8000-0000000000c1';
+  const step = (stepId: string) => ({ stepId, title: stepId, startedAt: at(4), endedAt: at(5) });
+
+  test('When it is abandoned, then it is closed without that capture, says so, and what the bench had seen', async () => {
+    bench.remove();
+    bench = offlineBench();
+    const journal = begun();
+    journal.record({ ...step('lamps'), kind: 'cut', captureId: CAPTURE, file: '' });
+    journal.record({ ...step('lamps'), kind: 'capture', captureId: CAPTURE, file: '', fromFile: false });
+    journal.record({ ...step('code'), kind: 'expect', captureId: CAPTURE, expected: 'no code', seen: 'G5K3', verdict: 'fail' });
+    journal.close();
+    expect(await runAbandon({ run: RUN, reason: 'the disk was mended' }, bench.context)).toBe(5);
+    expect(bench.stderr()).toContain(`The capture of step 'lamps' is gone (${bench.context.home.path('captures', CAPTURE)}`);
+    expect(waitingEntries(bench.context.home).entries[0]?.body).toMatchObject({
+      interrupted: true,
+      steps: [
+        { kind: 'inspect' },
+        { kind: 'skipped', stepId: 'lamps', stepKind: 'capture', judged: true },
+        { kind: 'skipped', stepId: 'code', reason: expect.stringContaining('it had shown: G5K3') as string },
+      ],
+      // Who left it came after three steps of this log.
+      people: [{ how: 'began' }, { how: 'abandoned', steps: 3 }],
+    });
+    expect(existsSync(journalFileOf(bench.context.home, RUN))).toBe(false);
+  });
+});
 
 describe('A run that had ended when the program was killed', () => {
   for (const { where, state, asked } of KILLED) {
@@ -145,6 +191,12 @@ describe('A run that had ended when the program was killed', () => {
     expect(bench.stderr()).toContain(address);
     expect(bench.stdout()).toBe('bench run h6-find on No. 0412: pass. It is not sent.\n');
     expect(waitingEntries(bench.context.home).entries.map(({ id }) => id)).toEqual([RUN]);
+  });
+
+  test('When two terminals find it at the same moment, then one of them closes it', async () => {
+    ended();
+    const closed = await Promise.all([closeEnded(bench.context), closeEnded(bench.context)]);
+    expect(closed.flat().map(({ id }) => id)).toEqual([RUN]);
   });
 
   test('When somebody wants to abandon it, then it is refused, kept and sent as it is', async () => {

@@ -212,23 +212,23 @@ describe('A journal that is damaged', () => {
 });
 
 describe('Runs that were broken off', () => {
-  test('When the program that ran it is gone, then the run stays open and says how far it came', () => {
+  test('When the program that ran it is gone, then the run stays open and says how far it came', async () => {
     const journal = RunJournal.create(home, header(GONE));
     journal.record(caution);
     journal.close();
     const bench = benchTerminal({ home: home.folder });
     expect(openRuns(bench.context).runs).toMatchObject([{ state: 'broken off', done: 1, owner: undefined }]);
-    expect(closeEnded(bench.context)).toEqual([]);
+    expect(await closeEnded(bench.context)).toEqual([]);
     expect(existsSync(journalFileOf(home, RUN))).toBe(true);
   });
 
-  test('When it was killed after its end and before it was a message, then it is made into one, once, with the run as its key', () => {
+  test('When it was killed after its end and before it was a message, then it is made into one, once, with the run as its key', async () => {
     const journal = RunJournal.create(home, header(GONE));
     journal.record(caution);
     journal.end(at(3), false);
     journal.close();
     const bench = benchTerminal({ home: home.folder });
-    expect(closeEnded(bench.context).map(({ id }) => id)).toEqual([RUN]);
+    expect((await closeEnded(bench.context)).map(({ id }) => id)).toEqual([RUN]);
     expect(waitingEntries(home).entries).toMatchObject([
       {
         id: RUN,
@@ -238,7 +238,7 @@ describe('Runs that were broken off', () => {
       },
     ]);
     expect(existsSync(journalFileOf(home, RUN))).toBe(false);
-    expect(closeEnded(bench.context)).toEqual([]);
+    expect(await closeEnded(bench.context)).toEqual([]);
   });
 
   test('When the program that runs it is alive, then it is going, and left alone', async () => {
@@ -248,9 +248,9 @@ describe('Runs that were broken off', () => {
     const bench = benchTerminal({ home: home.folder });
     const lock = await takeLock(bench.context, runLock(RUN), { what: 'bench run', run: RUN });
     expect(openRuns(bench.context).runs).toMatchObject([{ state: 'going', owner: { pid: process.pid } }]);
-    expect(closeEnded(bench.context)).toEqual([]);
+    expect(await closeEnded(bench.context)).toEqual([]);
     if ('release' in lock) lock.release();
-    expect(closeEnded(bench.context)).toHaveLength(1);
+    expect(await closeEnded(bench.context)).toHaveLength(1);
   });
 
   test('When the program is killed in the middle, then every step that was said to be done is in the file', async () => {
