@@ -98,8 +98,8 @@ export function tagLines({ content, state, withdrawn, url }: TagPage, style: Sty
         `Signed off ${dayText(content.signedOffAt)}, ${timeText(content.signedOffAt)}, by ${content.signedOffBy}, lead${content.fourEyes ? '' : ', who worked on it too'}`,
         room,
       ),
-      `Warranty ${content.warrantyMonths} months from the day of sale`,
-      `${shortUrl(url)}     look-up word ${content.lookUpWord}`,
+      ...wrap(`Warranty ${content.warrantyMonths} months from the day of sale`, room),
+      ...addressLines(shortUrl(url), `look-up word ${content.lookUpWord}`, room),
     ],
     style,
   );
@@ -110,21 +110,44 @@ const TITLE_COLUMNS = 20;
 
 function testedRows(tested: TagPage['content']['tested'], style: Style, room: number): string[] {
   const inRow = (title: string): boolean => widthOf(title) <= TITLE_COLUMNS;
+  const figures = tested.map(({ reading, spread: u = '', limit, verdict }) => [reading, u, limit, verdictText(verdict, style)]);
   const rows = table(
-    tested.map(({ title, reading, spread: u, limit, verdict }) => [
-      inRow(title) ? title : '',
-      reading,
-      u ?? '',
-      limit,
-      verdictText(verdict, style),
-    ]),
+    tested.map(({ title }, index) => [inRow(title) ? title : '', ...(figures[index] ?? [])]),
     style,
     { gap: style.unicode ? 2 : 1 },
   );
+  const narrow = rows.some((row) => widthOf(row) > room);
   return rows.flatMap((row, index) => {
     const { title } = tested[index] ?? { title: '' };
+    // Nothing of a row is ever cut: where it has no room, its figures go below its title.
+    if (narrow)
+      return [
+        ...wrap(title, room),
+        ...inPieces(
+          (figures[index] ?? []).map((piece) => shown(piece, style)),
+          room,
+        ),
+      ];
     return [...(inRow(title) ? [] : wrap(title, room)), row];
   });
+}
+
+/** Pieces on as many lines as they need, each whole as long as it has room on a line of its own. */
+function inPieces(pieces: readonly string[], room: number): string[] {
+  const lines: string[] = [];
+  for (const piece of pieces.filter(Boolean)) {
+    const longer = [...lines.slice(-1), piece].join('  ');
+    if (lines.length > 0 && widthOf(longer) <= room - 2) lines[lines.length - 1] = longer;
+    else lines.push(...wrap(piece, room - 2));
+  }
+  return lines.map((line) => `  ${line}`);
+}
+
+/** An address, which has no blank to be broken at, and the look-up word behind it or below. */
+function addressLines(address: string, word: string, room: number): string[] {
+  const lines = address.match(new RegExp(`.{1,${room}}`, 'gu')) ?? [];
+  const last = `${lines.at(-1) ?? ''}     ${word}`;
+  return widthOf(last) <= room ? [...lines.slice(0, -1), last] : [...lines, ...wrap(word, room)];
 }
 
 /** The address without its signature, as somebody would type it. */

@@ -61,7 +61,8 @@ function frameOf(form: TagForm): Frame {
  * Readiness tags on paper: one a page (A6 card, 4 x 6 in label), or four a sheet (A4, letter) to be cut in quarters.
  *
  * What was tested and does not fit on a tag's front goes on overleaf: on a page, or a quarter of the sheet, of its own.
- * Assumes tags that stand. A text without room is set smaller, down to 7 points, then cut with an ellipsis.
+ * Assumes tags that stand. A text without room is set smaller, down to 7 points, then cut with an ellipsis; readings and limits get more
+ * lines instead.
  *
  * @example tagPaper([{ tag, qr }], 'a6', dayText).pages.length // 1
  */
@@ -265,7 +266,12 @@ function overleaf(content: TagContent, rows: TagContent['tested'], frame: Frame)
   outline(pen, form);
   const baseline = form.edge + 22.7;
   pen.fit(`Tag ${content.tag}, overleaf`, { x: left, baseline, face: 'bold', points: 14, width: right - left });
-  const table = drawTested(pen, rows, columns, { top: form.edge + 26.5, most: form.height - form.edge - 6, mostRows: Infinity });
+  const table = drawTested(pen, rows, columns, {
+    top: form.edge + 26.5,
+    most: form.height - form.edge - 6,
+    mostRows: Infinity,
+    leastRows: 1,
+  });
   if (content.sample) sampleAcross(pen, form, form.edge + 26.5, Math.max(table.bottom, 70));
   return { marks: pen.marks, left: table.left };
 }

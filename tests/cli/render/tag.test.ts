@@ -58,6 +58,21 @@ describe('The tag at the terminal', () => {
     }
   });
 
+  test.each([
+    { columns: 60, unicode: true, ohm: 'Ω' },
+    { columns: 60, unicode: false, ohm: 'ohm' },
+    { columns: 40, unicode: true, ohm: 'Ω' },
+    { columns: 34, unicode: true, ohm: 'Ω' },
+  ])('When a tag stands on a terminal of $columns columns, then no number, unit or verdict is cut', ({ columns, unicode, ohm }) => {
+    const lines = tagLines(tagPage(), { ...plain, columns, unicode });
+    for (const whole of [`0.084 ${ohm}`, `2.31 M${ohm}`, 'at most 3.50 mA', 'ready blink', 'look-up word 7QKF'])
+      expect(lines.filter((line) => line.includes(whole))).toHaveLength(1);
+    expect(lines.filter((line) => line.includes(' pass'))).toHaveLength(4);
+    // The address is broken where the line ends.
+    const inside = lines.map((line) => line.slice(8).replace(/[│|]$/, '').trim());
+    expect(inside.join('')).toContain('tags.millrace.example/t/0412-2');
+  });
+
   test('When an address is shown, then without its signature', () => {
     expect(shortUrl('https://tags.millrace.example/t/0412-2/abc')).toBe('tags.millrace.example/t/0412-2');
     expect(shortUrl('http://127.0.0.1:4780/t/0412-2/abc')).toBe('127.0.0.1:4780/t/0412-2');

@@ -121,6 +121,7 @@ describe('Layout', () => {
             ...row!,
             title: `${index} ${said.title}`,
             reading: said.by.slice(0, 20),
+            limit: said.model.slice(0, 30),
           }));
           const tag = tagPage();
           const paper = tagPaper(
@@ -151,6 +152,28 @@ describe('Layout', () => {
       ),
       RUNS,
     );
+  });
+
+  test.each(TAG_FORMATS)('When figures are wider than their columns on %s, then every number is whole and has its unit', (format) => {
+    const [row] = tagPage().content.tested;
+    const wide = { ...row!, title: 'Insulation of the water heater against its sheath, at 500 V for 60 s after 48 h of soaking at 20 °C' };
+    const tested = [
+      // Wider than the column by its spread alone; by the limit; by everything; and lamps, where no reading stands beside the limit.
+      { ...wide, reading: '-1234.567 MΩ', spread: '±1234.567', limit: 'at least 1234567.89 MΩ' },
+      { ...wide, reading: '12345678901234567890 Ω', spread: '±0.00000000000001', limit: '123456789012345 to 12345678901234567890 Ω' },
+      { ...wide, title: 'Lamps', reading: '20 s', spread: undefined, limit: 'at least 20 s', lamps: [true, false] },
+      { ...wide, title: 'Filter', reading: 'nothing wrong', spread: undefined, limit: 'nothing wrong' },
+    ];
+    const tag = tagPage({ tested });
+    const paper = tagPaper([{ tag, qr: qrModules(tag.url) }], format, dayText);
+    expect(faultsOn(paper, 4)).toEqual([]);
+    const said = wordsOf(paper);
+    for (const whole of [
+      ...['-1234.567 MΩ', '±1234.567 MΩ', 'at least', '1234567.89', '12345678901234567890 ±0.00000000000001 Ω'],
+      ...['123456789012345 to 12345678901234567890 Ω', 'at least 20 s', 'nothing wrong', '500 V', '60 s', '48 h', '20 °C'],
+    ])
+      expect(said).toContain(whole);
+    expect(said).not.toContain('…');
   });
 
   test('When a label says anything at all, then nothing stands over anything else, and nothing is off the label or below 7 points', () => {
