@@ -102,12 +102,11 @@ async function goThrough(parts: RunParts): Promise<RunEnd> {
 
   let skipRest = whySkipped(script, results);
   let shut: GateState | undefined;
-  for (const [index, step] of script.steps.entries()) {
-    if (context.interruption.interrupted) return { results, ...STOPPED };
-    if (done.has(step.id)) continue;
+  /** One step with its gate and its caution. After an instrument's failure it is tried again as if for the first time: nobody knows what became of the machine meanwhile. */
+  const doStep = async (step: Step, index: number): Promise<'done' | 'again' | Omit<RunEnd, 'results'>> => {
     if (skipRest !== undefined) {
       record(skipped(step, bench, skipRest));
-      continue;
+      return 'done';
     }
     // Nobody is told to switch on for a step that a gate keeps from happening: a caution shares the fate of what it is for.
     const asked = energisedStepsOf(step, script.steps.slice(index), unit);
@@ -119,23 +118,35 @@ async function goThrough(parts: RunParts): Promise<RunEnd> {
         );
       if (asked.some((one) => !isDeadTest(one, unit.sheet))) shut = closed;
       record(skipped(step, bench, `a safety gate is shut: ${closed.reasons.join('; ')}`));
-      continue;
+      return 'done';
     }
 
     const caution = energisingOf(step, unit.sheet) === 'dead' ? undefined : cautionBefore(script, index);
-    const askedAgain = caution && done.has(caution.id) && !confirmed.has(caution.id) ? [caution] : [];
+    const wasAsked = caution && results.some(({ stepId }) => stepId === caution.id);
+    const askedAgain = wasAsked && !confirmed.has(caution.id) ? [caution] : [];
     for (const one of [...askedAgain, step]) {
       const outcome = await tryStep(one, script.steps.indexOf(one), bench, parts);
-      if (outcome === 'stopped') return { results, ...STOPPED };
-      if (outcome === 'left') return { results, ...PARKED };
-      if (outcome === 'instrument') return { results, ...INSTRUMENT_FAILED };
+      if (outcome === 'again' && caution) confirmed.delete(caution.id);
+      if (outcome === 'again') return 'again';
+      if (outcome === 'stopped') return STOPPED;
+      if (outcome === 'left') return PARKED;
+      if (outcome === 'instrument') return INSTRUMENT_FAILED;
       record(outcome.result);
-      if (outcome.rest === 'stop') return { results, ...(context.interruption.interrupted ? STOPPED : PARKED) };
+      if (outcome.rest === 'stop') return context.interruption.interrupted ? STOPPED : PARKED;
       if (outcome.rest !== 'skip') continue;
       skipRest = outcome.why ?? 'the run ended before it';
       if (one !== step) record(skipped(step, bench, skipRest));
       break;
     }
+    return 'done';
+  };
+
+  for (const [index, step] of script.steps.entries()) {
+    if (context.interruption.interrupted) return { results, ...STOPPED };
+    if (done.has(step.id)) continue;
+    let outcome = await doStep(step, index);
+    while (outcome === 'again') outcome = await doStep(step, index);
+    if (outcome !== 'done') return { results, ...outcome };
   }
   return { results, interrupted: false, exitCode: EXIT.good };
 }
@@ -178,30 +189,29 @@ function eventsSoFar({ context, unit, script, journal }: RunParts, results: read
   return settleRun(log, script, unit.sheet, by, () => context.newId()).events.filter((event) => event.kind !== 'run ended');
 }
 
-/** Runs one step; after an instrument's failure a person may try it again. */
+/** Runs one step. `again`: an instrument failed, and a person tries it again. */
 async function tryStep(
   step: Step,
   index: number,
   bench: Bench,
   { context, technician, journal }: RunParts,
-): Promise<Awaited<ReturnType<typeof runStep>> | 'stopped' | 'left' | 'instrument'> {
-  for (;;) {
-    const start = { startedAt: context.now().toISOString(), captureId: context.newId() };
-    liveOf(context).stepBegins(step.id);
-    const records = step.kind === 'capture' || step.kind === 'watch';
-    journal.begin({
-      stepId: step.id,
-      kind: step.kind,
-      title: step.title,
-      at: start.startedAt,
-      ...(records ? { captureId: start.captureId } : {}),
-    });
-    if ((technician.attended && step.kind !== 'expect') || records)
-      bench.say(bench.style.ink.bold(`${String(index + 1).padStart(2)} ${step.kind.padEnd(8)} ${step.title}`));
+): Promise<Awaited<ReturnType<typeof runStep>> | 'again' | 'stopped' | 'left' | 'instrument'> {
+  const start = { startedAt: context.now().toISOString(), captureId: context.newId() };
+  liveOf(context).stepBegins(step.id);
+  const records = step.kind === 'capture' || step.kind === 'watch';
+  journal.begin({
+    stepId: step.id,
+    kind: step.kind,
+    title: step.title,
+    at: start.startedAt,
+    ...(records ? { captureId: start.captureId } : {}),
+  });
+  if ((technician.attended && step.kind !== 'expect') || records)
+    bench.say(bench.style.ink.bold(`${String(index + 1).padStart(2)} ${step.kind.padEnd(8)} ${step.title}`));
+  try {
     try {
       return await runStep(step, bench, start);
     } catch (error) {
-      if (error instanceof StoppedError) return context.interruption.interrupted ? 'stopped' : 'left';
       if (!(error instanceof InstrumentError)) throw error;
       bench.say(
         ...wordsOf(error)
@@ -209,12 +219,10 @@ async function tryStep(
           .map((line) => `           ${line}`),
         '           Nothing was recorded for this step.',
       );
-      try {
-        if (!(technician.attended && (await technician.triesAgain(step.id, 'Try this step again?')))) return 'instrument';
-      } catch (answer) {
-        if (answer instanceof StoppedError) return context.interruption.interrupted ? 'stopped' : 'left';
-        throw answer;
-      }
+      return technician.attended && (await technician.triesAgain(step.id, 'Try this step again?')) ? 'again' : 'instrument';
     }
+  } catch (error) {
+    if (error instanceof StoppedError) return context.interruption.interrupted ? 'stopped' : 'left';
+    throw error;
   }
 }

@@ -3,6 +3,7 @@ import type { ReadingBody } from '../../shared/history/events.js';
 import { settleReading } from '../../shared/history/settle-reading.js';
 import { parseAccuracy } from '../../shared/measure/parse-accuracy.js';
 import { parseQuantity } from '../../shared/measure/parse-quantity.js';
+import { energisingOfCheck } from '../../shared/script/energised.js';
 import type { MeasuredCheck, Sheet } from '../../shared/sheet/schema.js';
 import type { OpenRig } from '../instruments/rig.js';
 import type { Technician, TypedReading } from './technician.js';
@@ -17,7 +18,7 @@ export async function takeReading(
 ): Promise<ReadingBody> {
   if (!rig.meterInfo(check.quantity)) return typedReading(check, sheet, await technician.reads(stepId, check));
   rig.hands?.probesOn(check.id);
-  const meter = await rig.openMeterFor(check.quantity, check.unit);
+  const meter = await rig.openMeterFor(check.quantity, check.unit, { energises: energisingOfCheck(check) !== 'dead' });
   const value = await meter.measure();
   return judged(check, sheet, {
     value,

@@ -63,7 +63,8 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
   const rig = byHand ? undefined : await context.openRig(options.rig);
   try {
     const step: Step = { id: check.id, kind: 'measure', title: check.title, check: check.id };
-    const technician = await mayBegin({ context, unit, rig, step, caution: check.cautions.join(' ') || check.title, alreadyDone: byHand });
+    const mayIt = () => mayBegin({ context, unit, rig, step, caution: check.cautions.join(' ') || check.title, alreadyDone: byHand });
+    const technician = await mayIt();
     if (!technician) return EXIT.notGood;
     const { value = '', accuracy = '', resolution = '', meter } = options;
     const live = liveOf(context);
@@ -72,7 +73,7 @@ async function measure(options: MeasureOptions, context: Context, unit: UnitOnBe
       live.stepBegins(step.id);
     }
     const reading = rig
-      ? await readingOff(rig, technician, check, unit, context)
+      ? await readingOff(rig, technician, check, unit, context, mayIt)
       : typedReading(check, unit.sheet, { value, accuracy, resolution, meter });
     if (reading === undefined) return EXIT.notGood;
     await rig?.close();
@@ -110,13 +111,14 @@ async function leftBy(check: MeasuredCheck, technician: Technician, { stderr }: 
   return 'charged';
 }
 
-/** A reading off the rig's meter; after a failure a person may try again. Undefined: the probes were not put on. */
+/** A reading off the rig's meter; after a failure a person may try again. Undefined: the probes were not put on, or the caution was answered with no. */
 async function readingOff(
   rig: OpenRig,
   technician: Technician,
   check: MeasuredCheck,
   { sheet }: UnitOnBench,
   { stderr }: Context,
+  mayIt: () => Promise<Technician | undefined>,
 ): Promise<ReadingBody | undefined> {
   const meter = rig.meterInfo(check.quantity);
   for (;;) {
@@ -130,6 +132,8 @@ async function readingOff(
       if (!(error instanceof InstrumentError) || !technician.attended) throw error;
       stderr.say(`${wordsOf(error)}\nNothing was recorded.`);
       if (!(await technician.triesAgain(check.id, 'Measure again?'))) throw error;
+      // Nobody knows what became of the machine meanwhile: its gate and its caution again.
+      if (energisingOfCheck(check) !== 'dead' && !(await mayIt())) return undefined;
     }
   }
 }

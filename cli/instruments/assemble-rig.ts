@@ -3,7 +3,7 @@ import { convertUnit } from '../../shared/measure/convert-unit.js';
 import { parseAccuracy } from '../../shared/measure/parse-accuracy.js';
 import { DisconnectedError, TestBrokenOffError } from './instrument-error.js';
 import { openLightProbe, type LightProbe } from './light-probe.js';
-import { MEASURE_COMMANDS, openMeter, PUTS_VOLTAGE_ON } from './meter.js';
+import { MEASURE_COMMANDS, openMeter } from './meter.js';
 import { OpenInstruments } from './open-instruments.js';
 import { USUAL_TRY_EVERY_MS, waitForReturn, type Patience } from './patience.js';
 import { meterFor, probeOf, rangeAt, type Rig, type RigInstrument } from './rig-file.js';
@@ -114,7 +114,7 @@ export function assembleRig(rig: Rig, parts: RigParts = {}, patience?: Patience)
       };
     },
 
-    async openMeterFor(quantity, unit) {
+    async openMeterFor(quantity, unit, { energises = quantity === 'insulation resistance' } = {}) {
       const found = meterFor(rig, quantity);
       if (found === undefined)
         throw new BadInputError(
@@ -135,17 +135,16 @@ export function assembleRig(rig: Rig, parts: RigParts = {}, patience?: Patience)
           }),
         );
       const { identification } = await openIt();
-      /** A measurement that lost its instrument is asked again when it is back; one that puts voltage on the machine is not. */
+      /** A measurement that lost its instrument is asked again when it is back; one on a machine under voltage is not. */
       const measured = async (): Promise<number> => {
-        const again = !PUTS_VOLTAGE_ON.has(quantity);
         for (let returns = 0; ; returns += 1) {
           try {
-            return (await (await openIt()).measure(quantity)).value;
+            return (await (await openIt()).measure(quantity, { once: energises })).value;
           } catch (error) {
-            const wait = waitWith(again ? 'the measurement is asked for again' : 'the step is to be repeated');
+            const wait = waitWith(energises ? 'the step is to be repeated' : 'the measurement is asked for again');
             if (!(error instanceof DisconnectedError) || wait === undefined || returns === MOST_RETURNS_A_MEASUREMENT) throw error;
             await waitForReturn(error, openIt, wait);
-            if (!again) throw new TestBrokenOffError(error, { cause: error });
+            if (energises) throw new TestBrokenOffError(error, { cause: error });
           }
         }
       };

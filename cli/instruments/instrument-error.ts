@@ -91,13 +91,13 @@ export class DisconnectedError extends InstrumentError {
   }
 }
 
-/** A test that puts voltage on the machine lost its instrument: it is not begun again behind a technician's back. */
+/** A measurement on a machine under voltage lost its instrument: it is not begun again behind a technician's back. */
 export class TestBrokenOffError extends InstrumentError {
   override readonly name = 'TestBrokenOffError';
   constructor(where: Where, options?: ErrorOptions) {
     super(
-      'it was unplugged in the middle of a test that puts voltage on the machine; it is back, and the test is not repeated by itself',
-      { ...where, toDo: 'Discharge the machine through the tester, see that the probes sit, then repeat the step.' },
+      'it was unplugged in the middle of a measurement on a machine under voltage; it is back, and nothing is repeated by itself',
+      { ...where, toDo: 'Isolate the machine, discharge it through the tester, see that the probes sit, then repeat the step.' },
       options,
     );
   }

@@ -18,9 +18,6 @@ export const MEASURE_COMMANDS: Readonly<Record<Quantity, { query: string; unit: 
   temperature: { query: 'MEASure:TEMPerature?', unit: 'degC' },
 };
 
-/** What puts a voltage of its own on the machine, some hundred volts of it. */
-export const PUTS_VOLTAGE_ON: ReadonlySet<Quantity> = new Set<Quantity>(['insulation resistance']);
-
 /** A measurement takes its time: autoranging, and the charging of an insulation under test. */
 export const MEASURE_TIMEOUT_MS = 8000;
 
@@ -33,8 +30,8 @@ export interface MeterOptions {
 export interface ScpiMeter {
   /** As the meter answered `*IDN?`. */
   readonly identification: string;
-  /** One measurement in the meter's base unit. Throws an InstrumentError of its own class for everything that is no reading. */
-  measure(quantity: Quantity): Promise<{ value: number; raw: string }>;
+  /** One measurement in the meter's base unit; with `once` it is not asked for again where two answers differ. Throws an InstrumentError of its own class for everything that is no reading. */
+  measure(quantity: Quantity, options?: { once?: boolean }): Promise<{ value: number; raw: string }>;
   close(): Promise<void>;
 }
 
@@ -45,9 +42,10 @@ export async function openMeter(transport: Transport, options: MeterOptions = {}
   const { text: identification } = await conversation.identify();
   return {
     identification,
-    async measure(quantity) {
+    async measure(quantity, { once = false } = {}) {
       const { query } = MEASURE_COMMANDS[quantity];
-      const raw = await askOrExplain(conversation, transport, query, options.measureTimeoutMs ?? MEASURE_TIMEOUT_MS);
+      const timeoutMs = options.measureTimeoutMs ?? MEASURE_TIMEOUT_MS;
+      const raw = await askOrExplain(conversation, transport, query, { timeoutMs, once });
       const number = parseScpiNumber(raw, { overloadFrom: options.overloadFrom?.(quantity) });
       if (number.kind === 'value') return { value: number.value, raw };
       if (number.kind === 'overload') throw new OverloadError(transport, number.sign);
@@ -60,9 +58,14 @@ export async function openMeter(transport: Transport, options: MeterOptions = {}
 }
 
 /** A meter that does not know a command is silent; its error queue then says why. A late answer is never waited for: it is passed over. */
-async function askOrExplain(conversation: ScpiConversation, transport: Transport, query: string, timeoutMs: number): Promise<string> {
+async function askOrExplain(
+  conversation: ScpiConversation,
+  transport: Transport,
+  query: string,
+  asking: { timeoutMs: number; once: boolean },
+): Promise<string> {
   try {
-    return await conversation.askSurely(query, { timeoutMs });
+    return await conversation.askSurely(query, asking);
   } catch (error) {
     if (!(error instanceof InstrumentTimeoutError)) throw error;
     const [refusal] = await conversation.errors().catch(() => []);

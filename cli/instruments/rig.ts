@@ -41,6 +41,14 @@ export interface Meter {
   close(): Promise<void>;
 }
 
+export interface Measuring {
+  /**
+   * The machine is on mains, or the measurement puts voltage on it: it is asked for once and never again by itself.
+   * Unless told: for an insulation resistance, and for nothing else.
+   */
+  energises?: boolean;
+}
+
 export interface OpenRig {
   readonly name: string;
   readonly simulated: boolean;
@@ -50,7 +58,7 @@ export interface OpenRig {
   /** Opens the probe, one column a lamp. A port that is open already is used again. */
   openProbe(lampIds: readonly string[]): Promise<Probe>;
   /** Opens the meter for a quantity; readings come in `unit` (the rig file's unit unless told). A port that is open already is used again. */
-  openMeterFor(quantity: Quantity, unit?: string): Promise<Meter>;
+  openMeterFor(quantity: Quantity, unit?: string, measuring?: Measuring): Promise<Meter>;
   /** The simulated technician; only on a simulated rig. */
   readonly hands?: Hands;
   /** Puts the probe in its safe state and closes every port. */

@@ -85,9 +85,9 @@ export class ScpiConversation {
 
   /**
    * Sends a query whose answer becomes a record, and makes sure that it is the answer to this one. After two different answers it asks
-   * again; after MOST_ASKINGS it refuses with a TwoAnswersError. An error that the question left in the queue is a refusal, whatever was answered.
+   * again, unless `once`; after MOST_ASKINGS it refuses with a TwoAnswersError. An error that the question left in the queue is a refusal, whatever was answered.
    */
-  askSurely(query: string, options: { timeoutMs?: number | undefined } = {}): Promise<string> {
+  askSurely(query: string, options: { timeoutMs?: number | undefined; once?: boolean } = {}): Promise<string> {
     return this.#inTurn(async () => {
       for (let asking = 1; ; asking += 1) {
         if (this.#outOfStep) await this.#readErrors();
@@ -100,7 +100,7 @@ export class ScpiConversation {
           return answer;
         }
         this.#outOfStep = true;
-        if (asking === MOST_ASKINGS) throw new TwoAnswersError(this.#transport, query, answers);
+        if (options.once === true || asking === MOST_ASKINGS) throw new TwoAnswersError(this.#transport, query, answers);
       }
     });
   }

@@ -32,7 +32,8 @@ export interface GateBreach {
  * The log must follow the script: its steps, each once, in its order. Gate 1: dead tests before power, walked through step by step.
  * Gate 2: the caution that stands before an energised step was answered with yes, and an insulation test was followed by its discharge
  * before anything else was done. Whoever comes back to a run that was broken off answers its caution again: an answer of before
- * counts no longer, and the caution stands in the log once more. Lamps that were cut stand before their step's own result.
+ * counts no longer, and the caution stands in the log once more. So it does where an instrument failed and the step was tried again;
+ * the last answer counts. Lamps that were cut stand before their step's own result.
  * The bench asks before each step; the server asks here again, for a log may come from anywhere.
  * `facts` are those from before the run, `script` has passed `checkScript`.
  */
@@ -50,7 +51,7 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
     const index = script.steps.findIndex((one) => one.id === result.stepId);
     const step = script.steps[index];
     if (!step) return breach('the script has no such step');
-    const askedAgain = result.kind === 'caution' && cautionBefore(script, place + 1)?.id === step.id && !confirmed.has(step.id);
+    const askedAgain = result.kind === 'caution' && cautionBefore(script, place + 1)?.id === step.id;
     if (index <= place && !askedAgain) return breach('it stands out of the order of the script, or twice');
     if (result.kind !== 'cut') place = Math.max(place, index);
     if (result.kind === 'skipped') continue;
@@ -60,6 +61,7 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
     if (isCharged(run.log.steps.slice(0, position), script, sheet) && !(step.kind === 'instruct' && step.discharge))
       return breach('the machine was not discharged after the insulation test', 'discharge it, then run from there');
     if (result.kind === 'caution' && result.answer === 'yes') confirmed.add(step.id);
+    else if (result.kind === 'caution') confirmed.delete(step.id);
     const energising = energisingOf(step, sheet);
     const caution = cautionBefore(script, index);
     if (energising !== 'dead' && !(caution && confirmed.has(caution.id)))

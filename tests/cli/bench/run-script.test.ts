@@ -6,10 +6,12 @@ import { terminalTechnician } from '../../../cli/bench/terminal-technician.js';
 import { openRig, type OpenRig } from '../../../cli/instruments/rig.js';
 import { RunJournal, writtenRun } from '../../../cli/journal/run-journal.js';
 import type { UnitEvent } from '../../../shared/history/events.js';
+import { settleRun } from '../../../shared/history/settle-run.js';
+import { runGateBreach } from '../../../shared/readiness/run-gates.js';
 import { runVerdict, stepVerdict } from '../../../shared/script/run-verdict.js';
 import type { Script } from '../../../shared/script/schema.js';
 import { benchTerminal, type BenchTerminal } from '../../helpers/bench-terminal.js';
-import { inspection, intake, shopScript } from '../../helpers/unit-facts.js';
+import { goodReading, heron, inspection, intake, shopScript, wil } from '../../helpers/unit-facts.js';
 import { unitOnTheBench } from '../../helpers/unit-on-bench.js';
 
 let bench: BenchTerminal;
@@ -203,6 +205,42 @@ describe('A person at the terminal', () => {
     expect(end.results).toMatchObject([{ kind: 'measure', reading: { judgement: { value: 26.8, verdict: 'pass' } } }]);
     expect(bench.stderr()).toContain('Nothing was recorded for this step.');
     expect(bench.raw()).toBe(0);
+  });
+
+  test('When a test at 500 V fails and is tried again, then its caution is asked again, both answers stand in the log, and no gate is breached', async () => {
+    bench = benchTerminal({ terminal: true });
+    // Caution, probes, the meter's overload; then the same again, which reads 2.31 Mohm; discharged.
+    bench.when('Done?', 'y').when('probes on?', 'y').when('Try this step again?', 'y');
+    bench.when('Done?', 'y').when('probes on?', 'y').when('Done?', 'y');
+    const script = stepsOf('insulation-caution', 'insulation', 'discharge');
+    const events = [intake(), inspection(), goodReading('protective-conductor')];
+    const { end } = await run(script, { person: true, scenario: 'heron-flaky', events });
+    expect(end.results.map(({ stepId }) => stepId)).toEqual(['insulation-caution', 'insulation-caution', 'insulation', 'discharge']);
+    const about = {
+      script: { name: script.name, title: script.title, prove: false, text: '' },
+      rig: { name: 'sim:heron-flaky', simulated: true },
+    };
+    const log = { id: bench.context.newId(), ...about, startedAt: '2026-03-03T10:00:00Z', endedAt: '2026-03-03T10:05:00Z' };
+    const settled = settleRun({ ...log, interrupted: false, people: [], steps: end.results }, script, heron, wil, () =>
+      bench.context.newId(),
+    );
+    expect(runGateBreach(settled, script, heron, { ...unitOnTheBench(events).facts })).toBeUndefined();
+  });
+
+  test('When the caution is answered with no before the second try, then nothing is energised any more', async () => {
+    bench = benchTerminal({ terminal: true });
+    bench.when('Done?', 'y').when('probes on?', 'y').when('Try this step again?', 'y').when('Done?', 'n');
+    const { end } = await run(stepsOf('insulation-caution', 'insulation', 'discharge'), {
+      person: true,
+      scenario: 'heron-flaky',
+      events: [intake(), inspection(), goodReading('protective-conductor')],
+    });
+    expect(end.results.map(({ stepId, kind }) => [stepId, kind])).toEqual([
+      ['insulation-caution', 'caution'],
+      ['insulation-caution', 'caution'],
+      ['insulation', 'skipped'],
+      ['discharge', 'skipped'],
+    ]);
   });
 
   test('When probes are not put on, then the check is not done and nothing was measured', async () => {

@@ -60,6 +60,15 @@ test('When a run is resumed behind its insulation test, then that is said before
   expect(writtenRun(bench.context.home, RUN).stop?.how).toBe('parked');
 });
 
+test('When a single insulation test fails and is tried again, then its caution is asked again', async () => {
+  bench = offlineBench([intake(), inspection(), goodReading('protective-conductor')], { terminal: true });
+  // The scenario heron-flaky: the tester says overload once.
+  bench.when('Done?', 'y').when('Probes on?', 'y').when('Measure again?', 'y').when('Done?', 'n');
+  expect(await runProgram(['measure', '412', 'insulation', '--rig', 'sim:heron-flaky'], bench.context)).toBe(1);
+  expect(bench.stderr()).toContain('Not begun.');
+  expect(waitingEntries(bench.context.home).entries).toEqual([]);
+});
+
 test.each([
   ['y', 0, undefined],
   ['n', 1, true],

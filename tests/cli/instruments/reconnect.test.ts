@@ -171,6 +171,16 @@ describe('a measurement', () => {
     expect(await meter.measure()).toBe(2.31);
   });
 
+  test('When any measurement on a machine under voltage loses its meter, or gets two answers, then it is not asked for again by itself', async () => {
+    const energised = async (...values: Parameters<typeof heaterIs>) => {
+      const { rig } = await rigWith(heaterIs(...values));
+      rig.hands?.probesOn('heater');
+      return rig.openMeterFor('resistance', 'ohm', { energises: true });
+    };
+    await expect((await energised({ unplugged: 5 }, 26.8)).measure()).rejects.toMatchObject({ name: 'TestBrokenOffError' });
+    await expect((await energised({ stale: 26.8 }, 26.8)).measure()).rejects.toMatchObject({ name: 'TwoAnswersError' });
+  });
+
   test.each([
     ['twice', { twice: 26.8 }],
     ['behind an older value', { stale: 26.8 }],
