@@ -3,6 +3,7 @@ import type { Shop } from '../../shared/api/sessions.js';
 import type { PersonRef } from '../../shared/history/events.js';
 import type { Context } from '../context.js';
 import { ApiProblemError, NobodyToAskError, ServerUnreachableError, SignOnRefusedError } from '../errors.js';
+import { takeLock } from '../journal/lock.js';
 import { personOf, whoIsSignedIn } from '../session.js';
 import { benchView, joinedBench, type JoinedBench } from './joined-bench.js';
 import { keepSignOn, standingHere } from './kept-sign-on.js';
@@ -128,18 +129,37 @@ async function signOnOffline(
       },
     );
   }
-  const waitMs = waitBeforeTry(known, context.now());
-  if (waitMs > 0)
+  // One after another: two who read the count at the same moment would share a try.
+  const lock = await takeLock(context, PIN_LOCK, { what: 'sign-on' });
+  if ('owner' in lock)
+    throw new SignOnRefusedError('Somebody else is just signing on at this bench.', { remedy: 'Try again.', tryAgain: true });
+  try {
+    await checkPin(context, known.person.id, pin);
+  } finally {
+    lock.release();
+  }
+  return personOf(known.person);
+}
+
+export const PIN_LOCK = 'pin';
+
+/** Holds a PIN against what this bench keeps, and counts the try. Whoever asks holds the lock. */
+async function checkPin(context: Context, personId: string, pin: string): Promise<void> {
+  const { home } = context;
+  const now = context.now();
+  // Read again: others may have tried meanwhile, or this person may be known no longer.
+  const known = knownPeople(home).find(({ person }) => person.id === personId);
+  const waitMs = known ? waitBeforeTry(known, now) : 0;
+  if (known && waitMs > 0)
     throw new SignOnRefusedError(`Too many wrong PINs for ${known.person.name}.`, {
       remedy: `Wait ${Math.ceil(waitMs / 1000)} seconds, then try again.`,
       tryAgain: false,
     });
-  countTry(home, known.person.id, context.now());
+  countTry(home, personId, now);
   const { verify } = await import('@node-rs/argon2');
-  if (!(await verify(known.verifier, pin)))
+  if (!known || !(await verify(known.verifier, pin)))
     throw new SignOnRefusedError('The PIN is wrong.', { remedy: 'Try again; each wrong one makes the wait longer.', tryAgain: true });
-  forgetTries(home, known.person.id);
-  return personOf(known.person);
+  forgetTries(home, personId);
 }
 
 const sameName = (one: string, other: string): boolean => plain(one) === plain(other);
