@@ -28,8 +28,8 @@ interface Places {
 
 function waysIn(config: Config, network: string[], accounts: DemoAccount[], firstAdminLink: string | undefined): string[] {
   if (firstAdminLink !== undefined) {
-    const { pathname, search } = new URL(firstAdminLink);
-    const elsewhere = network.slice(0, 1).map((base) => `\nFrom another machine:\n  ${base}${pathname}${search}`);
+    const { pathname, hash } = new URL(firstAdminLink);
+    const elsewhere = network.slice(0, 1).map((base) => `\nFrom another machine:\n  ${base}${pathname}${hash}`);
     return [`The shop is empty. This link makes the first admin, once:\n  ${firstAdminLink}${elsewhere.join('')}`];
   }
   if (accounts.length === 0) return [];

@@ -11,7 +11,7 @@ const LINK_LASTS_MS = 24 * 3_600_000;
 const baseOf = ({ publicUrl, publicListener }: AppDependencies['config'], ownAddress: string): string =>
   publicListener === undefined ? (publicUrl ?? ownAddress) : ownAddress;
 
-/** For a shop where nobody is yet: a link that makes its first admin, once. Each start makes a new one, and the old ones end. */
+/** For a shop where nobody is yet: a link that makes its first admin, once, its token behind `#` as in every one-time link. Each start makes a new one, and the old ones end. */
 export async function createFirstAdminLink(
   deps: Pick<AppDependencies, 'db' | 'config' | 'clock'>,
   ownAddress: string,
@@ -29,7 +29,7 @@ export async function createFirstAdminLink(
     });
     return true;
   });
-  return isNeeded ? `${baseOf(deps.config, ownAddress)}/first-admin?token=${token}` : undefined;
+  return isNeeded ? `${baseOf(deps.config, ownAddress)}/first-admin#${token}` : undefined;
 }
 
 /** What was printed before no longer makes anybody an admin; the next start prints a new one where nobody is there. */

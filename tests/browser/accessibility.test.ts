@@ -121,7 +121,7 @@ beforeAll(async () => {
     'not found': '/no/such/page',
     'no such unit': '/units/99999',
     'sign in': '/sign-in',
-    'first admin': '/first-admin?token=any',
+    'first admin': '/first-admin#any',
     'look up': '/t',
     stands: new URL(tag.url).pathname,
     withdrawn: new URL(brokenTag.url).pathname,

@@ -62,7 +62,7 @@ afterAll(async () => {
 
 test('When a shop runs, then it is backed up and its key rotated beside it; when it is off, then it is restored elsewhere, and its admin signs in there', async () => {
   const said = await startServer(join(folder, 'data'));
-  const [, base = '', token = ''] = /(http:\/\/[^/\s]+)\/first-admin\?token=([\w-]+)/.exec(said) ?? [];
+  const [, base = '', token = ''] = /(http:\/\/[^/\s]+)\/first-admin#([\w-]+)/.exec(said) ?? [];
   const person = { email: 'joss@millrace.example', password: 'a mill race in March' };
   const post = (at: string, path: string, body: object) =>
     fetch(`${at}${path}`, { method: 'POST', headers: { 'content-type': 'application/json' }, body: JSON.stringify(body) });

@@ -1,13 +1,13 @@
 import { useState } from 'react';
-import { Link, useSearchParams } from 'react-router-dom';
+import { Link, useLocation } from 'react-router-dom';
 import { PageHeading } from '../components/page-heading.js';
 import { FirstAdminForm } from '../features/session/components/first-admin-form.js';
 import { paths } from '../paths.js';
 
+/** The token stands behind `#`, which the browser keeps to itself: no proxy logs it. */
 export function FirstAdminPage() {
-  const [query] = useSearchParams();
   const [made, setMade] = useState<string>();
-  const token = query.get('token') ?? '';
+  const token = useLocation().hash.slice(1);
   return (
     <div className="mx-auto max-w-[460px] py-6">
       <PageHeading title="The first admin" />
@@ -21,7 +21,7 @@ export function FirstAdminPage() {
       ) : token === '' ? (
         <p className="mt-3">
           This page opens with the one-time link that the terminal printed at the first start. Copy the whole link, with what stands behind
-          the question mark.
+          the #.
         </p>
       ) : (
         <>

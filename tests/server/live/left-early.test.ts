@@ -14,11 +14,13 @@ class CountedHub extends LiveHub {
   readonly listening = new Set<LiveListener>();
   holdUp: Promise<unknown> = Promise.resolve();
 
-  override async join(listener: LiveListener): Promise<number> {
-    await this.holdUp;
-    const newest = await super.join(listener);
-    this.listening.add(listener);
-    return newest;
+  override join(listener: LiveListener) {
+    return this.holdUp
+      .then(() => super.join(listener))
+      .then((answer) => {
+        this.listening.add(listener);
+        return answer;
+      });
   }
 
   override leave(listener: LiveListener): void {
