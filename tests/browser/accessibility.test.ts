@@ -130,8 +130,30 @@ beforeAll(async () => {
 });
 afterAll(() => shop.close());
 
-async function look(page: Page, name: string): Promise<void> {
-  await page.goto(at[name] ?? '');
+/** A page that is always there at once, for whoever is signed in and for nobody. What has another heading has come after it. */
+const BETWEEN = {
+  somebody: { path: '/no/such/page', heading: 'There is no such page' },
+  nobody: { path: '/link', heading: 'A link is missing' },
+};
+
+/** Moves as a link of the page does, without loading the document anew. */
+const moveTo = (page: Page, path: string): Promise<void> =>
+  page.evaluate((to) => {
+    history.pushState({ idx: history.length, key: `moved ${history.length} ${performance.now()}`, usr: null }, '', to);
+    dispatchEvent(new PopStateEvent('popstate', { state: history.state as unknown }));
+    scrollTo(0, 0);
+  }, path);
+
+async function look(page: Page, name: string, as: 'somebody' | 'nobody' = 'somebody'): Promise<void> {
+  const { path, heading } = BETWEEN[as];
+  const between = page.getByRole('heading', { level: 1, name: heading });
+  if (page.url() === 'about:blank') await page.goto(path);
+  else await moveTo(page, path);
+  await between.waitFor();
+  const to = at[name] ?? '';
+  if (to === path) return;
+  await moveTo(page, to);
+  await between.waitFor({ state: 'detached' });
   await page.getByRole('heading', { level: 1 }).waitFor();
   // Some have their heading before what they fetch.
   await settled(page);
@@ -157,7 +179,7 @@ test.each([
         const { page, complaints } = await shop.open(as, { night, viewport });
         const found: string[] = [];
         for (const name of pages) {
-          await look(page, name);
+          await look(page, name, who === 'nobody' ? 'nobody' : 'somebody');
           expect(await page.evaluate(() => document.documentElement.dataset['theme'])).toBe(night ? 'night' : 'day');
           await expectNoSidewaysScroll(page);
           found.push(...(await accessibilityFaults(page, rules)).map((fault) => `${name}, ${bench}: ${fault}`));
@@ -170,7 +192,7 @@ test.each([
 );
 
 test('When a target stands alone, then it is at least 44 px high on a phone', async () => {
-  const { page } = await shop.open(shop.server.people.lead, { viewport: PHONE });
+  const { page } = await shop.open(shop.server.people.lead, { night: true, viewport: PHONE });
   const small: string[] = [];
   for (const name of ['units', 'take in', 'inconclusive', 'tag'] as const) {
     await look(page, name);

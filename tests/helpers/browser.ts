@@ -122,8 +122,8 @@ export const RULES_OF_LOOKS = [
 
 /** What axe finds on the page as it stands: the ids of the rules that are broken, with where. All rules, or those named. */
 export async function accessibilityFaults(page: Page, rules?: readonly string[]): Promise<string[]> {
-  // CSP refuses a script tag; evaluate() is not subject to it.
-  await page.evaluate(axeSource);
+  // CSP refuses a script tag; evaluate() is not subject to it. Once a document: to read it takes longer than most pages take to look at.
+  if (!(await page.evaluate(() => 'axe' in window))) await page.evaluate(axeSource);
   const { violations } = await page.evaluate(
     (only) =>
       (window as unknown as { axe: { run(options: object): Promise<AxeResults> } }).axe.run({
