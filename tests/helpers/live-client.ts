@@ -13,8 +13,8 @@ export interface LiveClient {
   readonly lastId: string | undefined;
   /** The stream is open. */
   readonly open: boolean;
-  /** The server's answer, where it was none that begins a stream. */
-  readonly refused: number | undefined;
+  /** Resolves when the server's answer is none that begins a stream: its status. */
+  refusal(): Promise<number>;
   /** Resolves as soon as something heard fits; what was heard before counts, too. */
   until(fits: (heard: Heard) => boolean): Promise<Heard>;
   /** Cuts the connection, as a network does. */
@@ -105,9 +105,7 @@ export function liveClient(address: string, token: string, query = ''): LiveClie
     get open() {
       return response !== undefined;
     },
-    get refused() {
-      return refused;
-    },
+    refusal: () => until(() => refused),
     until: (fits) => until(() => heard.find(fits)),
     cut: () => cutOff(),
     connect,

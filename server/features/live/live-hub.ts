@@ -1,7 +1,7 @@
 import pg from 'pg';
 import type { Logger } from 'pino';
 import type { Db } from '../../db.js';
-import { LIVE_CHANNEL, liveAfter, newestLiveId, SIGN_OUTS_CHANNEL, type PlacedLive } from './live-store.js';
+import { idsWentBack, LIVE_CHANNEL, liveAfter, newestLiveId, SIGN_OUTS_CHANNEL, type PlacedLive } from './live-store.js';
 
 /** One open page. */
 export interface LiveListener {
@@ -19,7 +19,8 @@ export interface LiveHubParts {
   log: Logger;
 }
 
-const ROWS_AT_ONCE = 500;
+/** A row may be as large as a request. */
+const ROWS_AT_ONCE = 100;
 const RECONNECT = { firstMs: 100, mostMs: 5_000 };
 /** A connection that broke without a word is found by asking; what it should have told is then looked up. */
 const LOOK_ANYWAY_MS = 10_000;
@@ -49,8 +50,8 @@ export class LiveHub {
     this.#parts = parts;
   }
 
-  /** The page hears everything after the id that this answers, from now on. Fails where the database does not answer. */
-  async join(listener: LiveListener): Promise<number> {
+  /** The page hears everything that is told from now on. Fails where the database does not answer. */
+  async join(listener: LiveListener): Promise<void> {
     this.#started ??= this.#start();
     try {
       await this.#started;
@@ -60,7 +61,6 @@ export class LiveHub {
     }
     this.#listeners.add(listener);
     if (this.#closed) listener.end();
-    return this.#newest;
   }
 
   leave(listener: LiveListener): void {
@@ -184,15 +184,27 @@ export class LiveHub {
   }
 
   async #handOn(): Promise<void> {
+    const { db } = this.#parts;
     do {
       this.#lookAgain = false;
-      const rows = await liveAfter(this.#parts.db, this.#newest, { limit: ROWS_AT_ONCE });
-      for (const row of rows) {
-        this.#newest = row.id;
-        for (const listener of [...this.#listeners]) listener.heard(row);
+      const { events, upTo, more } = await liveAfter(db, this.#newest, ROWS_AT_ONCE);
+      if (upTo === this.#newest && (await idsWentBack(db, this.#newest))) {
+        await this.#beginAnew();
+        continue;
       }
-      if (rows.length === ROWS_AT_ONCE) this.#lookAgain = true;
+      for (const placed of events) {
+        this.#newest = placed.id;
+        for (const listener of [...this.#listeners]) listener.heard(placed);
+      }
+      this.#newest = upTo;
+      if (more) this.#lookAgain = true;
     } while (this.#lookAgain && !this.#closed);
+  }
+
+  /** What the pages have heard is no longer in the table, and its ids are given again: they come back and begin anew. */
+  async #beginAnew(): Promise<void> {
+    this.#newest = await newestLiveId(this.#parts.db);
+    for (const listener of [...this.#listeners]) listener.end();
   }
 
   #later(milliseconds: number, work: () => void): NodeJS.Timeout {

@@ -1,16 +1,15 @@
-import { once } from 'node:events';
 import type { Response } from 'express';
 import { LIVE_BEAT, LIVE_BEAT_SECONDS, type LiveEvent } from '../../../shared/api/live.js';
 import type { Db } from '../../db.js';
 import type { LiveHub, LiveListener } from './live-hub.js';
-import { canResumeAfter, liveAfter, liveWork, type PlacedLive } from './live-store.js';
+import { canResumeAfter, liveAfter, liveWork, newestLiveId, type PlacedLive } from './live-store.js';
 
 /** How soon a browser comes back by itself. */
 const RETRY_MS = 1_000;
-const ROWS_AT_ONCE = 500;
+/** A row may be as large as a request. */
+const ROWS_AT_ONCE = 100;
 /** A page that does not keep up is cut off before it fills the server's memory; it comes back and resumes. */
 const UNSENT_BYTES_AT_MOST = 1_000_000;
-const WAITING_ROWS_AT_MOST = 20_000;
 
 export interface StreamParts {
   hub: LiveHub;
@@ -30,9 +29,8 @@ const eventText = (event: LiveEvent, id?: number): string =>
 export async function openStream({ hub, db, response, unit, after, stillAllowed }: StreamParts): Promise<void> {
   let over = false;
   let caughtUp = false;
-  /** What the page has heard from another server, which may be ahead of this one. */
+  /** What the page has heard, perhaps from another server, which may be ahead of this one. */
   let heardBefore = 0;
-  const waiting: PlacedLive[] = [];
   const concerns = ({ event }: PlacedLive): boolean => unit === undefined || ('unit' in event && event.unit === unit);
 
   const end = (): void => {
@@ -48,8 +46,9 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
   };
   const write = (text: string): void => {
     if (over) return;
-    response.write(text);
+    // Before it and not after: one large event alone is no reason, or the page would come back to it again and again.
     if (response.writableLength > UNSENT_BYTES_AT_MOST) cutOff();
+    else response.write(text);
   };
   const checkSignIn = (): void => {
     stillAllowed().then(
@@ -62,9 +61,8 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
   };
   const listener: LiveListener = {
     heard(placed) {
-      if (placed.id <= heardBefore || !concerns(placed)) return;
-      if (caughtUp) write(eventText(placed.event, placed.id));
-      else if (waiting.push(placed) > WAITING_ROWS_AT_MOST) cutOff();
+      // Until it has caught up, it reads by itself what comes.
+      if (caughtUp && placed.id > heardBefore && concerns(placed)) write(eventText(placed.event, placed.id));
     },
     checkSignIn,
     end,
@@ -83,13 +81,14 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
   }
 
   try {
-    const upTo = await hub.join(listener);
+    await hub.join(listener);
     if (over) {
       hub.leave(listener);
       return;
     }
     const resumeAfter = await resumable(db, after);
-    heardBefore = resumeAfter ?? 0;
+    // By the table: the hub may not have heard yet of what was told a moment ago.
+    const upTo = resumeAfter ?? (await newestLiveId(db));
     if (over) return;
     response.status(200).set({
       'Content-Type': 'text/event-stream; charset=utf-8',
@@ -100,27 +99,25 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
       Connection: 'close',
     });
     response.write(`retry: ${String(RETRY_MS)}\n\n`);
-    const pause = async (): Promise<void> => {
-      if (!over && response.writableNeedDrain) await Promise.race([once(response, 'drain'), once(response, 'close')]);
-    };
+    heardBefore = upTo;
     if (resumeAfter === undefined) {
       write(eventText({ kind: 'start' }));
       // Without ids: a page that is cut off in the middle of it starts anew.
       for (const { event } of await liveWork(db, upTo, unit)) {
         write(eventText(event));
-        await pause();
-      }
-    } else {
-      let from = resumeAfter;
-      for (let rows = await liveAfter(db, from, { upTo, limit: ROWS_AT_ONCE }); rows.length > 0 && !over;) {
-        for (const row of rows) if (concerns(row)) write(eventText(row.event, row.id));
-        await pause();
-        from = rows.at(-1)?.id ?? upTo;
-        rows = await liveAfter(db, from, { upTo, limit: ROWS_AT_ONCE });
+        await drained(response);
       }
     }
-    write(eventText({ kind: 'now' }, Math.max(upTo, heardBefore)));
-    for (const placed of waiting.splice(0)) if (placed.id > heardBefore) write(eventText(placed.event, placed.id));
+    while (!over && heardBefore < hub.newest) {
+      const handedOn = hub.newest;
+      const next = await liveAfter(db, heardBefore, ROWS_AT_ONCE);
+      for (const placed of next.events) {
+        if (concerns(placed)) write(eventText(placed.event, placed.id));
+        await drained(response);
+      }
+      heardBefore = next.more ? next.upTo : Math.max(next.upTo, handedOn);
+    }
+    write(eventText({ kind: 'now' }, heardBefore));
     caughtUp = true;
   } catch (error) {
     // Where the answer has begun, the page is cut off and comes back; otherwise it gets a problem like any other request.
@@ -133,6 +130,18 @@ export async function openStream({ hub, db, response, unit, after, stillAllowed 
     hub.leave(listener);
     throw error;
   }
+}
+
+/** Waits until a page has read what was written, as long as it is there. */
+async function drained(response: Response): Promise<void> {
+  if (!response.writableNeedDrain || response.destroyed) return;
+  await new Promise<void>((resolve) => {
+    const done = (): void => {
+      response.off('drain', done).off('close', done);
+      resolve();
+    };
+    response.on('drain', done).on('close', done);
+  });
 }
 
 async function resumable(db: Db, after: string | undefined): Promise<number | undefined> {
