@@ -11,7 +11,7 @@ import { EXIT } from '../exit-codes.js';
 import { InstrumentError } from '../instruments/instrument-error.js';
 import type { OpenRig } from '../instruments/rig.js';
 import { doneIn } from '../journal/open-runs.js';
-import type { RunJournal, RunStop } from '../journal/run-journal.js';
+import { cutOf, type RunJournal, type RunStop } from '../journal/run-journal.js';
 import { liveOf } from '../live/live-of.js';
 import { wordsOf } from '../report-error.js';
 import { stepLines } from '../render/step-lines.js';
@@ -125,7 +125,7 @@ async function goThrough(parts: RunParts): Promise<RunEnd> {
     const wasAsked = caution && results.some(({ stepId }) => stepId === caution.id);
     const askedAgain = wasAsked && !confirmed.has(caution.id) ? [caution] : [];
     for (const one of [...askedAgain, step]) {
-      const outcome = await tryStep(one, script.steps.indexOf(one), bench, parts);
+      const outcome = await tryStep(one, script.steps.indexOf(one), bench, parts, record);
       if (outcome === 'again' && caution) confirmed.delete(caution.id);
       if (outcome === 'again') return 'again';
       if (outcome === 'stopped') return STOPPED;
@@ -189,23 +189,20 @@ function eventsSoFar({ context, unit, script, journal }: RunParts, results: read
   return settleRun(log, script, unit.sheet, by, () => context.newId()).events.filter((event) => event.kind !== 'run ended');
 }
 
-/** Runs one step. `again`: an instrument failed, and a person tries it again. */
+/** Runs one step. `again`: an instrument failed, and a person tries it again; lamps that were seen until then are recorded as a cut first. */
 async function tryStep(
   step: Step,
   index: number,
   bench: Bench,
   { context, technician, journal }: RunParts,
+  record: (result: StepResult) => void,
 ): Promise<Awaited<ReturnType<typeof runStep>> | 'again' | 'stopped' | 'left' | 'instrument'> {
   const start = { startedAt: context.now().toISOString(), captureId: context.newId() };
   liveOf(context).stepBegins(step.id);
   const records = step.kind === 'capture' || step.kind === 'watch';
-  journal.begin({
-    stepId: step.id,
-    kind: step.kind,
-    title: step.title,
-    at: start.startedAt,
-    ...(records ? { captureId: start.captureId } : {}),
-  });
+  const { id: stepId, kind, title } = step;
+  const begun = { stepId, kind, title, at: start.startedAt, ...(records ? { captureId: start.captureId } : {}) };
+  journal.begin(begun);
   if ((technician.attended && step.kind !== 'expect') || records)
     bench.say(bench.style.ink.bold(`${String(index + 1).padStart(2)} ${step.kind.padEnd(8)} ${step.title}`));
   try {
@@ -217,7 +214,12 @@ async function tryStep(
         ...wordsOf(error)
           .split('\n')
           .map((line) => `           ${line}`),
-        '           Nothing was recorded for this step.',
+      );
+      // A code that the lamps have shown stays shown, whatever the next try brings (gate 4).
+      const cut = cutOf(context.home, { begun });
+      if (cut) record(cut);
+      bench.say(
+        cut ? '           The lamps until then are kept; the step itself is not done.' : '           Nothing was recorded for this step.',
       );
       return technician.attended && (await technician.triesAgain(step.id, 'Try this step again?')) ? 'again' : 'instrument';
     }

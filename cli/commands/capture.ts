@@ -13,9 +13,10 @@ import { watching } from '../bench/watchers.js';
 import type { Context } from '../context.js';
 import { NobodyToAskError, UsageError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
-import { notWritable } from '../home.js';
+import { notWritable, readIfThere } from '../home.js';
+import { InstrumentError } from '../instruments/instrument-error.js';
 import type { OpenRig } from '../instruments/rig.js';
-import { captureFileOf, captureText } from '../journal/capture-file.js';
+import { captureFileOf, captureText, readablePart } from '../journal/capture-file.js';
 import { keepAndSend } from '../journal/deliver.js';
 import { liveOf } from '../live/live-of.js';
 import { deliveryWords } from '../render/delivery-words.js';
@@ -42,6 +43,8 @@ interface Recorded {
   file: string;
   fromFile: boolean;
   interrupted: boolean;
+  /** The instrument failed meanwhile: what came until then counts, for a code that was shown is a code (gate 4). */
+  failure?: InstrumentError;
 }
 
 /** Records the lamps of a unit, by probe or by keys, or takes a capture that was recorded before. */
@@ -59,10 +62,12 @@ export async function runCapture(options: CaptureOptions, context: Context): Pro
   try {
     if (options.out !== undefined) writeOut(options.out, recorded.file);
     const answer = decodeCapture(readCapture(recorded.file), unit.sheet);
-    return await keepAndSay(options, context, unit, recorded, answer);
+    const code = await keepAndSay(options, context, unit, recorded, answer);
+    if (recorded.failure) throw recorded.failure;
+    return code;
   } finally {
     // Kept, sent and said first: nothing waits for those who watch.
-    await liveOf(context).ends(recorded.interrupted ? 'stopped' : 'ended');
+    await liveOf(context).ends(recorded.failure ? 'failed' : recorded.interrupted ? 'stopped' : 'ended');
   }
 }
 
@@ -94,7 +99,7 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
       live.begins({ id, what: 'capture', unit, title: step.title, steps: [step], rig });
       live.stepBegins(step.id);
       const source = await sourceOf(rig, context, unit, options);
-      const { ended } = await recordLamps({
+      const recording = recordLamps({
         context,
         captureId: id,
         unit: options.number,
@@ -102,13 +107,15 @@ async function record(options: CaptureOptions, context: Context, unit: UnitOnBen
         source,
         seconds: options.seconds,
         watcher: watching({ context, sheet, attended: technician.attended, byKeys: options.keys === true }),
-      }).catch((error: unknown) => {
-        context.stderr.say(
-          `What came until then is in ${captureFileOf(context.home, id)}\nIf it is of use: refettle capture ${options.number} --file ${captureFileOf(context.home, id)}`,
-        );
-        throw error;
       });
-      return { id, file: captureText(context.home, id), fromFile: false, interrupted: ended === 'interrupted' };
+      try {
+        const { ended } = await recording;
+        return { id, file: captureText(context.home, id), fromFile: false, interrupted: ended === 'interrupted' };
+      } catch (error) {
+        const file = readablePart(readIfThere(captureFileOf(context.home, id)) ?? '');
+        if (!(error instanceof InstrumentError) || file === '' || readCapture(file).timesUs.length === 0) throw error;
+        return { id, file, fromFile: false, interrupted: false, failure: error };
+      }
     });
   } catch (error) {
     await liveOf(context).ends('failed');

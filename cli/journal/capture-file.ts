@@ -1,6 +1,7 @@
 import { readFileSync } from 'node:fs';
 import { BadInputError } from '../../shared/errors.js';
 import type { CaptureHeader } from '../../shared/lamps/capture.js';
+import { readCapture } from '../../shared/lamps/read-capture.js';
 import { endLine, gapLine, headerLine, markLine, sampleLine } from '../../shared/lamps/write-capture.js';
 import type { Home } from '../home.js';
 import { AppendFile } from './append-file.js';
@@ -15,6 +16,26 @@ export function captureText(home: Home, captureId: string): string {
   } catch (error) {
     throw new BadInputError(`a capture of this bench can't be read: ${(error as Error).message}`, { file });
   }
+}
+
+/** The lines of a capture file up to the first that can't be read: a power cut may have left anything at its end. Empty where not even the header can. */
+export function readablePart(text: string): string {
+  let part = text.slice(0, text.lastIndexOf('\n') + 1);
+  while (part !== '') {
+    try {
+      readCapture(part);
+      return part;
+    } catch (error) {
+      if (!(error instanceof BadInputError)) throw error;
+      const lines = part.split('\n').slice(0, -1);
+      const keep = Math.min((error.line ?? 1) - 1, lines.length - 1);
+      part = lines
+        .slice(0, keep)
+        .map((line) => `${line}\n`)
+        .join('');
+    }
+  }
+  return '';
 }
 
 /** A capture as it is being recorded: each line is in the file as soon as it comes, so that a crash costs none of it. */

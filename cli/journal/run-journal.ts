@@ -15,7 +15,7 @@ import {
 } from '../../shared/script/run-log.js';
 import { readIfThere, type Home } from '../home.js';
 import { AppendFile } from './append-file.js';
-import { captureFileOf, captureText } from './capture-file.js';
+import { captureFileOf, captureText, readablePart } from './capture-file.js';
 import { checkedLine, readCheckedLines } from './checked-lines.js';
 
 const headerSchema = z.strictObject({
@@ -288,24 +288,4 @@ export function cutOf(home: Home, { begun }: Pick<WrittenRun, 'begun'>): StepRes
   if (last === undefined) return undefined;
   const endedAt = new Date(Date.parse(at) + Math.round(last / 1000)).toISOString();
   return { kind: 'cut', stepId, title, startedAt: at, endedAt, captureId, file };
-}
-
-/** The lines of a capture file up to the first that can't be read: a power cut may have left anything at its end. Empty where not even the header can. */
-function readablePart(text: string): string {
-  let part = text.slice(0, text.lastIndexOf('\n') + 1);
-  while (part !== '') {
-    try {
-      readCapture(part);
-      return part;
-    } catch (error) {
-      if (!(error instanceof BadInputError)) throw error;
-      const lines = part.split('\n').slice(0, -1);
-      const keep = Math.min((error.line ?? 1) - 1, lines.length - 1);
-      part = lines
-        .slice(0, keep)
-        .map((line) => `${line}\n`)
-        .join('');
-    }
-  }
-  return '';
 }

@@ -1,17 +1,23 @@
+import { writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+import { setTimeout } from 'node:timers/promises';
 import { afterEach, describe, expect, test } from 'vitest';
 import { runScript, type RunEnd } from '../../../cli/bench/run-script.js';
 import { simulatedTechnician } from '../../../cli/bench/simulated-technician.js';
 import type { Technician } from '../../../cli/bench/technician.js';
 import { terminalTechnician } from '../../../cli/bench/terminal-technician.js';
 import { openRig, type OpenRig } from '../../../cli/instruments/rig.js';
+import { HERON_MEND } from '../../../cli/instruments/simulated/scenarios/heron-mend.js';
 import { RunJournal, writtenRun } from '../../../cli/journal/run-journal.js';
+import { decodeCapture } from '../../../shared/decode/decode-capture.js';
 import type { UnitEvent } from '../../../shared/history/events.js';
 import { settleRun } from '../../../shared/history/settle-run.js';
+import { readCapture } from '../../../shared/lamps/read-capture.js';
 import { runGateBreach } from '../../../shared/readiness/run-gates.js';
 import { runVerdict, stepVerdict } from '../../../shared/script/run-verdict.js';
 import type { Script } from '../../../shared/script/schema.js';
 import { benchTerminal, type BenchTerminal } from '../../helpers/bench-terminal.js';
-import { goodReading, heron, inspection, intake, shopScript, wil } from '../../helpers/unit-facts.js';
+import { deadTests, goodReading, heron, inspection, intake, shopScript, wil } from '../../helpers/unit-facts.js';
 import { unitOnTheBench } from '../../helpers/unit-on-bench.js';
 
 let bench: BenchTerminal;
@@ -149,6 +155,23 @@ describe('A bench run on a simulated rig', () => {
     expect([end.exitCode, end.interrupted, verdict]).toEqual([4, true, 'not done']);
     expect(kinds(end)).toEqual({ isolate: 'caution' });
     expect(bench.stderr()).toContain('Nothing was recorded for this step.');
+  });
+
+  test('When the probe is pulled out after a code was shown, then those lamps stay in the log, whatever the next try shows (gate 4)', async () => {
+    bench = benchTerminal();
+    // Shows G5K3 within 30 s; nobody waits for the plug, so the step is offered again until it is back.
+    const file = join(bench.home, 'pulled.yaml');
+    writeFileSync(file, `${HERON_MEND}\nprobeFaults: [{fault: unplug, at: 30, seconds: 2}]\n`);
+    const { end } = await run(POWERED, {
+      scenario: file,
+      events: [intake(), ...deadTests({ simulated: true })],
+      technician: { attended: true, triesAgain: () => setTimeout(20, true) },
+    });
+    const lamps = end.results.filter(({ stepId }) => stepId === 'lamps');
+    expect(lamps.map(({ kind }) => kind)).toEqual(['cut', 'capture']);
+    const [cut] = lamps;
+    expect(cut?.kind === 'cut' && decodeCapture(readCapture(cut.file), heron).codes.map(({ code }) => code)).toEqual(['G5K3']);
+    expect(bench.stderr()).toContain('The lamps until then are kept; the step itself is not done.');
   });
 
   test('When Ctrl-C is pressed while lamps are recorded, then what came is kept as a cut, and its step is still to be done', async () => {
