@@ -280,7 +280,17 @@ export const COMMAND_FORMS: Record<string, CommandForm> = {
     // No port of this name is on any machine: it is asked, and says so.
     call: () => ['--port', '/dev/refettle-no-such-port'],
     code: 4,
-    json: z.object({}),
+    json: z.strictObject({
+      ports: z.tuple([
+        z.strictObject({ port: z.literal('/dev/refettle-no-such-port'), state: z.literal('not there'), why: z.string(), toDo: z.string() }),
+      ]),
+      instruments: z.tuple([]),
+      unclear: z.tuple([]),
+      missing: z.tuple([]),
+      rigFile: z.string().endsWith('rig.yaml'),
+      differs: z.literal(false),
+      written: z.literal(false),
+    }),
     wrong: ['--port'],
     says: /refettle-no-such-port/,
   },
