@@ -185,11 +185,15 @@ test('When the server does not answer, then the page says so and offers to try a
   const { page } = await shop.open(shop.server.people.technician);
   await page.goto('/units');
   await page.getByRole('table').waitFor();
-  await page.route('**/api/units/*', (route) => route.abort());
+  const silence = { asked: 0, lasts: true };
+  await page.route('**/api/units/*', (route) => ((silence.asked += 1), silence.lasts ? route.abort() : route.continue()));
   await page.getByRole('link', { name: `Unit ${String(number).padStart(4, '0')}` }).click();
   await page.getByRole('alert').getByText('The server does not answer.').waitFor();
-  await page.unroute('**/api/units/*');
+  const before = silence.asked;
   await page.getByRole('button', { name: 'Try again' }).click();
+  await expect.poll(() => silence.asked, { timeout: 20_000 }).toBeGreaterThan(before);
+  // The page looks again by itself, too: the button is pressed while it is sure to be there.
+  silence.lasts = false;
   await page.getByRole('heading', { name: 'What happened, newest first' }).waitFor();
 });
 

@@ -45,8 +45,10 @@ export function chromiumPath(): string {
   return found;
 }
 
-const launch = (): Promise<Browser> =>
-  chromium.launch({
+/** One for all files of a worker, which share their modules; it ends with the worker. */
+let browserHere: Promise<Browser> | undefined;
+const launched = (): Promise<Browser> =>
+  (browserHere ??= chromium.launch({
     executablePath: chromiumPath(),
     args: [
       '--headless',
@@ -58,7 +60,13 @@ const launch = (): Promise<Browser> =>
       '--disable-component-update',
       '--disable-sync',
     ],
-  });
+  }));
+
+/** A person's device: a page that is free is taken again, for a new one starts cold and takes a second. */
+interface Device {
+  context: BrowserContext;
+  free: Page[];
+}
 
 /** `publicUrl`: where tags point to, if not to this machine. */
 export async function openShop(shop: Partial<Shop> = {}, { publicUrl }: { publicUrl?: string } = {}): Promise<BrowserShop> {
@@ -70,23 +78,32 @@ export async function openShop(shop: Partial<Shop> = {}, { publicUrl }: { public
   // Browsers drop cookies by their own clock.
   server.time.now = new Date();
   http.on('request', server.app);
-  const browser = await launch();
-  const devices = new Map<string, BrowserContext>();
+  const browser = await launched();
+  const devices = new Map<string, Device>();
+  const contexts: BrowserContext[] = [];
   return {
     server,
     baseUrl,
     async open(as, { viewport = DESK, night = false, fresh = false } = {}) {
-      const make = async (): Promise<BrowserContext> => {
+      const make = async (): Promise<Device> => {
         const context = await browser.newContext({ baseURL: baseUrl, viewport, colorScheme: night ? 'dark' : 'light' });
+        contexts.push(context);
         if (as) await context.addCookies([{ name: 'refettle_session', value: as.token, url: baseUrl, httpOnly: true, sameSite: 'Strict' }]);
-        return context;
+        return { context, free: [] };
       };
-      // Whoever comes back with the same device has the scripts already: a cold start takes a second and a half.
-      const device = JSON.stringify([as?.token, viewport, night]);
-      const context = (fresh ? undefined : devices.get(device)) ?? (await make());
-      if (!fresh && as) devices.set(device, context);
-      const page = await context.newPage();
-      onTestFinished(() => page.close());
+      const key = JSON.stringify([as?.token, viewport, night]);
+      const device = (fresh ? undefined : devices.get(key)) ?? (await make());
+      if (!fresh && as) devices.set(key, device);
+      const { context, free } = device;
+      const page = free.pop() ?? (await context.newPage());
+      onTestFinished(async () => {
+        if (page.isClosed()) return;
+        page.removeAllListeners();
+        await page.unrouteAll();
+        await page.setViewportSize(viewport);
+        await page.goto('about:blank');
+        free.push(page);
+      });
       const complaints: string[] = [];
       page.on('pageerror', (error) => complaints.push(error.message));
       page.on('console', (message) => {
@@ -97,9 +114,10 @@ export async function openShop(shop: Partial<Shop> = {}, { publicUrl }: { public
       return { page, context, complaints };
     },
     async close() {
-      await browser.close();
-      await new Promise((closed) => http.close(closed));
+      await Promise.all(contexts.map((context) => context.close()));
+      const closed = new Promise((done) => http.close(done));
       http.closeAllConnections();
+      await closed;
       await server.close();
     },
   };

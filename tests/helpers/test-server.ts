@@ -1,6 +1,7 @@
 // A whole server inside the test's own process: its own database, its own clock, nothing mocked.
 import { generateKeyPairSync } from 'node:crypto';
 import { mkdtempSync, rmSync } from 'node:fs';
+import { Agent, createServer } from 'node:http';
 import type { Express } from 'express';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
@@ -112,6 +113,9 @@ export async function startTestServer({
   };
   await insertShop(deps.db, { ...EMPTY_SHOP, name: 'Millrace Mend', address: '12 Dyehouse Yard', phone: '01632 960412', ...shop });
   const app = createApp(deps);
+  // One port and few connections for all that is sent: a server of its own for each request cost more than the request.
+  const http = createServer(app).listen(0);
+  const connections = new Agent({ keepAlive: true });
 
   const addPerson = async (role: Role, name: string): Promise<SignedInPerson> => {
     const person = { id: newId(), name, email: `${name.toLowerCase().replaceAll(' ', '.')}@millrace.example`, role };
@@ -127,7 +131,9 @@ export async function startTestServer({
   const send = (name: RouteName, { params, query, body, as, key }: Call = {}): Test => {
     const route = routes[name];
     const method = route.method.toLowerCase() as 'get' | 'post' | 'delete';
-    let sent = request(app)[method](routeUrl(name, { ...(params ? { params } : {}), ...(query ? { query } : {}) }));
+    let sent = request(http)
+      [method](routeUrl(name, { ...(params ? { params } : {}), ...(query ? { query } : {}) }))
+      .agent(connections);
     if (as) sent = sent.set('Authorization', `Bearer ${as.token}`);
     if (as && 'person' in as && as.person !== undefined) sent = sent.set(PERSON_HEADER, as.person);
     if ('idempotent' in route) sent = sent.set('Idempotency-Key', key ?? newId());
@@ -150,6 +156,9 @@ export async function startTestServer({
     },
     addPerson,
     async close() {
+      connections.destroy();
+      http.closeAllConnections();
+      await new Promise((closed) => http.close(closed));
       await deps.live.close();
       if (!existing) await fresh.drop();
       rmSync(dataDir, { recursive: true, force: true });
