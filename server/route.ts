@@ -35,6 +35,9 @@ type Asker<N extends RouteName> =
         ? { person: User | undefined; bench: BenchRef | undefined }
         : { person: User; bench: BenchRef | undefined };
 
+/** Notes what is written down where the request is refused, in a transaction of its own: the request's own leaves nothing. */
+export type IfRefused = (work: (trx: Db) => Promise<void>) => void;
+
 /** What a handler gets: parsed parts, who asks (nobody on a public route), and the transaction that everything happens in. */
 type RouteContext<N extends RouteName> = Asker<N> & {
   params: Part<N, 'params'>;
@@ -42,8 +45,7 @@ type RouteContext<N extends RouteName> = Asker<N> & {
   body: Part<N, 'body'>;
   trx: Db;
   now: Date;
-  /** What is written down, in a transaction of its own, where the request is refused: the request's own leaves nothing. */
-  ifRefused: (work: (trx: Db) => Promise<void>) => void;
+  ifRefused: IfRefused;
   /** For cookies and addresses only. */
   http: { request: Request; response: Response };
 };
@@ -140,7 +142,7 @@ async function answer(
   const now = deps.clock();
   const person = request.user;
   const refusals: ((trx: Db) => Promise<void>)[] = [];
-  const ifRefused = (refusal: (trx: Db) => Promise<void>): void => void refusals.push(refusal);
+  const ifRefused: IfRefused = (refusal) => void refusals.push(refusal);
   let pieces: AsyncIterable<string | Buffer> | undefined;
   const run = async (trx: Db): Promise<StoredAnswer & { again: boolean }> => {
     await first?.(trx);

@@ -3,6 +3,8 @@ import { personRowSchema, type PersonRow } from '../../shared/api/people.js';
 import type { Role } from '../../shared/api/roles.js';
 import { userSchema, type User } from '../../shared/api/sessions.js';
 import type { Db } from '../db.js';
+import { NotFoundError } from '../errors.js';
+import { revokeSessions } from './session-store.js';
 
 const emailKey = (email: string): string => email.trim().toLowerCase();
 
@@ -82,12 +84,10 @@ export async function insertPerson(db: Db, person: NewPerson): Promise<boolean> 
   return inserted.length > 0;
 }
 
-/** Every session of theirs ends with the old password; `butThat`: except the one of this token's hash. Answers how many ended. */
-export async function setPassword(db: Db, personId: string, passwordHash: string, now: Date, butThat?: Buffer): Promise<number> {
+/** Every session of theirs ends with the old password; `but`: except the one of this token. Answers how many ended. */
+export async function setPassword(db: Db, personId: string, passwordHash: string, now: Date, but?: string): Promise<number> {
   await db('people').where({ id: personId }).update({ password_hash: passwordHash });
-  const query = db('sessions').where({ person_id: personId }).whereNull('revoked_at').where('expires_at', '>', now);
-  if (butThat) void query.whereNot({ token_hash: butThat });
-  return z.number().parse(await query.update({ revoked_at: now }));
+  return revokeSessions(db, personId, now, but);
 }
 
 export async function setRole(db: Db, personId: string, role: Role): Promise<void> {
@@ -181,4 +181,10 @@ export async function listPeople(db: Db, after: string | undefined, limit: numbe
 export async function personRow(db: Db, id: string, now: Date): Promise<PersonRow | undefined> {
   const row: unknown = await peopleRows(db, now).where('people.id', id).first();
   return row === undefined ? undefined : rowSchema.parse(row);
+}
+
+export async function readPersonRow(db: Db, id: string, now: Date): Promise<PersonRow> {
+  const row = await personRow(db, id, now);
+  if (!row) throw new NotFoundError('There is no such person.');
+  return row;
 }

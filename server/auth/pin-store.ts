@@ -87,8 +87,3 @@ export async function setPin(db: Db, personId: string, pinHash: string, by: Pers
 export async function clearPin(db: Db, personId: string): Promise<void> {
   await db('people').where({ id: personId }).update({ pin_hash: null, pin_set_at: null, pin_set_by: null });
 }
-
-export async function passwordHashOf(db: Db, personId: string): Promise<string | undefined> {
-  const row: unknown = await db('people').where({ id: personId, active: true }).first('password_hash');
-  return row === undefined ? undefined : (z.object({ password_hash: z.string().nullable() }).parse(row).password_hash ?? undefined);
-}

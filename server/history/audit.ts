@@ -13,6 +13,9 @@ export interface AuditEntry {
   at: Date;
 }
 
+/** A person as a subject. */
+export const personSubject = ({ id, name }: Pick<PersonRef, 'id' | 'name'>) => ({ kind: 'person', id, name }) as const;
+
 /** Puts a change down in the transaction that makes it: both are there, or neither is. */
 export async function audit(trx: Db, { who, what, subject, before, after, at }: AuditEntry): Promise<void> {
   refuseSecrets({ before, after });

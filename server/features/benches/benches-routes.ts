@@ -22,10 +22,14 @@ export function registerBenchRoutes(route: RegisterRoute, limits: Pick<RateLimit
     await setBenchRig(trx, bench.id, body, now);
     return ownBench(trx, bench);
   });
-  route('signOnAtBench', ({ bench, body, trx, now }) => signOnAtBench(trx, bench, body, now), { limits: limits.signOn });
+  route('signOnAtBench', ({ bench, body, trx, now, ifRefused }) => signOnAtBench(trx, bench, body, { now, ifRefused }), {
+    limits: limits.signOn,
+  });
 
   route('getOwnPin', ({ person, trx }) => pinStateOf(trx, person.id));
-  route('setOwnPin', ({ person, body, trx, now }) => setOwnPin(trx, person, body, now), { limits: limits.ownPin });
+  route('setOwnPin', ({ person, body, trx, now, ifRefused }) => setOwnPin(trx, person, body, { now, ifRefused }), {
+    limits: limits.ownPin,
+  });
   route('listPins', async ({ query, trx }) => {
     const states = await listPinStates(trx, ROLES_BY_ACTION['run.record'], uuidCursor(query.cursor), query.limit + 1);
     return pageOf(states, query.limit, ({ person }) => cursorOf(person.id));

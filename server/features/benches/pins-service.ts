@@ -1,11 +1,13 @@
 import type { PinState } from '../../../shared/api/benches.js';
 import type { User } from '../../../shared/api/sessions.js';
-import { hashPin, passwordFits } from '../../auth/password.js';
-import { clearPin, findPinState, passwordHashOf, setPin } from '../../auth/pin-store.js';
+import { askOwnPassword } from '../../auth/own-password.js';
+import { hashPin } from '../../auth/password.js';
+import { clearPin, findPinState, setPin } from '../../auth/pin-store.js';
 import type { Db } from '../../db.js';
-import { InvalidError, NotFoundError, RoleError } from '../../errors.js';
-import { audit } from '../../history/audit.js';
+import { NotFoundError, RoleError } from '../../errors.js';
+import { audit, personSubject } from '../../history/audit.js';
 import { refOf } from '../../history/unit-history.js';
+import type { IfRefused } from '../../route.js';
 
 export async function pinStateOf(db: Db, personId: string): Promise<PinState> {
   const state = await findPinState(db, personId);
@@ -13,9 +15,13 @@ export async function pinStateOf(db: Db, personId: string): Promise<PinState> {
   return state;
 }
 
-export async function setOwnPin(db: Db, person: User, { password, pin }: { password: string; pin: string }, now: Date): Promise<PinState> {
-  if (!(await passwordFits(password, await passwordHashOf(db, person.id))))
-    throw new InvalidError([{ pointer: '/password', reason: 'is not your password' }]);
+export async function setOwnPin(
+  db: Db,
+  person: User,
+  { password, pin }: { password: string; pin: string },
+  { now, ifRefused }: { now: Date; ifRefused: IfRefused },
+): Promise<PinState> {
+  await askOwnPassword(db, person, { password, pointer: '/password', wanted: 'a PIN', now, ifRefused });
   return putPin(db, person.id, pin, person, now);
 }
 
@@ -29,13 +35,12 @@ export async function putPinOfAnother(db: Db, personId: string, pin: string, by:
 async function putPin(db: Db, personId: string, pin: string, by: User, now: Date): Promise<PinState> {
   const before = await pinStateOf(db, personId);
   await setPin(db, personId, await hashPin(pin), refOf(by), now);
-  const { id, name } = before.person;
   await audit(db, {
     who: refOf(by),
     what: 'pin.set',
-    subject: { kind: 'person', id, name },
+    subject: personSubject(before.person),
     before: { set: before.pinSetAt !== undefined },
-    after: { set: true, own: by.id === id },
+    after: { set: true, own: by.id === personId },
     at: now,
   });
   return pinStateOf(db, personId);
@@ -45,11 +50,10 @@ export async function takePinAway(db: Db, personId: string, by: User, now: Date)
   const before = await pinStateOf(db, personId);
   if (before.pinSetAt === undefined) return before;
   await clearPin(db, personId);
-  const { id, name } = before.person;
   await audit(db, {
     who: refOf(by),
     what: 'pin.cleared',
-    subject: { kind: 'person', id, name },
+    subject: personSubject(before.person),
     before: { set: true },
     after: { set: false },
     at: now,

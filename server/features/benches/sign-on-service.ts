@@ -7,6 +7,7 @@ import { findPersonWithPin } from '../../auth/pin-store.js';
 import type { Db } from '../../db.js';
 import { InvalidError, RoleError } from '../../errors.js';
 import { audit } from '../../history/audit.js';
+import type { IfRefused } from '../../route.js';
 import { textFaults } from '../../request-faults.js';
 
 /** Whom a sign-on is about, for counting its wrong tries: a person's id, or what was typed where nobody is that. */
@@ -25,13 +26,16 @@ export async function signOnAtBench(
   db: Db,
   bench: BenchRef,
   request: z.output<typeof signOnSchema>,
-  now: Date,
+  { now, ifRefused }: { now: Date; ifRefused: IfRefused },
 ): Promise<z.input<typeof signedOnSchema>> {
   if (request.person === undefined && request.name === undefined)
     throw new InvalidError([{ pointer: '/name', reason: 'say who signs on: a name, or the id of somebody the bench has seen' }]);
   const found = await findPersonWithPin(db, request);
   const fits = await pinFits(request.pin, found?.pinHash);
   if (!fits || !found) {
+    // Whom it was tried for stands beside it; of what nobody is called, nothing: a PIN may have been typed there.
+    const after = found ? { name: found.person.name, person: found.person.id, why: 'wrong PIN' } : { why: 'nobody, or no PIN' };
+    ifRefused((trx) => audit(trx, { who: undefined, what: 'bench.sign-on-failed', subject: { kind: 'bench', ...bench }, after, at: now }));
     throw new InvalidError([
       {
         pointer: '/pin',

@@ -3,7 +3,7 @@ import type { MadeLink } from '../../../shared/api/people.js';
 import type { AppDependencies } from '../../app.js';
 import { credentialOf } from '../../auth/authenticate.js';
 import { ownOrigin } from '../../auth/origin.js';
-import { listPeople, lockPeople } from '../../auth/people-store.js';
+import { listPeople, lockPeople, readPersonRow } from '../../auth/people-store.js';
 import { readShop } from '../../history/shop-store.js';
 import { isLoopback } from '../../loopback.js';
 import { cursorOf, pageOf, uuidCursor } from '../../paging.js';
@@ -17,7 +17,6 @@ import {
   invite,
   linkFor,
   lookAtLink,
-  rowOf,
   setPasswordByLink,
 } from './people-service.js';
 
@@ -43,7 +42,7 @@ export function registerPeopleRoutes(
     return pageOf(people, query.limit, (person) => cursorOf(person.id));
   });
 
-  route('getPerson', ({ params, trx, now }) => rowOf(trx, params.id, now));
+  route('getPerson', ({ params, trx, now }) => readPersonRow(trx, params.id, now));
 
   route('createPerson', ({ body, person: who, trx, now }) => createPerson(trx, body, { who, now }));
 
@@ -63,8 +62,8 @@ export function registerPeopleRoutes(
 
   route(
     'changePassword',
-    async ({ body, person: who, trx, now, http }) => ({
-      ended: await changePassword(trx, body, { who, now, token: credentialOf(http.request)?.token }),
+    async ({ body, person: who, trx, now, ifRefused, http }) => ({
+      ended: await changePassword(trx, body, { who, now, token: credentialOf(http.request)?.token, ifRefused }),
     }),
     { limits: limits.ownPassword },
   );

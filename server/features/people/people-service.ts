@@ -3,12 +3,14 @@ import type { z } from 'zod';
 import type { inviteSchema, LinkKind, PersonRow } from '../../../shared/api/people.js';
 import type { Role } from '../../../shared/api/roles.js';
 import type { newPersonSchema, User } from '../../../shared/api/sessions.js';
-import { hashPassword, passwordFits } from '../../auth/password.js';
+import { askOwnPassword } from '../../auth/own-password.js';
+import { hashPassword } from '../../auth/password.js';
 import {
   holdPerson,
   insertPerson,
   isThereAnotherAdmin,
   personRow,
+  readPersonRow,
   setActive,
   setPassword,
   setRole,
@@ -16,11 +18,11 @@ import {
 } from '../../auth/people-store.js';
 import { deleteLinks, deleteLinksMadeBy, findLink, makeLink, useLink, type PersonLink } from '../../auth/person-links.js';
 import { revokeSessions } from '../../auth/session-store.js';
-import { tokenHash } from '../../auth/token.js';
 import type { Db } from '../../db.js';
 import { ConflictError, InvalidError, NotFoundError, NotSignedInError, RoleError } from '../../errors.js';
-import { audit } from '../../history/audit.js';
+import { audit, personSubject } from '../../history/audit.js';
 import { refOf } from '../../history/unit-history.js';
+import type { IfRefused } from '../../route.js';
 
 /** Who does it, and when. */
 interface Doing {
@@ -28,7 +30,6 @@ interface Doing {
   now: Date;
 }
 
-const subjectOf = ({ id, name }: Pick<User, 'id' | 'name'>) => ({ kind: 'person' as const, id, name });
 const noSuchPerson = (): NotFoundError => new NotFoundError('There is no such person.');
 const emailTaken = (): ConflictError =>
   new ConflictError('Somebody has this e-mail address already.', 'Use another address, or that account: it may be deactivated.');
@@ -39,18 +40,12 @@ async function held(trx: Db, id: string, why: 'out' | 'for change'): Promise<Per
   return person;
 }
 
-export async function rowOf(trx: Db, id: string, now: Date): Promise<PersonRow> {
-  const row = await personRow(trx, id, now);
-  if (!row) throw noSuchPerson();
-  return row;
-}
-
 export async function createPerson(trx: Db, { password, ...told }: z.output<typeof newPersonSchema>, { who, now }: Doing): Promise<User> {
   const person = { id: newId(), ...told };
   const added = await insertPerson(trx, { ...person, passwordHash: await hashPassword(password), createdAt: now });
   if (!added) throw emailTaken();
   const after = { email: person.email, role: person.role };
-  await audit(trx, { who: refOf(who), what: 'person.created', subject: subjectOf(person), after, at: now });
+  await audit(trx, { who: refOf(who), what: 'person.created', subject: personSubject(person), after, at: now });
   return person;
 }
 
@@ -68,8 +63,8 @@ export async function invite(trx: Db, told: z.output<typeof inviteSchema>, { who
   if (!added) throw emailTaken();
   const link = await makeLink(trx, { personId: person.id, kind: 'invitation', madeBy: who.id, now });
   const after = { email: person.email, role: person.role, linkExpiresAt: link.expiresAt.toISOString() };
-  await audit(trx, { who: refOf(who), what: 'person.invited', subject: subjectOf(person), after, at: now });
-  return { person: await rowOf(trx, person.id, now), kind: 'invitation', ...link };
+  await audit(trx, { who: refOf(who), what: 'person.invited', subject: personSubject(person), after, at: now });
+  return { person: await readPersonRow(trx, person.id, now), kind: 'invitation', ...link };
 }
 
 /** For a forgotten password, or an invitation that ran out. What was before stays good until the link is used. */
@@ -81,8 +76,8 @@ export async function linkFor(trx: Db, id: string, { who, now }: Doing): Promise
   const kind: LinkKind = passwordHash === undefined ? 'invitation' : 'reset';
   const link = await makeLink(trx, { personId: id, kind, madeBy: who.id, now });
   const after = { kind, linkExpiresAt: link.expiresAt.toISOString() };
-  await audit(trx, { who: refOf(who), what: 'person.link-made', subject: subjectOf(user), after, at: now });
-  return { person: await rowOf(trx, id, now), kind, ...link };
+  await audit(trx, { who: refOf(who), what: 'person.link-made', subject: personSubject(user), after, at: now });
+  return { person: await readPersonRow(trx, id, now), kind, ...link };
 }
 
 const usedUp = (): NotSignedInError =>
@@ -105,7 +100,7 @@ export async function setPasswordByLink(trx: Db, token: string, password: string
   await audit(trx, {
     who: refOf(person.user),
     what: person.passwordHash === undefined ? 'person.joined' : 'person.password-reset',
-    subject: subjectOf(person.user),
+    subject: personSubject(person.user),
     after: { sessionsEnded: ended },
     at: now,
   });
@@ -130,9 +125,9 @@ export async function changeRole(trx: Db, id: string, role: Role, { who, now }: 
     await setRole(trx, id, role);
     const linksEnded = before === 'admin' ? await deleteLinksMadeBy(trx, id) : 0;
     const change = { before: { role: before }, after: { role, ...(linksEnded > 0 ? { linksEnded } : {}) } };
-    await audit(trx, { who: refOf(who), what: 'person.role-changed', subject: subjectOf(person.user), ...change, at: now });
+    await audit(trx, { who: refOf(who), what: 'person.role-changed', subject: personSubject(person.user), ...change, at: now });
   }
-  return rowOf(trx, id, now);
+  return readPersonRow(trx, id, now);
 }
 
 /** Somebody no longer works here: no session, no link for them or by them, no sign-in. What they did stays theirs. People must be locked. */
@@ -147,12 +142,12 @@ export async function deactivate(trx: Db, id: string, reason: string, { who, now
   await audit(trx, {
     who: refOf(who),
     what: 'person.deactivated',
-    subject: subjectOf(person.user),
+    subject: personSubject(person.user),
     before: { active: true },
     after: { active: false, reason, sessionsEnded, ...(linksEnded > 0 ? { linksEnded } : {}) },
     at: now,
   });
-  return rowOf(trx, id, now);
+  return readPersonRow(trx, id, now);
 }
 
 /** With the password of before; the sessions of before stay ended. */
@@ -161,23 +156,20 @@ export async function activate(trx: Db, id: string, { who, now }: Doing): Promis
   if (person.active) throw new ConflictError(`${person.user.name} is active already.`);
   await setActive(trx, id, true);
   const change = { before: { active: false }, after: { active: true } };
-  await audit(trx, { who: refOf(who), what: 'person.activated', subject: subjectOf(person.user), ...change, at: now });
-  return rowOf(trx, id, now);
+  await audit(trx, { who: refOf(who), what: 'person.activated', subject: personSubject(person.user), ...change, at: now });
+  return readPersonRow(trx, id, now);
 }
 
-/** The old one is asked for, so that an open browser is not enough. Every other session ends; answers how many. */
+/** Every other session ends; answers how many. */
 export async function changePassword(
   trx: Db,
-  passwords: { oldPassword: string; newPassword: string },
-  { who, now, token }: Doing & { token: string | undefined },
+  { oldPassword, newPassword }: { oldPassword: string; newPassword: string },
+  { who, now, token, ifRefused }: Doing & { token: string | undefined; ifRefused: IfRefused },
 ): Promise<number> {
-  const person = await held(trx, who.id, 'for change');
-  if (!(await passwordFits(passwords.oldPassword, person.passwordHash)))
-    throw new InvalidError([{ pointer: '/oldPassword', reason: 'is not your password' }]);
-  if (passwords.oldPassword === passwords.newPassword) throw new InvalidError([{ pointer: '/newPassword', reason: 'is the old one' }]);
-  const hash = await hashPassword(passwords.newPassword);
-  const sessionsEnded = await setPassword(trx, who.id, hash, now, token === undefined ? undefined : tokenHash(token));
+  await askOwnPassword(trx, who, { password: oldPassword, pointer: '/oldPassword', wanted: 'a new password', now, ifRefused });
+  if (oldPassword === newPassword) throw new InvalidError([{ pointer: '/newPassword', reason: 'is the old one' }]);
+  const sessionsEnded = await setPassword(trx, who.id, await hashPassword(newPassword), now, token);
   await deleteLinks(trx, who.id);
-  await audit(trx, { who: refOf(who), what: 'person.password-changed', subject: subjectOf(who), after: { sessionsEnded }, at: now });
+  await audit(trx, { who: refOf(who), what: 'person.password-changed', subject: personSubject(who), after: { sessionsEnded }, at: now });
   return sessionsEnded;
 }

@@ -5,13 +5,13 @@ import { credentialOf } from '../../auth/authenticate.js';
 import { useFirstAdminLink } from '../../auth/first-admin.js';
 import { refuseOtherOrigin } from '../../auth/origin.js';
 import { hashPassword } from '../../auth/password.js';
-import { insertPerson, personRow } from '../../auth/people-store.js';
+import { insertPerson, readPersonRow } from '../../auth/people-store.js';
 import { clearSessionCookie, setSessionCookie } from '../../auth/session-cookie.js';
 import { listSessions, revokeSessionOfToken } from '../../auth/session-store.js';
 import { usedFrom } from '../../auth/used-from.js';
 import type { Db } from '../../db.js';
-import { NotFoundError, NotSignedInError } from '../../errors.js';
-import { audit } from '../../history/audit.js';
+import { NotSignedInError } from '../../errors.js';
+import { audit, personSubject } from '../../history/audit.js';
 import { readShop } from '../../history/shop-store.js';
 import { refOf } from '../../history/unit-history.js';
 import { cursorOf, pageOf, uuidCursor } from '../../paging.js';
@@ -43,8 +43,8 @@ export function registerSessionRoutes(
   route('signOut', async ({ person, trx, now, http: { request, response } }) => {
     const credential = credentialOf(request);
     if (credential) await revokeSessionOfToken(trx, credential.token, now);
-    const subject = { kind: 'person' as const, id: person.id, name: person.name };
-    await audit(trx, { who: refOf(person), what: 'session.ended', subject, after: { from: usedFrom(request) }, at: now });
+    const after = { from: usedFrom(request) };
+    await audit(trx, { who: refOf(person), what: 'session.ended', subject: personSubject(person), after, at: now });
     clearSessionCookie(request, response);
     return {};
   });
@@ -56,9 +56,8 @@ export function registerSessionRoutes(
         throw new NotSignedInError('This link is used up, too old, or none of ours. The terminal prints a new one at the next start.');
       const person = { id: newId(), email: body.email, name: body.name, role: 'admin' as const };
       await insertPerson(trx, { ...person, passwordHash: await hashPassword(body.password), createdAt: now });
-      const subject = { kind: 'person' as const, id: person.id, name: person.name };
       const after = { email: person.email, role: person.role };
-      await audit(trx, { who: undefined, what: 'first-admin.created', subject, after, at: now });
+      await audit(trx, { who: undefined, what: 'first-admin.created', subject: personSubject(person), after, at: now });
       return person;
     },
     { limits: limits.firstAdmin },
@@ -71,28 +70,23 @@ export function registerSessionRoutes(
     const asks = { token: credentialOf(http.request)?.token, after: uuidCursor(query.cursor), limit: query.limit + 1, now };
     return pageOf(await listSessions(trx, personId, asks), query.limit, (session) => cursorOf(session.id));
   };
-  const ownerOf = async (trx: Db, id: string, now: Date) => {
-    const row = await personRow(trx, id, now);
-    if (!row) throw new NotFoundError('There is no such person.');
-    return row;
-  };
 
   route('listOwnSessions', (context) => sessionsOf(context.person.id, context));
-  route('listSessions', async (context) => sessionsOf((await ownerOf(context.trx, context.params.id, context.now)).id, context));
+  route('listSessions', async (context) => sessionsOf((await readPersonRow(context.trx, context.params.id, context.now)).id, context));
 
   route('revokeOwnSession', async ({ params, person: who, trx, now }) => {
     await endSession(trx, { id: params.session, owner: who }, { who, now });
     return {};
   });
   route('revokeSession', async ({ params, person: who, trx, now }) => {
-    await endSession(trx, { id: params.session, owner: await ownerOf(trx, params.id, now) }, { who, now });
+    await endSession(trx, { id: params.session, owner: await readPersonRow(trx, params.id, now) }, { who, now });
     return {};
   });
   route('revokeOtherSessions', async ({ person: who, trx, now, http }) => ({
     ended: await endSessions(trx, who, { who, now, but: credentialOf(http.request)?.token }),
   }));
   route('revokeSessions', async ({ params, person: who, trx, now }) => ({
-    ended: await endSessions(trx, await ownerOf(trx, params.id, now), { who, now }),
+    ended: await endSessions(trx, await readPersonRow(trx, params.id, now), { who, now }),
   }));
 
   route('me', async ({ person, trx }) => ({ user: person, shop: await readShop(trx) }));

@@ -6,8 +6,9 @@ import { insertSession, revokeSession, revokeSessions } from '../../auth/session
 import { newToken } from '../../auth/token.js';
 import type { Db } from '../../db.js';
 import { NotFoundError, NotSignedInError } from '../../errors.js';
-import { audit } from '../../history/audit.js';
+import { audit, personSubject } from '../../history/audit.js';
 import { refOf } from '../../history/unit-history.js';
+import type { IfRefused } from '../../route.js';
 
 const HOUR_MS = 3_600_000;
 /** A bench stays signed in for a month, a browser for a long day. */
@@ -23,7 +24,7 @@ interface SignInAttempt {
   request: z.output<typeof signInSchema>;
   from: string;
   now: Date;
-  ifRefused: (work: (trx: Db) => Promise<void>) => void;
+  ifRefused: IfRefused;
 }
 
 /** The same refusal, in about the same time, for an address that nobody has and for a wrong password. */
@@ -40,13 +41,13 @@ export async function signIn(db: Db, { request, from, now, ifRefused }: SignInAt
   const expiresAt = new Date(now.getTime() + LASTS_MS[request.keep ?? 'bearer']);
   await insertSession(db, { token, personId: person.user.id, from, createdAt: now, expiresAt });
   const after = { from, expiresAt: expiresAt.toISOString() };
-  await audit(db, { who: refOf(person.user), what: 'sign-in.ok', subject: subjectOf(person.user), after, at: now });
+  await audit(db, { who: refOf(person.user), what: 'sign-in.ok', subject: personSubject(person.user), after, at: now });
   return { token, user: person.user, expiresAt };
 }
 
 /** Of somebody unknown not even what was typed: many a password is typed into the field for the address. */
 async function auditRefusal(trx: Db, person: PersonWithPassword | undefined, { from, now }: { from: string; now: Date }): Promise<void> {
-  const subject = person ? subjectOf(person.user) : { kind: 'person' as const, id: '', name: 'an address that nobody has' };
+  const subject = person ? personSubject(person.user) : { kind: 'person' as const, id: '', name: 'an address that nobody has' };
   const why = !person
     ? 'unknown'
     : !person.active
@@ -56,8 +57,6 @@ async function auditRefusal(trx: Db, person: PersonWithPassword | undefined, { f
         : 'wrong password';
   await audit(trx, { who: undefined, what: 'sign-in.failed', subject, after: { why, from }, at: now });
 }
-
-const subjectOf = ({ id, name }: Pick<User, 'id' | 'name'>) => ({ kind: 'person' as const, id, name });
 
 /** One session of somebody's, by its id. Somebody else's id is like one that is not there. */
 export async function endSession(
@@ -80,7 +79,7 @@ export async function endSessions(
   const ended = await revokeSessions(trx, owner.id, now, but);
   if (ended > 0) {
     const after = { sessionsEnded: ended };
-    await audit(trx, { who: refOf(who), what: 'session.revoked', subject: subjectOf(owner), after, at: now });
+    await audit(trx, { who: refOf(who), what: 'session.revoked', subject: personSubject(owner), after, at: now });
   }
   return ended;
 }

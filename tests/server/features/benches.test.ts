@@ -12,9 +12,12 @@ beforeAll(async () => {
 afterAll(() => server.close());
 
 const MINUTE_MS = 60_000;
-const audited = async (what: string): Promise<{ subject_name: string; who_name: string; text: string }[]> => {
+const audited = async (what: string): Promise<{ subject_name: string; who_name: string; after: unknown; text: string }[]> => {
   const rows = (await server.deps.db('audit_log').where({ what }).orderBy('position')) as Record<string, unknown>[];
-  return rows.map((row) => ({ subject_name: String(row['subject_name']), who_name: String(row['who_name']), text: JSON.stringify(row) }));
+  return rows.map((row) => ({
+    ...{ subject_name: String(row['subject_name']), who_name: String(row['who_name']) },
+    ...{ after: row['after'], text: JSON.stringify(row) },
+  }));
 };
 const signOn = (bench: TestBench, body: object) => server.send('signOnAtBench', { as: benchAlone(bench), body });
 
@@ -120,6 +123,14 @@ describe('Sign-on', () => {
       texts.add(refused.text);
     }
     expect(texts.size).toBe(1);
+    const failed = (await audited('bench.sign-on-failed')).slice(-bodies.length);
+    expect(failed.map(({ subject_name: at, who_name: who, after }) => [at, who, after])).toEqual(
+      bodies.map(({ name }) => [
+        'sign-on bench',
+        'null',
+        name === wil.name ? { name: wil.name, person: wil.id, why: 'wrong PIN' } : { why: 'nobody, or no PIN' },
+      ]),
+    );
   });
 
   test('When two have the same name, then neither is guessed at, and the e-mail address tells them apart', async () => {
@@ -258,6 +269,7 @@ describe('PINs', () => {
     expect(await server.ok('getOwnPin', { as: person })).toEqual({ person: { id: person.id, name: person.name, role: 'technician' } });
     const wrong = await server.send('setOwnPin', { as: person, body: { password: 'not the password', pin: '40719' } });
     expect(problemIn(wrong)).toMatchObject({ status: 422, errors: [{ pointer: '/password' }] });
+    expect((await audited('person.wrong-password')).at(-1)).toMatchObject({ who_name: person.name, after: { wanted: 'a PIN' } });
     expect(await server.ok('setOwnPin', { as: person, body: { password: PASSWORD, pin: '40719' } })).toMatchObject({
       pinSetAt: server.time.now.toISOString(),
     });

@@ -188,6 +188,9 @@ describe('The own password', () => {
     const right = { ...body, oldPassword: PASSWORD };
     expect(problemIn(await server.send('changePassword', { as: me, body: right }))).toMatchObject({ status: 429, kind: 'too-many' });
     expect((await server.send('signIn', { body: { email: me.email, password: PASSWORD } })).status).toBe(201);
+    const wrong = await audited({ what: 'person.wrong-password', who: me.id });
+    expect(wrong).toHaveLength(10);
+    expect(wrong[0]).toMatchObject({ subject: { id: me.id }, after: { wanted: 'a new password' } });
   });
 
   test('When two changes come at the same moment, then one is done and the other finds another password', async () => {
