@@ -4,7 +4,7 @@ import { signOn } from '../bench/sign-on.js';
 import type { Context } from '../context.js';
 import { NobodyToAskError, UsageError } from '../errors.js';
 import { EXIT } from '../exit-codes.js';
-import { sendWaiting } from '../journal/deliver.js';
+import { sendNow } from '../journal/deliver.js';
 import { heldWords, takeLock } from '../journal/lock.js';
 import { closeEnded, closeRun, runLock, runWords } from '../journal/open-runs.js';
 import { cutOf, lastPersonIn, RunJournal, writtenRun } from '../journal/run-journal.js';
@@ -61,11 +61,7 @@ export async function runAbandon(
     journal.end(at, true);
     journal.close();
     const entry = closeRun(context, writtenRun(context.home, id));
-    const delivery = (await sendWaiting(context)).find((one) => one.entry.id === id) ?? {
-      state: 'waits' as const,
-      entry,
-      why: 'it is being sent by another terminal',
-    };
+    const delivery = await sendNow(context, entry);
     const sent = delivery.state === 'sent';
     if (!sent) context.stderr.say(deliveryWords(delivery));
     if (json === true) printJson(context, { run: id, unit: written.header.unit, script: written.header.script.name, reason, sent });

@@ -74,10 +74,15 @@ function neverTriedFirst({ home }: Context, entries: readonly OutboxEntry[]): Ou
 
 export const SENDER_LOCK = 'sender';
 
-/** Writes an entry down behind the runs that had ended before it, then sends it and whatever waited before it, of other units what is due. */
+/** Writes an entry down behind the runs that had ended before it, then sends it. */
 export async function keepAndSend(context: Context, entry: OutboxEntry): Promise<Delivery> {
   await closeEnded(context);
   keepEntry(context.home, entry);
+  return sendNow(context, entry);
+}
+
+/** Sends an entry that was just written down and whatever waits before it; of other units what is due. */
+export async function sendNow(context: Context, entry: OutboxEntry): Promise<Delivery> {
   const deliveries = await sendWaiting(context, { due: true, besides: entry });
   return deliveries.find((delivery) => delivery.entry.id === entry.id) ?? { state: 'waits', entry, why: BY_ANOTHER };
 }
