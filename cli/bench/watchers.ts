@@ -6,12 +6,10 @@ import { liveOf } from '../live/live-of.js';
 import type { LampWindow } from './lamp-window.js';
 import { liveLines, NOTHING_YET, progressLine, understand, type Understanding } from './live-view.js';
 import type { Controls, Watcher } from './record-lamps.js';
+import { UnderstandingPace } from './understanding-pace.js';
 
 /** The lanes are drawn 4 times a second at most (look/tokens, Terminal). */
 const DRAW_EVERY_MS = 250;
-/** The decoder looks again every second, and never takes more than a tenth of the time. */
-const UNDERSTAND_EVERY_MS = 1000;
-const REST_FACTOR = 10;
 /** A notice stands until the next one, which comes every ten seconds while something is waited for. */
 const NOTICE_STANDS_MS = 12_000;
 /** Where nobody watches: one line in so many seconds of the capture, fewer where something is only waited for. */
@@ -41,18 +39,16 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
   const style = await stderr.style();
   let window: LampWindow | undefined;
   let understood: Understanding = NOTHING_YET;
-  let understandAgainMs = 0;
+  const pace = new UnderstandingPace();
   let closed = false;
   let notice: { line: string; untilMs: number } | undefined;
 
   const draw = (): void => {
     if (!window || closed) return;
-    const startedMs = performance.now();
-    if (startedMs >= understandAgainMs) {
-      understood = understand(window, sheet);
-      liveOf(context).understood(understood, sheet, window.header.scale.max);
-      const tookMs = performance.now() - startedMs;
-      understandAgainMs = performance.now() + Math.max(UNDERSTAND_EVERY_MS, REST_FACTOR * tookMs);
+    const seen = window;
+    if (pace.isDue) {
+      understood = pace.take(() => understand(seen, sheet));
+      liveOf(context).understood(understood, sheet, seen.header.scale.max);
     }
     block.draw(
       liveLines(
@@ -64,7 +60,7 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
           seconds: controls.seconds,
           byKeys,
           waitsFor,
-          notice: notice !== undefined && startedMs < notice.untilMs ? notice.line : undefined,
+          notice: notice !== undefined && performance.now() < notice.untilMs ? notice.line : undefined,
           attended: parts.attended && context.interactive,
         },
         style,
@@ -86,7 +82,7 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
     marked(markedWindow) {
       window = markedWindow;
       // The next code was brought up: what has shown so far is no longer the one to judge.
-      understandAgainMs = 0;
+      pace.soon();
     },
     notice(line) {
       notice = { line, untilMs: performance.now() + NOTICE_STANDS_MS };
@@ -98,7 +94,7 @@ async function liveWatcher(parts: WatchingParts, controls: Controls): Promise<Wa
       clearInterval(timer);
       keyboard?.close();
       // The last picture shows all that came.
-      understandAgainMs = 0;
+      pace.soon();
       draw();
       closed = true;
       block.leave();

@@ -6,16 +6,13 @@ import type { Script, Step } from '../../shared/script/schema.js';
 import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Verdict } from '../../shared/verdict.js';
 import type { Understanding } from '../bench/live-view.js';
+import { UnderstandingPace } from '../bench/understanding-pace.js';
 import type { UnitOnBench } from '../bench/unit-on-bench.js';
 import type { Context } from '../context.js';
 import type { ProbeEvent } from '../instruments/rig.js';
 import { LampThinner } from './lamp-thinner.js';
 import { LiveRelay } from './live-relay.js';
 import { codeSoFar, shortened, shortName, stepOf, stepTold } from './live-words.js';
-
-/** What is made of a capture is told once a second at most, and working it out never takes more than a tenth of the time. */
-const UNDERSTAND_EVERY_MS = 1000;
-const REST_FACTOR = 10;
 
 export interface WorkBegins {
   id: string;
@@ -34,7 +31,7 @@ export class LiveWork {
   readonly #relay: LiveRelay;
   readonly #now: () => string;
   #steps: string[] = [];
-  #understandAgainMs = 0;
+  readonly #pace = new UnderstandingPace();
   #lastCode = '';
 
   constructor(context: Context) {
@@ -114,7 +111,7 @@ export class LiveWork {
     const byKeys = header.source === 'keys';
     const thinner = new LampThinner({ scaleMax: header.scale.max, byKeys });
     const weights: Readonly<Record<string, number>> = sheet.coding.kind === 'weighted-phases' ? sheet.coding.weights : {};
-    this.#understandAgainMs = 0;
+    this.#pace.soon();
     this.#lastCode = '';
     relay.recording = true;
     relay.tell({
@@ -155,10 +152,7 @@ export class LiveWork {
 
   /** The same where nobody else works it out: asked at every sample, done now and then. */
   understandNowAndThen(understand: () => Understanding, sheet: Sheet, scaleMax: number): void {
-    const startedMs = performance.now();
-    if (!this.#relay.on || startedMs < this.#understandAgainMs) return;
-    this.understood(understand(), sheet, scaleMax);
-    this.#understandAgainMs = performance.now() + Math.max(UNDERSTAND_EVERY_MS, REST_FACTOR * (performance.now() - startedMs));
+    if (this.#relay.on && this.#pace.isDue) this.understood(this.#pace.take(understand), sheet, scaleMax);
   }
 
   async ends(how: LiveMessageOf<'ended'>['how'], verdict?: Verdict): Promise<void> {

@@ -8,6 +8,8 @@ const PART_EVERY_MS = 100;
 /** One that is not answered by then is sent again. */
 const PART_TIMEOUT_MS = 5_000;
 const RETRY = { firstMs: 500, mostMs: 10_000 };
+/** What these answers refuse is in the messages, not who sends them: malformed, too large, not usable. */
+const ABOUT_CONTENT: readonly number[] = [400, 413, 422];
 /** Where nothing is to be told, a sign of life. */
 const STILL_HERE_EVERY_MS = 15_000;
 /** What waits while the network is away: a whole run without its lamps. */
@@ -47,6 +49,8 @@ export class LiveRelay {
   #recording = false;
   #onIdle = (): void => undefined;
   #ending: Promise<void> | undefined;
+  /** So many parts hold one message each: one of them is not good, and the server did not say which. */
+  #oneByOne = 0;
 
   constructor(parts: LiveRelayParts) {
     this.#parts = parts;
@@ -129,7 +133,8 @@ export class LiveRelay {
     const work = this.#work;
     if (work === undefined) return;
     if (this.#part === undefined) {
-      const messages = this.#waiting.splice(0, LIVE_MESSAGES_AT_MOST);
+      this.#oneByOne = Math.max(0, this.#oneByOne - 1);
+      const messages = this.#waiting.splice(0, this.#oneByOne > 0 ? 1 : LIVE_MESSAGES_AT_MOST);
       if (messages.length === 0) {
         this.#onIdle();
         return;
@@ -150,12 +155,35 @@ export class LiveRelay {
         this.#failing = !(error instanceof StoppedError);
         // Whoever waits for the last word waits no longer.
         this.#onIdle();
-      } else this.#turnOff(error);
+      } else if (!this.#leaveOut(part, error)) this.#turnOff(error);
     } finally {
       this.#sending = false;
     }
     if (this.#part === undefined && this.#waiting.length === 0) this.#onIdle();
     else this.#sendSoon();
+  }
+
+  /** Leaves out the message that the server can't use, and sends the others. False: it is not about one, or nothing is shown without it. */
+  #leaveOut(part: NewLive, error: unknown): boolean {
+    if (!(error instanceof ApiProblemError) || !ABOUT_CONTENT.includes(error.status)) return false;
+    const pointers = error.errors.map(({ pointer }) => pointer);
+    const named = new Set(pointers.map((pointer) => Number(/^\/messages\/(\d+)/.exec(pointer)?.[1])));
+    if (pointers.some((pointer) => !pointer.startsWith('/messages/') && pointer !== '')) return false;
+    const { messages } = part;
+    const isNamed = messages.some((_, index) => named.has(index));
+    // The server does not say which: each is then sent by itself.
+    const [rest, bad] = isNamed
+      ? [messages.filter((_, index) => !named.has(index)), messages.filter((_, index) => named.has(index))]
+      : [messages.slice(0, 1), messages.length === 1 ? messages : []];
+    if (bad.some(({ kind }) => kind === 'began')) return false;
+    if (!isNamed) {
+      this.#waiting.unshift(...messages.slice(1));
+      this.#oneByOne += messages.length;
+    }
+    const left = bad === messages ? [] : rest;
+    // It was refused whole, so its number is free.
+    if (this.#part === part) this.#part = left.length === 0 ? undefined : { ...part, messages: left };
+    return true;
   }
 
   /** The server refuses: it would refuse the next part, too. */

@@ -8,7 +8,14 @@ import type { Sheet } from '../../shared/sheet/schema.js';
 import type { Understanding } from '../bench/live-view.js';
 import { repairText } from '../render/repair-text.js';
 
-export const shortened = (text: string, most = LIVE_TEXT_LENGTH): string => (text.length <= most ? text : `${text.slice(0, most - 1)}…`);
+/** What the server refuses in a text: a NUL, or half of a pair that stands for one character. */
+const NO_TEXT = /[\0\p{Surrogate}]/gu;
+
+/** At most so long, as the server counts; no character is cut in two, and what is no text is marked as such. */
+export function shortened(text: string, most = LIVE_TEXT_LENGTH): string {
+  const clean = text.replace(NO_TEXT, '\uFFFD');
+  return clean.length <= most ? clean : `${clean.slice(0, most - 1).replace(/\p{Surrogate}$/u, '')}…`;
+}
 const NAME_LENGTH = 100;
 export const shortName = (text: string): string => shortened(text, NAME_LENGTH);
 
