@@ -11,7 +11,9 @@ const fixtures = join(root, 'tests/fixtures/count-reporter');
 let folder: string;
 beforeAll(() => {
   folder = mkdtempSync(join(tmpdir(), 'refettle-test-count-'));
-  writeFileSync(join(folder, 'vitest.config.mjs'), 'export default { test: { include: ["**/*.test.ts"] } };\n');
+  // One worker for all files, as in the projects: to start one for each took longer than the tests.
+  const test = { include: ['**/*.test.ts'], pool: 'forks', isolate: false, maxWorkers: 1 };
+  writeFileSync(join(folder, 'vitest.config.mjs'), `export default ${JSON.stringify({ test })};\n`);
 });
 afterAll(() => {
   rmSync(folder, { recursive: true, force: true });
