@@ -7,6 +7,7 @@ import * as peopleAndSessions from '../migrations/20261201134600_people_and_sess
 import * as runPeople from '../migrations/20261201134200_run_people.js';
 import * as signingKeys from '../migrations/20261201134000_signing_keys.js';
 import * as sharedBenches from '../migrations/20261201133500_shared_benches.js';
+import * as runDamages from '../migrations/20261201172000_run_damages.js';
 
 /**
  * Every migration, by name. A list in code and not a folder that is read: knex would store names with their extension, and a database
@@ -21,6 +22,7 @@ const migrations: Record<string, Knex.Migration> = {
   '20261201134000_signing_keys': signingKeys,
   '20261201133500_shared_benches': sharedBenches,
   '20261201160000_bench_of_work': benchOfWork,
+  '20261201172000_run_damages': runDamages,
 };
 
 export const migrationSource: Knex.MigrationSource<string> = {

@@ -3,7 +3,7 @@ import { runVerdict } from '../../shared/script/run-verdict.js';
 import { sinceOpened } from '../../shared/readiness/facts.js';
 import { mayHoldCharge } from '../../shared/readiness/gates.js';
 import type { PersonRef } from '../../shared/history/events.js';
-import type { ClockJump, StepResult } from '../../shared/script/run-log.js';
+import type { ClockJump, RunDamage, StepResult } from '../../shared/script/run-log.js';
 import type { Script } from '../../shared/script/schema.js';
 import type { Verdict } from '../../shared/verdict.js';
 import type { Context } from '../context.js';
@@ -11,7 +11,7 @@ import { NobodyToAskError } from '../errors.js';
 import { EXIT, firstExitCode } from '../exit-codes.js';
 import { readIfThere } from '../home.js';
 import type { OpenRig } from '../instruments/rig.js';
-import { sendWaiting, type Delivery } from '../journal/deliver.js';
+import { sendNow, type Delivery } from '../journal/deliver.js';
 import { heldWords, takeLock, type Lock } from '../journal/lock.js';
 import { closeRun, rigLock, runLock } from '../journal/open-runs.js';
 import { journalFileOf, readRunJournal, writtenRun, type RunJournal, type RunStop } from '../journal/run-journal.js';
@@ -39,6 +39,7 @@ export interface GoThroughParts {
   json: boolean;
   /** What the run has before this: nothing where it begins. */
   before: readonly StepResult[];
+  damages?: readonly RunDamage[];
   /** The latest time that the log holds. */
   notBefore?: string;
   /** Puts the first lines into the journal, once nothing is in the way any more. */
@@ -128,11 +129,7 @@ export async function goThrough(context: Context, parts: GoThroughParts): Promis
   journal.close();
   sayCharge(context, parts, header.id);
   const entry = closeRun(context, writtenRun(context.home, header.id));
-  const delivery = (await sendWaiting(context)).find((one) => one.entry.id === entry.id) ?? {
-    state: 'waits' as const,
-    entry,
-    why: 'it is being sent by another terminal',
-  };
+  const delivery = await sendNow(context, entry);
   const verdict = runVerdict(results, false);
   const code = firstExitCode([
     end.exitCode,

@@ -3,7 +3,7 @@ import type { GateState } from '../../shared/readiness/gates.js';
 import { cautionBefore, stepGate } from '../../shared/readiness/run-gates.js';
 import { energisingOf } from '../../shared/script/energised.js';
 import type { PersonRef } from '../../shared/history/events.js';
-import type { StepResult } from '../../shared/script/run-log.js';
+import type { RunDamage, StepResult } from '../../shared/script/run-log.js';
 import type { Script, Step } from '../../shared/script/schema.js';
 import type { Context } from '../context.js';
 import { StoppedError } from '../errors.js';
@@ -25,6 +25,8 @@ import { withRun } from './with-run.js';
 export interface RunParts {
   /** What the run recorded before it was broken off, capture files included. */
   before?: readonly StepResult[];
+  /** What stands behind damage of its journal: a fail or a repair among it shuts gates here as it will at the server. */
+  damages?: readonly RunDamage[];
   /** Who does the steps now; undefined: who began it. */
   person?: PersonRef;
   context: Context;
@@ -172,8 +174,10 @@ function energisedStepsOf(step: Step, fromHere: readonly Step[], { sheet }: Unit
 const isDeadTest = (step: Step, sheet: UnitOnBench['sheet']): boolean =>
   (step.kind === 'measure' || step.kind === 'inspect') && sheet.checks.find(({ id }) => id === step.check)?.deadTest !== undefined;
 
+const byNobody = ({ by: _by, ...result }: StepResult): StepResult => result;
+
 /** The events of the run up to now, as the server will see them. */
-function eventsSoFar({ context, unit, script, journal }: RunParts, results: readonly StepResult[]) {
+function eventsSoFar({ context, unit, script, journal, damages = [] }: RunParts, results: readonly StepResult[]) {
   const { id, startedAt, rig, script: about, by } = journal.header;
   const log = {
     id,
@@ -184,7 +188,8 @@ function eventsSoFar({ context, unit, script, journal }: RunParts, results: read
     interrupted: true,
     // Who did which step decides no gate.
     people: [],
-    steps: results.map(({ by: _by, ...result }) => result as StepResult),
+    damages: damages.map((one) => ({ ...one, found: one.found.map(byNobody) })),
+    steps: results.map(byNobody),
   };
   return settleRun(log, script, unit.sheet, by, () => context.newId()).events.filter((event) => event.kind !== 'run ended');
 }

@@ -15,7 +15,16 @@ import { sendWaiting } from '../journal/deliver.js';
 import { heldWords } from '../journal/lock.js';
 import { closeEnded, openRuns, runWords, type OpenRun } from '../journal/open-runs.js';
 import type { OutboxEntry } from '../journal/outbox.js';
-import { cutOf, journalFileOf, lastPersonIn, resultsOf, RunJournal, writtenRun, type WrittenRun } from '../journal/run-journal.js';
+import {
+  cutOf,
+  damagesOf,
+  journalFileOf,
+  lastPersonIn,
+  resultsOf,
+  RunJournal,
+  writtenRun,
+  type WrittenRun,
+} from '../journal/run-journal.js';
 import { MAY_BE_CHARGED } from '../render/charge-words.js';
 import { deliveryWords } from '../render/delivery-words.js';
 import { printJson } from '../render/json.js';
@@ -143,6 +152,7 @@ export async function resumeRun(options: Omit<ResumeOptions, 'run'>, context: Co
           technician,
           json: options.json === true,
           before,
+          damages: damagesOf(context.home, written),
           notBefore: cut && cut.endedAt > written.lastAt ? cut.endedAt : written.lastAt,
           openJournal: (clock) => {
             const journal = RunJournal.goOn(context.home, written);
@@ -172,7 +182,7 @@ function sayWhatChanged({ stderr }: Context, { written }: OpenRun, edition: numb
   if (damage)
     stderr.say(
       `Line ${damage.line} of the run's journal is damaged: ${damage.reason}. What stands before it is good. ` +
-        `${plural(damage.behind, 'line')} behind it ${damage.behind === 1 ? 'is' : 'are'} not taken for done: those steps are asked again. Nothing is deleted.`,
+        `${plural(damage.behind, 'line')} behind it ${damage.behind === 1 ? 'is' : 'are'} not taken for done: those steps are asked again. Nothing is deleted, and a fail, a code or a repair among them counts.`,
     );
   if (header.sheetEdition !== undefined && header.sheetEdition !== edition)
     stderr.say(

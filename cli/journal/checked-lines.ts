@@ -14,11 +14,11 @@ export function checkedLine(number: number, value: unknown): string {
   return `{"crc32":"${checksumOf(text)}",${text}}\n`;
 }
 
-export type CheckedLine = { number: number; value: unknown } | { number: number; wrong: string; torn: boolean };
+export type CheckedLine = { number: number; value: unknown } | { number: number; wrong: string; torn: boolean; whole?: unknown };
 
 /**
  * The lines of such a file. One that does not hold together says what is wrong with it; `torn` is the end of a file that was being
- * written when the power went. Files of before there were checksums have plain JSON in each line.
+ * written when the power went; `whole` is what a line says that is sound in itself and stands in the wrong place. Files of before there were checksums have plain JSON in each line.
  */
 export function readCheckedLines(text: string): CheckedLine[] {
   const lines = text.split('\n');
@@ -37,7 +37,12 @@ export function readCheckedLines(text: string): CheckedLine[] {
     }
     if (checksumOf(covered) !== sum) return { number, torn, wrong: 'its checksum is wrong' };
     if (Number(written) !== number)
-      return { number, torn: false, wrong: `it was written as line ${written ?? ''}: lines are missing, or stand twice` };
+      return {
+        number,
+        torn: false,
+        wrong: `it was written as line ${written ?? ''}: lines are missing, or stand twice`,
+        whole: parseJson(json),
+      };
     return { number, value: parseJson(json) };
   });
 }

@@ -28,6 +28,7 @@ export function withoutLostCaptures(home: Home, written: WrittenRun): { written:
       results: written.results.filter((result) => !isLeftOut(result)).map((result) => notDoneWithout(lost, result)),
       people: written.people.map((one) => ({ ...one, steps: stays(one.steps) })),
       jumps: written.jumps.map((one) => ({ ...one, steps: stays(one.steps) })),
+      passed: written.passed.map((one) => ({ ...one, steps: stays(one.steps) })),
     },
     lost: [...lost.values()],
   };

@@ -9,6 +9,7 @@ import {
   runPersonSchema,
   stepResultSchema,
   type ClockJump,
+  type RunDamage,
   type RunLog,
   type RunPerson,
   type StepResult,
@@ -73,6 +74,12 @@ export interface Damage {
   reason: string;
   /** Lines behind it that are whole in themselves. */
   behind: number;
+  /** How many results stood before it. */
+  steps: number;
+  /** The results among those lines. */
+  found: StepResult[];
+  /** Recordings that were begun there and have no result. */
+  begun: BegunStep[];
 }
 
 /** What a run on this bench has written down so far. */
@@ -88,6 +95,8 @@ export interface WrittenRun {
   stop: RunStop | undefined;
   end: z.infer<typeof endSchema> | undefined;
   damage: Damage | undefined;
+  /** Damage that somebody has seen and gone on behind. */
+  passed: Damage[];
   /** The last line was cut off while it was written: its step was never said to be done. */
   torn: boolean;
   /** Lines in the file, and whether the last one has its end. */
@@ -183,24 +192,53 @@ export function readRunJournal(text: string): WrittenRun | undefined {
     stop: undefined,
     end: undefined,
     damage: undefined,
+    passed: [],
     torn: false,
     lines: lines.length,
     endsWhole: text.endsWith('\n'),
     lastAt: run.startedAt,
   };
   for (const line of rest) {
-    const parsed = 'value' in line ? lineSchema.safeParse(line.value) : undefined;
-    const { damage } = written;
-    if (damage) {
-      if (!parsed?.success) continue;
-      if ('passedOver' in parsed.data && parsed.data.passedOver.line === damage.line) written.damage = undefined;
-      else damage.behind += 1;
-    } else if (parsed?.success) take(written, parsed.data);
-    else if ('wrong' in line && line.torn) written.torn = true;
-    else
-      written.damage = { line: line.number, reason: 'wrong' in line ? line.wrong : 'this version of Refettle does not know it', behind: 0 };
+    const parsed = lineSchema.safeParse('wrong' in line ? line.whole : line.value);
+    if (!written.damage) {
+      if (parsed.success && !('wrong' in line)) {
+        take(written, parsed.data);
+        continue;
+      }
+      if ('wrong' in line && line.torn) {
+        written.torn = true;
+        continue;
+      }
+      const reason = 'wrong' in line ? line.wrong : 'this version of Refettle does not know it';
+      written.damage = { line: line.number, reason, behind: 0, steps: written.results.length, found: [], begun: [] };
+      // A line that is sound in itself and in the wrong place stands behind its damage.
+      if (!('wrong' in line) || line.whole === undefined) continue;
+    }
+    if (parsed.success) takeBehind(written, written.damage, parsed.data);
   }
   return written;
+}
+
+/** Nothing behind damage is taken for done; who came, and what was seen there, is not forgotten. */
+function takeBehind(written: WrittenRun, damage: Damage, line: z.output<typeof lineSchema>): void {
+  if ('passedOver' in line && line.passedOver.line === damage.line) {
+    written.passed.push(damage);
+    written.damage = undefined;
+    return;
+  }
+  damage.behind += 1;
+  if ('begin' in line) {
+    if (line.begin.captureId !== undefined) damage.begun.push(line.begin);
+    written.lastAt = later(written.lastAt, line.begin.at);
+  } else if ('step' in line) {
+    const { step } = line;
+    const text = JSON.stringify(step);
+    if (![...written.results, ...damage.found].some((one) => JSON.stringify(one) === text)) damage.found.push(step);
+    if (holdsFile(step)) damage.begun = damage.begun.filter(({ captureId }) => captureId !== step.captureId);
+    written.lastAt = later(written.lastAt, step.endedAt);
+  } else if ('person' in line || 'jump' in line || 'stop' in line) {
+    take(written, line);
+  }
 }
 
 function take(written: WrittenRun, line: z.output<typeof lineSchema>): void {
@@ -261,10 +299,24 @@ export const resultsOf = (home: Home, { results }: WrittenRun): StepResult[] =>
     return { ...result, file: result.kind === 'cut' ? readablePart(file) : file };
   });
 
+/** What became of the damage in a journal, with the capture files of what stands behind it; a file that is gone takes its result along. */
+export const damagesOf = (home: Home, { passed, damage }: WrittenRun): RunDamage[] =>
+  [...passed, ...(damage ? [damage] : [])].map(({ line, reason, steps, found, begun }) => ({
+    line,
+    reason,
+    steps,
+    found: [...found, ...begun.flatMap((one) => cutOf(home, { begun: one }) ?? [])].flatMap((result): StepResult[] => {
+      if (!holdsFile(result)) return [result];
+      const file = readablePart(readIfThere(captureFileOf(home, result.captureId)) ?? '');
+      return file === '' ? [] : [{ ...result, file }];
+    }),
+  }));
+
 /** The bench log of a run that was written down, with its captures. */
 export function logOf(home: Home, written: WrittenRun): RunLog {
   const { header, jumps, end, lastAt } = written;
   const { id, script, rig, startedAt, sheetEdition } = header;
+  const damages = damagesOf(home, written);
   return {
     id,
     script,
@@ -275,6 +327,7 @@ export function logOf(home: Home, written: WrittenRun): RunLog {
     people: peopleIn(written),
     ...(sheetEdition === undefined ? {} : { sheetEdition }),
     ...(jumps.length === 0 ? {} : { clockJumps: jumps }),
+    ...(damages.length === 0 ? {} : { damages }),
     steps: resultsOf(home, written),
   };
 }

@@ -2,7 +2,14 @@ import { z } from 'zod';
 import { roleSchema } from '../../shared/api/roles.js';
 import type { UnitPage } from '../../shared/api/units.js';
 import type { PersonRef } from '../../shared/history/events.js';
-import { clockJumpSchema, runLogSchema, runPersonSchema, stepResultSchema, type RunLog } from '../../shared/script/run-log.js';
+import {
+  clockJumpSchema,
+  runDamageSchema,
+  runLogSchema,
+  runPersonSchema,
+  stepResultSchema,
+  type RunLog,
+} from '../../shared/script/run-log.js';
 import { verdictSchema, type Verdict } from '../../shared/verdict.js';
 import type { Db } from '../db.js';
 
@@ -56,6 +63,7 @@ const storedSchema = z
     people: z.array(runPersonSchema),
     sheet_edition: z.number().nullable(),
     clock_jumps: z.array(clockJumpSchema).nullable(),
+    damages: z.array(runDamageSchema).nullable(),
     steps: z.array(stepResultSchema),
   })
   .transform((row) => ({
@@ -71,6 +79,7 @@ const storedSchema = z
     people: row.people,
     ...(row.sheet_edition === null ? {} : { sheetEdition: row.sheet_edition }),
     ...(row.clock_jumps === null ? {} : { clockJumps: row.clock_jumps }),
+    ...(row.damages === null ? {} : { damages: row.damages }),
     steps: row.steps,
   }));
 type StoredRun = z.output<typeof storedSchema>;
@@ -110,6 +119,7 @@ export async function insertRun(db: Db, { unitId, by, log, verdict, recordedAt }
       people: JSON.stringify(log.people),
       sheet_edition: log.sheetEdition ?? null,
       clock_jumps: log.clockJumps ? JSON.stringify(log.clockJumps) : null,
+      damages: log.damages ? JSON.stringify(log.damages) : null,
       steps: JSON.stringify(log.steps),
       recorded_at: recordedAt,
     })

@@ -2,7 +2,7 @@ import { z } from 'zod';
 import { personRefSchema } from '../history/events.js';
 import { faceSchema } from '../lamps/face.js';
 import { decodeAnswerSchema } from '../decode/answer.js';
-import { clockJumpSchema, runLogSchema, runPersonSchema, stepResultSchema } from '../script/run-log.js';
+import { clockJumpSchema, runDamageSchema, runLogSchema, runPersonSchema, stepResultSchema } from '../script/run-log.js';
 import { verdictSchema } from '../verdict.js';
 
 export const newRunSchema = runLogSchema;
@@ -23,6 +23,7 @@ export const runPageSchema = z.strictObject({
   people: z.array(runPersonSchema),
   sheetEdition: z.number().int().optional(),
   clockJumps: z.array(clockJumpSchema).optional(),
+  damages: z.array(runDamageSchema).optional(),
   /** Capture files are left out (`file` is empty). */
   steps: z.array(stepResultSchema),
   answers: z.record(z.string(), decodeAnswerSchema),

@@ -1,5 +1,5 @@
 import { BadInputError } from '../errors.js';
-import { decodeCapture } from '../decode/decode-capture.js';
+import { decodeCapture, isReadable } from '../decode/decode-capture.js';
 import { viewCapture } from '../decode/view-capture.js';
 import type { Capture } from '../lamps/capture.js';
 import { readCapture } from '../lamps/read-capture.js';
@@ -9,6 +9,7 @@ import { holesOf } from '../lamps/holes.js';
 import { judgeWatch, watchSpec } from '../script/judge-watch.js';
 import { peopleOf, type RunLog, type StepResult } from '../script/run-log.js';
 import { isJudged, runVerdict } from '../script/run-verdict.js';
+import { mayShut } from '../readiness/gates.js';
 import type { Script } from '../script/schema.js';
 import type { Sheet } from '../sheet/schema.js';
 import type { CaptureBody, PersonRef, UnitEvent } from './events.js';
@@ -35,7 +36,18 @@ export interface SettledRun {
   events: UnitEvent[];
   /** The capture files of the run, by capture id. */
   captures: { id: string; file: string; body: CaptureBody }[];
+  /** What was found behind damage of the journal, by the number of steps before it: among `events`, too. */
+  evidence: { steps: number; events: UnitEvent[] }[];
 }
+
+/** What leaves an event by itself. An expectation looks at another step, and what a person answered is no evidence of the machine. */
+const LEAVES_EVIDENCE: readonly StepResult['kind'][] = ['measure', 'inspect', 'capture', 'cut', 'watch', 'repair'];
+
+/** Evidence that no gate was asked for opens nothing: only what may shut one, and lamps that prove no "no code". */
+const speaksAgainst = (event: UnitEvent): boolean =>
+  mayShut(event) ||
+  (event.kind === 'capture' && (event.capture.answer.codes.length > 0 || !isReadable(event.capture.answer))) ||
+  (event.kind === 'calibration' && event.calibration.verdict !== 'pass');
 
 /**
  * Makes a bench log into what the shop believes: every capture is decoded again, every reading judged again by the sheet's limits,
@@ -67,7 +79,24 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
     return capture;
   };
 
+  const evidence: SettledRun['evidence'] = [];
+  const takeEvidence = (place: number): void => {
+    for (const { steps: before, found, line, reason } of log.damages ?? []) {
+      if (before !== place) continue;
+      const { damages: _damages, ...rest } = log;
+      const whole = found.filter(({ kind }) => LEAVES_EVIDENCE.includes(kind));
+      const settled = settleRun({ ...rest, interrupted: true, steps: whole }, script, sheet, by, newId);
+      captures.push(...settled.captures);
+      const against = settled.events.filter(speaksAgainst);
+      const at = log.steps[place - 1]?.endedAt ?? log.startedAt;
+      const text = `Line ${line} of the journal of ${script.name} was damaged: ${reason}. What stood behind it was not taken for done (step results that are kept as evidence: ${found.length}).`;
+      events.push({ ...base(at, by), kind: 'note', text }, ...against);
+      evidence.push({ steps: place, events: against });
+    }
+  };
+
   const steps = log.steps.map((result, index): StepResult => {
+    takeEvidence(index);
     switch (result.kind) {
       case 'measure': {
         // Whether it was discharged is what the log's own steps say, never the sender.
@@ -147,6 +176,8 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
     }
   });
 
+  takeEvidence(log.steps.length);
+
   const missing = script.steps.filter((step) => !log.steps.some((result) => result.stepId === step.id && result.kind !== 'cut'));
   const verdict = runVerdict(steps, log.interrupted || missing.length > 0);
   events.push({
@@ -158,5 +189,5 @@ export function settleRun(log: RunLog, script: Script, sheet: Sheet, by: PersonR
     steps: log.steps.length,
     ...(everybody.length > 1 ? { people: everybody } : {}),
   });
-  return { log: { ...log, steps }, verdict, events, captures };
+  return { log: { ...log, steps }, verdict, events, captures, evidence };
 }

@@ -40,9 +40,11 @@ export interface GateBreach {
 export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, facts: UnitFacts): GateBreach | undefined {
   const events = [...facts.events];
   const confirmed = new Set<string>();
+  const found = new Set(run.evidence.flatMap((one) => one.events));
   let place = -1;
   for (const [position, result] of run.log.steps.entries()) {
     if (run.log.people.some((person) => isReturn(person) && person.steps === position)) confirmed.clear();
+    events.push(...run.evidence.flatMap((one) => (one.steps === position ? one.events : [])));
     const breach = (reason: string | string[], remedy?: string): GateBreach => ({
       stepId: result.stepId,
       reasons: [reason].flat(),
@@ -68,7 +70,7 @@ export function runGateBreach(run: SettledRun, script: Script, sheet: Sheet, fac
       return breach('its caution was not answered with yes', 'run it again from its caution');
     const gate = stepGate(step, sheet, { ...facts, events }, run.log.rig.simulated);
     if (!gate.open) return breach(gate.reasons, gate.remedy);
-    events.push(...run.events.filter((event) => event.stepId === result.stepId));
+    events.push(...run.events.filter((event) => event.stepId === result.stepId && !found.has(event)));
   }
   return undefined;
 }

@@ -82,6 +82,19 @@ export const clockJumpSchema = z.strictObject({
 });
 export type ClockJump = z.infer<typeof clockJumpSchema>;
 
+/**
+ * A line of the bench's journal that did not hold together. Nothing behind it was taken for done and its steps were asked again; what
+ * stands whole behind it stays as evidence: it opens nothing, and a fail, a code or a repair among it counts.
+ */
+export const runDamageSchema = z.strictObject({
+  line: z.number().int().positive(),
+  reason: z.string().max(500),
+  /** How many step results the log held before it. */
+  steps: z.number().int().nonnegative(),
+  found: z.array(stepResultSchema).max(500),
+});
+export type RunDamage = z.infer<typeof runDamageSchema>;
+
 /** What a bench run recorded, as one message from the bench to the server. */
 export const runLogSchema = z.strictObject({
   id: z.uuid(),
@@ -96,6 +109,7 @@ export const runLogSchema = z.strictObject({
   /** The edition of the service sheet that it was run by. */
   sheetEdition: z.number().int().positive().optional(),
   clockJumps: z.array(clockJumpSchema).max(200).optional(),
+  damages: z.array(runDamageSchema).max(50).optional(),
   steps: z.array(stepResultSchema).max(500),
 });
 export type RunLog = z.infer<typeof runLogSchema>;

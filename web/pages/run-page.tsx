@@ -41,6 +41,12 @@ export function RunPage() {
             <p className="mb-3">The instruments were simulated: these results count in the demo shop only, and its tags print SAMPLE.</p>
           )}
           {page.interrupted && <p className="mb-3 font-bold">The run was stopped before its last step.</p>}
+          {page.damages?.map(({ line, reason, found }) => (
+            <p key={line} className="mb-3 font-bold">
+              Line {line} of the bench’s journal was damaged: {reason}. What stood behind it was not taken for done;{' '}
+              {plural(found.length, 'step result')} of it kept as evidence.
+            </p>
+          ))}
           <div className="border-t-2 border-ink">
             {page.steps.length === 0 ? <p className="py-4">The run was stopped before its first step.</p> : <RunLogTable page={page} />}
           </div>

@@ -1,5 +1,5 @@
 import { z } from 'zod';
-import type { RunLog, StepResult } from '../../../shared/script/run-log.js';
+import { holdsFile, type RunLog, type StepResult } from '../../../shared/script/run-log.js';
 import type { Script, Step } from '../../../shared/script/schema.js';
 import { CLEAR_CODES } from '../../../shared/readiness/no-code.js';
 import type { Fault } from '../../errors.js';
@@ -48,6 +48,16 @@ export function logFaults(log: RunLog, script: Script): Fault[] {
       faults.push({ pointer: `/people/${String(index)}/steps`, reason: 'lies outside what the log holds, or before the one before it' });
   });
   const captures = new Set<string>();
+  (log.damages ?? []).forEach(({ steps, found }, index) => {
+    const pointer = `/damages/${String(index)}`;
+    if (steps > log.steps.length) faults.push({ pointer: `${pointer}/steps`, reason: 'lies outside what the log holds' });
+    for (const result of found) {
+      if (!holdsFile(result)) continue;
+      if (!z.uuid().safeParse(result.captureId).success) faults.push({ pointer: `${pointer}/found`, reason: 'a captureId is no UUID' });
+      if (captures.has(result.captureId)) faults.push({ pointer: `${pointer}/found`, reason: 'a captureId stands twice in this log' });
+      captures.add(result.captureId);
+    }
+  });
   log.steps.forEach((result, index) => {
     const step = script.steps.find(({ id }) => id === result.stepId);
     const fault = step && faultOf(log, result, index, step);

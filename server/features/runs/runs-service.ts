@@ -7,7 +7,7 @@ import { runGateBreach } from '../../../shared/readiness/run-gates.js';
 import { stageOf } from '../../../shared/readiness/stage.js';
 import { checkScript } from '../../../shared/script/check-script.js';
 import { readScript } from '../../../shared/script/read-script.js';
-import { holdsFile, peopleOf, type RunLog } from '../../../shared/script/run-log.js';
+import { holdsFile, peopleOf, type RunLog, type StepResult } from '../../../shared/script/run-log.js';
 import type { Script } from '../../../shared/script/schema.js';
 import type { Sheet } from '../../../shared/sheet/schema.js';
 import type { Verdict } from '../../../shared/verdict.js';
@@ -49,6 +49,16 @@ function withTimesInUtc(log: RunLog, now: Date): RunLog {
       startedAt: utc(step.startedAt, `/steps/${String(index)}/startedAt`),
       endedAt: utc(step.endedAt, `/steps/${String(index)}/endedAt`),
     })),
+    ...(log.damages && {
+      damages: log.damages.map((damage, index) => ({
+        ...damage,
+        found: damage.found.map((step) => ({
+          ...step,
+          startedAt: utc(step.startedAt, `/damages/${String(index)}/found`),
+          endedAt: utc(step.endedAt, `/damages/${String(index)}/found`),
+        })),
+      })),
+    }),
   };
 }
 
@@ -142,7 +152,8 @@ export async function recordRun(
   { person, bench, now }: { person: User; bench: BenchRef | undefined; now: Date },
 ): Promise<{ id: string; verdict: Verdict }> {
   const told = await withPeopleOfTheShop(db, withTimesInUtc(request, now), person, bench);
-  const repairs = told.steps.flatMap((step) => (step.kind === 'repair' ? [step.repair] : []));
+  const found = (told.damages ?? []).flatMap((damage) => damage.found);
+  const repairs = [...told.steps, ...found].flatMap((step) => (step.kind === 'repair' ? [step.repair] : []));
   const history = await openUnitHistory(db, unitNumber, donorsOf(repairs));
   const { unit } = history;
   const { before } = placeOf(history, new Date(told.startedAt), now);
@@ -154,24 +165,34 @@ export async function recordRun(
   // What the bench could know when it began: what others wrote down meanwhile is placed around the run's steps, and shuts no gate behind it.
   askGates(history, settled, script, sheet, before);
 
-  const steps = settled.log.steps.map((step) => (holdsFile(step) ? { ...step, file: '' } : step));
-  const stored = await insertRun(db, { unitId: unit.id, by, log: { ...settled.log, steps }, verdict: settled.verdict, recordedAt: now });
+  const withoutFile = (step: StepResult): StepResult => (holdsFile(step) ? { ...step, file: '' } : step);
+  const steps = settled.log.steps.map(withoutFile);
+  const damages = told.damages?.map((damage) => ({ ...damage, found: damage.found.map(withoutFile) }));
+  const log = { ...settled.log, steps, ...(damages ? { damages } : {}) };
+  const stored = await insertRun(db, { unitId: unit.id, by, log, verdict: settled.verdict, recordedAt: now });
   if (!stored) throw new ConflictError('A run with this id is stored already.', 'Send the run again under the key it was first sent with.');
   const { doer } = peopleOf(settled.log, by);
   await storeCaptures(db, history, settled, doer, now);
-  for (const [index, step] of settled.log.steps.entries()) {
+  for (const [index, step] of withRepairsOnlyFound(settled.log.steps, found).entries()) {
     if (step.kind !== 'repair') continue;
     await takePartFrom(db, history, step.repair, {
       at: step.endedAt,
       by: doer(step.by),
       simulated: settled.log.rig.simulated,
       now,
-      pointer: `/steps/${String(index)}/repair/partSource/fromUnit`,
+      pointer: index < steps.length ? `/steps/${String(index)}/repair/partSource/fromUnit` : '/damages',
     });
   }
   await recordEvents(db, history, placeEach(history, settled.events, now), now);
   return { id: told.id, verdict: settled.verdict };
 }
+
+/** A repair behind damage took its part from the donor, too, unless it was written down again as its step was asked again. */
+const withRepairsOnlyFound = (steps: readonly StepResult[], found: readonly StepResult[]): StepResult[] => {
+  const part = (step: StepResult): string => (step.kind === 'repair' ? JSON.stringify([step.repair.part, step.repair.partSource]) : '');
+  const again = new Set(steps.map(part));
+  return [...steps, ...found.filter((step) => !again.has(part(step)))];
+};
 
 async function storeCaptures(
   db: Db,
@@ -181,7 +202,8 @@ async function storeCaptures(
   now: Date,
 ): Promise<void> {
   for (const { id, file, body } of captures) {
-    const step = log.steps.find((one) => holdsFile(one) && one.captureId === id);
+    const found = (log.damages ?? []).flatMap((damage) => damage.found);
+    const step = [...log.steps, ...found].find((one) => holdsFile(one) && one.captureId === id);
     const at = step?.endedAt ?? log.endedAt;
     const by = doer(step?.by);
     const simulated = log.rig.simulated || body.source === 'simulated';

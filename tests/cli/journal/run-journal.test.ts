@@ -184,6 +184,28 @@ describe('A journal that is damaged', () => {
     expect(read()).toMatchObject({ results: [caution], damage: undefined });
   });
 
+  test('When whole results stand behind the damage, then they travel in the log with it, also after somebody went on', () => {
+    const lines = threeSteps();
+    writeFileSync(journalFileOf(home, RUN), [lines[0], lines[1]?.replace('yes', 'no'), ...lines.slice(2)].join('\n'));
+    const damages = [{ line: 2, reason: 'its checksum is wrong', steps: 0, found: [looked] }];
+    const before = read();
+    expect(before && logOf(home, before)).toMatchObject({ steps: [], damages, endedAt: looked.endedAt });
+    if (!before) throw new Error('the journal was not read');
+    const journal = RunJournal.goOn(home, before);
+    journal.record(caution);
+    journal.close();
+    const after = read();
+    expect(after && logOf(home, after)).toMatchObject({ steps: [caution], damages });
+  });
+
+  test('When a line is missing, then those behind it are evidence, too; what stands twice is no second result', () => {
+    const lines = threeSteps();
+    writeFileSync(journalFileOf(home, RUN), [lines[0], ...lines.slice(2)].join('\n'));
+    expect(read()).toMatchObject({ results: [], damage: { line: 2, behind: 1, found: [looked] } });
+    writeFileSync(journalFileOf(home, RUN), [lines[0], lines[1], lines[1], ...lines.slice(2)].join('\n'));
+    expect(read()).toMatchObject({ results: [caution], damage: { line: 3, found: [looked] } });
+  });
+
   test('When its last line was torn and somebody goes on, then the torn line stays where it is and what comes now counts', () => {
     const text = threeSteps().join('\n');
     for (let cut = 1; cut < 200; cut += 9) {

@@ -227,3 +227,22 @@ test('When a sheet gets a new edition, then old captures keep the edition that d
   });
   expect(capture).toMatchObject({ sheet: { edition: 1 }, faces: { G5K3: { title: 'Water level does not fall in time' } } });
 });
+
+test('When the bench’s journal was damaged, then the run says so, and a fail and a used part found behind it are on the books', async () => {
+  const { number } = await takeIn(server);
+  const donor = await takeIn(server);
+  const run = newRun(server, 'h6-find');
+  const first = run.steps[0];
+  if (!first) throw new Error('the script has steps');
+  const { title, startedAt, endedAt } = first;
+  const repair = { ...newRepair(server, { partSource: { kind: 'used', fromUnit: donor.number } }).repair };
+  const found: StepResult[] = [{ stepId: 'mended', title, startedAt, endedAt, kind: 'repair', repair }];
+  const damages = [{ line: 3, reason: 'its checksum is wrong', steps: 1, found }];
+  pass(server, 30);
+  await send(number, { ...run, damages }).expect(201);
+  expect(await server.ok('getRun', { as: server.people.lead, params: { id: run.id } })).toMatchObject({ damages });
+  const { events } = await server.ok('getUnit', { as: server.people.lead, params: { number } });
+  expect(events.slice(0, 4).map(({ kind }) => kind)).toEqual(['intake', 'run began', 'note', 'repair']);
+  const other = await server.ok('getUnit', { as: server.people.lead, params: { number: donor.number } });
+  expect(other.events.at(-1)?.kind).toBe('part removed');
+});

@@ -78,6 +78,7 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
   const captures = opened.filter((event) => event.kind === 'capture');
   const calibrations = opened.filter((event) => event.kind === 'calibration');
   const overrides = opened.filter((event) => event.kind === 'override');
+  const notes = opened.filter((event) => event.kind === 'note');
   return (
     <div className="grid gap-7">
       <section aria-labelledby="results">
@@ -161,6 +162,21 @@ export function SignOffEvidence({ page, demo, currency }: { page: UnitPage; demo
           {overrides.map((event) => (
             <p key={event.id} className="border-b border-line py-2">
               “{event.reason}”{' '}
+              <span className="lab">
+                {formatDayTime(event.at)}; {event.by.name}
+              </span>
+            </p>
+          ))}
+        </section>
+      )}
+      {notes.length > 0 && (
+        <section aria-labelledby="notes">
+          <h2 id="notes" className="section-heading">
+            What was noted
+          </h2>
+          {notes.map((event) => (
+            <p key={event.id} className="border-b border-line py-2">
+              {event.text}{' '}
               <span className="lab">
                 {formatDayTime(event.at)}; {event.by.name}
               </span>
