@@ -4,6 +4,7 @@ import { roleSchema } from '../../shared/api/roles.js';
 import { userSchema, type User } from '../../shared/api/sessions.js';
 import type { PersonRef } from '../../shared/history/events.js';
 import type { Db } from '../db.js';
+import { nameKey } from './name-key.js';
 import { newToken, tokenHash } from './token.js';
 
 /** Tells a bench's token from a person's at a glance, in a file and in a log of leaked secrets. */
@@ -18,8 +19,6 @@ export interface BenchRef {
 
 export const newBenchToken = (): string => `${BENCH_TOKEN_PREFIX}${newToken()}`;
 export const isBenchToken = (token: string): boolean => token.startsWith(BENCH_TOKEN_PREFIX);
-
-const nameKey = (name: string): string => name.trim().toLowerCase();
 
 /** The bench that holds this token; undefined where it was revoked or renewed. */
 export async function benchOfToken(db: Db, token: string, now: Date): Promise<BenchRef | undefined> {

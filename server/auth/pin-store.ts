@@ -3,8 +3,7 @@ import type { PinState } from '../../shared/api/benches.js';
 import { roleSchema } from '../../shared/api/roles.js';
 import type { PersonRef } from '../../shared/history/events.js';
 import type { Db } from '../db.js';
-
-const nameKey = (name: string): string => name.trim().toLowerCase().replace(/\s+/g, ' ');
+import { nameKey } from './name-key.js';
 
 const withPinSchema = z
   .object({ id: z.string(), name: z.string(), role: roleSchema, pin_hash: z.string(), pin_set_at: z.date() })

@@ -1,10 +1,11 @@
 import { chmodSync, copyFileSync, existsSync, mkdirSync } from 'node:fs';
-import { dirname, join } from 'node:path';
+import { dirname, join, relative, sep } from 'node:path';
 import type { Db } from '../db.js';
 import { findShop } from '../history/shop-store.js';
 import { migrationSource } from '../migration-source.js';
 import { SetUpError } from '../set-up-error.js';
 import { fileIsThere, filesBelow, inWorkshop, pack } from './archive.js';
+import { BACKUP_NAME } from './backup-folder.js';
 import { dumpDatabase, majorOf } from './database-tools.js';
 import { DATABASE, FILES, type Manifest } from './manifest.js';
 
@@ -28,8 +29,15 @@ const OF_THE_MACHINE = /^(postgres\/|postgres-|postgres\.log|\.refettle-backup-|
 /** Settings that a shop needs to be the same again. DATABASE_URL holds a password and is left out. */
 const SETTINGS = /^(HOST|PORT|PUBLIC_HOST|PUBLIC_PORT|TLS_CERT|TLS_KEY|TRUSTED_PROXIES|REFETTLE_(DATA|DEMO|PUBLIC_URL))$/;
 
-/** What of the data folder goes into a backup: signing key, demo accounts, and whatever else lies there but for the database's own. */
-export const filesToKeep = (dataDir: string): string[] => filesBelow(dataDir, (name) => OF_THE_MACHINE.test(name));
+/**
+ * What of the data folder goes into a backup: signing key, demo accounts, and whatever else lies there but for the database's own, and for
+ * backups: each would hold all before it. `target`: where this one goes.
+ */
+export function filesToKeep(dataDir: string, target?: string): string[] {
+  const folder = target === undefined ? '' : relative(dataDir, dirname(target)).split(sep).join('/');
+  const isOfBackups = (name: string): boolean => BACKUP_NAME.test(name) || (folder !== '' && name === `${folder}/`);
+  return filesBelow(dataDir, (name) => OF_THE_MACHINE.test(name) || isOfBackups(name));
+}
 
 export const countsOf = async (db: Db): Promise<Manifest['counts']> => {
   const count = async (table: string): Promise<number> => {
@@ -68,7 +76,7 @@ export async function makeBackup({ db, databaseUrl, dataDir, file, now, env }: B
       Object.entries(env).filter((pair): pair is [string, string] => SETTINGS.test(pair[0]) && Boolean(pair[1])),
     ),
   };
-  const files = filesToKeep(dataDir);
+  const files = filesToKeep(dataDir, file);
   await inWorkshop(dirname(file), async (workshop) => {
     const content = join(workshop, 'content');
     mkdirSync(content, { mode: 0o700 });

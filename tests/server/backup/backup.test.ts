@@ -20,7 +20,8 @@ import { hashPassword } from '../../../server/auth/password.js';
 import { insertPerson } from '../../../server/auth/people-store.js';
 import { insertSession } from '../../../server/auth/session-store.js';
 import { newToken } from '../../../server/auth/token.js';
-import { makeBackup } from '../../../server/backup/make-backup.js';
+import { keepNewest } from '../../../server/backup/backup-folder.js';
+import { filesToKeep, makeBackup } from '../../../server/backup/make-backup.js';
 import { manifestSchema } from '../../../server/backup/manifest.js';
 import { restoreBackup } from '../../../server/backup/restore-backup.js';
 import { keepHolding } from '../../../server/database-hold.js';
@@ -155,6 +156,23 @@ describe('A backup', () => {
     const before = createHash('sha256').update(readFileSync(file)).digest('hex');
     expect((await refusal(backUp(file))).message).toContain('already');
     expect(createHash('sha256').update(readFileSync(file)).digest('hex')).toBe(before);
+  });
+
+  test('When backups lie in the data folder, then none is packed into the next; of a folder of them only the newest are kept', () => {
+    const into = join(shopDir, 'nightly');
+    mkdirSync(into);
+    onTestFinished(() => rmSync(into, { recursive: true }));
+    const at = (day: number): string => `refettle-2026030${String(day)}020000.tar`;
+    for (const path of [join(into, 'notes.txt'), join(shopDir, at(1)), ...[2, 3, 4].map((day) => join(into, at(day)))])
+      writeFileSync(path, 'x');
+    onTestFinished(() => rmSync(join(shopDir, at(1))));
+    expect(filesToKeep(shopDir, join(into, at(5)))).toEqual(made.files);
+    // A restore, which has no target, leaves backups where they are.
+    expect(filesToKeep(shopDir)).toEqual(['nightly/notes.txt', ...made.files]);
+
+    expect(keepNewest(into, 2)).toEqual([at(2)]);
+    expect(readdirSync(into).sort()).toEqual(['notes.txt', at(3), at(4)]);
+    expect(keepNewest(into, 2)).toEqual([]);
   });
 
   test('When the dump fails half-way, then there is no file and nothing beside it', async () => {

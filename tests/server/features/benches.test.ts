@@ -34,9 +34,9 @@ describe('Benches', () => {
     expect(await audited('bench.made')).toMatchObject([{ subject_name: 'bench 1', who_name: 'Maren Holt' }]);
   });
 
-  test('When two get the same name, then the second is a conflict, whatever its case', async () => {
+  test('When two get the same name, then the second is a conflict, whatever its case and blanks', async () => {
     await makeBench(server, 'Window bench');
-    const again = await server.send('createBench', { as: server.people.lead, body: { name: ' window BENCH ' } });
+    const again = await server.send('createBench', { as: server.people.lead, body: { name: ' window  BENCH ' } });
     expect(problemIn(again)).toMatchObject({ status: 409, kind: 'conflict' });
   });
 
