@@ -134,20 +134,19 @@ test('When something is recorded while the live connection stands, then the page
   page.on('request', (request) => (asked += request.url().endsWith(`/api/units/${number}`) ? 1 : 0));
   await page.goto(`/units/${String(number).padStart(4, '0')}`);
   await page.getByRole('heading', { name: 'What happened, newest first' }).waitFor();
+  // The connection stands.
+  await page.getByRole('heading', { name: 'At no bench now' }).waitFor();
   const before = asked;
-  const startedMs = performance.now();
   await shop.server.ok('recordReading', { params: { number }, as: shop.server.people.technician, body: newReading(shop.server, 'heater') });
   await page.getByRole('button', { name: '1 new' }).waitFor();
-  // The slow look of before was every 15 s.
-  expect(performance.now() - startedMs).toBeLessThan(5_000);
-  expect(asked - before).toBeLessThanOrEqual(2);
+  expect(asked - before).toBe(1);
 });
 
 test('When the session ends while the board is open, then it leads to the sign-in page', async () => {
   const person = await shop.server.addPerson('sales', 'Bram Quill');
   const { page } = await shop.open(person);
   await page.goto('/board');
-  await page.getByRole('heading', { name: 'Benches' }).waitFor();
+  await page.getByRole('heading', { name: 'Going on', exact: true }).waitFor();
   await shop.server.ok('signOut', { as: person });
   await page.waitForURL(/\/sign-in/);
 });

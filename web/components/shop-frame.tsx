@@ -84,7 +84,7 @@ export function ShopFrame({
         {user && mayDo(user.role, 'unit.read') && (
           <nav aria-label="Main" className="word-tabs flex-wrap items-stretch!">
             <NavLink to={paths.units()}>Units</NavLink>
-            <NavLink to={paths.board()}>Benches</NavLink>
+            <NavLink to={paths.board()}>Going on</NavLink>
             {mayDo(user.role, 'bench.read') && <NavLink to={paths.benches()}>Shared benches</NavLink>}
             {mayDo(user.role, 'person.read') && <NavLink to={paths.people()}>People</NavLink>}
             {mayDo(user.role, 'audit.read') && <NavLink to={paths.audit()}>Audit log</NavLink>}

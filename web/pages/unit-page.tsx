@@ -8,9 +8,8 @@ import type { RuleResult } from '../../shared/readiness/readiness.js';
 import { PageHeading } from '../components/page-heading.js';
 import { ErrorNote, Fetched, Pending } from '../components/page-states.js';
 import { RatingPlate } from '../components/rating-plate.js';
-import { useLive } from '../features/live/api/hear-live.js';
+import { useLive, type Live } from '../features/live/api/hear-live.js';
 import { LivePanel } from '../features/live/components/live-panel.js';
-import type { LiveView } from '../features/live/live-source.js';
 import { sheetQuery } from '../features/sheets/api/get-sheet.js';
 import { LOOK_AGAIN_MS, unitQuery } from '../features/units/api/get-unit.js';
 import { BeforeAfter } from '../features/units/components/before-after.js';
@@ -25,6 +24,8 @@ import { NotFoundPage } from './not-found-page.js';
 
 /** Most who open a unit only look: the form comes when it is asked for. */
 const RepairForm = lazy(async () => ({ default: (await import('../features/units/components/repair-form.js')).RepairForm }));
+
+const LOOKS_BY_ITSELF = `This page looks every ${String(LOOK_AGAIN_MS / 1000)} seconds until it is back.`;
 
 export function UnitPage() {
   const number = useUnitNumber();
@@ -80,7 +81,7 @@ function Complaint({ page, signedIn }: { page: UnitPageData; signedIn: SignedIn 
   );
 }
 
-function UnitInFull({ page, signedIn, live }: { page: UnitPageData; signedIn: SignedIn; live: LiveView }) {
+function UnitInFull({ page, signedIn, live }: { page: UnitPageData; signedIn: SignedIn; live: Live }) {
   const { unit, readiness, tag, energising } = page;
   const { user, shop } = signedIn;
   const [query, setQuery] = useSearchParams();
@@ -121,7 +122,7 @@ function UnitInFull({ page, signedIn, live }: { page: UnitPageData; signedIn: Si
           />
         </aside>
       </div>
-      <LivePanel live={live} />
+      <LivePanel live={live} meanwhile={LOOKS_BY_ITSELF} />
       <GateBanner gate={energising} number={unit.number} mayOverride={mayDo(user.role, 'override.record')} />
       <div className="mt-5 flex flex-wrap gap-3">
         {tag && (

@@ -1,6 +1,6 @@
 import { LIVE_BEAT, LIVE_BEAT_SECONDS, liveEventSchema } from '../../../shared/api/live.js';
 import { routeUrl } from '../../../shared/api/routes.js';
-import { afterEvent, type LiveWorks } from './live-state.js';
+import { afterEvent, withoutOld, type LiveWorks } from './live-state.js';
 
 /** Two beats and a half: then the connection is broken, whatever the browser thinks. */
 const SILENT_AFTER_MS = LIVE_BEAT_SECONDS * 2.5 * 1000;
@@ -30,6 +30,8 @@ export class LiveSource {
   readonly #hooks: LiveSourceHooks;
   readonly #listeners = new Set<() => void>();
   #view: LiveView = { works: new Map(), up: false };
+  /** What is told up to `now`: shown then, all at once. */
+  #gathered: LiveWorks | undefined;
   #stream: EventSource | undefined;
   #lastId = '';
   #reopenMs = REOPEN.firstMs;
@@ -51,6 +53,12 @@ export class LiveSource {
     return () => this.#listeners.delete(listener);
   }
 
+  /** Connects anew at once: somebody does not want to wait for the next try. */
+  retry(): void {
+    this.#reopenMs = REOPEN.firstMs;
+    this.#open();
+  }
+
   start(): void {
     document.addEventListener('visibilitychange', this.#onVisibility);
     this.#open();
@@ -69,10 +77,13 @@ export class LiveSource {
       routeUrl('hearLive', { query: { ...after, ...(this.#unit === undefined ? {} : { unit: this.#unit }) } }),
     );
     this.#stream = stream;
+    this.#gathered = undefined;
+    this.#show({ ...this.#view, up: false });
     stream.addEventListener('message', (message: MessageEvent<string>) => this.#hear(message));
     stream.addEventListener(LIVE_BEAT, (message: MessageEvent<string>) => this.#alive(message));
     stream.addEventListener('error', () => {
       if (this.#stream !== stream) return;
+      this.#gathered = undefined;
       this.#show({ ...this.#view, up: false });
       if (stream.readyState === EventSource.CLOSED) {
         this.#hooks.refused();
@@ -107,6 +118,8 @@ export class LiveSource {
     if (message.lastEventId !== '') this.#lastId = message.lastEventId;
     this.#reopenMs = REOPEN.firstMs;
     this.#watch();
+    // The beat comes every few seconds: what has grown old is let go.
+    this.#show({ ...this.#view, works: withoutOld(this.#view.works, Date.now()) });
   }
 
   #hear(message: MessageEvent<string>): void {
@@ -117,9 +130,12 @@ export class LiveSource {
     const event = parsed.data;
     if (event.kind === 'start') this.#hooks.changed(undefined);
     if (event.kind === 'unit changed') this.#hooks.changed(event.unit);
-    const works = afterEvent(this.#view.works, event, Date.now());
-    const up = this.#view.up || event.kind === 'now';
-    if (works !== this.#view.works || up !== this.#view.up) this.#show({ works, up });
+    const works = afterEvent(this.#gathered ?? this.#view.works, event, Date.now());
+    if (event.kind === 'now') {
+      this.#gathered = undefined;
+      this.#show({ works, up: true });
+    } else if (this.#view.up) this.#show({ ...this.#view, works });
+    else this.#gathered = works;
   }
 
   #show(view: LiveView): void {

@@ -4,6 +4,12 @@ import type { Verdict } from '../../../shared/verdict.js';
 
 /** Of a capture's lanes so much is kept to be drawn. */
 const LANES_KEPT_MS = 60_000;
+/** Rows of twenty a second for that time, twice over; and more marks than a technician makes in it. */
+const ROWS_AT_MOST = 2_400;
+const MARKS_AT_MOST = 100;
+/** As the server shows it to who comes: ended work for ten minutes, and a bench that is not heard of for fifteen. */
+const ENDED_SHOWN_MS = 10 * 60_000;
+const UNHEARD_SHOWN_MS = 15 * 60_000;
 /** More flashes than this in a second are not shown as flashes (WCAG 2.3.1, three flashes). */
 const FLASHES_A_SECOND_AT_MOST = 3;
 /** Without a threshold from the decoder: half of full scale. */
@@ -29,7 +35,9 @@ export interface LiveWork {
   id: string;
   unit: number;
   by: PersonRef;
+  /** What it is called: the shared bench, or the rig and who works there. */
   bench: string;
+  atSharedBench: boolean;
   began: LiveMessageOf<'began'>;
   /** The step that goes on. */
   step: { index: number; at: string } | undefined;
@@ -62,6 +70,7 @@ function afterMessage(work: LiveWork | undefined, message: LiveMessage, event: L
       unit: event.unit,
       by: event.by,
       bench: event.bench ?? `${message.rig.name}, ${event.by.name}`,
+      atSharedBench: event.bench !== undefined,
       began: message,
       step: undefined,
       results: new Map(),
@@ -85,7 +94,8 @@ function afterMessage(work: LiveWork | undefined, message: LiveMessage, event: L
     case 'capture began':
       return { ...work, capture: { began: message, rows: [], marksMs: [], code: undefined, ended: undefined } };
     case 'ended':
-      return { ...work, step: undefined, ended: message };
+      // Its lanes are on the unit's books now.
+      return { ...work, step: undefined, capture: undefined, ended: message };
     case 'still here':
       return work;
     default:
@@ -99,11 +109,15 @@ function afterLamps(capture: LiveCapture, message: LiveMessageOf<'lamps' | 'mark
       const width = capture.began.lamps.length + 1;
       const rows = [...capture.rows, ...message.rows.filter((row) => row.length === width)];
       const from = (rows.at(-1)?.[0] ?? 0) - LANES_KEPT_MS;
-      const first = rows.findIndex(([ms = 0]) => ms >= from);
-      return { ...capture, rows: first > 0 ? rows.slice(first) : rows };
+      const first = Math.max(
+        rows.length - ROWS_AT_MOST,
+        rows.findIndex(([ms = 0]) => ms >= from),
+      );
+      const marksMs = capture.marksMs.some((ms) => ms < from) ? capture.marksMs.filter((ms) => ms >= from) : capture.marksMs;
+      return { ...capture, rows: first > 0 ? rows.slice(first) : rows, marksMs };
     }
     case 'mark':
-      return { ...capture, marksMs: [...capture.marksMs, message.atMs] };
+      return { ...capture, marksMs: [...capture.marksMs, message.atMs].slice(-MARKS_AT_MOST) };
     case 'code so far':
       return { ...capture, code: message };
     case 'capture ended':
@@ -139,17 +153,31 @@ export function lampsNow(capture: LiveCapture): LampNow[] {
   });
 }
 
-/** Where each bench stands: its newest work, benches by name. */
-export function benchesOf(works: LiveWorks): LiveWork[] {
-  const newest = new Map<string, LiveWork>();
-  for (const work of works.values()) {
-    const other = newest.get(work.bench);
-    if (!other || Date.parse(other.heardAt) <= Date.parse(work.heardAt)) newest.set(work.bench, work);
-  }
-  return [...newest.values()].sort((a, b) => a.bench.localeCompare(b.bench, 'en', { numeric: true }));
+/** Without what nobody looks for any more: a page may be open for weeks. The same where nothing is old. */
+export function withoutOld(works: LiveWorks, nowMs: number): LiveWorks {
+  const kept = [...works].filter(([, { ended, heardAtMs }]) => nowMs - heardAtMs <= (ended ? ENDED_SHOWN_MS : UNHEARD_SHOWN_MS));
+  return kept.length === works.size ? works : new Map(kept);
 }
 
 /** A bench that was not heard of for so long (four of its signs of life) may have lost its network. */
 const SILENT_AFTER_MS = 60_000;
 export const isSilent = ({ ended, heardAtMs }: Pick<LiveWork, 'ended' | 'heardAtMs'>, nowMs: number): boolean =>
   !ended && nowMs - heardAtMs > SILENT_AFTER_MS;
+
+/** Two people of one name are two, and so are a shared bench and a rig that has its name. */
+const placeOf = ({ atSharedBench, bench, by, began }: LiveWork): string =>
+  JSON.stringify(atSharedBench ? ['bench', bench] : ['rig', began.rig.name, by.id]);
+
+/** Where each bench stands: its newest work, and what else still goes on there; benches by name. */
+export function benchesOf(works: LiveWorks, nowMs: number): LiveWork[] {
+  const newest = new Map<string, LiveWork>();
+  for (const work of works.values()) {
+    const other = newest.get(placeOf(work));
+    if (!other || Date.parse(other.heardAt) <= Date.parse(work.heardAt)) newest.set(placeOf(work), work);
+  }
+  // Two terminals may have a rig of the same name: neither hides what goes on at the other.
+  const alsoGoing = [...works.values()].filter((work) => newest.get(placeOf(work)) !== work && !work.ended && !isSilent(work, nowMs));
+  return [...newest.values(), ...alsoGoing].sort(
+    (a, b) => a.bench.localeCompare(b.bench, 'en', { numeric: true }) || a.id.localeCompare(b.id),
+  );
+}

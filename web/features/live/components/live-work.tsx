@@ -9,7 +9,7 @@ import { LiveLanes } from './live-lanes.js';
 const LOOK_AT_CLOCK_MS = 10_000;
 
 /** So that silence is noticed, too. */
-function useNowMs(): number {
+export function useNowMs(): number {
   const [nowMs, setNowMs] = useState(() => Date.now());
   useEffect(() => {
     const timer = setInterval(() => setNowMs(Date.now()), LOOK_AT_CLOCK_MS);
@@ -93,15 +93,18 @@ function StepAndVerdict({ work }: { work: LiveWork }) {
   );
 }
 
+/** Which work it is, in words. */
+export const whatGoesOn = ({ began: { what, title } }: LiveWork): string =>
+  what === 'run' ? `Bench run ${title}` : what === 'capture' ? 'Capture' : `Reading: ${title}`;
+
 /** What goes on at a bench, as it is told: what, by whom, since when, the step, the last verdict, the lamps, the code so far. */
 export function LiveWorkView({ work }: { work: LiveWork }) {
   const nowMs = useNowMs();
   const { began, capture } = work;
-  const what = began.what === 'run' ? `Bench run ${began.title}` : began.what === 'capture' ? 'Capture' : `Reading: ${began.title}`;
   return (
     <div className="live-work">
       <p>
-        {what}{' '}
+        {whatGoesOn(work)}{' '}
         <span className="lab">
           {work.by.name}, since <time dateTime={began.at}>{formatTime(began.at)}</time>
           {began.rig.simulated ? ', simulated rig' : ''}
