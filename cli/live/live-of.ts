@@ -130,7 +130,7 @@ export class LiveWork {
     return {
       seen(event) {
         const row = event.kind === 'sample' && relay.on ? thinner.push(event.tUs, event.levels) : undefined;
-        if (row) relay.tell({ kind: 'lamps', rows: [row] });
+        if (row) relay.tell({ kind: 'lamps', rows: [row] }, { mayWait: !thinner.tellsEdge });
       },
       marked: (atUs) => relay.tell({ kind: 'mark', atMs: Math.round(atUs / 1000) }),
       ended: (how) => {

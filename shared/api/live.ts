@@ -53,7 +53,7 @@ export const liveMessageSchema = z.discriminatedUnion('kind', [
     /** Tapped in: a level holds until the next, and no decoder knows better. */
     byKeys: z.boolean(),
   }),
-  /** Levels in percent of full scale, thinned to a row each twentieth of a second: `[ms, level, level, …]`, one level a lamp. */
+  /** Levels in percent of full scale, thinned to a row each twentieth of a second and one where a lamp goes on or off: `[ms, level, level, …]`, one level a lamp. */
   z.strictObject({
     kind: z.literal('lamps'),
     rows: z

@@ -190,8 +190,52 @@ test('When samples come a hundred a second, then a row stands for each twentieth
   // (0 + 100 + 200 + 300 + 400) / 5 = 200 of 1000.
   expect(rows.filter((row) => row !== undefined)).toEqual([
     [0, 20, 100],
-    [50, 0, 100],
+    // It went dark: told with the second sample after that row, and not at the end of its slot.
+    [70, 0, 100],
   ]);
+});
+
+test('When a lamp goes on, then its row is told with the second sample that shows it, and time never goes back', () => {
+  const thinner = new LampThinner({ scaleMax: 1000, byKeys: false });
+  const told: { row: number[]; edge: boolean }[] = [];
+  // A sample each hundredth of a second; lit from 0.12 s on; one lone sample of flicker at 0.07 s.
+  for (let sample = 0; sample <= 20; sample += 1) {
+    const row = thinner.push(sample * 10_000, [sample >= 12 || sample === 7 ? 900 : 0]);
+    if (row) told.push({ row, edge: thinner.tellsEdge });
+  }
+  expect(told).toEqual([
+    { row: [0, 0], edge: false },
+    { row: [50, 18], edge: false },
+    { row: [130, 90], edge: true },
+    { row: [150, 90], edge: false },
+  ]);
+});
+
+test('When a lamp goes on between lanes that may wait, then it is told at once, and the lanes with it', async () => {
+  vi.useFakeTimers();
+  onTestFinished(() => void vi.useRealTimers());
+  const { relay, parts } = relayTo(() => Promise.resolve());
+  relay.begin({ id: anyId(), unit: 412 }, began);
+  await vi.advanceTimersByTimeAsync(1);
+  relay.tell(lamps(0), { mayWait: true });
+  await vi.advanceTimersByTimeAsync(60);
+  expect(parts).toHaveLength(1);
+  relay.tell(lamps(50));
+  await vi.advanceTimersByTimeAsync(1);
+  expect(parts[1]?.messages).toEqual([
+    {
+      kind: 'lamps',
+      rows: [
+        [0, 50],
+        [50, 50],
+      ],
+    },
+  ]);
+  relay.tell(lamps(100), { mayWait: true });
+  await vi.advanceTimersByTimeAsync(190);
+  expect(parts).toHaveLength(2);
+  await vi.advanceTimersByTimeAsync(20);
+  expect(parts).toHaveLength(3);
 });
 
 test('When lamps are tapped in by keys, then each press is told at once', () => {
