@@ -6,7 +6,7 @@ export default defineConfig({
     environment: 'node',
     pool: 'forks',
     include: ['tests/perf/**/*.test.ts'],
-    globalSetup: ['tests/helpers/database-cluster.ts', 'tests/helpers/build-web.ts'],
+    globalSetup: ['tests/perf/durable-cluster.ts', 'tests/helpers/build-web.ts'],
     fileParallelism: false,
     hookTimeout: 180_000,
   },

@@ -15,12 +15,12 @@ declare module 'vitest' {
 
 export const templateName = 'refettle_template';
 
-export async function setup(project: TestProject): Promise<() => Promise<void>> {
+export async function setup(project: TestProject, options: { durable: boolean } = { durable: false }): Promise<() => Promise<void>> {
   const folder = mkdtempSync(join(tmpdir(), 'refettle-test-cluster-'));
   chmodSync(folder, 0o711); // as root, PostgreSQL's user must pass through
   const cluster = await startCluster(
     { folder: join(folder, 'postgres'), passwordFile: join(folder, 'password'), logFile: join(folder, 'postgres.log') },
-    { durable: false },
+    options,
   );
   const maintenance = openDb(cluster.url);
   await maintenance.raw('create database ??', [templateName]);
