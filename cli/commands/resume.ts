@@ -186,7 +186,7 @@ function sayWhatChanged({ stderr }: Context, { written }: OpenRun, edition: numb
     );
   if (header.sheetEdition !== undefined && header.sheetEdition !== edition)
     stderr.say(
-      `The service sheet has edition ${edition} by now; the run was begun by edition ${header.sheetEdition}. Readings are judged by the newer one.`,
+      `The service sheet has edition ${edition} by now; the run was begun by edition ${header.sheetEdition}. What the newer one can judge, it judges.`,
     );
 }
 

@@ -1,6 +1,7 @@
 import { v7 as newId } from 'uuid';
 import type { User } from '../../../shared/api/sessions.js';
 import { BadInputError } from '../../../shared/errors.js';
+import { lateSheet } from '../../../shared/history/late-sheet.js';
 import { settleRun, type SettledRun } from '../../../shared/history/settle-run.js';
 import type { PersonRef } from '../../../shared/history/events.js';
 import { runGateBreach } from '../../../shared/readiness/run-gates.js';
@@ -109,8 +110,8 @@ function refuseAfterSale(unitNumber: number, before: Place['before']): void {
 }
 
 /**
- * By the newest sheet; by the edition that the run was made with where the newest no longer fits its script. What is ready is asked of
- * the newest one either way, so an older edition makes a run storable and nothing easier.
+ * By the newest sheet; where that no longer has what the script asks for, with what it lacks out of the edition that the run was made
+ * with. Whatever the newest can judge, decode or shut a gate by, it does: a sender gains nothing by naming an edition.
  */
 async function settleByFittingSheet(
   db: Db,
@@ -136,10 +137,10 @@ async function settleByFittingSheet(
     const older = await findSheet(db, newest.family, told.sheetEdition);
     if (!older) throw error;
     try {
-      return settledBy(older.sheet);
-    } catch (olderError) {
-      // It fits neither: what is wrong with it today is what can be mended.
-      throw olderError instanceof InvalidError ? error : olderError;
+      return settledBy(lateSheet(newest, older.sheet));
+    } catch (lateError) {
+      // It does not fit even so: what is wrong with it today is what can be mended.
+      throw lateError instanceof InvalidError ? error : lateError;
     }
   }
 }
