@@ -8,6 +8,11 @@ const COLUMN_US = 1_000_000 / COLUMNS_PER_SECOND;
 /** Samples older than the window are thrown away in batches, so that each sample is moved a few times at most. */
 const SLACK = 1.25;
 
+/** A ready blink is kept up to this length: more of it proves no more. */
+const PROOF_AT_MOST_US = 20_000_000;
+/** Between the blink that is kept and what follows: longer than any phase, so that neither is taken for a part of the other. */
+const PROOF_PAUSE_US = 3_000_000;
+
 interface Column {
   index: number;
   sums: number[];
@@ -23,6 +28,7 @@ export class LampWindow {
   #columns: Column[] = [];
   #marks: { atUs: number; label: string }[] = [];
   #gaps: { atUs: number; lost: number }[] = [];
+  #proof: { fromUs: number; toUs: number; times: number[]; levels: number[][] } | undefined;
   samples = 0;
   lost = 0;
 
@@ -92,17 +98,43 @@ export class LampWindow {
     return { fromS: first / COLUMNS_PER_SECOND, levels };
   }
 
-  /** The window as a capture of its own, and where it begins in the whole one. */
-  capture(): { capture: Capture; fromUs: number } {
-    const fromUs = this.#times[0] !== undefined && this.lastUs - this.#times[0] >= this.#spanUs ? this.#times[0] : 0;
+  /** The lamps were proved here: they stay so when it has left the window (gate 4). */
+  keepProof(fromUs: number, toUs: number): void {
+    if (toUs <= (this.#proof?.toUs ?? -1)) return;
+    const inIt = (time: number): boolean => time >= Math.max(fromUs, toUs - PROOF_AT_MOST_US) && time <= toUs;
+    const first = this.#times.findIndex(inIt);
+    const last = this.#times.findLastIndex(inIt);
+    if (first < 0) return;
+    this.#proof = {
+      fromUs: this.#times[first] ?? fromUs,
+      toUs,
+      times: this.#times.slice(first, last + 1),
+      levels: this.#levels.map((levels) => levels.slice(first, last + 1)),
+    };
+  }
+
+  /**
+   * The window as a capture of its own, where it begins in the whole one, and from when on it shows the window: before that stands,
+   * where it is asked for, the proof of the lamps, moved up to it.
+   */
+  capture({ withProof = false } = {}): { capture: Capture; fromUs: number; shownFromUs: number } {
+    const first = this.#times[0];
+    const windowFromUs = first !== undefined && this.lastUs - first >= this.#spanUs ? first : 0;
+    const proof = withProof && this.#proof !== undefined && this.#proof.fromUs < windowFromUs ? this.#proof : undefined;
+    const proofUs = proof === undefined ? 0 : proof.toUs - proof.fromUs + PROOF_PAUSE_US;
+    const fromUs = windowFromUs - proofUs;
     const shift = <T extends { atUs: number }>(entries: readonly T[]): T[] =>
-      entries.filter(({ atUs }) => atUs >= fromUs).map((entry) => ({ ...entry, atUs: entry.atUs - fromUs }));
+      entries.filter(({ atUs }) => atUs >= windowFromUs).map((entry) => ({ ...entry, atUs: entry.atUs - fromUs }));
     return {
       fromUs,
+      shownFromUs: windowFromUs,
       capture: {
         header: this.header,
-        timesUs: fromUs === 0 ? this.#times : this.#times.map((time) => time - fromUs),
-        levels: this.#levels,
+        timesUs: [
+          ...(proof?.times.map((time) => time - proof.fromUs) ?? []),
+          ...(fromUs === 0 ? this.#times : this.#times.map((time) => time - fromUs)),
+        ],
+        levels: this.#levels.map((levels, lamp) => (proof ? [...(proof.levels[lamp] ?? []), ...levels] : levels)),
         marks: shift(this.#marks),
         gaps: shift(this.#gaps),
         endUs: this.lastUs - fromUs,

@@ -27,9 +27,9 @@ export interface Understanding {
 
 export const NOTHING_YET: Understanding = { segments: [], codes: [], phases: [], lamps: [], warnings: [] };
 
-/** Decodes what the window holds. */
+/** Decodes what the window holds, and has it keep the ready blink that proves the lamps. */
 export function understand(window: LampWindow, sheet: Sheet): Understanding {
-  const { capture, fromUs } = window.capture();
+  const { capture, fromUs, shownFromUs } = window.capture({ withProof: true });
   if (capture.timesUs.length === 0) return NOTHING_YET;
   const answer = decodeCapture(capture, sheet);
   const view = viewCapture(capture, sheet);
@@ -39,7 +39,11 @@ export function understand(window: LampWindow, sheet: Sheet): Understanding {
     toS: stretch.toS + fromUs / 1e6,
   });
   const lamps = sheet.lamps.map(({ id }) => view.lamps.find((lamp) => lamp.id === id) ?? { threshold: null, litFraction: null });
-  return { segments: answer.segments.map(later), codes: answer.codes, phases: view.phases.map(later), lamps, warnings: answer.warnings };
+  const inWindow = ({ toS }: { toS: number }): boolean => toS * 1e6 > shownFromUs;
+  const segments = answer.segments.map(later).filter(inWindow);
+  const ready = segments.findLast(({ kind }) => kind === 'ready');
+  if (ready) window.keepProof(ready.fromS * 1e6, ready.toS * 1e6);
+  return { segments, codes: answer.codes, phases: view.phases.map(later).filter(inWindow), lamps, warnings: answer.warnings };
 }
 
 /** Whether the code that shows now has shown often enough. */
