@@ -24,10 +24,8 @@ prepare postgresql chromium-headless-shell socat poppler-utils
 
 # Beside the tests, which wait for browsers and timers half of their time.
 say 'Checking types and rules beside the tests …'
-npm run --silent typecheck >"$results/typecheck" 2>&1 </dev/null &
-typecheck=$!
-npm run --silent lint >"$results/lint" 2>&1 </dev/null &
-lint=$!
+node .setup/check.js >"$results/check" 2>&1 </dev/null &
+check=$!
 
 code=0
 REFETTLE_TEST_WEB=$PWD/dist/web REFETTLE_TEST_PROGRAM=$PWD/dist/cli/main.js REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?
@@ -35,5 +33,5 @@ read -r passed tests_failed <"$results/count" || { passed=0; tests_failed=1; }
 # Vitest fails for other reasons than a test, too (a set-up, an error that nobody awaited): none of them may look like a success.
 [ "$code" -eq 0 ] || [ "$tests_failed" -gt 0 ] || tests_failed=1
 failed=$((failed + tests_failed))
-wait "$typecheck" || { failed=$((failed + 1)); say 'The types do not fit:'; cat "$results/typecheck"; }
-wait "$lint" || { failed=$((failed + 1)); say 'A rule of the house is broken:'; cat "$results/lint"; }
+# Its exit code: how many of the two are broken.
+wait "$check" || { failed=$((failed + $?)); cat "$results/check"; }

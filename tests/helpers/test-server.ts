@@ -131,9 +131,8 @@ export async function startTestServer({
   const send = (name: RouteName, { params, query, body, as, key }: Call = {}): Test => {
     const route = routes[name];
     const method = route.method.toLowerCase() as 'get' | 'post' | 'delete';
-    let sent = request(http)
-      [method](routeUrl(name, { ...(params ? { params } : {}), ...(query ? { query } : {}) }))
-      .agent(connections);
+    const url = routeUrl(name, { ...(params ? { params } : {}), ...(query ? { query } : {}) });
+    let sent = request(http)[method](url).agent(connections);
     if (as) sent = sent.set('Authorization', `Bearer ${as.token}`);
     if (as && 'person' in as && as.person !== undefined) sent = sent.set(PERSON_HEADER, as.person);
     if ('idempotent' in route) sent = sent.set('Idempotency-Key', key ?? newId());
