@@ -1,8 +1,7 @@
 import pg from 'pg';
+import { LOCK } from './advisory-locks.js';
 import { SetUpError } from './set-up-error.js';
 
-/** Any number that nothing else in the database locks (db.ts has another one). */
-const WORK_LOCK = 727_275;
 const RECONNECT = { firstMs: 100, mostMs: 5_000 };
 const ANSWERS_WITHIN_MS = 10_000;
 
@@ -33,7 +32,7 @@ async function connectAndHold(databaseUrl: string, how: How): Promise<pg.Client>
   try {
     await client.connect();
     const lock = how === 'alone' ? 'pg_try_advisory_lock' : 'pg_try_advisory_lock_shared';
-    const { rows } = await client.query<{ held: boolean }>(`select ${lock}($1) as held`, [WORK_LOCK]);
+    const { rows } = await client.query<{ held: boolean }>(`select ${lock}($1) as held`, [LOCK.work]);
     if (rows[0]?.held !== true) throw new SetUpError(REFUSALS[how].message, REFUSALS[how].remedy);
     return client;
   } catch (error) {

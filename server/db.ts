@@ -1,5 +1,6 @@
 import knex, { type Knex } from 'knex';
 import pg from 'pg';
+import { LOCK } from './advisory-locks.js';
 import { migrationSource } from './migration-source.js';
 
 export type Db = Knex;
@@ -38,14 +39,11 @@ interface ConnectionPool {
   releaseConnection(connection: unknown): Promise<void>;
 }
 
-/** Any number that nothing else in the database locks. */
-const migrationLock = 727_274;
-
 /** Brings the database to the newest shape. Several servers may do this at once: one works, the others wait. */
 export async function migrate(db: Db): Promise<void> {
   const pool = db.client as ConnectionPool; // knex leaves it untyped
   const connection = await pool.acquireConnection();
-  const onThisConnection = (sql: string): Promise<unknown> => db.raw(sql, [migrationLock]).connection(connection);
+  const onThisConnection = (sql: string): Promise<unknown> => db.raw(sql, [LOCK.migrations]).connection(connection);
   try {
     await onThisConnection('select pg_advisory_lock(?)');
     try {

@@ -7,13 +7,13 @@ import { execa } from 'execa';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { urlOfCluster } from '../../server/postgres/cluster.js';
 import { folderOfOwnCluster } from '../../server/postgres/own-cluster.js';
+import { isBuilt } from '../helpers/the-program.js';
 
 const checkout = join(import.meta.dirname, '../..');
 let folder: string;
 let serverProcess: ChildProcess | undefined;
 
 /** As npm test has just built it, otherwise from the sources. */
-const isBuilt = process.env['REFETTLE_TEST_PROGRAM'] !== undefined;
 const program = (name: string): string[] => (isBuilt ? [`dist/server/${name}.js`] : ['--import', 'tsx', `server/${name}.ts`]);
 
 const tool = (name: string, args: string[], dataDir = join(folder, 'data'), databaseUrl?: string) =>

@@ -1,9 +1,8 @@
 import { z } from 'zod';
 import { isPassing, liveEventSchema, type LiveEvent, type LiveWorkEvent, type NewLive } from '../../../shared/api/live.js';
+import { LOCK } from '../../advisory-locks.js';
 import type { Db } from '../../db.js';
 
-/** Whoever inserts holds it until its commit: then ids are in the order of commits. The migration's triggers take the same one. */
-const LIVE_LOCK = 727_275;
 export const LIVE_CHANNEL = 'refettle_live';
 export const SIGN_OUTS_CHANNEL = 'refettle_sign_outs';
 
@@ -54,7 +53,7 @@ export async function insertLive(trx: Db, { sitting, part }: Pick<NewLive, 'sitt
        )
      select id, pg_notify(:channel, '') from told`,
     {
-      lock: LIVE_LOCK,
+      lock: LOCK.live,
       key: `${sitting} ${String(part)}`,
       unit,
       work,

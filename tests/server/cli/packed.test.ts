@@ -11,6 +11,7 @@ import { hashPassword } from '../../../server/auth/password.js';
 import { insertPerson } from '../../../server/auth/people-store.js';
 import { addressOf, closeServer, listen } from '../../../server/listen.js';
 import { addHeron, takeIn } from '../../helpers/factories.js';
+import { isBuilt } from '../../helpers/the-program.js';
 import { startTestServer, type TestServer } from '../../helpers/test-server.js';
 
 const checkout = join(import.meta.dirname, '../../..');
@@ -22,7 +23,7 @@ let http: Server;
 beforeAll(async () => {
   folder = mkdtempSync(join(tmpdir(), 'refettle-packed-'));
   // npm test has built it; otherwise npm builds it as it would for a person.
-  const scripts = process.env['REFETTLE_TEST_PROGRAM'] === undefined ? [] : ['--ignore-scripts'];
+  const scripts = isBuilt ? ['--ignore-scripts'] : [];
   await execa('npm', ['pack', '--silent', '--pack-destination', folder, ...scripts], { cwd: checkout, stdin: 'ignore' });
   const [tarball = ''] = readdirSync(folder);
   await execa('tar', ['-xzf', join(folder, tarball), '-C', folder]);
