@@ -24,7 +24,7 @@ prepare postgresql chromium-headless-shell socat poppler-utils
 
 # Beside the tests, which wait for browsers and timers half of their time.
 say 'Checking types and rules beside the tests …'
-node .setup/check.js >"$results/check" 2>&1 </dev/null &
+node --single-threaded-gc --max-semi-space-size=128 .setup/check.js >"$results/check" 2>&1 </dev/null &
 check=$!
 
 code=0

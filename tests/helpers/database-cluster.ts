@@ -1,4 +1,4 @@
-// Before the first test file of a project: a PostgreSQL of its own, and in it one migrated database to copy from.
+// Before the first test file: one PostgreSQL for all projects that need it, and in it one migrated database to copy from.
 import { mkdtempSync, chmodSync, rmSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';

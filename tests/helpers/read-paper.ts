@@ -122,6 +122,8 @@ export function marginMm(picture: Picture, dpi = LABEL_PRINTER_DPI): number {
 export function strayPart(one: Picture, other: Picture, dotsAway: number): number {
   let [all, stray] = [0, 0];
   const near = (x: number, y: number): boolean => {
+    // Nearly always the very same dot.
+    if (dark(other, x, y)) return true;
     for (let v = Math.max(0, y - dotsAway); v <= Math.min(other.height - 1, y + dotsAway); v += 1)
       for (let u = Math.max(0, x - dotsAway); u <= Math.min(other.width - 1, x + dotsAway); u += 1) if (dark(other, u, v)) return true;
     return false;

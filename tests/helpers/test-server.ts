@@ -113,8 +113,8 @@ export async function startTestServer({
   };
   await insertShop(deps.db, { ...EMPTY_SHOP, name: 'Millrace Mend', address: '12 Dyehouse Yard', phone: '01632 960412', ...shop });
   const app = createApp(deps);
-  // One port and few connections for all that is sent: a server of its own for each request cost more than the request.
-  const http = createServer(app).listen(0);
+  // One port and few connections for all that is sent, none of which it closes: a server of its own for each request cost more than that.
+  const http = createServer({ keepAliveTimeout: 0 }, app).listen(0);
   const connections = new Agent({ keepAlive: true });
 
   const addPerson = async (role: Role, name: string): Promise<SignedInPerson> => {
