@@ -167,7 +167,7 @@ function UnitInFull({ page, signedIn, live }: { page: UnitPageData; signedIn: Si
           )}
           {page.runs.length === 0 && (
             <p className="py-4">
-              Nothing was tested yet. At the bench: <code className="num">refettle run SCRIPT {unitNumber(unit.number)}</code>
+              No bench run yet. At the bench: <code className="num">refettle run SCRIPT {unitNumber(unit.number)}</code>
             </p>
           )}
         </section>
