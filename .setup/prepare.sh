@@ -104,12 +104,14 @@ build() {
   rm -f "$began"
 }
 
-# prepare NAME…: with these packages of the distribution.
+# prepare NAME…: with these packages of the distribution. A function beside_build is called once the packages are there;
+# what it starts must not keep the checkout's lock (8<&-).
 prepare() {
   check_node
   lock_checkout
   install_packages "$@"
   install_node_modules
+  ! declare -F beside_build >/dev/null || beside_build
   build
   unlock_checkout
 }

@@ -7,8 +7,11 @@ cd "$(dirname "$0")/.."
 results=$(mktemp -d)
 passed=0
 failed=0
+check=
 finish() {
   local code=$?
+  # It still runs where the build failed.
+  [ -z "$check" ] || kill "$check" 2>/dev/null
   rm -rf "$results"
   # Ended early (a build that fails, an interruption): that is a failure, too.
   [ "$code" -eq 0 ] || [ "$failed" -gt 0 ] || failed=1
@@ -20,12 +23,13 @@ trap finish EXIT
 # The settings of a shop are not those of its tests.
 unset HOST PORT DATABASE_URL REFETTLE_DATA REFETTLE_DEMO REFETTLE_PUBLIC_URL REFETTLE_SERVER REFETTLE_HOME
 
+# Beside the build, which keeps one core busy, and the tests, which wait for browsers and timers.
+beside_build() {
+  say 'Checking types and rules beside the tests …'
+  node --single-threaded-gc --max-semi-space-size=128 .setup/check.js >"$results/check" 2>&1 </dev/null 8<&- &
+  check=$!
+}
 prepare postgresql chromium-headless-shell socat poppler-utils
-
-# Beside the tests, which wait for browsers and timers half of their time.
-say 'Checking types and rules beside the tests …'
-node --single-threaded-gc --max-semi-space-size=128 .setup/check.js >"$results/check" 2>&1 </dev/null &
-check=$!
 
 code=0
 REFETTLE_TEST_WEB=$PWD/dist/web REFETTLE_TEST_PROGRAM=$PWD/dist/cli/main.js REFETTLE_TEST_COUNT=$results/count node_modules/.bin/vitest run --reporter=default --reporter=./tests/helpers/count-reporter.ts "$@" </dev/null || code=$?

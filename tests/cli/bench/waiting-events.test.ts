@@ -1,31 +1,25 @@
 // What a bench knows beside the server: the gates must see every repair and fail of it, and never a pass that proves nothing.
-import { readFileSync } from 'node:fs';
 import { afterEach, beforeEach, expect, test } from 'vitest';
 import { eventsOfWaiting } from '../../../cli/bench/waiting-events.js';
 import { withRun } from '../../../cli/bench/with-run.js';
 import { keepEntry, type OutboxEntry } from '../../../cli/journal/outbox.js';
-import { RunJournal } from '../../../cli/journal/run-journal.js';
 import type { UnitEvent } from '../../../shared/history/events.js';
 import { energisingGate } from '../../../shared/readiness/gates.js';
 import type { StepResult } from '../../../shared/script/run-log.js';
 import type { Sheet } from '../../../shared/sheet/schema.js';
-import { benchLog, readingBody } from '../../helpers/bench-log.js';
+import { readingBody } from '../../helpers/bench-log.js';
 import { benchTerminal, type BenchTerminal } from '../../helpers/bench-terminal.js';
-import { facts, heron, shopScript, wil } from '../../helpers/unit-facts.js';
+import { PARKED_RUN, parkRun, wholeRun } from '../../helpers/parked-run.js';
+import { facts, heron, wil } from '../../helpers/unit-facts.js';
 
 let bench: BenchTerminal;
 beforeEach(() => (bench = benchTerminal()));
 afterEach(() => bench.remove());
 
-const RUN = '019af7a0-0000-7000-8000-00000000a100';
-const find = shopScript('h6-find');
-const text = readFileSync(new URL('../../../server/seed/shop/h6-find.yaml', import.meta.url), 'utf8');
 const DEAD_TESTS = ['visual', 'protective-conductor', 'insulation', 'discharge'];
 /** The dead tests of a run that began at 09:00, each 20 s long. */
 const deadTestsOf = (values: Record<string, number> = {}): StepResult[] =>
-  benchLog({ id: RUN, script: find, scriptText: text, startedAt: '2026-03-03T09:00:00Z', values }).steps.filter(({ stepId }) =>
-    DEAD_TESTS.includes(stepId),
-  );
+  wholeRun({ values }).steps.filter(({ stepId }) => DEAD_TESTS.includes(stepId));
 
 const intake: UnitEvent = {
   id: 'in',
@@ -50,29 +44,10 @@ const repairAt = (at: string): OutboxEntry => {
 };
 /** A run that was closed and waits to be sent. */
 const runEndedAt = (endedAt: string, steps: StepResult[]): OutboxEntry => {
-  const body = {
-    ...benchLog({ id: RUN, script: find, scriptText: text, startedAt: '2026-03-03T09:00:00Z' }),
-    endedAt,
-    interrupted: true,
-    steps,
-  };
-  return { ...about(RUN, endedAt), route: 'recordRun', body };
+  const body = { ...wholeRun(), endedAt, interrupted: true, steps };
+  return { ...about(PARKED_RUN, endedAt), route: 'recordRun', body };
 };
-/** A run that is parked on this bench. */
-function parkedRun(steps: StepResult[]): void {
-  const journal = RunJournal.create(bench.context.home, {
-    id: RUN,
-    server: bench.context.server,
-    unit: 412,
-    by: wil,
-    script: { name: find.name, title: find.title, prove: find.prove, text },
-    rig: { name: 'bench-2', simulated: false },
-    startedAt: '2026-03-03T09:00:00Z',
-    pid: process.pid,
-  });
-  steps.forEach((step) => journal.record(step));
-  journal.close();
-}
+const parkedRun = (steps: StepResult[]): void => parkRun(bench.context, steps);
 const waiting = (sheet: Sheet = heron): UnitEvent[] => eventsOfWaiting(bench.context, 412, sheet);
 const gate = () => energisingGate(facts(withRun([intake], waiting())), { rigSimulated: false });
 

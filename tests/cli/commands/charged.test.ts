@@ -1,40 +1,24 @@
 // Leaving, coming back to and closing a run whose insulation test has no discharge; a single one. Everything without a network.
-import { readFileSync } from 'node:fs';
 import { afterEach, expect, test } from 'vitest';
 import { runAbandon } from '../../../cli/commands/abandon.js';
 import { runProgram } from '../../../cli/program.js';
 import { waitingEntries } from '../../../cli/journal/outbox.js';
-import { RunJournal, writtenRun } from '../../../cli/journal/run-journal.js';
-import type { StepResult } from '../../../shared/script/run-log.js';
-import { benchLog } from '../../helpers/bench-log.js';
+import { writtenRun } from '../../../cli/journal/run-journal.js';
 import type { BenchTerminal } from '../../helpers/bench-terminal.js';
 import { offlineBench } from '../../helpers/offline-bench.js';
-import { goodReading, inspection, intake, shopScript, wil } from '../../helpers/unit-facts.js';
+import { PARKED_RUN, parkRun, wholeRun } from '../../helpers/parked-run.js';
+import { goodReading, inspection, intake } from '../../helpers/unit-facts.js';
 
 let bench: BenchTerminal;
 afterEach(() => bench.remove());
 
-const RUN = '019af7a0-0000-7000-8000-00000000b100';
-const find = shopScript('h6-find');
-const text = readFileSync(new URL('../../../server/seed/shop/h6-find.yaml', import.meta.url), 'utf8');
 const WARNING = 'The machine may hold the charge of its insulation test';
 
 /** A run of the simulated rig that was left behind this step. */
 function leftBehind(stepId: string): void {
-  const journal = RunJournal.create(bench.context.home, {
-    id: RUN,
-    server: bench.context.server,
-    unit: 412,
-    by: wil,
-    script: { name: find.name, title: find.title, prove: find.prove, text },
-    rig: { name: 'sim:heron-mend', simulated: true },
-    startedAt: '2026-03-03T09:00:00Z',
-    pid: process.pid,
-  });
-  const { steps } = benchLog({ id: RUN, script: find, scriptText: text, startedAt: '2026-03-03T09:00:00Z', simulated: true });
+  const { steps } = wholeRun({ simulated: true });
   const last = steps.findIndex((step) => step.stepId === stepId);
-  steps.slice(0, last + 1).forEach((step: StepResult) => journal.record(step));
-  journal.close();
+  parkRun(bench.context, steps.slice(0, last + 1), { name: 'sim:heron-mend', simulated: true });
 }
 
 test.each([
@@ -43,7 +27,7 @@ test.each([
 ])('When a run that was left behind %s is abandoned, then it is said whether the machine may be charged', async (stepId, charged) => {
   bench = offlineBench();
   leftBehind(stepId);
-  expect(await runAbandon({ run: RUN, reason: 'the shift is over' }, bench.context)).toBe(5);
+  expect(await runAbandon({ run: PARKED_RUN, reason: 'the shift is over' }, bench.context)).toBe(5);
   expect(bench.stderr().includes(WARNING)).toBe(charged);
 });
 
@@ -51,13 +35,13 @@ test('When a run is resumed behind its insulation test, then that is said before
   bench = offlineBench([intake()], { terminal: true });
   leftBehind('insulation');
   bench.when('Done?', 'k');
-  await runProgram(['resume', RUN, '--rig', 'sim:heron-mend'], bench.context);
+  await runProgram(['resume', PARKED_RUN, '--rig', 'sim:heron-mend'], bench.context);
   const [first = '', ...rest] = bench.stderr().split('Done?');
   expect(first).toContain(WARNING);
   expect(first).toContain('Discharge through the tester');
   // Left again without it: said again.
   expect(rest.join('')).toContain(WARNING);
-  expect(writtenRun(bench.context.home, RUN).stop?.how).toBe('parked');
+  expect(writtenRun(bench.context.home, PARKED_RUN).stop?.how).toBe('parked');
 });
 
 test('When a single insulation test fails and is tried again, then its caution is asked again', async () => {
