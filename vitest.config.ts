@@ -13,7 +13,7 @@ const common = {
 // everything anew for each file took longer than the tests.
 export default defineConfig({
   test: {
-    // One more than two cores: browsers and timers are waited for. Each file has a database, a port and a browser of its own.
+    // One more than two cores: browsers and timers are waited for. Each file has a database and a port of its own, each worker a browser.
     maxWorkers: 3,
     globalSetup: ['tests/helpers/database-cluster.ts'],
     projects: [

@@ -104,7 +104,10 @@ async function goThrough(parts: RunParts): Promise<RunEnd> {
 
   let skipRest = whySkipped(script, results);
   let shut: GateState | undefined;
-  /** One step with its gate and its caution. After an instrument's failure it is tried again as if for the first time: nobody knows what became of the machine meanwhile. */
+  /**
+   * One step with its gate and its caution. After an instrument's failure it is tried again as if for the first time: nobody knows what
+   * became of the machine meanwhile.
+   */
   const doStep = async (step: Step, index: number): Promise<'done' | 'again' | Omit<RunEnd, 'results'>> => {
     if (skipRest !== undefined) {
       record(skipped(step, bench, skipRest));
